@@ -1,0 +1,163 @@
+"""The airborne parts: lift-off to the 50 ft screen, climb, and from 50 ft to touchdown.
+
+All functions take and give SI, floats or arrays that broadcast together, and raise nothing. Slopes are fractions,
+positive uphill in the direction of movement; wind is positive from ahead.
+
+References
+----------
+[1] J. D. Anderson, Aircraft Performance and Design, sections 6.7 and 6.8: airborne part of take-off, approach and
+    flare of the landing.
+[2] Energy method: height and speed gained over a distance are paid by the excess of thrust over drag.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from stripcheck.atmosphere import G0
+from stripcheck.numeric import Number
+
+SCREEN = 15.24  # 50 ft screen [m]
+FLARE_LOAD = 0.2  # load factor above 1 in the flare [-], [1]
+
+
+def mean_square_speed(one: Number, other: Number) -> Number:
+    """Root of the mean square of two speeds [m/s], at which mean dynamic pressure is met. Source: arithmetic.
+
+    >>> mean_square_speed(30.0, 40.0)
+    35.35533905932738
+    """
+    return np.sqrt(0.5 * (np.square(one) + np.square(other)))
+
+
+def lift_coefficient(mass: Number, rho: Number, wing_area: Number, tas: Number) -> Number:
+    """Lift coefficient [-] in level flight of a mass [kg] at a density [kg/m3], wing area [m2], TAS [m/s]. Source: [1].
+
+    >>> round(lift_coefficient(1000.0, 1.225, 16.0, 30.0), 4)
+    1.1119
+    """
+    return 2.0 * mass * G0 / (rho * wing_area * np.square(tas))
+
+
+def excess_gradient(thrust: Number, mass: Number, drag: Number, lift: Number) -> Number:
+    """Gradient of climb [-] at a thrust [N]: thrust over weight less drag over lift coefficient. Source: [1].
+
+    ``mass`` [kg], ``drag`` and ``lift`` coefficients [-].
+
+    >>> round(excess_gradient(2000.0, 1000.0, 0.08, 1.0), 4)
+    0.1239
+    """
+    return thrust / (mass * G0) - drag / lift
+
+
+def screen_distance(lift_off: Number, screen: Number, excess: Number, slope: Number, wind: Number,
+                    technique: Number) -> Number:  # fmt: skip
+    """Distance over the ground [m] from lift-off to 50 ft above the strip.
+
+    ``lift_off`` and ``screen`` speeds [m/s TAS]; ``excess`` gradient [-], positive; ``slope`` [-]: ground that rises
+    under the climb takes from the gradient, ground that falls away gives nothing; ``wind`` [m/s]; ``technique`` [-]
+    calibrated factor on the distance. Source: [2].
+
+    >>> round(screen_distance(28.0, 32.0, 0.12, 0.0, 0.0, 1.0), 2)
+    228.97
+    """
+    energy = (np.square(screen) - np.square(lift_off)) / (2.0 * G0) + SCREEN
+    drift = 1.0 - wind / mean_square_speed(lift_off, screen)
+    return technique * energy / (excess - np.maximum(slope, 0.0)) * np.maximum(drift, 0.0)
+
+
+def ground_gradient(climb_gradient: Number, tas: Number, wind: Number) -> Number:
+    """Gradient of climb over the ground [-] of a gradient in the air [-], TAS [m/s] and wind [m/s].
+
+    Source: geometry of small angles.
+
+    >>> ground_gradient(0.1, 40.0, -10.0)
+    0.08
+    """
+    return climb_gradient * tas / np.maximum(tas - wind, 0.25 * tas)
+
+
+def height_over_obstacle(available: Number, needed: Number, distance: Number, gradient: Number,
+                         height: Number) -> Number:  # fmt: skip
+    """Height [m] above an obstacle's top when 50 ft is reached after ``needed`` [m] of the ``available`` strip [m].
+
+    ``distance`` [m] of the obstacle beyond the end of the strip, ``gradient`` over the ground [-], ``height`` [m] of
+    the obstacle above the end of the strip. Source: geometry.
+
+    >>> height_over_obstacle(600.0, 500.0, 400.0, 0.08, 30.0)
+    25.24
+    """
+    return SCREEN + gradient * (available + distance - needed) - height
+
+
+def approach_gradient(drag: Number, lift: Number, shallowest: Number, steepest: Number) -> Number:
+    """Gradient of descent [-] at idle thrust, drag over lift coefficient, kept within what a pilot would fly.
+
+    ``drag`` and ``lift`` coefficients [-]; ``shallowest`` and ``steepest`` [-]. Source: [1]; idle thrust taken as
+    nil; the two bounds come from the aircraft card.
+
+    >>> approach_gradient(0.12, 1.5, 0.0524, 0.07)
+    0.07
+    """
+    return np.minimum(np.maximum(drag / lift, shallowest), steepest)
+
+
+def threshold_shift(height: Number, distance: Number, gradient: Number) -> Number:
+    """Length of strip [m] lost to an obstacle on the approach: the 50 ft point moves until the path clears its top
+    by the same 50 ft.
+
+    ``height`` [m] above and ``distance`` [m] before the threshold, approach ``gradient`` [-]. Source: geometry.
+
+    >>> round(threshold_shift(20.0, 200.0, 0.06), 6)
+    133.333333
+    """
+    return np.maximum(height / gradient - distance, 0.0)
+
+
+def flare_radius(speed: Number) -> Number:
+    """Radius [m] of the flare at a speed [m/s], at a load factor of 1.2. Source: [1].
+
+    >>> round(flare_radius(61.66), 1)
+    1938.5
+    """
+    return np.square(speed) / (FLARE_LOAD * G0)
+
+
+def flare_height(radius: Number, gradient: Number) -> Number:
+    """Height [m] at which a flare of a radius [m] begins from a path of a gradient [-] (tangent). Source: [1].
+
+    >>> round(flare_height(1938.5, np.tan(np.radians(3.0))), 3)
+    2.657
+    """
+    return radius * (1.0 - 1.0 / np.sqrt(1.0 + np.square(gradient)))
+
+
+def landing_air_distance(approach: Number, touchdown: Number, gradient: Number, slope: Number, wind: Number,
+                         technique: Number) -> Number:  # fmt: skip
+    """Distance over the ground [m] from 50 ft above the threshold to touchdown: straight path, then a round flare.
+
+    ``approach`` and ``touchdown`` speeds [m/s TAS]; ``gradient`` of descent [-]; ``slope`` [-]: ground that falls
+    away under the approach takes from the gradient, ground that rises gives nothing; ``wind`` [m/s]; ``technique``
+    [-] calibrated factor on the distance. Source: [1]. The straight part ends where the flare begins, and is nil
+    when the flare would begin above 50 ft.
+
+    >>> round(landing_air_distance(35.0, 31.0, 0.0524, 0.0, 0.0, 1.0), 2)
+    305.38
+    """
+    speed = 0.5 * (approach + touchdown)
+    path = gradient + np.minimum(slope, 0.0)
+    radius = flare_radius(speed)
+    straight = np.maximum(SCREEN - flare_height(radius, path), 0.0) / path
+    flare = radius * path / np.sqrt(1.0 + np.square(path))
+    return technique * (straight + flare) * np.maximum(1.0 - wind / speed, 0.0)
+
+
+def free_roll(touchdown: Number, wind: Number, seconds: Number) -> Number:
+    """Distance [m] rolled before the brakes bite: touchdown speed [m/s TAS] less wind [m/s], times seconds [s].
+
+    Source: [1].
+
+    >>> free_roll(30.0, 5.0, 2.0)
+    50.0
+    """
+    return np.maximum(touchdown - wind, 0.0) * seconds

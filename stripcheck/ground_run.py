@@ -1,0 +1,187 @@
+"""Ground runs: lift-off and braked roll as fixed sums, with slope, surface, wind and ground effect.
+
+The acceleration at an airspeed V is  a = (T - D - mu (W - L)) / m - g sin(slope).  A roll is the integral of ground
+speed over acceleration. Each integral is one Gauss-Legendre sum of fixed length, so that the same function runs on
+arrays and can be written as one SUMPRODUCT: smooth in every argument, with no case split for zero wind or slope.
+
+All functions take and give SI, floats or arrays that broadcast together, and raise nothing. Slopes are fractions,
+positive uphill in the direction of movement. Wind is positive from ahead. A run whose acceleration is not positive
+all along has no meaning here: ``least_*_acceleration`` tells, and the caller must not show the sum.
+
+References
+----------
+[1] J. D. Anderson, Aircraft Performance and Design, section 6.7: the ground run, ground-effect factor.
+[2] Actuator-disk momentum theory, see stripcheck/thrust.py.
+[3] Gauss-Legendre quadrature, as in any text on numerical methods.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from stripcheck.atmosphere import G0
+from stripcheck.numeric import Number
+from stripcheck.thrust import disk_root
+
+POINTS = 16  # enough for 1e-6 of the roll wherever the least acceleration is LEAST_ACCELERATION or more
+LEAST_ACCELERATION = 0.02 * G0  # below this [m/s2] the scatter of rolling friction decides: counts as no lift-off
+
+
+def _rule_towards_the_end(points: int) -> tuple[np.ndarray, np.ndarray]:
+    """Nodes and weights on 0..1 that crowd towards 1, where a run that hardly accelerates spends its length.
+
+    The Gauss-Legendre rule [3] under x = t (2 - t).
+    """
+    nodes, weights = np.polynomial.legendre.leggauss(points)
+    t = 0.5 * (nodes + 1.0)
+    return t * (2.0 - t), weights * (1.0 - t)
+
+
+NODES, WEIGHTS = _rule_towards_the_end(POINTS)
+# the sum below needs ground speed, itself proportional to the node: the node goes into the weight
+SPEED_WEIGHTS = WEIGHTS * NODES
+ENDED_NODES = np.append(NODES, 1.0)
+
+
+def ground_effect_factor(wing_height: Number, span: Number) -> Number:
+    """Share of the induced drag that is left near the ground [-]; wing height above ground [m], span [m].
+
+    Source: [1], equation for phi = (16 h/b)^2 / (1 + (16 h/b)^2).
+
+    >>> round(ground_effect_factor(5.6, 75.0), 3)
+    0.588
+    """
+    ratio = np.square(16.0 * wing_height / span)
+    return ratio / (1.0 + ratio)
+
+
+def drag_coefficient(parasite: Number, lift_coefficient: Number, aspect_ratio: Number, efficiency: Number,
+                     ground_effect: Number = 1.0) -> Number:  # fmt: skip
+    """Drag coefficient [-]: parasite drag [-] plus induced drag of a lift coefficient [-]. Source: [1].
+
+    ``aspect_ratio`` [-], span ``efficiency`` [-], ``ground_effect`` [-] share of the induced drag that is left.
+
+    >>> round(drag_coefficient(0.03, 0.8, 7.0, 0.8), 5)
+    0.06638
+    """
+    return parasite + ground_effect * np.square(lift_coefficient) / (np.pi * aspect_ratio * efficiency)
+
+
+def slope_sine(slope: Number) -> Number:
+    """Sine [-] of a slope given as a fraction [-] (rise over run). Source: trigonometry.
+
+    >>> round(slope_sine(0.1), 7)
+    0.0995037
+    """
+    return slope / np.sqrt(1.0 + np.square(slope))
+
+
+def resistance(friction: Number, slope: Number) -> Number:
+    """Acceleration [m/s2] lost at rest to a friction coefficient [-] and a slope [-] (negative: gained). Source: [1].
+
+    >>> round(resistance(0.05, 0.02), 5)
+    0.68643
+    """
+    return G0 * (friction + slope_sine(slope))
+
+
+def air_acceleration(rho: Number, wing_area: Number, mass: Number, drag: Number, lift: Number,
+                     friction: Number) -> Number:  # fmt: skip
+    """Acceleration lost per square of airspeed [1/m] to drag, less what lift takes off the wheels. Source: [1].
+
+    ``rho`` [kg/m3], ``wing_area`` [m2], ``mass`` [kg], ``drag`` and ``lift`` coefficients [-] in the ground run,
+    ``friction`` [-]. It is negative where lift relieves the wheels more than drag holds back.
+
+    >>> round(air_acceleration(1.225, 16.0, 1000.0, 0.06, 0.5, 0.05), 8)
+    0.00034300
+    """
+    return 0.5 * rho * wing_area / mass * (drag - friction * lift)
+
+
+def speed_run(start: Number, square: Number, wind: Number, speed: Number) -> Number:
+    """Length [m] of a run between rest and an airspeed, either way, where acceleration is ``start + square V^2``.
+
+    ``start`` [m/s2] at zero airspeed, ``square`` [1/m], ``wind`` [m/s] from ahead, ``speed`` [m/s TAS] at the fast
+    end. For a braked roll both describe the deceleration. Source: [1], integrated by [3]; the acceleration must be
+    positive all along. A run against a wind of that speed or more is 0 long.
+
+    >>> round(speed_run(2.0, -0.0005, 0.0, 30.0), 3)
+    254.892
+    """
+    gained = np.maximum(speed - wind, 0.0)
+    airspeed = wind + np.multiply.outer(NODES, gained)
+    return np.tensordot(SPEED_WEIGHTS, 1.0 / (start + square * np.square(airspeed)), 1) * np.square(gained)
+
+
+def acceleration_at(start: Number, square: Number, speed: Number) -> Number:
+    """Acceleration [m/s2] of such a run at an airspeed [m/s]. Arguments as for ``speed_run``.
+
+    >>> acceleration_at(2.0, -0.0005, 30.0)
+    1.55
+    """
+    return start + square * np.square(speed)
+
+
+def least_speed_run_acceleration(start: Number, square: Number, wind: Number, speed: Number) -> Number:
+    """Least acceleration [m/s2] along such a run: it is at one of the ends, or at zero airspeed in a tailwind.
+
+    Arguments as for ``speed_run``.
+
+    >>> least_speed_run_acceleration(2.0, -0.0005, 0.0, 30.0)
+    1.55
+    """
+    slow = np.square(np.maximum(wind, 0.0))
+    fast = np.square(np.maximum(speed, np.abs(wind)))
+    return start + np.minimum(square * slow, square * fast)
+
+
+def disk_run(thrust: Number, lost: Number, square: Number, disk_speed: Number, wind: Number,
+             speed: Number) -> Number:  # fmt: skip
+    """Length [m] of a take-off run on the thrust of an actuator disk (constant-speed propeller).
+
+    ``thrust`` [m/s2]: static thrust over mass; ``lost`` [m/s2] at rest to friction and slope; ``square`` [1/m] lost
+    per square of airspeed; ``disk_speed`` [m/s] static induced speed; ``wind`` [m/s] from ahead; ``speed`` [m/s TAS]
+    at lift-off. Source: [1] and [2], integrated by [3] over the root y of the disk, in which airspeed and thrust
+    are both rational: V = w (y - 1/y^2), T = T0 / y. The acceleration must be positive all along.
+
+    >>> round(disk_run(4.0, 0.5, 0.0005, 24.0, 0.0, 30.0), 3)
+    184.594
+    """
+    slow = disk_root(wind / disk_speed)
+    fast = disk_root(np.maximum(speed, wind) / disk_speed)
+    return disk_run_between(thrust, lost, square, disk_speed, wind, slow, fast)
+
+
+def disk_run_between(thrust: Number, lost: Number, square: Number, disk_speed: Number, wind: Number, slow: Number,
+                     fast: Number) -> Number:  # fmt: skip
+    """As ``disk_run``, given the roots [-] of the disk at the slow and the fast end of the run.
+
+    >>> round(disk_run_between(4.0, 0.5, 0.0005, 24.0, 0.0, disk_root(0.0), disk_root(1.25)), 3)
+    184.594
+    """
+    share = 1.0 / (slow + np.multiply.outer(NODES, fast - slow))
+    airspeed = disk_speed * (1.0 / share - np.square(share))
+    acceleration = thrust * share - lost - square * np.square(airspeed)
+    pace = (airspeed - wind) * (1.0 + 2.0 * share * np.square(share)) / acceleration
+    return np.tensordot(WEIGHTS, pace, 1) * disk_speed * (fast - slow)
+
+
+def disk_acceleration(thrust: Number, lost: Number, square: Number, disk_speed: Number, root: Number) -> Number:
+    """Acceleration [m/s2] where the disk has the root [-]. Arguments as for ``disk_run``.
+
+    >>> round(disk_acceleration(4.0, 0.5, 0.0005, 24.0, disk_root(1.25)), 6)
+    1.443195
+    """
+    share = 1.0 / root
+    return thrust * share - lost - square * np.square(disk_speed * (root - np.square(share)))
+
+
+def least_disk_acceleration(thrust: Number, lost: Number, square: Number, disk_speed: Number, slow: Number,
+                            fast: Number) -> Number:  # fmt: skip
+    """Least acceleration [m/s2] along such a run, over the nodes of the sum and its fast end. Arguments as above.
+
+    >>> round(least_disk_acceleration(4.0, 0.5, 0.0005, 24.0, disk_root(0.0), disk_root(1.25)), 6)
+    1.443195
+    """
+    root = slow + np.multiply.outer(ENDED_NODES, fast - slow)
+    return np.min(disk_acceleration(thrust, lost, square, disk_speed, root), axis=0)

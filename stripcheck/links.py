@@ -1,0 +1,303 @@
+"""The links of the chain: small functions that choose between given values and join the equations.
+
+They are written like the equations, pure and without branches, so that both evaluators can walk them. SI; NaN is
+"not known".
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from stripcheck import airborne, atmosphere, ground_run, speeds, thrust
+from stripcheck.numeric import Number
+from stripcheck.surface import CONDITIONS, GROUNDS
+
+ELEVATIONS = (-450.0, 5500.0)  # m: the lowest and the highest land with strips, with a margin
+TEMPERATURES = (213.15, 333.15)  # K: -60 to +60 degC
+PRESSURES = (85000.0, 108500.0)  # Pa: beyond any QNH on record
+LENGTHS = (1.0, 10000.0)  # m: any length that could be meant
+SLOPES = (-0.30, 0.30)  # fraction: beyond any strip in use
+LEAST_CLIMB = 0.005  # excess gradient below which the airborne part has no meaningful length
+GROUND_UNKNOWN = len(GROUNDS) + 1  # row of the ground table for a surface or condition that is not known
+# A run "barely accelerates" when its least acceleration is below this share of the first one. Falling with the square
+# of speed, that is a little before the last acceleration is a quarter of the mean one.
+BARELY = 0.2
+
+
+def known(value: Number, limits: tuple[float, float]) -> Number:
+    """Whether a value is a number between two limits; what is no number is never compared."""
+    return np.where(np.isfinite(value), (value >= limits[0]) & (value <= limits[1]), False)
+
+
+def first_known(own: Number, general: Number) -> Number:
+    """The strip's own value where it has one, else the one given for the day."""
+    return np.where(np.isfinite(own), own, np.where(np.isfinite(general), general, np.nan))
+
+
+def highest_elevation(field_elevation: Number, start: Number, end: Number) -> Number:
+    """Highest known point of the strip [m], which is what an aerodrome's elevation means."""
+    ends = np.maximum(start, end)
+    both = np.isfinite(start) & np.isfinite(end)
+    of_field = np.isfinite(field_elevation)
+    lone = np.where(of_field, field_elevation, np.nan)
+    return np.where(both, np.where(of_field, np.maximum(ends, field_elevation), ends), lone)
+
+
+def mean_slope(given: Number, start: Number, end: Number, length: Number) -> Number:
+    """The slope given, else rise between the end elevations over the length [m]."""
+    surveyed = np.isfinite(start) & np.isfinite(end) & np.isfinite(length)
+    return np.where(np.isfinite(given), given, np.where(surveyed, (end - start) / length, np.nan))
+
+
+def adverse_uphill(slope: Number, assumed: Number) -> Number:
+    return np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), np.abs(assumed), np.nan))
+
+
+def adverse_downhill(slope: Number, assumed: Number) -> Number:
+    return np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), -np.abs(assumed), np.nan))
+
+
+def air_temperature(own: Number, day: Number, day_elevation: Number, deviation: Number, elevation: Number,
+                    pressure_altitude: Number) -> Number:  # fmt: skip
+    """The strip's own temperature; else the standard one plus the day's deviation; else the day's temperature,
+    carried at the standard lapse rate from the elevation where it was taken, if one is given."""
+    lapsed = np.where(np.isfinite(day_elevation), day - atmosphere.LAPSE * (elevation - day_elevation), day)
+    standard = atmosphere.isa_temperature(pressure_altitude) + deviation
+    of_day = np.where(np.isfinite(day), lapsed, np.nan)
+    return np.where(np.isfinite(own), own, np.where(np.isfinite(deviation), standard, of_day))
+
+
+def vapour_pressure_of_day(temperature: Number, humidity: Number, dew_point: Number) -> Number:
+    """Vapour pressure from the dew point, else from the relative humidity, else nil; never above saturation."""
+    from_dew = np.where(np.isfinite(dew_point), atmosphere.saturation_vapour_pressure(dew_point), np.nan)
+    saturated = atmosphere.saturation_vapour_pressure(temperature)
+    relative = np.where(np.isfinite(humidity), saturated * humidity, 0.0)
+    return np.where(np.isfinite(dew_point), np.minimum(from_dew, saturated), relative)
+
+
+def wind_known_of(speed: Number, direction: Number, heading: Number) -> Number:
+    directed = np.isfinite(direction) & np.isfinite(heading)
+    return np.where(np.isfinite(speed), (speed == 0.0) | ((speed > 0.0) & directed), False)
+
+
+def wind_of(own_speed: Number, own: Number, general: Number) -> Number:
+    """The strip's own wind value where it has a wind speed of its own, else the day's."""
+    of_day = np.where(np.isfinite(general), general, np.nan)
+    return np.where(np.isfinite(own_speed), np.where(np.isfinite(own), own, np.nan), of_day)
+
+
+def head_of(speed: Number, direction: Number, heading: Number) -> Number:
+    return np.where(speed == 0.0, 0.0, speeds.headwind(speed, direction, heading))
+
+
+def cross_of(speed: Number, direction: Number, heading: Number) -> Number:
+    return np.where(speed == 0.0, 0.0, speeds.crosswind(speed, direction, heading))
+
+
+def run_speed_of(lift_off: Number, wind: Number) -> Number:
+    """Airspeed at the end of a run: at least 1 m/s over the ground, however strong the wind."""
+    return np.maximum(lift_off, wind + 1.0)
+
+
+def rule_correction(surface_factor: Number, per_percent: Number, against: Number) -> Number:
+    """Published correction: surface factor times so much for each per cent of slope against you."""
+    return surface_factor * (1.0 + per_percent * 100.0 * np.maximum(against, 0.0))
+
+
+def takeoff_correction(surface_factor: Number, per_percent: Number, slope: Number) -> Number:
+    return rule_correction(surface_factor, per_percent, slope)
+
+
+def landing_correction(surface_factor: Number, per_percent: Number, slope: Number) -> Number:
+    return rule_correction(surface_factor, per_percent, -slope)
+
+
+def governing(physics: Number, book: Number, correction: Number, physics_counts: Number, rules_count: Number) -> Number:
+    """The longer of what physics and what the published corrections say, or the one that the rule set counts."""
+    return np.maximum(physics * physics_counts, book * correction * rules_count)
+
+
+def product(one: Number, other: Number) -> Number:
+    return one * other
+
+
+def total(one: Number, other: Number) -> Number:
+    return one + other
+
+
+def difference(one: Number, other: Number) -> Number:
+    return one - other
+
+
+def share_of(part: Number, whole: Number) -> Number:
+    return part / whole
+
+
+def three_summed(one: Number, other: Number, third: Number) -> Number:
+    return one + other + third
+
+
+def barely_of(least: Number, first: Number) -> Number:
+    return least < BARELY * first
+
+
+def climbs_of(excess: Number, slope: Number) -> Number:
+    return excess - np.maximum(slope, 0.0) >= LEAST_CLIMB
+
+
+def obstacle_known_of(height: Number, distance: Number) -> Number:
+    return np.isfinite(height) & np.isfinite(distance)
+
+
+def aspect_ratio_of(span: Number, area: Number) -> Number:
+    return np.square(span) / area
+
+
+def disk_area_of(diameter: Number) -> Number:
+    return 0.25 * np.pi * np.square(diameter)
+
+
+def fixed_pitch_start(static: Number, sigma: Number, mass: Number, friction: Number, slope: Number) -> Number:
+    """Acceleration at rest with a fixed-pitch propeller."""
+    return static * thrust.drop_off_factor(sigma) / mass - ground_run.resistance(friction, slope)
+
+
+def fixed_pitch_square(thrust_slope: Number, rho: Number, wing_area: Number, mass: Number, drag: Number, lift: Number,
+                       friction: Number) -> Number:  # fmt: skip
+    """Acceleration per square of airspeed with a fixed-pitch propeller."""
+    lost_to_air = ground_run.air_acceleration(rho, wing_area, mass, drag, lift, friction)
+    return thrust_slope * rho / mass - lost_to_air
+
+
+def disk_thrust_at(static: Number, speed_of_disk: Number, tas: Number) -> Number:
+    return static / thrust.disk_root(tas / speed_of_disk)
+
+
+def disk_root_of(speed: Number, speed_of_disk: Number) -> Number:
+    return thrust.disk_root(speed / speed_of_disk)
+
+
+def braked_square(rho: Number, area: Number, mass: Number, drag: Number, lift: Number, braking: Number,
+                  quality: Number) -> Number:  # fmt: skip
+    """Deceleration of a braked roll per square of airspeed."""
+    return ground_run.air_acceleration(rho, area, mass, drag, lift, braking * quality)
+
+
+def ground_row(surface: Number, condition: Number, day_condition: Number) -> Number:
+    """Row [1, 2, ...] in the ground table of the codes [0, 1, ...] of a surface and a condition.
+
+    A code of -1 stands for "not known"; such a pair has the row after the last, GROUND_UNKNOWN.
+    """
+    used = np.where(condition >= 0, condition, day_condition)
+    return np.where((surface >= 0) & (used >= 0), surface * len(CONDITIONS) + used + 1, GROUND_UNKNOWN)
+
+
+def from_table(column: np.ndarray, row: np.ndarray) -> np.ndarray:
+    """Value of a column of the ground table, which ends with the row of the unknown ground, at a row [1, 2, ...]."""
+    return column[row - 1]
+
+
+def place_known_of(elevation: Number, qnh: Number) -> Number:
+    return known(elevation, ELEVATIONS) & known(qnh, PRESSURES)
+
+
+def air_known_of(temperature: Number) -> Number:
+    return known(temperature, TEMPERATURES)
+
+
+def loading_known(mass: Number, flap: Number, least: Number, most: Number) -> Number:
+    """Whether a mass is given and a flap setting lies within the card's flap table."""
+    given = np.isfinite(mass) & np.isfinite(flap)
+    return np.where(given, (mass > 0.0) & (flap >= least) & (flap <= most), False)
+
+
+def side_known_of(density: Number, headwind: Number, slope: Number, friction: Number, factor: Number, length: Number,
+                  loading: Number) -> Number:  # fmt: skip
+    """Whether all is known that one side, take-off or landing, needs."""
+    figures = np.isfinite(density) & np.isfinite(headwind) & np.isfinite(friction) & np.isfinite(factor)
+    return figures & known(slope, SLOPES) & known(length, LENGTHS) & loading
+
+
+def interpolated(at: Number, nodes: Number, values: Number) -> Number:
+    return np.interp(at, nodes, values)
+
+
+def drag_with_flap(parasite: Number, flap: Number, deflections: Number, added: Number) -> Number:
+    return parasite + np.interp(flap, deflections, added)
+
+
+def lift_at(mass: Number, wing_area: Number, eas: Number) -> Number:
+    """Lift coefficient in level flight at an equivalent airspeed."""
+    return airborne.lift_coefficient(mass, atmosphere.RHO0, wing_area, eas)
+
+
+def width_asked_of(max_mass: Number, light_mass: Number, width_light: Number, width: Number) -> Number:
+    """Least width that the rule set asks for this aeroplane, if it asks for one."""
+    asked = np.where(np.isfinite(width), width, np.nan)
+    has_light = np.isfinite(light_mass) & np.isfinite(width_light)
+    return np.where(has_light, np.where(max_mass <= light_mass, width_light, asked), asked)
+
+
+def lifts_off_of(least: Number, reference_least: Number) -> Number:
+    """Whether the run accelerates all along, here and, for the published corrections, on level dry pavement."""
+    return (least >= ground_run.LEAST_ACCELERATION) & (reference_least >= ground_run.LEAST_ACCELERATION)
+
+
+def fixed_pitch_level_start(static: Number, sigma: Number, mass: Number, friction: Number) -> Number:
+    return fixed_pitch_start(static, sigma, mass, friction, 0.0)
+
+
+def level_resistance(friction: Number) -> Number:
+    return ground_run.resistance(friction, 0.0)
+
+
+def level_screen_distance(lift_off: Number, screen: Number, excess: Number, wind: Number,
+                          technique: Number) -> Number:  # fmt: skip
+    return airborne.screen_distance(lift_off, screen, excess, 0.0, wind, technique)
+
+
+def factored(distance: Number, short: Number, short_to: Number, long: Number, long_from: Number) -> Number:
+    """Distance times its safety factor: one for short distances, another for long ones, straight between the two."""
+    share = np.minimum(np.maximum((distance - short_to) / (long_from - short_to), 0.0), 1.0)
+    return distance * (short + (long - short) * share)
+
+
+def obstacle_cleared_by(present: Number, available: Number, needed: Number, distance: Number, gradient: Number,
+                        height: Number, slope: Number) -> Number:  # fmt: skip
+    """Height over the obstacle ahead, less the ground that rises from the 50 ft point to the end of the strip."""
+    rise = np.maximum(slope, 0.0) * np.maximum(available - needed, 0.0)
+    over = airborne.height_over_obstacle(available, needed, distance, gradient, height)
+    return np.where(present, over - rise, np.nan)
+
+
+def landing_length_of(usable: Number, present: Number, height: Number, distance: Number, path: Number) -> Number:
+    """Usable length less what an obstacle on the approach takes."""
+    return np.where(present, usable - airborne.threshold_shift(height, distance, path), usable)
+
+
+def path_closes_of(path: Number, slope: Number) -> Number:
+    """Whether the approach path meets the ground that falls away under it."""
+    return path + np.minimum(slope, 0.0) >= LEAST_CLIMB
+
+
+def level_landing_air(approach: Number, touchdown: Number, path: Number, wind: Number, technique: Number) -> Number:
+    return airborne.landing_air_distance(approach, touchdown, path, 0.0, wind, technique)
+
+
+def braked_start(braking: Number, quality: Number, slope: Number) -> Number:
+    """Deceleration of a braked roll at zero airspeed."""
+    return ground_run.resistance(braking * quality, slope)
+
+
+def level_braked_start(braking: Number, quality: Number) -> Number:
+    return braked_start(braking, quality, 0.0)
+
+
+def stops_of(least: Number, closes: Number) -> Number:
+    return closes & (least >= ground_run.LEAST_ACCELERATION)
+
+
+def sigma_at(altitude: Number, deviation: Number) -> Number:
+    """Density ratio at a pressure altitude, warmer than standard by a deviation."""
+    standard = atmosphere.isa_temperature(altitude)
+    return atmosphere.density_ratio(atmosphere.density(atmosphere.isa_pressure(altitude), standard + deviation))

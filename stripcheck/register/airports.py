@@ -1,0 +1,60 @@
+"""Name, elevation and type of airfields from an airports file, joined to a runway list by the identifier."""
+
+from __future__ import annotations
+
+import math
+from pathlib import Path
+from typing import NamedTuple
+
+from stripcheck.errors import InputError
+from stripcheck.register.limits import within_limits
+from stripcheck.register.read_table import check_file, find_delimiter, find_encoding, text_rows
+from stripcheck.units import to_si
+
+
+class Airport(NamedTuple):
+    """An airfield: name, elevation [m] (NaN = not given or not usable), type as the file spells it."""
+
+    name: str
+    elevation: float
+    type: str
+
+
+def read_airports(path: str | Path, wanted: set[str]) -> dict[str, Airport]:
+    """Airfields of an airports file in the layout of the open data: columns ident, name, elevation_ft, type.
+
+    ``wanted``: identifiers to keep; the rest of the file is passed over. Raises InputError when the file
+    can't be read or one of the columns is missing. An elevation that is no number, or one outside of the
+    limits of ``limits.LIMITS``, counts as not given.
+
+    >>> read_airports("no such airports.csv", set())
+    Traceback (most recent call last):
+    ...
+    stripcheck.errors.InputError: no such airports.csv: there is no such file
+    """
+    path = Path(path)
+    check_file(path)
+    encoding = find_encoding(path)
+    rows = text_rows(path, encoding, find_delimiter(path, encoding))
+    header = [cell.strip().lower() for cell in next(rows)]
+    missing = [name for name in ("ident", "name", "elevation_ft", "type") if name not in header]
+    if missing:
+        raise InputError(
+            f'{path.name}: there is no column "{missing[0]}"; ident, name, elevation_ft and type are needed'
+        )
+    places = [header.index(name) for name in ("ident", "name", "elevation_ft", "type")]
+    ident_at = places[0]
+    found = {}
+    for row in rows:
+        if len(row) > max(places) and row[ident_at].strip() in wanted:
+            ident, name, elevation, kind = (row[place].strip() for place in places)
+            found[ident] = Airport(name, _feet(elevation), kind)
+    return found
+
+
+def _feet(text: str) -> float:
+    try:
+        elevation = to_si(float(text), "ft")
+    except ValueError:
+        return math.nan
+    return elevation if within_limits("elevation", elevation) else math.nan

@@ -1,0 +1,237 @@
+"""Raw rows of a runway list, from a text file or a workbook, before anything in them is understood.
+
+Text files: any of the delimiters ``, ; tab |`` and the encodings UTF-8, UTF-16 (with its mark) and
+Windows-1252. Workbooks (.xlsx, .xlsm, .xls, .ods) are read with python-calamine, which is imported only when
+one comes. Title lines above the header are passed over: the header is the first of the first rows with two
+known columns.
+"""
+
+from __future__ import annotations
+
+import codecs
+import csv
+from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import dataclass
+from itertools import islice
+from pathlib import Path
+
+from stripcheck.errors import InputError
+from stripcheck.register.columns import known_headers
+from stripcheck.register.values import as_written
+
+TEXT_KINDS = (".csv", ".txt", ".tsv", ".tab")
+WORKBOOK_KINDS = (".xlsx", ".xlsm", ".xlsb", ".xls", ".ods")
+DELIMITERS = (",", ";", "\t", "|")
+HEADER_WITHIN = 40  # rows in which the header is looked for; title lines above a list are never as many
+
+
+@dataclass
+class Table:
+    """A list as columns of raw cells.
+
+    ``where``: file, and sheet of a workbook, for messages. ``source``: file name. ``sheet``: "" for a text
+    file. ``headers``: as written; ``header_row``: their row. ``cells``: one list for each header, all of the
+    same length. ``row_numbers``: the row of each in the file, as a spreadsheet shows it (1 = first).
+    ``too_wide``: index -> number of cells of a text row that has more cells than the header. ``delimiter``:
+    "" for a workbook.
+    """
+
+    where: str
+    source: str
+    sheet: str
+    headers: list[str]
+    header_row: int
+    cells: list[list[object]]
+    row_numbers: list[int]
+    too_wide: dict[int, int]
+    delimiter: str
+
+
+def read_table(path: str | Path, sheet: str | None = None) -> Table:
+    """Read a runway list as raw cells.
+
+    ``path``: the file. ``sheet``: name of the sheet of a workbook; without it the first sheet with a header
+    is taken. Raises InputError when there is no such file, it is a directory, empty, corrupt or of another
+    kind, or when no row looks like a header.
+
+    >>> read_table("no such list.csv")
+    Traceback (most recent call last):
+    ...
+    stripcheck.errors.InputError: no such list.csv: there is no such file
+    """
+    path = Path(path)
+    check_file(path)
+    kind = path.suffix.lower()
+    if kind in TEXT_KINDS:
+        if sheet is not None:
+            raise InputError(f'{path.name}: a text file has no sheets; leave the sheet "{sheet}" out')
+        return _read_text(path)
+    if kind in WORKBOOK_KINDS:
+        return _read_workbook(path, sheet)
+    kinds = ", ".join((*TEXT_KINDS, *WORKBOOK_KINDS))
+    raise InputError(f'{path.name}: "{kind}" is not a kind of runway list; save the list as one of {kinds}')
+
+
+def check_file(path: Path) -> None:
+    """Raise InputError unless ``path`` is a file with something in it."""
+    if path.is_dir():
+        raise InputError(f"{path}: this is a directory; name the file of the runway list")
+    if not path.exists():
+        raise InputError(f"{path}: there is no such file")
+    try:
+        path.open("rb").close()
+    except OSError as error:
+        raise InputError(
+            f"{path}: the file can't be opened ({error.strerror}); close it elsewhere or check its rights"
+        ) from error
+    if path.stat().st_size == 0:
+        raise InputError(f"{path.name}: the file is empty; a list has a header row and a row for each entry")
+
+
+def text_rows(path: Path, encoding: str, delimiter: str) -> Iterator[list[str]]:
+    """Rows of a text file, a blank line giving ``[]``; InputError where the quotes or the text are broken.
+
+    Quotes are checked strictly: an open quote mark would swallow the runways that follow it.
+    """
+    with path.open(encoding=encoding, newline="") as stream:
+        reader = csv.reader(stream, delimiter=delimiter, strict=True)
+        try:
+            yield from reader
+        except csv.Error as error:
+            raise InputError(
+                f"{path.name} line {reader.line_num}: broken quote marks or text ({error}); "
+                'a quote mark inside a quoted value must be doubled ("")'
+            ) from error
+        except UnicodeError as error:
+            raise InputError(f"{path.name}: the text breaks off or is damaged; save the list as CSV, UTF-8") from error
+
+
+def find_encoding(path: Path) -> str:
+    """Encoding of a text file: by its mark, else UTF-8 when all of it is, else Windows-1252, else Latin-1.
+
+    Raises InputError when the file holds zero bytes, which no text has.
+    """
+    with path.open("rb") as stream:
+        start = stream.read(4)
+        if start.startswith((codecs.BOM_UTF16_LE, codecs.BOM_UTF16_BE)):
+            return "utf-16"
+        stream.seek(0)
+        decoders = {name: codecs.getincrementaldecoder(name)() for name in ("utf-8-sig", "cp1252", "latin-1")}
+        while block := stream.read(1 << 20):
+            if b"\0" in block:
+                raise InputError(f"{path.name}: this is no text file; save the list as CSV, UTF-8")
+            decoders = {name: decoder for name, decoder in decoders.items() if _decodes(decoder, block)}
+    return next(iter(decoders))
+
+
+def find_delimiter(path: Path, encoding: str) -> str:
+    """The delimiter with which the first rows hold most known headers; between equals, most cells.
+
+    Raises InputError when the start of the file can't be read with any of them.
+    """
+    scores = {}
+    failure: InputError | None = None
+    for delimiter in DELIMITERS:
+        try:
+            rows = list(islice(text_rows(path, encoding, delimiter), HEADER_WITHIN))
+        except InputError as error:
+            failure = error
+            continue
+        scores[delimiter] = max(((known_headers(row), len(row)) for row in rows), default=(0, 0))
+    if not scores and failure:
+        raise failure
+    return max(scores, key=lambda delimiter: scores[delimiter])
+
+
+def _decodes(decoder: codecs.IncrementalDecoder, block: bytes) -> bool:
+    try:
+        decoder.decode(block)
+    except UnicodeDecodeError:
+        return False
+    return True
+
+
+def _read_text(path: Path) -> Table:
+    encoding = find_encoding(path)
+    delimiter = find_delimiter(path, encoding)
+    table = _collect(text_rows(path, encoding, delimiter), path.name, "", delimiter)
+    if table is None:
+        raise InputError(_no_header(path.name))
+    return table
+
+
+def _read_workbook(path: Path, wanted: str | None) -> Table:
+    from python_calamine import CalamineError, CalamineWorkbook, PasswordError
+
+    try:
+        with CalamineWorkbook.from_path(path) as book:
+            if wanted is not None and wanted not in book.sheet_names:
+                names = ", ".join(book.sheet_names)
+                raise InputError(f'{path.name}: there is no sheet "{wanted}"; its sheets are {names}')
+            for name in [wanted] if wanted is not None else book.sheet_names:
+                rows = book.get_sheet_by_name(name).to_python(skip_empty_area=False)
+                table = _collect(rows, path.name, name, "")
+                if table is not None:
+                    return table
+    except PasswordError as error:
+        raise InputError(f"{path.name}: the workbook has a password; save a copy without it") from error
+    except (CalamineError, OSError, ValueError) as error:
+        raise InputError(f"{path.name}: the workbook can't be read ({error}); open it and save it again") from error
+    raise InputError(_no_header(path.name if wanted is None else f'{path.name} sheet "{wanted}"'))
+
+
+def _no_header(where: str) -> str:
+    return f'{where}: no usable column: there is no header row with headers such as "Strip" and "Length [m]"'
+
+
+def _collect(rows: Iterable[Sequence[object]], source: str, sheet: str, delimiter: str) -> Table | None:
+    """Columns below the header row, blank rows left out; None when there is no header row."""
+    numbered = enumerate(rows, 1)
+    first_rows = islice(numbered, HEADER_WITHIN)
+    header_row, header = next(((at, row) for at, row in first_rows if known_headers(row) >= 2), (0, None))
+    if header is None:
+        return None
+    headers = _name_headers(header)
+    where = f'{source} sheet "{sheet}"' if sheet else source
+    table = Table(where, source, sheet, headers, header_row, [[] for _ in headers], [], {}, delimiter)
+    same: dict[str, str] = {}  # one copy of each repeated text keeps a list of 44,000 runways small
+    for number, row in numbered:
+        cells = [_lasting(cell, same) for cell in row]
+        if _is_empty(cells):
+            continue
+        if not _is_empty(cells[len(headers) :]):
+            table.too_wide[len(table.row_numbers)] = len(cells)
+        table.row_numbers.append(number)
+        cells += [""] * (len(headers) - len(cells))
+        for column, cell in zip(table.cells, cells, strict=False):
+            column.append(cell)
+    if not table.row_numbers:
+        raise InputError(f"{table.where}: there are no runways below the header row; add a row for each runway")
+    _drop_blank_columns(table)
+    return table
+
+
+def _lasting(cell: object, same: dict[str, str]) -> object:
+    """A cell as it is kept: None as "", and the first copy of a text that comes again."""
+    if type(cell) is str:
+        return same.setdefault(cell, cell)
+    return "" if cell is None else cell
+
+
+def _is_empty(cells: Sequence[object]) -> bool:
+    return all(isinstance(cell, str) and not cell.strip() for cell in cells)
+
+
+def _name_headers(header: Iterable[object]) -> list[str]:
+    """Headers as text; a column without one is called by its place, so that what stands in it is carried."""
+    return [" ".join(as_written(cell).split()) or f"(column {place})" for place, cell in enumerate(header, 1)]
+
+
+def _drop_blank_columns(table: Table) -> None:
+    keep = [
+        place
+        for place, header in enumerate(table.headers)
+        if header != f"(column {place + 1})" or not _is_empty(table.cells[place])
+    ]
+    table.headers = [table.headers[place] for place in keep]
+    table.cells = [table.cells[place] for place in keep]

@@ -1,0 +1,119 @@
+"""The worksheet evaluator: walks the chain with cell expressions and gives each step's native formula.
+
+A step is either kept as a cell of its own, and then later steps refer to that cell, or written into the formulas of
+the steps that use it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+
+from stripcheck import ground_run
+from stripcheck.chain import Chain, Input, Step
+from stripcheck.links import GROUND_UNKNOWN
+from stripcheck.sheet.cell import ATOM, BLANK, COMPARE, Cell, as_cell, call, formula, reference, shown
+from stripcheck.verdict import FAULT
+
+# the nodes and weights of the quadrature stand once in the workbook, under these defined names
+RUN_TABLE = {
+    "run_nodes": ground_run.NODES,
+    "run_ended_nodes": ground_run.ENDED_NODES,
+    "run_weights": ground_run.WEIGHTS,
+    "run_speed_weights": ground_run.SPEED_WEIGHTS,
+}
+_LITERALS = {as_cell(values).text: name for name, values in RUN_TABLE.items()}
+WORDS = "_words"  # added to a step's key: place of the words that its number stands for
+GROUND_NAMES = "ground_names"  # place of the ground table's first column, beside the chain's own range inputs
+
+
+def write_formulas(chain: Chain, places: Mapping[str, str]) -> dict[str, str]:
+    """Formula text, without equals sign, of every step that has a place.
+
+    ``places`` gives the reference of each input of the chain and of each step that is kept as a cell, such as
+    ``$E7`` or ``Aircraft!$C$4``; an empty one stands for an input that is blank in every row. A step without a place
+    is written into those that use it. Besides, `GROUND_NAMES` and, for each step of words, its key and `WORDS`, give
+    the ranges of those tables.
+    Raises KeyError for an input without a place and ValueError for a formula beyond a spreadsheet's limits.
+    """
+    writer = _Writer(chain, places)
+    return {step.key: writer.formula_of(step) for step in chain.steps if step.key in places}
+
+
+class _Writer:
+    """Finds the expression of each value under what is sure to hold where it is read."""
+
+    def __init__(self, chain: Chain, places: Mapping[str, str]) -> None:
+        self.chain, self.places = chain, places
+        self.names = Cell(places[GROUND_NAMES], many=True)
+        self.fault = Cell(places["fault"])
+
+    def formula_of(self, step: Step) -> str:
+        expression = self.expression(step, self.held(step))
+        in_unit = expression if step.words else shown(expression, step.unit)
+        whole = self.guarded(step, in_unit, frozenset())
+        for literal, name in _LITERALS.items():
+            whole.text = whole.text.replace(literal, name)
+        return formula(whole)
+
+    def held(self, step: Step) -> frozenset[str]:
+        return self.chain.held_with(step.guard) if step.guard else frozenset(step.late)
+
+    def value(self, key: str, holding: frozenset[str]) -> Cell:
+        """A reference where the value has a place, else its whole expression, guarded unless its guard holds."""
+        item = self.chain.by_key[key]
+        if isinstance(item, Input):
+            return _input_cell(item, self.places[key])
+        if key in self.places:
+            return reference(self.places[key], item.unit)
+        return self.guarded(item, self.expression(item, holding | self.held(item)), holding)
+
+    def expression(self, step: Step, holding: frozenset[str]) -> Cell:
+        values = [self.value(key, holding) for key in step.inputs]
+        if step.lookup == "name":
+            return _row_in_table(*values, self.names)
+        if step.lookup:
+            return _looked_up(*values)
+        if step.words:
+            return _in_words(step, *values, self.fault, Cell(self.places[step.key + WORDS]))
+        return as_cell(step.function(*values))
+
+    def guarded(self, step: Step, expression: Cell, holding: frozenset[str]) -> Cell:
+        if not step.guard or step.guard in holding:
+            return expression
+        guard = self.value(step.guard, holding)
+        guarding = self.chain.by_key[step.guard]
+        holds = guard if isinstance(guarding, Step) and guarding.truth else np.isfinite(guard)
+        return np.where(holds, expression, False if step.truth else np.nan)
+
+
+def _input_cell(item: Input, place: str) -> Cell:
+    if not place:
+        return Cell(BLANK)
+    if item.kind == "flag":
+        return Cell(f'{place}<>"no"', COMPARE, raw=place)
+    if item.kind == "fault":
+        return Cell(f'{place}<>""', COMPARE, raw=place)
+    if item.kind == "range":
+        return Cell(place, many=True)
+    return reference(place, item.unit if item.kind == "number" else "")
+
+
+def _row_in_table(surface: Cell, condition: Cell, day_condition: Cell, names: Cell) -> Cell:
+    """Row [1, 2, ...] of "surface, condition" among the names, or the row after the last."""
+    own = condition.text != BLANK
+    used = f'IF({condition.raw}="",{day_condition.raw},{condition.raw})' if own else day_condition.raw
+    return Cell(f'IFERROR(MATCH({surface.raw}&", "&{used},{names.text},0),{GROUND_UNKNOWN})', ATOM, 3)
+
+
+def _looked_up(column: Cell, row: Cell) -> Cell:
+    return Cell(f"INDEX({column.text},{row.text})", ATOM, row.depth + 1)
+
+
+def _in_words(step: Step, number: Cell, fault: Cell, words: Cell) -> Cell:
+    """Words of a finding's number, from the table of findings; the fault of the row stands for itself."""
+    found = _looked_up(words, number)
+    if FAULT not in step.words:
+        return found
+    return call("IF", number == float(step.words.index(FAULT) + 1), fault, found)

@@ -1,0 +1,502 @@
+"""Write an .xlsx book whose large sheets are streamed, with a value beside every formula.
+
+openpyxl makes the book (styles, header rows, comments, validations, conditional formats, names, print set-up,
+small sheets). In each large sheet it writes the header rows and one *template row*, whose cells carry the
+styles of the data. This module then copies the package and puts all the data rows where the template row was.
+A formula cell keeps its text and the value that it had when the book was written, so that viewers that don't
+calculate show it too.
+
+The file format is that of ECMA-376 part 1 (SpreadsheetML): rows 18.3.1.73, cells 18.3.1.4, text escapes
+22.9.2.19 (section numbers from memory). The limits of a sheet (rows, text, formula length) are common
+practice, no source.
+"""
+
+from __future__ import annotations
+
+import datetime
+import io
+import math
+import os
+import re
+import secrets
+import shutil
+import zipfile
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from concurrent.futures import Future, ThreadPoolExecutor
+from contextlib import contextmanager
+from copy import copy
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING, BinaryIO
+from xml.sax.saxutils import escape
+
+import numpy as np
+
+from stripcheck.errors import InputError
+
+if TYPE_CHECKING:
+    from openpyxl import Workbook
+    from openpyxl.cell import Cell
+    from openpyxl.worksheet.worksheet import Worksheet
+
+ROW = "\x00"
+"""Stands for the row number in a formula, as in ``f"SQRT(B{ROW})"``. XML forbids it, so it can't clash."""
+
+MAX_ROWS = 1_048_576
+MAX_TEXT = 32_767
+MAX_FORMULA = 8_192
+_BLOCK_BYTES = 8_000_000  # made at a time: less makes the two threads wait for each other, more costs memory
+_BLOCK_ROWS = 2_000  # at the most, however short they are
+_LEVEL = 1  # of deflate: the rows are so alike that higher levels take longer and gain little
+_ZIP64_FROM = 2**31 - 1  # [bytes] zipfile wants to know beforehand whether a part may be larger
+_EXACT_INTEGER = 10**15  # a sheet keeps 15 digits of a number; a longer integer is carried as text
+
+_MARK = "\x01"  # between the texts of a block; XML forbids it, so no text keeps it
+_NOT_XML = re.compile("[\x00\x02-\x08\x0b\x0c\x0e-\x1f\ud800-\udfff\ufffe\uffff]")
+_LOOKS_ESCAPED = re.compile("_(?=x[0-9A-Fa-f]{4}_)")
+_SHEET_DATA = re.compile(r"<sheetData\s*/>|<sheetData>(.*)</sheetData>", re.DOTALL)
+_ROW_TAG = re.compile(r'<row\b([^>]*?)\br="(\d+)"([^>]*?)/?>')
+
+
+@dataclass
+class TextColumn:
+    """Values that a user gave or reads: text, numbers, True/False, dates, None; one per row.
+
+    Text stays text whatever it starts with. None, NaN and "" give an empty cell.
+    """
+
+    values: Sequence[object]
+
+
+@dataclass
+class NumberColumn:
+    """Numbers, shape (rows,), in the unit that the column's header states. NaN gives an empty cell."""
+
+    values: np.ndarray
+
+
+@dataclass
+class FormulaColumn:
+    """A formula per row and the value that it has now.
+
+    formula : text without the leading "=", with `ROW` for the row number; or a list of them, one per row
+    values : array of numbers (NaN shows as "") or True/False, shape (rows,); or a list, also of texts
+    """
+
+    formula: str | Sequence[str]
+    values: np.ndarray | Sequence[object]
+
+
+Column = TextColumn | NumberColumn | FormulaColumn
+_Styles = dict[type, str]  # style attribute by type of value; that of `object` is the template cell's
+_Filler = Callable[[int, int], list[list[bytes]]]  # (start, stop) of a block -> one list of rows per slot
+_DATES = (datetime.date, datetime.time, datetime.timedelta)
+
+
+@dataclass
+class Table:
+    """The rows of one large sheet: number of the first row (the template row), and the columns from A on."""
+
+    first_row: int
+    columns: Sequence[Column]
+
+
+@dataclass
+class _Sheet:
+    """What is written for one table: the row's fixed text with ``%b`` slots, and what goes into the slots."""
+
+    row: bytes
+    fillers: list[_Filler]
+    first_row: int
+    rows: int
+    width: int
+    may_pass_zip64: bool
+
+
+def write_book(
+    skeleton: Workbook,
+    tables: Mapping[str, Table],
+    path: Path,
+    *,
+    progress: Callable[[int], None] | None = None,
+) -> list[str]:
+    """Write the book to ``path``, whole or not at all, and return what had to be cut, one sentence each.
+
+    skeleton : the openpyxl book; in each sheet of ``tables`` the template row is the last one, and ranges
+        (filters, validations, formats) already reach over all the rows to come
+    tables : name of the sheet -> its `Table`
+    progress : called with the number of rows just written, again and again
+
+    The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself get
+    no value. Raises InputError when there are more rows than a sheet holds or the file can't be written,
+    ValueError when the tables don't fit the skeleton or hold what a sheet can't keep.
+    Method: SpreadsheetML as in the heading of this module.
+
+    >>> import openpyxl, tempfile
+    >>> book = openpyxl.Workbook()
+    >>> book.active.append(["Length [m]", "Half [m]"])
+    >>> lengths = np.array([620.0, 455.0])
+    >>> table = Table(2, [NumberColumn(lengths), FormulaColumn(f"A{ROW}/2", lengths / 2)])
+    >>> with tempfile.TemporaryDirectory() as folder:
+    ...     path = Path(folder) / "strips.xlsx"
+    ...     write_book(book, {"Sheet": table}, path)
+    ...     sheet = openpyxl.load_workbook(path)["Sheet"]
+    ...     shown = openpyxl.load_workbook(path, data_only=True)["Sheet"]
+    ...     sheet["B3"].value, shown["B3"].value
+    []
+    ('=A3/2', 227.5)
+    """
+    for name in tables:
+        if name not in skeleton.sheetnames:
+            raise ValueError(f'the skeleton has no sheet "{name}"')
+    cuts = [cut for name, table in tables.items() for cut in _check(name, table)]
+    sheets = {name: _prepare(skeleton[name], table) for name, table in tables.items()}
+    skeleton.properties.creator = "stripcheck"
+    skeleton.properties.lastModifiedBy = None
+    skeleton.calculation.fullCalcOnLoad = True
+    packed = io.BytesIO()
+    skeleton.save(packed)
+    # openpyxl settles the part names as it saves, so they are asked for only now
+    streamed = {skeleton[name].path.lstrip("/"): sheet for name, sheet in sheets.items()}
+    with (
+        zipfile.ZipFile(packed) as source,
+        _whole_or_not_at_all(path) as file,
+        zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, compresslevel=_LEVEL) as target,
+    ):
+        for part in source.namelist():
+            if part in streamed:
+                _stream(source.read(part).decode(), streamed[part], target, part, progress)
+            else:
+                target.writestr(part, _with_relative_targets(part, source.read(part)))
+    return cuts
+
+
+def _with_relative_targets(part: str, data: bytes) -> bytes:
+    """Some readers look for a sheet's comments beside the sheet and can't follow a target from the root."""
+    return data.replace(b'Target="/xl/', b'Target="../') if part.startswith("xl/worksheets/_rels/") else data
+
+
+@contextmanager
+def _whole_or_not_at_all(path: Path) -> Iterator[BinaryIO]:
+    """A file beside ``path`` that takes its place at the end; after any failure ``path`` is as it was."""
+    place = Path(os.path.realpath(path))  # a link stays a link
+    if place.is_dir():
+        raise InputError(f"{path}: this is a folder; give the name of a file in it")
+    spare = place.with_name(f".{secrets.token_hex(8)}.tmp")
+    try:
+        try:
+            with open(spare, "xb") as file:
+                yield file
+                file.flush()
+                os.fsync(file.fileno())
+            if place.exists():
+                shutil.copymode(place, spare)
+            os.replace(spare, place)
+        except BaseException:
+            spare.unlink(missing_ok=True)
+            raise
+    except OSError as error:
+        why = error.strerror or str(error)
+        hint = "close it in other programs, and check the folder and the space on the disk"
+        raise InputError(f"{path}: can't be written ({why}); {hint}") from error
+
+
+# --- what must hold before anything is written
+
+
+def _check(name: str, table: Table) -> list[str]:
+    """Raise when the table can't be written; otherwise the sentences about texts that will be cut."""
+    counts = {len(column.values) for column in table.columns}
+    if len(counts) != 1:
+        raise ValueError(f'sheet "{name}": the columns must have equal lengths, not {sorted(counts)}')
+    last = table.first_row + counts.pop() - 1
+    if last > MAX_ROWS:
+        raise InputError(
+            f'sheet "{name}": the list needs {last:,} rows, and a sheet holds {MAX_ROWS:,}; divide the list'
+        )
+    cuts: list[str] = []
+    for number, column in enumerate(table.columns, 1):
+        where = f'sheet "{name}", column {_letter(number)}'
+        if isinstance(column, FormulaColumn):
+            _check_formulas(where, column, last)
+        if isinstance(column, NumberColumn | FormulaColumn):
+            _check_finite(where, column.values, table.first_row)
+        if not _is_numeric(column.values):
+            cuts += _cuts(name, _letter(number), column.values, table.first_row)
+    return cuts
+
+
+def _is_numeric(values: np.ndarray | Sequence[object]) -> bool:
+    return isinstance(values, np.ndarray) and values.dtype.kind in "fiub"
+
+
+def _check_formulas(where: str, column: FormulaColumn, last_row: int) -> None:
+    formulas = [column.formula] if isinstance(column.formula, str) else column.formula
+    if not isinstance(column.formula, str) and len(formulas) != len(column.values):
+        raise ValueError(f"{where}: {len(formulas)} formulas for {len(column.values)} values")
+    extra = len(str(last_row)) - len(ROW)
+    for formula in formulas:
+        if not formula or formula.startswith("="):
+            raise ValueError(f'{where}: a formula is given without "=" and is not empty')
+        if _MARK in formula or _NOT_XML.search(formula.replace(ROW, "")):
+            raise ValueError(f"{where}: a formula holds a character that a sheet can't keep")
+        if len(formula) + extra * formula.count(ROW) > MAX_FORMULA:
+            raise ValueError(f"{where}: a formula is longer than {MAX_FORMULA:,} characters")
+
+
+def _check_finite(where: str, values: np.ndarray | Sequence[object], first_row: int) -> None:
+    if isinstance(values, np.ndarray) and _is_numeric(values):
+        bad = np.flatnonzero(np.isinf(values)).tolist()
+    else:
+        numbers = ((i, value) for i, value in enumerate(values) if isinstance(value, float | np.floating))
+        bad = [i for i, value in numbers if math.isinf(value)]
+    if bad:
+        raise ValueError(f"{where}, row {first_row + bad[0]}: an infinite number can't be shown in a sheet")
+
+
+def _cuts(name: str, letter: str, values: Iterable[object], first_row: int) -> list[str]:
+    if max(map(len, _texts(values)), default=0) <= MAX_TEXT // 2:
+        return []
+    return [
+        f'sheet "{name}", row {row}, column {letter}: '
+        f"a text of {_cell_length(value):,} characters was cut to the {MAX_TEXT:,} that a cell holds"
+        for row, value in enumerate(values, first_row)
+        if isinstance(value, str) and _cell_length(value) > MAX_TEXT
+    ]
+
+
+def _texts(values: Iterable[object]) -> list[str]:
+    return [value for value in values if isinstance(value, str)]
+
+
+def _cell_length(text: str) -> int:
+    """Length as a sheet counts it: a character outside the basic plane of Unicode is two."""
+    return len(text.encode("utf-16-le", "surrogatepass")) // 2
+
+
+# --- preparing: all that is the same in every row is made once
+
+
+def _prepare(worksheet: Worksheet, table: Table) -> _Sheet:
+    template = [worksheet.cell(table.first_row, number) for number in range(1, len(table.columns) + 1)]
+    for cell in worksheet[table.first_row][len(template) :]:
+        if cell.has_style or cell.value is not None:
+            raise ValueError(f'sheet "{worksheet.title}": cell {cell.coordinate} is beyond the table')
+    pieces: list[str] = []
+    fillers: list[_Filler] = []
+    for cell, column in zip(template, table.columns, strict=True):
+        piece, filler = _prepare_column(cell, column)
+        pieces.append(piece)
+        fillers.append(filler)
+    row = "".join(pieces).encode()
+    rows = len(table.columns[0].values)
+    size = rows * (len(row) + 6 * row.count(b"\0") + 60 * len(pieces)) + sum(map(_most_bytes, table.columns))
+    width = max(worksheet.max_column, len(template))
+    return _Sheet(row, fillers, table.first_row, rows, width, size > _ZIP64_FROM)
+
+
+def _most_bytes(column: Column) -> int:
+    """Never less than the bytes that the texts of a column need: escaping makes at most seven of one."""
+    texts = [] if _is_numeric(column.values) else _texts(column.values)
+    if isinstance(column, FormulaColumn) and not isinstance(column.formula, str):
+        texts += column.formula
+    return 7 * sum(map(len, texts))
+
+
+def _prepare_column(cell: Cell, column: Column) -> tuple[str, _Filler]:
+    """The column's part of a row, with ``%b`` slots, and what fills them."""
+    style = f' s="{cell.style_id}"' if cell.has_style else ""
+    start = f'<c r="{cell.column_letter}{ROW}"'
+    if isinstance(column, TextColumn):
+        given, styles = column.values, _value_styles(cell, style, column.values)
+        return f"{start}%b", lambda a, b: [_given_cells(given[a:b], styles)]
+    if isinstance(column, NumberColumn):
+        numbers = np.asarray(column.values, dtype=float)
+        return f"{start}%b", lambda a, b: [_number_cells(numbers[a:b], style)]
+    values, formulas, row = column.values, column.formula, cell.row
+    if isinstance(formulas, str):
+        text = escape(formulas).replace("%", "%%")
+        return f"{start}{style}%b><f>{text}</f><v>%b</v></c>", lambda a, b: _cached(values[a:b])
+    return f"{start}{style}%b><f>%b</f><v>%b</v></c>", lambda a, b: _with_formulas(
+        _cached(values[a:b]), formulas[a:b], row + a
+    )
+
+
+def _with_formulas(cached: list[list[bytes]], formulas: Sequence[str], row: int) -> list[list[bytes]]:
+    kinds, values = cached
+    texts = [escape(formula.replace(ROW, str(r))).encode() for r, formula in enumerate(formulas, row)]
+    return [kinds, texts, values]
+
+
+def _value_styles(cell: Cell, style: str, values: Sequence[object]) -> _Styles:
+    """Style attribute by type of value: a date needs a date format, unless the template cell has one."""
+    from openpyxl.cell import Cell
+
+    styles: _Styles = {object: style}
+    for kind in {type(value) for value in values}:
+        if issubclass(kind, _DATES):
+            dated = Cell(cell.parent, row=cell.row, column=cell.column)
+            dated._style = copy(cell._style)
+            dated.value = next(value for value in values if type(value) is kind)  # this sets the format too
+            styles[kind] = f' s="{dated.style_id}"'
+    return styles
+
+
+# --- cells: whole blocks at a time, since one join, one encoding and one split are faster than many encodings
+
+
+def _given_cells(values: Sequence[object], styles: _Styles) -> list[bytes]:
+    """The rest of each cell, after its reference, for values as a user gave them."""
+    if set(map(type, values)) <= {str, type(None)}:
+        return _text_cells([str(value or "") for value in values], styles[object])
+    return [_given_cell(value, styles) for value in values]
+
+
+def _given_cell(value: object, styles: _Styles) -> bytes:
+    style = styles[object]
+    if value is None or value != value:  # NaN differs from itself
+        return f"{style}/>".encode()
+    if isinstance(value, bool | np.bool_):
+        return f'{style} t="b"><v>{int(value)}</v></c>'.encode()
+    if isinstance(value, _DATES):
+        serial = _serial(value)
+        if serial is not None:
+            return f"{styles[type(value)]}><v>{serial}</v></c>".encode()
+    if isinstance(value, float | np.floating) and math.isfinite(value):
+        return f"{style}><v>{float(value)!r}</v></c>".encode()
+    if isinstance(value, int | np.integer) and abs(int(value)) < _EXACT_INTEGER:
+        return f"{style}><v>{int(value)}</v></c>".encode()
+    return _text_cells([str(value)], style)[0]
+
+
+def _serial(value: datetime.date | datetime.time | datetime.timedelta) -> float | None:
+    """Days since the sheet's calendar began; None for a time with a zone and for what lies before it."""
+    from openpyxl.utils.datetime import to_excel
+
+    if getattr(value, "tzinfo", None) is not None:
+        return None
+    serial = float(to_excel(value))
+    return serial if serial >= (1 if isinstance(value, datetime.date) else 0) else None
+
+
+def _text_cells(texts: list[str], style: str) -> list[bytes]:
+    empty = f"{style}/>".encode()
+    full = f'{style} t="inlineStr"><is><t xml:space="preserve">'.encode()
+    return [full + text + b"</t></is></c>" if text else empty for text in _xml_texts(texts)]
+
+
+def _xml_texts(texts: list[str]) -> list[bytes]:
+    """Texts as XML carries them: cut to a cell's length, forbidden characters replaced, the rest escaped.
+
+    >>> _xml_texts(["A<B" + chr(7), "09/27"])[0].decode()
+    'A&lt;B\ufffd'
+    """
+    if max(map(len, texts), default=0) > MAX_TEXT // 2:
+        texts = [_cut(text) for text in texts]
+    joined = _MARK.join(texts)
+    if joined.count(_MARK) >= len(texts):  # a text holds the mark itself
+        joined = _MARK.join([text.replace(_MARK, "\ufffd") for text in texts])
+    plain = _LOOKS_ESCAPED.sub("_x005F_", _NOT_XML.sub("\ufffd", joined))
+    return escape(plain, {"\r": "&#13;"}).encode().split(_MARK.encode())
+
+
+def _cut(text: str) -> str:
+    if _cell_length(text) <= MAX_TEXT:
+        return text
+    # a character of two halves that the cut parts is left out
+    return text.encode("utf-16-le", "surrogatepass")[: 2 * MAX_TEXT].decode("utf-16-le", "ignore")
+
+
+def _number_cells(values: np.ndarray, style: str) -> list[bytes]:
+    empty, full = f"{style}/>".encode(), f"{style}><v>".encode()
+    return [empty if number == b"nan" else full + number + b"</v></c>" for number in _numbers(values)]
+
+
+def _numbers(values: np.ndarray) -> list[bytes]:
+    """Each number with all its digits; -0.0 is shown as 0.0."""
+    numbers = (values + 0.0).tolist()
+    return ",".join(map(repr, numbers)).encode().split(b",")
+
+
+def _cached(values: np.ndarray | Sequence[object]) -> list[list[bytes]]:
+    """Type attribute and value, row by row, of the value that a formula has now."""
+    if isinstance(values, np.ndarray) and values.dtype.kind in "fiu":
+        numbers = _numbers(values)
+        kinds = [b' t="str"' if number == b"nan" else b"" for number in numbers]
+        return [kinds, [b"" if number == b"nan" else number for number in numbers]]
+    if set(map(type, values)) == {str}:
+        return [[b' t="str"'] * len(values), _xml_texts(list(map(str, values)))]
+    cells = [_cached_value(value) for value in values]
+    return [[kind for kind, _ in cells], [value for _, value in cells]]
+
+
+def _cached_value(value: object) -> tuple[bytes, bytes]:
+    if isinstance(value, bool | np.bool_):
+        return b' t="b"', b"1" if value else b"0"
+    if value is None or value != value:
+        return b' t="str"', b""
+    if isinstance(value, int | float | np.integer | np.floating):
+        return b"", repr(float(value)).encode()
+    return b' t="str"', _xml_texts([str(value)])[0]
+
+
+# --- streaming
+
+
+def _stream(
+    xml: str,
+    sheet: _Sheet,
+    target: zipfile.ZipFile,
+    part: str,
+    progress: Callable[[int], None] | None,
+) -> None:
+    """Write the sheet's part with all its rows in place of the template row."""
+    head, row_start, tail = _split(xml, sheet)
+    pieces = (row_start.encode() + sheet.row + b"</row>").split(ROW.encode())
+    # one block is compressed, which leaves the interpreter free, while the next one is made
+    with target.open(part, "w", force_zip64=sheet.may_pass_zip64) as file, ThreadPoolExecutor(1) as writer:
+        file.write(head.encode())
+        pending: Future[int] | None = None
+        step = min(_BLOCK_ROWS, 1 + _BLOCK_BYTES // len(sheet.row))
+        for start in range(0, sheet.rows, step):
+            stop = min(start + step, sheet.rows)
+            block = _rows(sheet, pieces, start, stop)
+            if pending is not None:
+                pending.result()
+            pending = writer.submit(file.write, block)
+            if progress is not None:
+                progress(stop - start)
+        if pending is not None:
+            pending.result()
+        file.write(tail.encode())
+
+
+def _rows(sheet: _Sheet, pieces: list[bytes], start: int, stop: int) -> bytes:
+    slots = [slot for filler in sheet.fillers for slot in filler(start, stop)]
+    rows = enumerate(zip(*slots, strict=True), sheet.first_row + start)
+    return b"".join([str(row).encode().join(pieces) % values for row, values in rows])
+
+
+def _split(xml: str, sheet: _Sheet) -> tuple[str, str, str]:
+    """What stands before the template row, the start tag of every data row, and what stands after."""
+    last_row = max(sheet.first_row + sheet.rows - 1, 1)
+    extent = f'<dimension ref="A1:{_letter(sheet.width)}{last_row}"/>'
+    xml = re.sub(r'<dimension ref="[^"]*"\s*/>', extent, xml, count=1)
+    data = _SHEET_DATA.search(xml)
+    if data is None:
+        raise ValueError("openpyxl has written a sheet without data; is there a newer kind of it?")
+    head, tail = xml[: data.start()] + "<sheetData>" + (data[1] or ""), "</sheetData>" + xml[data.end() :]
+    tag = None
+    for tag in _ROW_TAG.finditer(head):
+        if int(tag[2]) > sheet.first_row:
+            raise ValueError(f"row {tag[2]} of the skeleton is below the template row {sheet.first_row}")
+    if tag is None or int(tag[2]) < sheet.first_row:  # a template row without a style is not in the part
+        return head, f'<row r="{ROW}">', tail
+    start = f'<row{tag[1]}r="{ROW}"{tag[3].rstrip()}>'.replace("%", "%%")
+    return head[: tag.start()], start, tail
+
+
+def _letter(number: int) -> str:
+    from openpyxl.utils import get_column_letter
+
+    return str(get_column_letter(number))

@@ -1,0 +1,132 @@
+"""Reading of TOML files that people write: every entry with its unit, its limits and a clear word when it is wrong."""
+
+from __future__ import annotations
+
+import math
+import tomllib
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+from stripcheck.errors import InputError
+from stripcheck.units import read_quantity
+
+REQUIRED = object()
+
+
+class Section:
+    """One table of a TOML file. It remembers which entries were asked for, so that the others can be refused."""
+
+    def __init__(self, where: str, entries: dict[str, Any]) -> None:
+        self.where, self.entries, self.asked = where, entries, set[str]()
+        self.parts: list[Section] = []
+
+    def has(self, name: str) -> bool:
+        return name in self.entries
+
+    def number(self, name: str, kind: str, default: Any = REQUIRED, low: float = -math.inf,
+               high: float = math.inf) -> float:  # fmt: skip
+        """A quantity in SI, between two limits in SI."""
+        self.asked.add(name)
+        if name not in self.entries:
+            return float(self._default(name, default, f"a {kind}"))
+        try:
+            value = read_quantity(self.entries[name], kind)
+        except InputError as error:
+            raise InputError(f"{self.where}: {name}: {error}") from None
+        if not low <= value <= high:
+            raise InputError(f"{self.where}: {name} = {self.entries[name]} can't be right for a {kind}")
+        return value
+
+    def text(self, name: str, default: Any = REQUIRED, choices: tuple[str, ...] = ()) -> str:
+        self.asked.add(name)
+        if name not in self.entries:
+            return str(self._default(name, default, " or ".join(choices) or "a text"))
+        value = str(self.entries[name])
+        if choices and value not in choices:
+            raise InputError(f'{self.where}: {name} = "{value}" is none of: {", ".join(choices)}')
+        return value
+
+    def flag(self, name: str, default: Any = REQUIRED) -> bool:
+        self.asked.add(name)
+        value = self.entries.get(name, default)
+        if not isinstance(value, bool):
+            raise InputError(f"{self.where}: {name} must be true or false")
+        return value
+
+    def texts(self, name: str, choices: tuple[str, ...]) -> tuple[str, ...]:
+        self.asked.add(name)
+        value = self.entries.get(name, list(choices))
+        if not isinstance(value, list) or not set(value) <= set(choices):
+            raise InputError(f"{self.where}: {name} must be a list out of: {', '.join(choices)}")
+        return tuple(value)
+
+    def section(self, name: str, required: bool = False) -> Section:
+        self.asked.add(name)
+        entries = self.entries.get(name, {})
+        if required and name not in self.entries:
+            raise InputError(f"{self.where}: the part [{name}] is missing")
+        if not isinstance(entries, dict):
+            raise InputError(f"{self.where}: [{name}] must be a part of the file, not a value")
+        return self._part(f"{self.where} [{name}]", entries)
+
+    def sections(self, name: str) -> list[Section]:
+        """The parts of a repeated table, [[name]]."""
+        self.asked.add(name)
+        rows = self.entries.get(name, [])
+        if not isinstance(rows, list) or not all(isinstance(row, dict) for row in rows):
+            raise InputError(f"{self.where}: [[{name}]] must be a list of parts")
+        return [self._part(f"{self.where} [[{name}]] number {i}", row) for i, row in enumerate(rows, 1)]
+
+    def refuse_unknown(self) -> None:
+        """Raise InputError for an entry that nobody asked for: it would be a misspelling."""
+        for section in self._all():
+            for name in section.entries:
+                if name not in section.asked:
+                    raise InputError(
+                        f'{section.where}: "{name}" is not an entry here; the entries are: {", ".join(sorted(section.asked))}'
+                    )
+
+    def _part(self, where: str, entries: dict[str, Any]) -> Section:
+        for part in self.parts:  # a part that was read before goes on remembering what was asked of it
+            if part.where == where:
+                return part
+        part = Section(where, entries)
+        self.parts.append(part)
+        return part
+
+    def _all(self) -> Iterator[Section]:
+        yield self
+        for part in self.parts:
+            yield from part._all()
+
+    def _default(self, name: str, default: Any, wanted: str) -> Any:
+        if default is REQUIRED:
+            raise InputError(f"{self.where}: {name} is missing; it takes {wanted}")
+        return default
+
+
+def read_toml(path: Path) -> Section:
+    """The whole of a TOML file. Raises InputError if it can't be read."""
+    try:
+        with path.open("rb") as file:
+            return Section(path.name, tomllib.load(file))
+    except FileNotFoundError:
+        raise InputError(f"{path}: there is no such file") from None
+    except (OSError, UnicodeDecodeError) as error:
+        raise InputError(f"{path}: can't be read ({error.__class__.__name__}); a TOML text file is expected") from None
+    except tomllib.TOMLDecodeError as error:
+        raise InputError(f"{path}: is not a TOML file that can be read: {error}") from None
+
+
+def shipped_or_own(name: str, folder: str) -> Path:
+    """Path of a user's own file, or of the one shipped under that name. Raises InputError where there is neither."""
+    shipped = Path(__file__).parent / folder
+    own = Path(name)
+    if own.suffix == ".toml" or own.exists():
+        return own
+    candidate = shipped / f"{name}.toml"
+    if candidate.is_file() and candidate.parent == shipped:
+        return candidate
+    names = ", ".join(sorted(path.stem for path in shipped.glob("*.toml")))
+    raise InputError(f'"{name}" is neither a file nor one of the shipped {folder}: {names}')
