@@ -84,7 +84,7 @@ def height_over_obstacle(available: Number, needed: Number, distance: Number, gr
     ``distance`` [m] of the obstacle beyond the end of the strip, ``gradient`` over the ground [-], ``height`` [m] of
     the obstacle above the end of the strip. Source: geometry.
 
-    >>> height_over_obstacle(600.0, 500.0, 400.0, 0.08, 30.0)
+    >>> round(height_over_obstacle(600.0, 500.0, 400.0, 0.08, 30.0), 6)
     25.24
     """
     return SCREEN + gradient * (available + distance - needed) - height

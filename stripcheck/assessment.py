@@ -92,7 +92,7 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     Returns the `Result`. Raises InputError for what can't be right.
 
     >>> from stripcheck import assess
-    >>> result = assess({"tora": [700.0, 350.0], "lda": [700.0, 350.0], "elevation_field": 2300, "slope_given": 1.5,
+    >>> result = assess({"tora": [950.0, 450.0], "lda": [950.0, 450.0], "elevation_field": 2300, "slope_given": 1.5,
     ...                  "surface": "grass"}, "ridge-runner", {"temperature": 22}, "uk-leaflet")
     >>> result["takeoff_verdict"]
     ['suitable', 'unsuitable']

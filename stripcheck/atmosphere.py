@@ -39,7 +39,7 @@ def isa_pressure(altitude: Number) -> Number:
     """Standard pressure [Pa] at a pressure altitude [m]. Source: [1].
 
     >>> round(isa_pressure(1000.0), 2)
-    89874.57
+    89874.56
     """
     return P0 * (1.0 - LAPSE / T0 * altitude) ** (1.0 / BARO)
 
@@ -51,7 +51,7 @@ def station_pressure(qnh: Number, elevation: Number) -> Number:
     temperature scale; no "30 ft for each hectopascal". Source: [1], hydrostatic relation.
 
     >>> round(station_pressure(100000.0, 500.0), 1)
-    94199.8
+    94198.4
     """
     return P0 * ((qnh / P0) ** BARO - LAPSE / T0 * elevation) ** (1.0 / BARO)
 
@@ -88,7 +88,7 @@ def density_ratio(air_density: Number) -> Number:
 def density_altitude(air_density: Number) -> Number:
     """Altitude [m] in the standard atmosphere that has this air density [kg/m3]. Source: [1].
 
-    >>> round(density_altitude(1.1116593), 1)
+    >>> round(density_altitude(1.1116418), 1)
     1000.0
     """
     return T0 / LAPSE * (1.0 - (air_density / RHO0) ** (1.0 / DENSITY_EXPONENT))
@@ -109,8 +109,8 @@ def vapour_pressure(temperature: Number, relative_humidity: Number) -> Number:
 
     With a dew point, its own saturation vapour pressure is the vapour pressure.
 
-    >>> round(vapour_pressure(303.15, 0.5), 0)
-    2118.0
+    >>> round(vapour_pressure(303.15, 0.5), 1)
+    2116.9
     """
     return relative_humidity * saturation_vapour_pressure(temperature)
 
@@ -120,7 +120,7 @@ def virtual_temperature(temperature: Number, pressure: Number, vapour: Number) -
 
     ``temperature`` [K], total ``pressure`` [Pa], ``vapour`` pressure [Pa]. Source: [2].
 
-    >>> round(virtual_temperature(303.15, 101325.0, 2118.0), 2)
-    305.58
+    >>> round(virtual_temperature(303.15, 101325.0, 2116.9), 2)
+    305.56
     """
     return temperature / (1.0 - (1.0 - VAPOUR_RATIO) * vapour / pressure)

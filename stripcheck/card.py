@@ -54,6 +54,7 @@ class Card:
     propeller: str
     power: str
     flaps: tuple[Flap, ...]
+    stall_mass: float
     values: dict[str, Any]
     assumed: list[str]
     fit: Fit
@@ -96,7 +97,7 @@ def load_card(name: str) -> Card:
     name, note = aeroplane.text("name"), aeroplane.text("note", "")
     top.refuse_unknown()
     fit = calibrate(build_chain(kind, power), values, takeoff, landing, path.name)
-    return Card(name, note, path.name, kind, power, flaps, {**values, **fit.values}, assumed, fit)
+    return Card(name, note, path.name, kind, power, flaps, _stall_mass(top.section("mass")), {**values, **fit.values}, assumed, fit)
 
 
 def shipped_cards() -> list[str]:
@@ -186,7 +187,7 @@ def _flaps(top: Section) -> tuple[Flap, ...]:
 def _flap_values(top: Section, flaps: tuple[Flap, ...]) -> dict[str, Any]:
     mass = top.section("mass")
     wing = top.section("wing")
-    stall_mass = mass.number("stall_speeds_at", "mass", mass.entries["max_takeoff"], 100.0, 20000.0)
+    stall_mass = _stall_mass(mass)
     lift = [greatest_lift_coefficient(f.stall_speed, stall_mass, wing.number("area", "area")) for f in flaps]
     if not 0.8 <= min(lift) <= max(lift) <= 4.5:
         raise InputError(
@@ -200,6 +201,11 @@ def _flap_values(top: Section, flaps: tuple[Flap, ...]) -> dict[str, Any]:
         "flap_least": flaps[0].deflection,
         "flap_most": flaps[-1].deflection,
     }
+
+
+def _stall_mass(mass: Section) -> float:
+    """Mass at which the stall speeds are stated: the greatest take-off mass unless the card says otherwise."""
+    return mass.number("stall_speeds_at", "mass", mass.number("max_takeoff", "mass"), 100.0, 20000.0)
 
 
 def _speed_factors(top: Section, assumed: list[str]) -> dict[str, float]:

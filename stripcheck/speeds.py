@@ -79,7 +79,7 @@ def equivalent_from_calibrated(cas: Number, pressure: Number) -> Number:
     """Equivalent airspeed [m/s] from calibrated airspeed [m/s] at an air pressure [Pa]. Source: [2].
 
     >>> round(equivalent_from_calibrated(100.0, 70000.0), 3)
-    99.52
+    99.535
     """
     impact = P0 * ((1.0 + 0.2 * np.square(cas / A0)) ** 3.5 - 1.0)
     return A0 * np.sqrt(5.0 * pressure / P0 * ((impact / pressure + 1.0) ** (2.0 / 7.0) - 1.0))

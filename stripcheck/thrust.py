@@ -76,7 +76,7 @@ def static_disk_thrust(power: Number, rho: Number, disk_area: Number) -> Number:
     """Static thrust [N] of an actuator disk [m2] given useful power [W] in air of a density [kg/m3]. Source: [2].
 
     >>> round(static_disk_thrust(100000.0, 1.225, 3.0), 1)
-    4189.0
+    4188.9
     """
     return np.cbrt(2.0 * rho * disk_area * np.square(power))
 
@@ -87,7 +87,7 @@ def disk_speed(power: Number, rho: Number, disk_area: Number) -> Number:
     Source: [2].
 
     >>> round(disk_speed(100000.0, 1.225, 3.0), 3)
-    23.872
+    23.873
     """
     return np.cbrt(power / (2.0 * rho * disk_area))
 
@@ -99,7 +99,7 @@ def disk_root(speed_ratio: Number) -> Number:
     Source: [2].
 
     >>> round(disk_root(0.0), 9), round(disk_root(1.5), 6)
-    (1.0, 1.827928)
+    (1.0, 1.806444)
     """
     cubed = np.power(speed_ratio, 3) / 27.0
     root = np.cbrt(cubed + 0.5 + np.sqrt(cubed + 0.25))

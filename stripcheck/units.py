@@ -71,6 +71,9 @@ KINDS = {
     "number": ("", "dimensionless"),
 }
 
+# units that measure the same, so that one can be typed where another is the default
+_ALIKE = (("m", "ft", "km", "nm"), ("m/s", "kt", "km/h"), ("kg", "lb"), ("Pa", "hPa", "inHg"))
+
 # spellings that pint does not know, or knows as something else ("nm" is a nanometre to it)
 _SPELLINGS = {
     "°c": "degC", "deg c": "degC", "degc": "degC", "c": "degC", "celsius": "degC",
@@ -94,8 +97,8 @@ PRESSURE_INHG = (24.0, 32.5)
 def to_si(value: float, unit: str) -> float:
     """Value in SI of ``value`` [unit].
 
-    >>> to_si(2300, "ft")
-    701.04
+    >>> to_si(1000, "ft")
+    304.8
     >>> to_si(15, "°C")
     288.15
     """
@@ -113,6 +116,15 @@ def from_si(value: float, unit: str) -> float:
     return (value - entry.offset) / entry.factor
 
 
+def tidy(value: float) -> float:
+    """A number to twelve digits, as it is shown for typing over: without the noise of a conversion.
+
+    >>> tidy(2300 * 0.3048 / 0.3048)
+    2300.0
+    """
+    return float(f"{value:.12g}")
+
+
 @cache
 def unit_scale(spelling: str, kind: str) -> tuple[float, float]:
     """Factor and offset that take a number in the unit ``spelling`` to SI: ``SI = number * factor + offset``.
@@ -124,7 +136,7 @@ def unit_scale(spelling: str, kind: str) -> tuple[float, float]:
     """
     default, si = KINDS[kind]
     shown = spelling.strip() or default
-    if shown in UNITS and _SPELLINGS.get(default.lower(), default) == _SPELLINGS.get(shown.lower(), shown):
+    if shown in UNITS and (shown == default or any(shown in row and default in row for row in _ALIKE)):
         return UNITS[shown].factor, UNITS[shown].offset
     registry = _registry()
     name = _SPELLINGS.get(shown.lower(), shown)
@@ -145,10 +157,10 @@ def read_quantity(value: object, kind: str, unit: str = "") -> float:
     800 to 1,100 is hPa and one of 24 to 32.5 is inHg; anything else is refused. A blank gives NaN.
     Raises InputError with what is wrong and what would be right.
 
-    >>> read_quantity("2300 ft", "length")
-    701.04
-    >>> read_quantity(29.92, "pressure")
-    101320.748119
+    >>> read_quantity("1000 ft", "length")
+    304.8
+    >>> round(read_quantity(29.92, "pressure"), 3)
+    101320.748
     """
     if value is None or (isinstance(value, str) and not value.strip()):
         return math.nan

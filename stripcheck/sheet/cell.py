@@ -52,16 +52,18 @@ class Cell(np.lib.mixins.NDArrayOperatorsMixin):
 
     ``text`` is the formula without its equals sign, ``rank`` how tightly its outermost operator binds, ``depth`` how
     many functions are nested in it, ``many`` whether it stands for an array (only inside a sum), ``raw`` the bare
-    reference that ISNUMBER has to look at when the text also converts a unit.
+    reference that ISNUMBER has to look at when the text also converts a unit, ``branches`` the test and the two values
+    of an IF.
 
     >>> str(2.0 * Cell("A1") + np.sqrt(Cell("B1")))
     '2*A1+SQRT(B1)'
     """
 
-    __slots__ = ("depth", "many", "rank", "raw", "text")
+    __slots__ = ("branches", "depth", "many", "rank", "raw", "text")
 
     def __init__(self, text: str, rank: int = ATOM, depth: int = 0, many: bool = False, raw: str = "") -> None:
         self.text, self.rank, self.depth, self.many, self.raw = text, rank, depth, many, raw or text
+        self.branches: tuple[Cell, Cell, Cell] | None = None
 
     def __str__(self) -> str:
         return self.text
@@ -144,15 +146,20 @@ def reference(text: str, unit: str = "") -> Cell:
 
 
 def shown(cell: Cell, unit: str) -> Cell:
-    """An SI expression as the expression of the number that is shown in ``unit``.
+    """An SI expression as the expression of the number that is shown in ``unit``; a blank stays a blank.
 
     >>> str(shown(Cell("A1+B1", ADD), "kt"))
     '(A1+B1)/0.514444444444444'
     """
     entry = UNITS[unit]
+    if cell.text == BLANK or not (entry.offset or entry.factor != 1.0) or (cell.text == "0" and not entry.offset):
+        return cell
+    if cell.branches:
+        condition, then, otherwise = cell.branches
+        return _where(condition, shown(then, unit), shown(otherwise, unit))
     if entry.offset:
         return cell - entry.offset
-    return cell if entry.factor == 1.0 else cell / entry.factor
+    return cell / entry.factor
 
 
 def formula(cell: Cell) -> str:
@@ -241,7 +248,9 @@ def _where(condition: Any, then: Any, otherwise: Any) -> Cell:
         raise TypeError("np.where of an array inside a sum can't be written as a cell formula: write it as algebra")
     if cells[0].text in ("TRUE", "FALSE"):
         return cells[1] if cells[0].text == "TRUE" else cells[2]
-    return call("IF", *cells)
+    written = call("IF", *cells)
+    written.branches = (cells[0], cells[1], cells[2])
+    return written
 
 
 def _select(conditions: list, choices: list, default: Any = 0) -> Cell:

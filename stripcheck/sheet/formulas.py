@@ -7,6 +7,7 @@ the steps that use it.
 from __future__ import annotations
 
 from collections.abc import Mapping
+from typing import NamedTuple
 
 import numpy as np
 
@@ -28,11 +29,20 @@ WORDS = "_words"  # added to a step's key: place of the words that its number st
 GROUND_NAMES = "ground_names"  # place of the ground table's first column, beside the chain's own range inputs
 
 
-def write_formulas(chain: Chain, places: Mapping[str, str]) -> dict[str, str]:
+class Place(NamedTuple):
+    """Where a value stands: a reference such as ``$E7`` or ``Aircraft!$D$4``, and the unit that the cell shows."""
+
+    reference: str
+    unit: str = ""
+
+
+NOWHERE = Place("")  # of an input that is blank in every row
+
+
+def write_formulas(chain: Chain, places: Mapping[str, Place]) -> dict[str, str]:
     """Formula text, without equals sign, of every step that has a place.
 
-    ``places`` gives the reference of each input of the chain and of each step that is kept as a cell, such as
-    ``$E7`` or ``Aircraft!$C$4``; an empty one stands for an input that is blank in every row. A step without a place
+    ``places`` tells where each input of the chain stands and each step that is kept as a cell. A step without a place
     is written into those that use it. Besides, `GROUND_NAMES` and, for each step of words, its key and `WORDS`, give
     the ranges of those tables.
     Raises KeyError for an input without a place and ValueError for a formula beyond a spreadsheet's limits.
@@ -44,14 +54,14 @@ def write_formulas(chain: Chain, places: Mapping[str, str]) -> dict[str, str]:
 class _Writer:
     """Finds the expression of each value under what is sure to hold where it is read."""
 
-    def __init__(self, chain: Chain, places: Mapping[str, str]) -> None:
+    def __init__(self, chain: Chain, places: Mapping[str, Place]) -> None:
         self.chain, self.places = chain, places
-        self.names = Cell(places[GROUND_NAMES], many=True)
-        self.fault = Cell(places["fault"])
+        self.names = Cell(places[GROUND_NAMES].reference, many=True)
+        self.fault = Cell(places["fault"].reference or BLANK)
 
     def formula_of(self, step: Step) -> str:
         expression = self.expression(step, self.held(step))
-        in_unit = expression if step.words else shown(expression, step.unit)
+        in_unit = expression if step.words else shown(expression, self.places[step.key].unit)
         whole = self.guarded(step, in_unit, frozenset())
         for literal, name in _LITERALS.items():
             whole.text = whole.text.replace(literal, name)
@@ -66,7 +76,7 @@ class _Writer:
         if isinstance(item, Input):
             return _input_cell(item, self.places[key])
         if key in self.places:
-            return reference(self.places[key], item.unit)
+            return reference(*self.places[key])
         return self.guarded(item, self.expression(item, holding | self.held(item)), holding)
 
     def expression(self, step: Step, holding: frozenset[str]) -> Cell:
@@ -76,7 +86,7 @@ class _Writer:
         if step.lookup:
             return _looked_up(*values)
         if step.words:
-            return _in_words(step, *values, self.fault, Cell(self.places[step.key + WORDS]))
+            return _in_words(step, *values, self.fault, Cell(self.places[step.key + WORDS].reference))
         return as_cell(step.function(*values))
 
     def guarded(self, step: Step, expression: Cell, holding: frozenset[str]) -> Cell:
@@ -88,16 +98,16 @@ class _Writer:
         return np.where(holds, expression, False if step.truth else np.nan)
 
 
-def _input_cell(item: Input, place: str) -> Cell:
-    if not place:
-        return Cell(BLANK)
+def _input_cell(item: Input, place: Place) -> Cell:
+    if not place.reference:
+        return as_cell({"flag": True, "fault": False}.get(item.kind, np.nan))
     if item.kind == "flag":
-        return Cell(f'{place}<>"no"', COMPARE, raw=place)
+        return Cell(f'{place.reference}<>"no"', COMPARE, raw=place.reference)
     if item.kind == "fault":
-        return Cell(f'{place}<>""', COMPARE, raw=place)
+        return Cell(f'{place.reference}<>""', COMPARE, raw=place.reference)
     if item.kind == "range":
-        return Cell(place, many=True)
-    return reference(place, item.unit if item.kind == "number" else "")
+        return Cell(place.reference, many=True)
+    return reference(*place)
 
 
 def _row_in_table(surface: Cell, condition: Cell, day_condition: Cell, names: Cell) -> Cell:

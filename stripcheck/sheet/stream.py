@@ -119,6 +119,7 @@ def write_book(
     path: Path,
     *,
     progress: Callable[[int], None] | None = None,
+    cached: Mapping[str, Mapping[str, object]] | None = None,
 ) -> list[str]:
     """Write the book to ``path``, whole or not at all, and return what had to be cut, one sentence each.
 
@@ -126,9 +127,10 @@ def write_book(
         (filters, validations, formats) already reach over all the rows to come
     tables : name of the sheet -> its `Table`
     progress : called with the number of rows just written, again and again
+    cached : name of a sheet -> cell such as "D5" -> the value beside the formula that the skeleton has there
 
-    The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself get
-    no value. Raises InputError when there are more rows than a sheet holds or the file can't be written,
+    The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself
+    get the value that ``cached`` has for them. Raises InputError when there are more rows than a sheet holds or the file can't be written,
     ValueError when the tables don't fit the skeleton or hold what a sheet can't keep.
     Method: SpreadsheetML as in the heading of this module.
 
@@ -158,17 +160,42 @@ def write_book(
     skeleton.save(packed)
     # openpyxl settles the part names as it saves, so they are asked for only now
     streamed = {skeleton[name].path.lstrip("/"): sheet for name, sheet in sheets.items()}
+    beside = {skeleton[name].path.lstrip("/"): values for name, values in (cached or {}).items()}
     with (
         zipfile.ZipFile(packed) as source,
         _whole_or_not_at_all(path) as file,
         zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, compresslevel=_LEVEL) as target,
     ):
         for part in source.namelist():
+            data = _with_relative_targets(part, source.read(part))
+            if part in beside:
+                data = _with_values(data.decode(), beside[part]).encode()
             if part in streamed:
-                _stream(source.read(part).decode(), streamed[part], target, part, progress)
+                _stream(data.decode(), streamed[part], target, part, progress)
             else:
-                target.writestr(part, _with_relative_targets(part, source.read(part)))
+                target.writestr(part, data)
     return cuts
+
+
+_FORMULA_CELL = re.compile(r'<c r="([A-Z]+[0-9]+)"([^>]*)><f>(.*?)</f><v ?/?>(?:</v>)?</c>', re.DOTALL)
+
+
+def _with_values(xml: str, values: Mapping[str, object]) -> str:
+    """The formula cells of a sheet that openpyxl wrote, each with the value that it has now."""
+
+    def with_value(match: re.Match[str]) -> str:
+        value = values.get(match[1])
+        if value is None:
+            return match[0]
+        if isinstance(value, bool):
+            kind, text = ' t="b"', str(int(value))
+        elif isinstance(value, int | float):
+            kind, text = "", repr(value)
+        else:
+            kind, text = ' t="str"', escape(str(value))
+        return f'<c r="{match[1]}"{match[2]}{kind}><f>{match[3]}</f><v>{text}</v></c>'
+
+    return _FORMULA_CELL.sub(with_value, xml)
 
 
 def _with_relative_targets(part: str, data: bytes) -> bytes:

@@ -1,0 +1,190 @@
+"""The whole workbook: pages, strips with live formulas, summary, left out, method."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from openpyxl import Workbook
+from openpyxl.utils import get_column_letter
+
+from stripcheck.card import Card
+from stripcheck.chain import Chain, Step, evaluate
+from stripcheck.day import Day
+from stripcheck.register import Directions
+from stripcheck.rules import Rules
+from stripcheck.sheet import left_out, method, pages, strips, styles, summary
+from stripcheck.sheet.formulas import write_formulas
+from stripcheck.sheet.stream import write_book
+from stripcheck.units import from_si, tidy
+from stripcheck.verdict import FAULT
+
+SHORT_ABOVE = 2000  # directions above which a list is long, and gets the short detail unless told otherwise
+
+
+@dataclass(frozen=True)
+class Filling:
+    """All that a workbook is filled from, and the computed steps; ``chosen`` is mass and flap by chain key, SI."""
+
+    directions: Directions
+    card: Card
+    day: Day
+    rules: Rules
+    chosen: Mapping[str, float]
+    flap_names: Mapping[str, str]
+    given: Mapping[str, Any]
+    values: Mapping[str, np.ndarray]
+    best: Mapping[str, np.ndarray]
+
+    @property
+    def chain(self) -> Chain:
+        return self.card.chain
+
+    def shown(self, step: Step) -> Any:
+        """A step's values as its column shows them: numbers in its unit, truths, or texts."""
+        values = np.broadcast_to(self.values[step.key], self.directions.n)
+        if step.words:
+            faults = self.directions.texts["fault"]
+            return [faults[i] if step.words[n - 1] == FAULT else step.words[n - 1]
+                    for i, n in enumerate(values.astype(int).tolist())]  # fmt: skip
+        if step.lookup.startswith("ground_"):
+            return [value if np.isfinite(value) else pages.NO_FIGURE for value in values.tolist()]
+        return values if step.truth else np.asarray(from_si(values.astype(float), step.unit))
+
+    def counts(self) -> dict[str, dict[str, int]]:
+        """How many strips have each verdict, in and out, and each pair of them."""
+        found: dict[str, dict[str, int]] = {}
+        for side, _, _ in summary.SIDES:
+            numbers = Counter(self.best[f"{side}_rank"].tolist())
+            found[side] = {word: numbers.get(rank, 0) for rank, word in enumerate(summary.RANKS, 1)}
+        both = Counter(self.best["both"].tolist())
+        found["both"] = {words: both.get(number, 0) for number, words in enumerate(summary.BOTH, 1)}
+        return found
+
+
+def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Mapping[str, float],
+         flap_names: Mapping[str, str]) -> Filling:  # fmt: skip
+    """Compute all steps of all directions, and the better direction of each strip."""
+    given = strips.given_columns(directions)
+    values = evaluate(card.chain, {**card.values, **rules.values, **day.values, **given, **chosen})
+    values = {key: np.broadcast_to(value, directions.n) if key in _SUMMARISED else value for key, value in values.items()}
+    words = {step.key: step.words for step in card.chain.steps}
+    return Filling(directions, card, day, rules, chosen, flap_names, given, values, summary.summarise(values, words))
+
+
+_SUMMARISED = {f"{step}_{part}" for _, step, _ in summary.SIDES for part in ("verdict", "margin", "margin_share", "reason")}
+
+
+def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[[int], None] | None = None) -> list[str]:
+    """Write the workbook whole or not at all; returns what had to be cut, one sentence each.
+
+    ``full``: every step a column of its own; else the short detail. Raises InputError where it can't be written.
+    """
+    chain, directions = filling.chain, filling.directions
+    book = Workbook()
+    book.remove(book.active)
+    book.properties.creator, book.properties.title = "stripcheck", "Airstrip suitability"
+    made = pages.Pages(book)
+    count = directions.n // 2
+    columns = strips.layout(chain, directions, full)
+    letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
+
+    summary_sheet = summary.write_skeleton(made, count, _facts(filling))
+    strips.write_skeleton(made, columns, directions.n, f"{card_title(filling)}: every direction")
+    aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names)
+    pages.write_day(made, filling.day)
+    pages.write_rules(made, filling.rules)
+    left_out.write_skeleton(made, directions)
+    method.write_method(made, chain, taken_for_granted(filling), _made_from(filling))
+
+    once = [step for step in chain.steps if step.key not in chain.depends_on_strip()]
+    row = aircraft.max_row + 2
+    row = pages.write_book_points(aircraft, row, filling.card)
+    pages.write_steps(made, aircraft, row, once)
+    made.places.update(strips.places_of(columns, chain))
+    formulas = write_formulas(chain, made.places)
+    pages.fill_steps(made, aircraft, row, once, formulas, filling.values)
+    _fill_facts(made, summary_sheet, filling)
+    summary.write_counts(made, summary_sheet, count, filling.counts())
+
+    shown = {step.key: filling.shown(step) for step in chain.steps if step.key in letters or step.key in _SUMMARISED}
+    shown["direction"] = directions.texts["direction"]
+    tables = {
+        strips.SHEET: strips.table_of(columns, directions, filling.given, formulas, shown),
+        summary.SHEET: summary.table_of(directions, letters, shown, filling.best),
+        left_out.SHEET: left_out.table_of(directions),
+    }
+    return write_book(book, tables, path, progress=progress, cached=made.cached)
+
+
+def card_title(filling: Filling) -> str:
+    return filling.card.name
+
+
+def taken_for_granted(filling: Filling) -> list[str]:
+    """Every default and assumed value that stands in this filling, in words."""
+    lines = [*filling.day.defaults, *filling.card.assumed, *filling.card.fit.remarks]
+    kinds = Counter(item.what for item in filling.directions.doubts)
+    lines += [f"{what}: {number} runways, listed on the sheet Left out" for what, number in kinds.most_common()]
+    slope = filling.day.values["assumed_slope"]
+    if np.isfinite(slope):
+        lines.append(f"Slope of {slope:.1%} against you, both ways, where none is known")
+    if np.isnan(filling.day.values["temperature_elevation"]) and np.isfinite(filling.day.values["temperature"]):
+        lines.append("The day's temperature stands for every strip that has none of its own, whatever its elevation")
+    return lines
+
+
+def _made_from(filling: Filling) -> list[tuple[str, str]]:
+    return [
+        ("Runway list", f"{filling.directions.source}, {filling.directions.rows_read} runways"),
+        ("Aircraft card", f"{filling.card.file}: {filling.card.name}"),
+        ("Rule set", f"{filling.rules.name}: {filling.rules.title}"),
+    ]
+
+
+_FACTS = (
+    ("Aeroplane", None),
+    ("Take-off mass", "mass_takeoff"),
+    ("Landing mass", "mass_landing"),
+    ("Take-off flap", "takeoff_flap"),
+    ("Landing flap", "landing_flap"),
+    ("QNH", "qnh"),
+    ("Temperature", "temperature"),
+    ("ISA deviation", "isa_deviation"),
+    ("Wind", "wind_speed"),
+)
+
+
+def _facts(filling: Filling) -> list[tuple[str, str]]:
+    return [*((label, "") for label, _ in _FACTS), ("Rules", "")][: summary.HEADER_ROW - 4]
+
+
+def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
+    """What the verdicts stand on, read live from the other sheets, at the top of the summary."""
+    column = summary.LETTERS["name"]
+    values = {**filling.card.values, **filling.day.values, **filling.chosen}
+    units = {item.key: item.unit for item in filling.chain.inputs}
+    for row, (_, key) in enumerate(_FACTS, 4):
+        cell = f"{column}{row}"
+        if key is None:
+            made.formula(sheet, cell, "Aircraft!A1", filling.card.name)
+        elif key in filling.flap_names:
+            made.formula(sheet, cell, _value_cell(made, key), filling.flap_names[key])
+        else:
+            source = _value_cell(made, key)
+            known = np.isfinite(values[key])
+            text = f'IF(ISNUMBER({source}),{source},"not given")'
+            made.formula(sheet, cell, text, tidy(from_si(values[key], units[key])) if known else "not given")
+            sheet[cell].number_format = styles.number_format(units[key])
+        sheet[cell].alignment = styles.Alignment(horizontal="left")
+    row = 4 + len(_FACTS)
+    made.formula(sheet, f"{column}{row}", "Rules!A1", filling.rules.title)
+
+
+def _value_cell(made: pages.Pages, key: str) -> str:
+    """The cell where a user types a value: beside the SI cell that formulas read."""
+    return made.places[key].reference.replace(f"${pages.SI}$", f"${pages.VALUE}$")

@@ -1,0 +1,345 @@
+"""The pages of labels and values: Aircraft, Day and Rules, each with a live column of SI values beside.
+
+Formulas elsewhere read the SI column, so that a value is converted once and a formula stays short.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from openpyxl import Workbook
+from openpyxl.comments import Comment
+from openpyxl.workbook.defined_name import DefinedName
+from openpyxl.worksheet.datavalidation import DataValidation
+from openpyxl.worksheet.worksheet import Worksheet
+
+from stripcheck.card import Card
+from stripcheck.chain import Input, Step
+from stripcheck.day import Day
+from stripcheck.inputs import CARD, DAY, RULES
+from stripcheck.rules import Rules
+from stripcheck.sheet import styles
+from stripcheck.sheet.cell import Cell, formula, reference
+from stripcheck.sheet.formulas import GROUND_NAMES, WORDS, Place
+from stripcheck.speeds import greatest_lift_coefficient
+from stripcheck.surface import CONDITIONS, GROUNDS, REFERENCE_GROUND
+from stripcheck.units import UNITS, from_si, tidy
+from stripcheck.verdict import CAUTION
+
+UNKNOWN_GROUND = "not known"
+NO_FIGURE = "none"
+LABEL, VALUE, UNIT, SI, NOTE = "A", "B", "C", "D", "E"
+
+
+@dataclass
+class Pages:
+    """What the pages hand to the other sheets: where each value stands, and the values beside the formulas."""
+
+    book: Workbook
+    places: dict[str, Place] = field(default_factory=dict)
+    cached: dict[str, dict[str, Any]] = field(default_factory=dict)
+
+    def formula(self, sheet: Worksheet, cell: str, text: str, value: Any) -> None:
+        """Write a formula into a cell, and keep the value that it has now."""
+        sheet[cell] = "=" + text
+        plain = value.item() if isinstance(value, np.generic | np.ndarray) else value
+        self.cached.setdefault(sheet.title, {})[cell] = plain
+
+    def name(self, name: str, sheet: Worksheet, cells: str) -> str:
+        """Give a range a name, and return the name."""
+        first, _, last = cells.partition(":")
+        absolute = ":".join(_absolute(cell) for cell in (first, last) if cell)
+        self.book.defined_names[name] = DefinedName(name, attr_text=f"{sheet.title}!{absolute}")
+        return name
+
+
+def _absolute(cell: str) -> str:
+    letters = cell.rstrip("0123456789")
+    return f"${letters}${cell[len(letters) :]}"
+
+
+def start_page(pages: Pages, title: str, heading: str) -> Worksheet:
+    """A new page with its heading, the caution and the header of the value table in row 4."""
+    sheet: Worksheet = pages.book.create_sheet(title)
+    sheet["A1"], sheet["A1"].font = heading, styles.TITLE
+    styles.write_caution(sheet, "A2", CAUTION)
+    for column, width in zip("ABCDEF", (40, 20, 9, 16, 70, 14), strict=True):
+        sheet.column_dimensions[column].width = width
+    sheet.sheet_view.showGridLines = False
+    styles.set_print(sheet, portrait=False)
+    return sheet
+
+
+def write_header(sheet: Worksheet, row: int, titles: tuple[str, ...], first_column: int = 1) -> None:
+    """A header row of a table."""
+    for number, title in enumerate(titles, first_column):
+        cell = sheet.cell(row, number, title)
+        cell.font, cell.fill, cell.alignment = styles.HEADER, styles.HEADER_FILL, styles.CENTRE
+
+
+def write_heading(sheet: Worksheet, row: int, text: str) -> None:
+    sheet.cell(row, 1, text).font = styles.HEADING
+
+
+def value_row(pages: Pages, sheet: Worksheet, row: int, item: Input, value: Any, fill: Any = styles.INPUT_FILL) -> None:
+    """One input: label, value to be typed over, unit, SI value by formula, help."""
+    label, cell = sheet[f"{LABEL}{row}"], sheet[f"{VALUE}{row}"]
+    label.value, label.font, label.border = item.label, styles.BODY, styles.LINE
+    cell.fill, cell.border, cell.protection, cell.font = fill, styles.BOX, styles.UNLOCKED, styles.BODY
+    sheet[f"{UNIT}{row}"], sheet[f"{UNIT}{row}"].font = item.unit, styles.SMALL
+    sheet[f"{NOTE}{row}"], sheet[f"{NOTE}{row}"].font = item.help, styles.SMALL
+    if item.kind != "number":
+        cell.value = value
+        pages.places[item.key] = Place(f"{sheet.title}!${VALUE}${row}")
+        return
+    known = not math.isnan(value)
+    shown = tidy(from_si(value, item.unit)) if known else None
+    cell.value, cell.number_format = shown, _input_format(item.unit)
+    _number_only(sheet, f"{VALUE}{row}")
+    source = reference(f"{VALUE}{row}", item.unit)
+    text = formula(np.where(np.isfinite(source), source, np.nan))
+    pages.formula(sheet, f"{SI}{row}", text, value if known else "")
+    _style_si(sheet, row)
+    pages.places[item.key] = Place(f"{sheet.title}!${SI}${row}")
+
+
+def _input_format(unit: str) -> str:
+    return {"": "General", "kg": "#,##0.##", "m": "#,##0.##"}.get(unit, "#,##0.###")
+
+
+def _number_only(sheet: Worksheet, cell: str) -> None:
+    check = DataValidation(type="decimal", allow_blank=True, operator="between", formula1="-1000000", formula2="1000000")
+    check.errorTitle, check.error = "A number is needed", "Type a plain number in the unit beside, or leave it blank."
+    check.add(cell)
+    sheet.add_data_validation(check)
+
+
+def choice(sheet: Worksheet, cell: str, source: str, message: str) -> None:
+    """A drop-down on a cell or range: a list such as '"yes,no"' or a reference."""
+    check = DataValidation(type="list", formula1=source, allow_blank=True, showErrorMessage=True)
+    check.errorTitle, check.error = "Choose from the list", message
+    check.add(cell)
+    sheet.add_data_validation(check)
+
+
+def _style_si(sheet: Worksheet, row: int) -> None:
+    cell = sheet[f"{SI}{row}"]
+    cell.font, cell.number_format = styles.SMALL, "General"
+
+
+def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any], flap_names: Mapping[str, str]) -> Worksheet:
+    """The aircraft sheet, without the computed steps; returns it with the rows after the inputs free.
+
+    ``chosen`` holds mass and flap of this assessment by chain key, SI; ``flap_names`` the names of the flap settings.
+    """
+    sheet = start_page(pages, "Aircraft", card.name)
+    sheet["A3"], sheet["A3"].font = card.note, styles.SMALL
+    write_header(sheet, 5, ("This assessment", "Value", "Unit", "In SI", "Meaning"))
+    inputs = [item for item in card.chain.inputs if item.where == "card"]
+    values = {**card.values, **chosen}
+    rows = {item.key: item for item in inputs if item.kind == "number"}
+    first = ("mass_takeoff", "mass_landing")
+    row = 6
+    for key in first:
+        value_row(pages, sheet, row, rows.pop(key), values[key])
+        row += 1
+    flap_rows = {key: row + i for i, key in enumerate(("takeoff_flap", "landing_flap"))}
+    row += 3
+    write_header(sheet, row, ("The aeroplane", "Value", "Unit", "In SI", "Meaning"))
+    row += 1
+    for key, item in rows.items():
+        if key in ("takeoff_flap", "landing_flap", "flap_least", "flap_most"):
+            continue
+        fill = styles.CALIBRATED_FILL if key in card.fit.values else styles.INPUT_FILL
+        value_row(pages, sheet, row, item, values[key], fill)
+        row += 1
+    row = _flap_table(pages, sheet, row + 1, card)
+    for key, at in flap_rows.items():
+        _flap_choice(pages, sheet, at, next(i for i in CARD if i.key == key), flap_names[key], values[key], len(card.flaps))
+    sheet.freeze_panes = "A6"
+    return sheet
+
+
+def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
+    """Flap settings: stall speed in, greatest lift coefficient by formula; returns the next free row."""
+    write_heading(sheet, row, "Flap settings (stall speeds at the mass beside them, calibrated airspeed)")
+    write_header(sheet, row + 1, ("Setting", "Deflection [°]", "", "Deflection, SI", "Uses"))
+    write_header(sheet, row + 1, ("Stall speed [kt]", "At mass [kg]", "Drag added", "Greatest lift coefficient"), 6)
+    first, last = row + 2, row + 1 + len(card.flaps)
+    area = Cell(pages.places["wing_area"].reference.split("!")[1])
+    for at, flap in enumerate(card.flaps, first):
+        lift = card.values["flap_lift"][at - first]
+        deflection = tidy(from_si(flap.deflection, "°"))
+        _text(sheet, f"A{at}", flap.name)
+        _number(sheet, f"B{at}", deflection)
+        pages.formula(sheet, f"D{at}", formula(reference(f"B{at}", "°")), flap.deflection)
+        sheet[f"E{at}"] = ", ".join(flap.uses)
+        _number(sheet, f"F{at}", tidy(from_si(flap.stall_speed, "kt")))
+        _number(sheet, f"G{at}", card.stall_mass)
+        _number(sheet, f"H{at}", flap.drag)
+        text = formula(greatest_lift_coefficient(reference(f"F{at}", "kt"), Cell(f"G{at}"), area))
+        pages.formula(sheet, f"I{at}", text, lift)
+    for column in "FGHI":
+        sheet.column_dimensions[column].width = 14
+    pages.name("flap_names", sheet, f"A{first}:A{last}")
+    for key, column in (("flap_deflection", "D"), ("flap_drag", "H"), ("flap_lift", "I")):
+        pages.places[key] = Place(pages.name(key + "s", sheet, f"{column}{first}:{column}{last}"))
+    for at, key, name in ((last + 1, "flap_least", "MIN"), (last + 2, "flap_most", "MAX")):
+        sheet[f"A{at}"], sheet[f"A{at}"].font = {"MIN": "Least deflection", "MAX": "Most deflection"}[name], styles.SMALL
+        pages.formula(sheet, f"D{at}", f"{name}(flap_deflections)", card.values[key])
+        pages.places[key] = Place(f"Aircraft!$D${at}")
+    return last + 4
+
+
+def _flap_choice(pages: Pages, sheet: Worksheet, row: int, item: Input, name: str, value: float, count: int) -> None:
+    """A flap setting chosen by name; its deflection follows by formula."""
+    value_row(pages, sheet, row, Input(item.key, item.label, "", "card", "Name of a setting of the flap table", "choice"), name)
+    cell = sheet[f"{VALUE}{row}"]
+    cell.number_format = "@"  # so that a setting called 10 stays a name
+    cell.alignment = styles.CENTRE
+    choice(sheet, f"{VALUE}{row}", "flap_names", "Choose a setting of the flap table below.")
+    text = f'IFERROR(INDEX(flap_deflections,MATCH({VALUE}{row}&"",flap_names,0)),"")'
+    pages.formula(sheet, f"{SI}{row}", text, value)
+    _style_si(sheet, row)
+    pages.places[item.key] = Place(f"{sheet.title}!${SI}${row}")
+
+
+def _text(sheet: Worksheet, cell: str, text: str) -> None:
+    sheet[cell].value, sheet[cell].number_format, sheet[cell].font = text, "@", styles.BODY
+    sheet[cell].data_type = "s"
+
+
+def _number(sheet: Worksheet, cell: str, value: float) -> None:
+    target = sheet[cell]
+    target.value = None if math.isnan(value) else value
+    target.fill, target.border, target.protection, target.font = (styles.INPUT_FILL, styles.BOX, styles.UNLOCKED, styles.BODY)
+
+
+def write_book_points(sheet: Worksheet, row: int, card: Card) -> int:
+    """Book figures beside what the calibrated card gives; returns the next free row."""
+    write_heading(sheet, row, "Calibration: the manual's figures and the card's, on level dry pavement in still air")
+    write_header(sheet, row + 1, ("Book point", "Book [m]", "", "Card [m]", "Difference"))
+    for at, (label, book, model) in enumerate(card.fit.residuals, row + 2):
+        sheet[f"A{at}"], sheet[f"B{at}"], sheet[f"D{at}"] = label, book, round(model, 1)
+        sheet[f"E{at}"] = f"{model / book - 1.0:+.1%}"
+        for column in "ABDE":
+            sheet[f"{column}{at}"].font = styles.BODY
+    end = row + 2 + len(card.fit.residuals)
+    for remark in (*card.fit.remarks, *card.assumed):
+        sheet[f"A{end}"], sheet[f"A{end}"].font = remark, styles.SMALL
+        end += 1
+    return end + 1
+
+
+def write_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step]) -> int:
+    """Rows for the steps that are the same for all strips; formulas come once all places are known."""
+    write_heading(sheet, row, "Follows from it, the same for all strips")
+    write_header(sheet, row + 1, ("Value", "Shown", "Unit", "In SI", "Source"))
+    for at, step in enumerate(steps, row + 2):
+        label = f"{step.label} ({step.symbol})" if step.symbol else step.label
+        sheet[f"A{at}"], sheet[f"C{at}"], sheet[f"E{at}"] = label, step.unit, step.source
+        sheet[f"A{at}"].font, sheet[f"A{at}"].border = styles.BODY, styles.LINE
+        sheet[f"C{at}"].font = sheet[f"E{at}"].font = styles.SMALL
+        pages.places[step.key] = Place(f"Aircraft!$D${at}")
+    return row + 2 + len(steps)
+
+
+def fill_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step], formulas: Mapping[str, str],
+               values: Mapping[str, Any]) -> None:  # fmt: skip
+    """The formulas of those rows, now that all places are known."""
+    for at, step in enumerate(steps, row + 2):
+        value = values[step.key]
+        plain = bool(value) if step.truth else (float(value) if np.isfinite(value) else "")
+        pages.formula(sheet, f"D{at}", formulas[step.key], plain)
+        _style_si(sheet, at)
+        entry = UNITS[step.unit]
+        shown = f'IF(ISNUMBER(D{at}),(D{at}-{entry.offset:.15g})/{entry.factor:.15g},D{at})'
+        number = from_si(plain, step.unit) if isinstance(plain, float) else plain
+        pages.formula(sheet, f"B{at}", shown, number)
+        cell = sheet[f"B{at}"]
+        cell.number_format, cell.font = styles.number_format(step.unit), styles.BODY
+
+
+def write_day(pages: Pages, day: Day) -> Worksheet:
+    """The day sheet."""
+    sheet = start_page(pages, "Day", "The day")
+    write_header(sheet, 5, ("For all strips that have no value of their own", "Value", "Unit", "In SI", "Meaning"))
+    for row, item in enumerate(DAY, 6):
+        value_row(pages, sheet, row, item, day.condition if item.key == "day_condition" else day.values[item.key])
+        if item.key == "day_condition":
+            sheet[f"{VALUE}{row}"].alignment = styles.CENTRE
+            choice(sheet, f"{VALUE}{row}", f'"{",".join(CONDITIONS)}"', "dry, wet or soft")
+    sheet.freeze_panes = "A6"
+    return sheet
+
+
+def write_rules(pages: Pages, rules: Rules) -> Worksheet:
+    """The rules sheet: the set's values, and the ground table."""
+    sheet = start_page(pages, "Rules", rules.title)
+    told = {"read": "taken from the text", "memory": "from memory: compare with the text", "own": "the user's own"}
+    facts = (rules.issue, rules.citation, f"Status of the figures: {told[rules.status]}.", " ".join(rules.note.split()))
+    for row, text in enumerate(facts, 3):
+        sheet[f"A{row}"], sheet[f"A{row}"].font = text, styles.SMALL
+    write_header(sheet, 8, ("Rule", "Value", "Unit", "In SI", "Meaning"))
+    row = 9
+    for item in RULES:
+        if item.kind == "range" or item.key.startswith("reference_"):
+            continue
+        value = rules.values[item.key]
+        value_row(pages, sheet, row, item, ("yes" if value else "no") if item.kind == "flag" else value)
+        if item.kind == "flag":
+            sheet[f"{VALUE}{row}"].alignment = styles.CENTRE
+            choice(sheet, f"{VALUE}{row}", '"yes,no"', "yes or no")
+        row += 1
+    _ground_table(pages, sheet, row + 1, rules)
+    sheet.freeze_panes = "A9"
+    return sheet
+
+
+def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> None:
+    """Coefficients and published corrections by ground; a word where there is no figure keeps the strip unassessed."""
+    write_heading(sheet, row, f'Ground table ("{NO_FIGURE}": a strip with this ground is not assessed)')
+    write_header(sheet, row + 1, ("Ground", "Rolling", "Braking", "Take-off corr.", "Source of the coefficients",
+                                  "Landing corr."))  # fmt: skip
+    first = row + 2
+    columns = {"ground_rolling": "B", "ground_braking": "C", "ground_takeoff_factor": "D", "ground_landing_factor": "F"}
+    names = [*(ground.name for ground in GROUNDS), UNKNOWN_GROUND]
+    for i, name in enumerate(names):
+        at = first + i
+        sheet[f"A{at}"], sheet[f"A{at}"].font = name, styles.BODY
+        sheet[f"E{at}"] = GROUNDS[i].source if i < len(GROUNDS) else "always without figures"
+        sheet[f"E{at}"].font = styles.SMALL
+        for key, column in columns.items():
+            value = float(rules.values[key][i])  # type: ignore[index]
+            _number(sheet, f"{column}{at}", value)
+            if math.isnan(value):
+                sheet[f"{column}{at}"] = NO_FIGURE
+            sheet[f"{column}{at}"].alignment = styles.CENTRE
+    last = first + len(names) - 1
+    pages.places[GROUND_NAMES] = Place(pages.name(GROUND_NAMES, sheet, f"A{first}:A{last}"))
+    for key, column in columns.items():
+        pages.places[key] = Place(pages.name(key, sheet, f"{column}{first}:{column}{last}"))
+    reference_row = first + names.index(REFERENCE_GROUND)
+    pages.places["reference_rolling"] = Place(f"Rules!$B${reference_row}")
+    pages.places["reference_braking"] = Place(f"Rules!$C${reference_row}")
+    text = "References are those at the head of the surface table: [1] Mason, [2] Raymer and Anderson, [3] common practice."
+    sheet[f"A{last + 1}"], sheet[f"A{last + 1}"].font = text, styles.SMALL
+
+
+def words_places(pages: Pages, sheet: Worksheet, column: str, row: int, step: Step) -> None:
+    """A column of the words that a step's number stands for, named so that formulas can look them up."""
+    for at, word in enumerate(step.words, row):
+        sheet[f"{column}{at}"], sheet[f"{column}{at}"].font = word, styles.SMALL
+    name = pages.name(step.key + WORDS, sheet, f"{column}{row}:{column}{row + len(step.words) - 1}")
+    pages.places[step.key + WORDS] = Place(name)
+
+
+def note(text: str, width: int = 320, height: int = 110) -> Comment:
+    """A header comment."""
+    comment = Comment(text, "stripcheck")
+    comment.width, comment.height = width, height
+    return comment
