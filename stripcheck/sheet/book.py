@@ -173,9 +173,9 @@ def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
         if key is None:
             made.formula(sheet, cell, "Aircraft!A1", filling.card.name)
         elif key in filling.flap_names:
-            made.formula(sheet, cell, _value_cell(made, key), filling.flap_names[key])
+            made.formula(sheet, cell, made.value_cells[key], filling.flap_names[key])
         else:
-            source = _value_cell(made, key)
+            source = made.value_cells[key]
             known = np.isfinite(values[key])
             text = f'IF(ISNUMBER({source}),{source},"not given")'
             made.formula(sheet, cell, text, tidy(from_si(values[key], units[key])) if known else "not given")
@@ -183,8 +183,3 @@ def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
         sheet[cell].alignment = styles.Alignment(horizontal="left")
     row = 4 + len(_FACTS)
     made.formula(sheet, f"{column}{row}", "Rules!A1", filling.rules.title)
-
-
-def _value_cell(made: pages.Pages, key: str) -> str:
-    """The cell where a user types a value: beside the SI cell that formulas read."""
-    return made.places[key].reference.replace(f"${pages.SI}$", f"${pages.VALUE}$")

@@ -154,6 +154,8 @@ def shown(cell: Cell, unit: str) -> Cell:
     entry = UNITS[unit]
     if cell.text == BLANK or not (entry.offset or entry.factor != 1.0) or (cell.text == "0" and not entry.offset):
         return cell
+    if cell.raw != cell.text and cell.text == reference(cell.raw, unit).text:
+        return Cell(cell.raw)  # the cell read shows that very unit
     if cell.branches:
         condition, then, otherwise = cell.branches
         return _where(condition, shown(then, unit), shown(otherwise, unit))

@@ -42,6 +42,7 @@ class Pages:
     book: Workbook
     places: dict[str, Place] = field(default_factory=dict)
     cached: dict[str, dict[str, Any]] = field(default_factory=dict)
+    value_cells: dict[str, str] = field(default_factory=dict)  # where a user types each value
 
     def formula(self, sheet: Worksheet, cell: str, text: str, value: Any) -> None:
         """Write a formula into a cell, and keep the value that it has now."""
@@ -92,9 +93,11 @@ def value_row(pages: Pages, sheet: Worksheet, row: int, item: Input, value: Any,
     cell.fill, cell.border, cell.protection, cell.font = fill, styles.BOX, styles.UNLOCKED, styles.BODY
     sheet[f"{UNIT}{row}"], sheet[f"{UNIT}{row}"].font = item.unit, styles.SMALL
     sheet[f"{NOTE}{row}"], sheet[f"{NOTE}{row}"].font = item.help, styles.SMALL
+    sheet[f"{NOTE}{row}"].alignment = sheet[f"{UNIT}{row}"].alignment = styles.INDENT
+    pages.value_cells[item.key] = f"{sheet.title}!${VALUE}${row}"
     if item.kind != "number":
         cell.value = value
-        pages.places[item.key] = Place(f"{sheet.title}!${VALUE}${row}")
+        pages.places[item.key] = Place(pages.name(item.key, sheet, f"{VALUE}{row}"))
         return
     known = not math.isnan(value)
     shown = tidy(from_si(value, item.unit)) if known else None
@@ -104,7 +107,7 @@ def value_row(pages: Pages, sheet: Worksheet, row: int, item: Input, value: Any,
     text = formula(np.where(np.isfinite(source), source, np.nan))
     pages.formula(sheet, f"{SI}{row}", text, value if known else "")
     _style_si(sheet, row)
-    pages.places[item.key] = Place(f"{sheet.title}!${SI}${row}")
+    pages.places[item.key] = Place(pages.name(item.key, sheet, f"{SI}{row}"))
 
 
 def _input_format(unit: str) -> str:
@@ -128,7 +131,7 @@ def choice(sheet: Worksheet, cell: str, source: str, message: str) -> None:
 
 def _style_si(sheet: Worksheet, row: int) -> None:
     cell = sheet[f"{SI}{row}"]
-    cell.font, cell.number_format = styles.SMALL, "General"
+    cell.font, cell.number_format = styles.SMALL, "0.000000"
 
 
 def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any], flap_names: Mapping[str, str]) -> Worksheet:
@@ -169,8 +172,9 @@ def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
     write_heading(sheet, row, "Flap settings (stall speeds at the mass beside them, calibrated airspeed)")
     write_header(sheet, row + 1, ("Setting", "Deflection [°]", "", "Deflection, SI", "Uses"))
     write_header(sheet, row + 1, ("Stall speed [kt]", "At mass [kg]", "Drag added", "Greatest lift coefficient"), 6)
+    sheet.row_dimensions[row + 1].height = 30
     first, last = row + 2, row + 1 + len(card.flaps)
-    area = Cell(pages.places["wing_area"].reference.split("!")[1])
+    area = Cell(pages.places["wing_area"].reference)
     for at, flap in enumerate(card.flaps, first):
         lift = card.values["flap_lift"][at - first]
         deflection = tidy(from_si(flap.deflection, "°"))
@@ -183,6 +187,9 @@ def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
         _number(sheet, f"H{at}", flap.drag)
         text = formula(greatest_lift_coefficient(reference(f"F{at}", "kt"), Cell(f"G{at}"), area))
         pages.formula(sheet, f"I{at}", text, lift)
+        sheet[f"I{at}"].number_format, sheet[f"I{at}"].font = "0.0000", styles.BODY
+        sheet[f"E{at}"].font, sheet[f"E{at}"].alignment = styles.SMALL, styles.INDENT
+        _style_si(sheet, at)
     for column in "FGHI":
         sheet.column_dimensions[column].width = 14
     pages.name("flap_names", sheet, f"A{first}:A{last}")
@@ -191,7 +198,8 @@ def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
     for at, key, name in ((last + 1, "flap_least", "MIN"), (last + 2, "flap_most", "MAX")):
         sheet[f"A{at}"], sheet[f"A{at}"].font = {"MIN": "Least deflection", "MAX": "Most deflection"}[name], styles.SMALL
         pages.formula(sheet, f"D{at}", f"{name}(flap_deflections)", card.values[key])
-        pages.places[key] = Place(f"Aircraft!$D${at}")
+        _style_si(sheet, at)
+        pages.places[key] = Place(pages.name(key, sheet, f"D{at}"))
     return last + 4
 
 
@@ -205,7 +213,7 @@ def _flap_choice(pages: Pages, sheet: Worksheet, row: int, item: Input, name: st
     text = f'IFERROR(INDEX(flap_deflections,MATCH({VALUE}{row}&"",flap_names,0)),"")'
     pages.formula(sheet, f"{SI}{row}", text, value)
     _style_si(sheet, row)
-    pages.places[item.key] = Place(f"{sheet.title}!${SI}${row}")
+    pages.places[item.key] = Place(pages.name(item.key, sheet, f"{SI}{row}"))
 
 
 def _text(sheet: Worksheet, cell: str, text: str) -> None:
@@ -221,6 +229,8 @@ def _number(sheet: Worksheet, cell: str, value: float) -> None:
 
 def write_book_points(sheet: Worksheet, row: int, card: Card) -> int:
     """Book figures beside what the calibrated card gives; returns the next free row."""
+    legend = "Lilac cells above are calibrated on the book points below; typed over, they lose that tie."
+    sheet[f"A{row - 1}"], sheet[f"A{row - 1}"].font = legend, styles.SMALL
     write_heading(sheet, row, "Calibration: the manual's figures and the card's, on level dry pavement in still air")
     write_header(sheet, row + 1, ("Book point", "Book [m]", "", "Card [m]", "Difference"))
     for at, (label, book, model) in enumerate(card.fit.residuals, row + 2):
@@ -228,6 +238,7 @@ def write_book_points(sheet: Worksheet, row: int, card: Card) -> int:
         sheet[f"E{at}"] = f"{model / book - 1.0:+.1%}"
         for column in "ABDE":
             sheet[f"{column}{at}"].font = styles.BODY
+        sheet[f"E{at}"].alignment = styles.INDENT
     end = row + 2 + len(card.fit.residuals)
     for remark in (*card.fit.remarks, *card.assumed):
         sheet[f"A{end}"], sheet[f"A{end}"].font = remark, styles.SMALL
@@ -238,13 +249,13 @@ def write_book_points(sheet: Worksheet, row: int, card: Card) -> int:
 def write_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step]) -> int:
     """Rows for the steps that are the same for all strips; formulas come once all places are known."""
     write_heading(sheet, row, "Follows from it, the same for all strips")
-    write_header(sheet, row + 1, ("Value", "Shown", "Unit", "In SI", "Source"))
+    write_header(sheet, row + 1, ("Value", "Shown", "", "In SI", "Source"))
     for at, step in enumerate(steps, row + 2):
         label = f"{step.label} ({step.symbol})" if step.symbol else step.label
-        sheet[f"A{at}"], sheet[f"C{at}"], sheet[f"E{at}"] = label, step.unit, step.source
+        sheet[f"A{at}"], sheet[f"E{at}"] = label, step.source
         sheet[f"A{at}"].font, sheet[f"A{at}"].border = styles.BODY, styles.LINE
-        sheet[f"C{at}"].font = sheet[f"E{at}"].font = styles.SMALL
-        pages.places[step.key] = Place(f"Aircraft!$D${at}")
+        sheet[f"E{at}"].font, sheet[f"E{at}"].alignment = styles.SMALL, styles.INDENT
+        pages.places[step.key] = Place(pages.name(step.key, sheet, f"D{at}"))
     return row + 2 + len(steps)
 
 
@@ -261,7 +272,7 @@ def fill_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step], form
         number = from_si(plain, step.unit) if isinstance(plain, float) else plain
         pages.formula(sheet, f"B{at}", shown, number)
         cell = sheet[f"B{at}"]
-        cell.number_format, cell.font = styles.number_format(step.unit), styles.BODY
+        cell.number_format, cell.font = "General" if step.truth else styles.number_format(step.unit), styles.BODY
 
 
 def write_day(pages: Pages, day: Day) -> Worksheet:
@@ -324,8 +335,8 @@ def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> Non
     for key, column in columns.items():
         pages.places[key] = Place(pages.name(key, sheet, f"{column}{first}:{column}{last}"))
     reference_row = first + names.index(REFERENCE_GROUND)
-    pages.places["reference_rolling"] = Place(f"Rules!$B${reference_row}")
-    pages.places["reference_braking"] = Place(f"Rules!$C${reference_row}")
+    pages.places["reference_rolling"] = Place(pages.name("reference_rolling", sheet, f"B{reference_row}"))
+    pages.places["reference_braking"] = Place(pages.name("reference_braking", sheet, f"C{reference_row}"))
     text = "References are those at the head of the surface table: [1] Mason, [2] Raymer and Anderson, [3] common practice."
     sheet[f"A{last + 1}"], sheet[f"A{last + 1}"].font = text, styles.SMALL
 

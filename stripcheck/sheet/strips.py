@@ -176,8 +176,8 @@ def write_skeleton(pages: Pages, columns: list[Column], rows: int, title: str) -
     sheet.freeze_panes = sheet.cell(FIRST_ROW, len(IDENTITY) + 1)
     sheet.auto_filter.ref = f"A{HEADER_ROW}:{get_column_letter(len(columns))}{last}"
     styles.set_print(sheet, f"{HEADER_ROW}:{HEADER_ROW}", "B:D")
-    shown = next((n for n, column in enumerate(columns) if column.group not in ("", "Verdicts", "Given")), len(columns))
-    sheet.print_area = f"B1:{get_column_letter(shown)}{last}"
+    printed = sum(column.group in ("", "Verdicts") for column in columns)
+    sheet.print_area = f"B1:{get_column_letter(printed)}{last}"
     return sheet
 
 
@@ -190,8 +190,12 @@ def _style_template(sheet: Worksheet, number: int, column: Column) -> None:
         cell.number_format = "#,##0.##" if item.kind == "number" else "General"
     elif isinstance(item, Step):
         cell.number_format = "0" if item.key.endswith("_finding") else styles.number_format(item.unit)
+        if item.truth or item.words or item.lookup == "name":
+            cell.number_format = "General"
         if item.key.endswith("_verdict"):
             cell.alignment = styles.CENTRE
+        elif item.key.endswith("_reason"):
+            cell.alignment = styles.INDENT
     elif not column.carried and column.key != "source_row":
         cell.number_format = "@"
     cell.quotePrefix = column.carried or (item is None and column.key != "source_row")

@@ -38,6 +38,8 @@ CALIBRATED_FILL = PatternFill("solid", fgColor="EFE9F7")
 
 WRAP = Alignment(wrap_text=True, vertical="top")
 CENTRE = Alignment(horizontal="center", vertical="center", wrap_text=True)
+INDENT = Alignment(horizontal="left", vertical="center", indent=1)
+LEFT = Alignment(horizontal="left")
 UNLOCKED = Protection(locked=False)
 
 # background, text, bold
@@ -97,7 +99,7 @@ def set_print(sheet: Worksheet, title_rows: str = "", columns: str = "", portrai
     sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight = 1, 0
     sheet.sheet_properties.pageSetUpPr.fitToPage = True
     sheet.page_margins.left = sheet.page_margins.right = 0.4
-    sheet.page_margins.top = sheet.page_margins.bottom = 0.6
+    sheet.page_margins.top, sheet.page_margins.bottom, sheet.page_margins.footer = 0.5, 0.8, 0.4
     sheet.oddFooter.left.text = "&A"
     sheet.oddFooter.center.text = "Planning aid only. Flight manual, local rules and pilot in command decide."
     sheet.oddFooter.right.text = "Page &P of &N"

@@ -128,6 +128,8 @@ def write_skeleton(pages: Pages, strips: int, facts: list[tuple[str, str]]) -> W
             cell.alignment, cell.font = styles.CENTRE, styles.BOLD
         elif key in ("in_direction", "out_direction", "runway"):
             cell.alignment = styles.CENTRE
+        elif key.endswith("_reason"):
+            cell.alignment = styles.INDENT
     sheet.freeze_panes = f"{LETTERS['both']}{FIRST_ROW}"
     sheet.auto_filter.ref = f"{left}{HEADER_ROW}:{LETTERS['out_reason']}{last}"
     sheet.sheet_view.showGridLines = False
@@ -142,16 +144,16 @@ def write_skeleton(pages: Pages, strips: int, facts: list[tuple[str, str]]) -> W
 def write_counts(pages: Pages, sheet: Worksheet, strips: int, counts: Mapping[str, Mapping[str, int]]) -> None:
     """Live counts of each verdict and of each pair of verdicts, beside the facts."""
     last = FIRST_ROW + max(strips, 1) - 1
-    write_header(sheet, 4, ("Verdict", "Land", "Take off"), 15)
+    write_header(sheet, 4, ("Verdict", "Land", "Take off"), 16)
     for row, verdict in enumerate(VERDICTS, 5):
-        sheet.cell(row, 15, verdict).font = styles.BODY
-        for number, (side, _, _) in enumerate(SIDES, 16):
+        sheet.cell(row, 16, verdict).font = styles.BODY
+        for number, (side, _, _) in enumerate(SIDES, 17):
             column = LETTERS[f"{side}_verdict"]
             cell = f"{get_column_letter(number)}{row}"
             text = f'COUNTIF(${column}${FIRST_ROW}:${column}${last},"{verdict}")'
             pages.formula(sheet, cell, text, counts[side].get(verdict, 0))
             sheet[cell].font = styles.BODY
-    styles.colour_verdicts(sheet, "O5:O8")
+    styles.colour_verdicts(sheet, "P5:P8")
     write_header(sheet, 4, ("In and out", "Strips"), 10)
     for row, words in enumerate(BOTH, 5):
         sheet.cell(row, 10, words).font = styles.BODY

@@ -1,0 +1,165 @@
+"""The command line: ``stripcheck fill``, ``stripcheck demo``, ``stripcheck list``.
+
+Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
+130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.
+"""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+from typing import Any
+
+from stripcheck import __version__
+from stripcheck.errors import InputError
+
+CAUTION = "Planning aid only. The approved flight manual, the rules of the local authority and the pilot in command decide."
+EPILOG = f"Exit codes: 0 done, 2 bad input (one sentence, nothing written), 130 interrupted. {CAUTION}"
+DEMO_FILE = "stripcheck-demo.xlsx"
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run a command line and return its exit code."""
+    options = _parser().parse_args(arguments)
+    try:
+        run: Any = options.run
+        return int(run(options))
+    except InputError as error:
+        print(f"stripcheck: {error}", file=sys.stderr)
+        return 2
+    except KeyboardInterrupt:
+        print("stripcheck: interrupted, nothing was written", file=sys.stderr)
+        return 130
+
+
+def _parser() -> argparse.ArgumentParser:
+    parser = argparse.ArgumentParser(
+        prog="stripcheck",
+        description="Can one aeroplane get in, and out again, of short, sloping, unpaved strips on a given day?",
+        epilog=EPILOG,
+    )
+    parser.add_argument("--version", action="version", version=f"stripcheck {__version__}")
+    commands = parser.add_subparsers(title="commands", required=True, metavar="COMMAND")
+    _add_fill(commands)
+    _add_demo(commands)
+    listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
+    listing.set_defaults(run=_run_list)
+    return parser
+
+
+def _add_fill(commands: Any) -> None:
+    fill = commands.add_parser(
+        "fill",
+        help="fill a workbook (or a .csv) from a runway list",
+        description="Fill a workbook with live formulas, or a .csv with results, from a runway list.",
+        epilog="Numbers are read in the unit named, or carry their own: --temp 86F, --qnh 29.92inHg, --temp-at '1800 m'. "
+        + EPILOG,
+    )
+    fill.add_argument("list", metavar="LIST", help="runway list: .csv, .xlsx, .xls or .ods")
+    fill.add_argument("--card", required=True, help="aircraft card: a .toml file, or the name of a shipped one")
+    fill.add_argument("--rules", required=True, help="rule set: a .toml file, or the name of a shipped one")
+    fill.add_argument("-o", "--output", required=True, metavar="OUT", help="workbook (.xlsx) or result table (.csv)")
+    fill.add_argument("--force", action="store_true", help="replace OUT if it exists")
+    fill.add_argument("--airports", metavar="FILE", help="airports file of the open runway data, for elevations and names")
+    fill.add_argument("--sheet", help="sheet of the list's workbook, if not the first")
+    fill.add_argument("--strict", action="store_true", help="stop at the first row with a fault")
+    fill.add_argument("--detail", choices=("full", "short"),
+                      help="full: each step a column (usual up to 2,000 directions); short: the key columns")  # fmt: skip
+    _add_loading(fill)
+    _add_day(fill)
+    fill.add_argument("--quiet", action="store_true", help="no progress bar, no summary line")
+    fill.set_defaults(run=_run_fill)
+
+
+def _add_loading(parser: argparse.ArgumentParser) -> None:
+    group = parser.add_argument_group("loading (the card's usual values where not given)")
+    group.add_argument("--takeoff-mass", metavar="KG")
+    group.add_argument("--landing-mass", metavar="KG")
+    group.add_argument("--takeoff-flap", metavar="SETTING", help="name of a setting in the card")
+    group.add_argument("--landing-flap", metavar="SETTING", help="name of a setting in the card")
+
+
+def _add_day(parser: argparse.ArgumentParser) -> None:
+    group = parser.add_argument_group("day (for strips that have no values of their own in the list)")
+    group.add_argument("--temp", metavar="C", dest="temperature", help="air temperature")
+    group.add_argument("--temp-at", metavar="FT", dest="temperature_elevation",
+                       help="elevation where it was taken; else the same temperature at every strip")  # fmt: skip
+    group.add_argument("--isa-dev", metavar="K", dest="isa_deviation", help="ISA deviation at every strip")
+    group.add_argument("--qnh", metavar="HPA", help="altimeter setting (usual: 1013.25)")
+    group.add_argument("--humidity", metavar="PCT", help="relative humidity (usual: dry air)")
+    group.add_argument("--dew-point", metavar="C", help="dew point, instead of the humidity")
+    group.add_argument("--wind", metavar="DIR/KT", help="true direction it comes from, and knots, such as 270/10 (usual: calm)")
+    group.add_argument("--ground", choices=("dry", "wet", "soft"), dest="day_condition",
+                       help="condition of the ground where the list says none (usual: dry)")  # fmt: skip
+    group.add_argument("--assume-slope", metavar="PCT", dest="assumed_slope",
+                       help="slope against you, both ways, where none is known (usual: not assessed)")  # fmt: skip
+
+
+def _add_demo(commands: Any) -> None:
+    demo = commands.add_parser(
+        "demo",
+        help="fill a workbook from the shipped, invented scenario",
+        description="Fill a workbook from the shipped scenario: invented strips, an invented aeroplane.",
+        epilog=EPILOG,
+    )
+    demo.add_argument("-o", "--output", default=DEMO_FILE, metavar="OUT", help=f"workbook to write (usual: {DEMO_FILE})")
+    demo.add_argument("--force", action="store_true", help="replace OUT if it exists")
+    demo.add_argument("--quiet", action="store_true", help="no summary line")
+    demo.set_defaults(run=_run_demo)
+
+
+def _run_list(_: argparse.Namespace) -> int:
+    from stripcheck.card import load_card, shipped_cards
+    from stripcheck.rules import load_rules, shipped_rules
+
+    print("Aircraft cards (invented aeroplanes):")
+    for name in shipped_cards():
+        print(f"  {name:14} {load_card(name).name}")
+    print("Rule sets:")
+    for name in shipped_rules():
+        print(f"  {name:14} {load_rules(name).title}")
+    print(CAUTION)
+    return 0
+
+
+def _run_fill(options: argparse.Namespace) -> int:
+    from stripcheck.filling import Request, fill_list
+
+    names = ("temperature", "temperature_elevation", "isa_deviation", "qnh", "humidity", "dew_point", "day_condition",
+             "assumed_slope")  # fmt: skip
+    day = {name: getattr(options, name) for name in names} | _wind(options.wind)
+    request = Request(
+        Path(options.list), Path(options.output), options.card, options.rules, day,
+        takeoff_mass=options.takeoff_mass, landing_mass=options.landing_mass, takeoff_flap=options.takeoff_flap,
+        landing_flap=options.landing_flap, airports=options.airports, sheet=options.sheet, strict=options.strict,
+        detail=options.detail, force=options.force, quiet=options.quiet,
+    )  # fmt: skip
+    return _say(fill_list(request), options.quiet)
+
+
+def _run_demo(options: argparse.Namespace) -> int:
+    from stripcheck.filling import demo_request, fill_list
+
+    return _say(fill_list(demo_request(Path(options.output), options.force, options.quiet)), options.quiet)
+
+
+def _say(lines: list[str], quiet: bool) -> int:
+    if not quiet:
+        print("\n".join((*lines, CAUTION)))
+    return 0
+
+
+def _wind(text: str | None) -> dict[str, str]:
+    """Direction and speed of a wind such as "270/10"."""
+    if text is None:
+        return {}
+    if text.strip().lower() == "calm":
+        return {"wind_speed": "0"}
+    direction, slash, speed = text.partition("/")
+    if not slash or not direction.strip() or not speed.strip():
+        raise InputError(f'--wind {text}: a direction and a speed such as 270/10 are expected, or "calm"')
+    return {"wind_from": direction, "wind_speed": speed}
+
+

@@ -1,0 +1,182 @@
+"""The main job: read a list, compute, and write a workbook or a result table. What ``stripcheck fill`` does."""
+
+from __future__ import annotations
+
+import csv
+import os
+import secrets
+import sys
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import contextmanager
+from dataclasses import dataclass
+from importlib.resources import files
+from math import isnan
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+from stripcheck.card import Card, flap_setting, load_card
+from stripcheck.day import Day, read_day
+from stripcheck.errors import InputError
+from stripcheck.register import Directions, read_list
+from stripcheck.rules import load_rules
+from stripcheck.sheet.book import SHORT_ABOVE, Filling, fill, write_workbook
+from stripcheck.sheet.strips import IDENTITY, KEY_STEPS
+from stripcheck.units import read_quantity
+from stripcheck.verdict import CAUTION, VERDICTS
+
+LONG = 5000  # directions from which a progress bar is worth its line
+DEMO_LIST = "lantern-range.csv"
+DEMO_CARD, DEMO_RULES = "ridge-runner", "part-cat-b"
+DEMO_DAY = {"isa_deviation": 15, "qnh": 1015, "wind_from": 310, "wind_speed": 8}
+
+
+@dataclass(frozen=True)
+class Request:
+    """What to fill: the list, the file to write, card and rule set by name or path, the day as typed, and options."""
+
+    list: Path
+    output: Path
+    card: str
+    rules: str
+    day: Mapping[str, Any]
+    takeoff_mass: str | None = None
+    landing_mass: str | None = None
+    takeoff_flap: str | None = None
+    landing_flap: str | None = None
+    airports: str | None = None
+    sheet: str | None = None
+    strict: bool = False
+    detail: str | None = None
+    force: bool = False
+    quiet: bool = False
+
+
+def demo_request(output: Path, force: bool, quiet: bool) -> Request:
+    """The request that fills a workbook from the shipped scenario, all of it invented."""
+    scenario = Path(str(files("stripcheck") / "scenario" / DEMO_LIST))
+    return Request(scenario, output, DEMO_CARD, DEMO_RULES, DEMO_DAY, force=force, quiet=quiet)
+
+
+def fill_list(request: Request) -> list[str]:
+    """Do the job and return lines to tell the user. Raises InputError for bad input; then nothing was written."""
+    _check_output(request)
+    card, rules = load_card(request.card), load_rules(request.rules)
+    chosen, flap_names = loading(card, request)
+    day = read_day(request.day)
+    directions = read_list(request.list, airports=request.airports, sheet=request.sheet, strict=request.strict)
+    _check_air(day, directions)
+    filling = fill(directions, card, day, rules, chosen, flap_names)
+    if request.output.suffix == ".csv":
+        write_csv(filling, request.output)
+        cuts: list[str] = []
+    else:
+        full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
+        with _progress(filling, request.quiet) as progress:
+            cuts = write_workbook(filling, request.output, full, progress)
+    return [*cuts, *summary_lines(filling, request.output)]
+
+
+def loading(card: Card, request: Request) -> tuple[dict[str, float], dict[str, str]]:
+    """Mass and flap by chain key in SI, and the names of the two flap settings."""
+    chosen = {key: float(card.values[key]) for key in ("mass_takeoff", "mass_landing", "takeoff_flap", "landing_flap")}
+    for key, typed, greatest in (("mass_takeoff", request.takeoff_mass, "max_takeoff_mass"),
+                                 ("mass_landing", request.landing_mass, "max_landing_mass")):  # fmt: skip
+        if typed is not None:
+            chosen[key] = _mass(typed, "take-off" if "takeoff" in key else "landing", card.values[greatest])
+    for key, name, use in (("takeoff_flap", request.takeoff_flap, "take-off"),
+                           ("landing_flap", request.landing_flap, "landing")):  # fmt: skip
+        if name is not None:
+            chosen[key] = flap_setting(name, card.flaps, use, f"--{key.replace('_', '-')}")
+    names = {key: next(flap.name for flap in card.flaps if flap.deflection == chosen[key])
+             for key in ("takeoff_flap", "landing_flap")}  # fmt: skip
+    return chosen, names
+
+
+def _mass(typed: str, which: str, greatest: float) -> float:
+    mass = read_quantity(typed, "mass")
+    if not 0.1 * greatest <= mass <= greatest:
+        raise InputError(f"{which} mass of {typed}: the card allows up to {greatest:,.0f} kg")
+    return mass
+
+
+def _check_output(request: Request) -> None:
+    if request.output.suffix not in (".xlsx", ".csv"):
+        raise InputError(f"{request.output}: the name of the file to write must end in .xlsx or .csv")
+    if request.output.exists() and not request.force:
+        raise InputError(f"{request.output}: this file exists; choose another name, or add --force to replace it")
+    if not request.output.resolve().parent.is_dir():
+        raise InputError(f"{request.output}: the folder does not exist")
+
+
+def _check_air(day: Day, directions: Directions) -> None:
+    """A day without any temperature would leave every strip unassessed: say so at once."""
+    if isnan(day.values["temperature"]) and isnan(day.values["isa_deviation"]):
+        own = directions.numbers["temperature"]
+        if not np.isfinite(own).any():
+            raise InputError("no temperature: add --temp or --isa-dev, or give the list a Temperature column")
+
+
+@contextmanager
+def _progress(filling: Filling, quiet: bool) -> Iterator[Callable[[int], None] | None]:
+    """A bar on a terminal for long lists; nothing when piped, quiet or short."""
+    if quiet or filling.directions.n < LONG or not sys.stderr.isatty():
+        yield None
+        return
+    from tqdm import tqdm
+
+    rows = filling.directions.n + filling.directions.n // 2 + len(filling.directions.left_out) + len(filling.directions.doubts)
+    with tqdm(total=rows, unit=" rows", desc="Writing", file=sys.stderr) as bar:
+        yield bar.update
+
+
+def summary_lines(filling: Filling, output: Path) -> list[str]:
+    """Counts of verdicts, and what was left out, in a few lines."""
+    counts, directions = filling.counts(), filling.directions
+    lines = [f"{output}: {directions.n // 2} strips, {len(directions.left_out)} of {directions.rows_read} left out"]
+    for side, label in (("in", "Landing"), ("out", "Take-off")):
+        lines.append(f"{label}: " + ", ".join(f"{counts[side][verdict]} {verdict}" for verdict in VERDICTS))
+    lines.append("In and out: " + ", ".join(f"{number} {words}" for words, number in counts["both"].items() if number))
+    return lines
+
+
+def write_csv(filling: Filling, path: Path) -> None:
+    """The result table, one row for each direction, whole or not at all. Text that a spreadsheet would take for a
+    formula gets an apostrophe before it."""
+    steps = {step.key: step for step in filling.chain.steps}
+    varying = filling.chain.depends_on_strip()
+    keys = [*KEY_STEPS, *(key for key in steps if key in varying and key not in KEY_STEPS)]
+    heads = [label for key, label, _, _ in IDENTITY if key != "key"]
+    heads += [f"{steps[key].label} [{steps[key].unit}]" if steps[key].unit else steps[key].label for key in keys]
+    texts = filling.directions.texts
+    columns: list[Any] = [[_harmless(text) for text in texts[key]] for key, *_ in IDENTITY if key != "key"]
+    columns += [_plain(filling.shown(steps[key])) for key in keys]
+    heads += list(filling.directions.carried)
+    columns += [[_harmless(value) if isinstance(value, str) else value for value in values]
+                for values in filling.directions.carried.values()]  # fmt: skip
+    spare = path.with_name(f".{secrets.token_hex(8)}.tmp")
+    try:
+        with open(spare, "x", newline="", encoding="utf-8-sig") as file:
+            writer = csv.writer(file)
+            writer.writerow([*heads, "Caution"])
+            writer.writerows((*row, CAUTION) for row in zip(*columns, strict=True))
+            file.flush()
+            os.fsync(file.fileno())
+        os.replace(spare, path)
+    except OSError as error:
+        raise InputError(f"{path}: can't be written ({error.strerror}); check the folder and the space on the disk") from None
+    finally:
+        spare.unlink(missing_ok=True)
+
+
+def _plain(values: Any) -> list[Any]:
+    if isinstance(values, list):
+        return [_harmless(value) if isinstance(value, str) else value for value in values]
+    if values.dtype == bool:
+        return ["yes" if value else "no" for value in values.tolist()]
+    return ["" if isnan(value) else repr(round(value, 9)) for value in values.tolist()]
+
+
+def _harmless(text: str) -> str:
+    return "'" + text if text.startswith(("=", "+", "-", "@", "\t", "\r")) else text
