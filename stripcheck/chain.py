@@ -7,14 +7,15 @@ Inside, every value is SI and NaN is "not known"; ``unit`` is what the sheets an
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Iterable, Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from stripcheck.numeric import Number
+from stripcheck.program import Node, Program, Recorder
 
-BLOCK = 2048  # rows evaluated at a time, so that the arrays of one block stay in the processor's cache
+FEW = 4000  # rows below which recording the steps costs more time than it saves
 
 
 @dataclass(frozen=True)
@@ -84,6 +85,19 @@ class Chain:
         further = [self.held_with(other) for other in (item.guard, *item.implies) if other]
         return frozenset({key}).union(*further)
 
+    def leading_to(self, keys: Iterable[str]) -> list[Step]:
+        """The steps with these keys and all that they read, in order. Raises KeyError for a key of no step."""
+        needed = set(keys)
+        unknown = needed - {step.key for step in self.steps}
+        if unknown:
+            raise KeyError(f"no step has the key {min(unknown)}")
+        leading = []
+        for step in reversed(self.steps):
+            if step.key in needed:
+                leading.append(step)
+                needed |= {key for key in (*step.inputs, step.guard) if key}
+        return leading[::-1]
+
     def depends_on_strip(self) -> set[str]:
         """Keys of all values that differ from strip to strip; the others are computed once."""
         varying = {item.key for item in self.inputs if item.where == "strip"}
@@ -93,48 +107,54 @@ class Chain:
         return varying
 
 
-def evaluate(chain: Chain, values: Mapping[str, Number]) -> dict[str, np.ndarray]:
-    """Every step of the chain over arrays.
+def evaluate(chain: Chain, values: Mapping[str, Number], keys: Collection[str] | None = None) -> dict[str, np.ndarray]:
+    """Steps of the chain over arrays: those with the ``keys``, or all.
 
     ``values`` holds one entry for each input of the chain, SI, a number or an array of one dimension; all arrays are
-    equally long. Gives the steps by key: floats with NaN for "no value", truths, or whole numbers for words.
+    equally long, and so are the results (of no dimension where there is no array). Gives the steps by key: floats
+    with NaN for "no value", truths, or whole numbers for words. Raises KeyError for a key that is not a step's.
     """
+    wanted = [step.key for step in chain.steps] if keys is None else list(keys)
+    steps = chain.leading_to(wanted)
     arrays = {key: np.asarray(value) for key, value in values.items()}
     tables = {item.key for item in chain.inputs if item.kind == "range"}
-    size = max((len(a) for key, a in arrays.items() if a.ndim and key not in tables), default=0)
-    if not size:
-        return _walk(chain.steps, dict(arrays))
-    varying = {key for key, a in arrays.items() if a.ndim and key not in tables}
-    once, each = _split(chain, varying)
-    fixed = {**arrays, **_walk(once, dict(arrays))}
-    results: dict[str, np.ndarray] = {step.key: fixed[step.key] for step in once}
-    for start in range(0, size, BLOCK):
-        block = {key: arrays[key][start : start + BLOCK] for key in varying}
-        for key, value in _walk(each, {**fixed, **block}).items():
-            if key not in results:
-                results[key] = np.empty(size, value.dtype)
-            results[key][start : start + BLOCK] = value
-    return results
-
-
-def _split(chain: Chain, varying: set[str]) -> tuple[list[Step], list[Step]]:
-    """The steps that are the same for all rows, and those that are not."""
-    varying, once, each = set(varying), [], []
-    for step in chain.steps:
-        moving = bool(varying & {*step.inputs, step.guard})
-        (each if moving else once).append(step)
-        varying |= {step.key} if moving else set()
-    return once, each
-
-
-def _walk(steps: tuple[Step, ...] | list[Step], values: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
-    found = {}
+    columns = {key: array for key, array in arrays.items() if array.ndim and key not in tables}
+    size = max((len(column) for column in columns.values()), default=0)
     with np.errstate(all="ignore"):
-        for step in steps:
-            value = step.function(*(values[key] for key in step.inputs))
-            if step.guard:
-                guard = values[step.guard]
-                holds = guard if guard.dtype == bool else np.isfinite(guard)
-                value = np.where(holds, value, False if step.truth else np.nan)
-            values[step.key] = found[step.key] = np.asarray(value)
+        found = walk(steps, arrays) if size < FEW else _run(steps, arrays, columns, size, wanted)
+    shape = (size,) if columns else ()
+    return {key: np.broadcast_to(found[key], shape) for key in wanted}
+
+
+def walk(steps: Iterable[Step], values: Mapping[str, Number]) -> dict[str, Number]:
+    """The values and those of the steps, by key; the values may be anything that answers NumPy's protocols."""
+    found = dict(values)
+    for step in steps:
+        value = step.function(*(found[key] for key in step.inputs))
+        if step.guard:
+            guard = found[step.guard]
+            holds = guard if guard.dtype == bool else np.isfinite(guard)
+            value = np.where(holds, value, False if step.truth else np.nan)
+        found[step.key] = value if hasattr(value, "dtype") else np.asarray(value)
     return found
+
+
+def _run(steps: Iterable[Step], arrays: Mapping[str, np.ndarray], columns: Mapping[str, np.ndarray], size: int,
+         wanted: Iterable[str]) -> dict[str, np.ndarray]:  # fmt: skip
+    """As ``walk``, for many rows: the steps are recorded as one program, which then runs."""
+    recorder = Recorder()
+    varying = {key: column for key, column in columns.items() if not _is_uniform(column)}
+    uniform = {key: column[0] for key, column in columns.items() if key not in varying}
+    nodes = {key: recorder.column(key, column.dtype) for key, column in varying.items()}
+    found = walk(steps, {**arrays, **uniform, **nodes})
+    program = Program({key: found[key] for key in wanted if isinstance(found[key], Node)})
+    return {**found, **program.run(varying, size)}
+
+
+def _is_uniform(column: np.ndarray) -> bool:
+    """Whether a column holds the same value, or none, in all rows; most columns show soon that it does not."""
+    for part in (column[:9], column):
+        same = part == column[0] if column[0] == column[0] else part != part
+        if not same.all():
+            return False
+    return True

@@ -21,26 +21,26 @@ import numpy as np
 
 from stripcheck.atmosphere import G0
 from stripcheck.numeric import Number
-from stripcheck.thrust import disk_root
+from stripcheck.thrust import disk_root, disk_speed_ratio
 
-POINTS = 16  # enough for 1e-6 of the roll wherever the least acceleration is LEAST_ACCELERATION or more
 LEAST_ACCELERATION = 0.02 * G0  # below this [m/s2] the scatter of rolling friction decides: counts as no lift-off
 
+# Take-off runs that count as lifting off come within 2e-7 of the exact integral where the last acceleration is a
+# quarter of the mean one or more, and all of them within 2e-4: tried on random runs with winds of -15 to +40 kt.
+POINTS = 11
+CROWDING = 0.6  # 0: nodes as in the plain rule; 1: most towards the end, where a slow run spends its length
 
-def _rule_towards_the_end(points: int) -> tuple[np.ndarray, np.ndarray]:
-    """Nodes and weights on 0..1 that crowd towards 1, where a run that hardly accelerates spends its length.
 
-    The Gauss-Legendre rule [3] under x = t (2 - t).
-    """
+def _rule_towards_the_end(points: int, crowding: float) -> tuple[np.ndarray, np.ndarray]:
+    """Nodes and weights on 0..1: the Gauss-Legendre rule [3] under x = t (1 + c - c t)."""
     nodes, weights = np.polynomial.legendre.leggauss(points)
     t = 0.5 * (nodes + 1.0)
-    return t * (2.0 - t), weights * (1.0 - t)
+    return t * (1.0 + crowding - crowding * t), 0.5 * weights * (1.0 + crowding - 2.0 * crowding * t)
 
 
-NODES, WEIGHTS = _rule_towards_the_end(POINTS)
+NODES, WEIGHTS = _rule_towards_the_end(POINTS, CROWDING)
 # the sum below needs ground speed, itself proportional to the node: the node goes into the weight
 SPEED_WEIGHTS = WEIGHTS * NODES
-ENDED_NODES = np.append(NODES, 1.0)
 
 
 def ground_effect_factor(wing_height: Number, span: Number) -> Number:
@@ -159,11 +159,12 @@ def disk_run_between(thrust: Number, lost: Number, square: Number, disk_speed: N
     >>> round(disk_run_between(4.0, 0.5, 0.0005, 24.0, 0.0, disk_root(0.0), disk_root(1.25)), 3)
     184.594
     """
-    share = 1.0 / (slow + np.multiply.outer(NODES, fast - slow))
-    airspeed = disk_speed * (1.0 / share - np.square(share))
-    acceleration = thrust * share - lost - square * np.square(airspeed)
-    pace = (airspeed - wind) * (1.0 + 2.0 * share * np.square(share)) / acceleration
-    return np.tensordot(WEIGHTS, pace, 1) * disk_speed * (fast - slow)
+    root = slow + np.multiply.outer(NODES, fast - slow)
+    share = 1.0 / root
+    speed_ratio = root - np.square(share)
+    acceleration = thrust * share - lost - square * np.square(disk_speed) * np.square(speed_ratio)
+    pace = (speed_ratio - wind / disk_speed) * (0.5 + np.power(share, 3)) / acceleration
+    return np.tensordot(WEIGHTS, pace, 1) * 2.0 * np.square(disk_speed) * (fast - slow)
 
 
 def disk_acceleration(thrust: Number, lost: Number, square: Number, disk_speed: Number, root: Number) -> Number:
@@ -178,10 +179,16 @@ def disk_acceleration(thrust: Number, lost: Number, square: Number, disk_speed: 
 
 def least_disk_acceleration(thrust: Number, lost: Number, square: Number, disk_speed: Number, slow: Number,
                             fast: Number) -> Number:  # fmt: skip
-    """Least acceleration [m/s2] along such a run, over the nodes of the sum and its fast end. Arguments as above.
+    """Acceleration [m/s2] that such a run has at least. Arguments as for ``disk_run_between``.
+
+    Thrust is least at the fast end, and so is the rest where drag holds back more than lift relieves the wheels: then
+    this is the least acceleration itself. Otherwise the rest is least at the slow end or at zero airspeed, and the
+    sum of the two is on the safe side.
 
     >>> round(least_disk_acceleration(4.0, 0.5, 0.0005, 24.0, disk_root(0.0), disk_root(1.25)), 6)
     1.443195
     """
-    root = slow + np.multiply.outer(ENDED_NODES, fast - slow)
-    return np.min(disk_acceleration(thrust, lost, square, disk_speed, root), axis=0)
+    slow_speed, fast_speed = disk_speed_ratio(slow), disk_speed_ratio(fast)
+    least = np.square(disk_speed * np.maximum(slow_speed, 0.0))
+    most = np.square(disk_speed * np.maximum(fast_speed, np.abs(slow_speed)))
+    return thrust / fast - lost - np.maximum(square * least, square * most)

@@ -192,9 +192,9 @@ def ground_row(surface: Number, condition: Number, day_condition: Number) -> Num
     return np.where((surface >= 0) & (used >= 0), surface * len(CONDITIONS) + used + 1, GROUND_UNKNOWN)
 
 
-def from_table(column: np.ndarray, row: np.ndarray) -> np.ndarray:
+def from_table(column: Number, row: Number) -> Number:
     """Value of a column of the ground table, which ends with the row of the unknown ground, at a row [1, 2, ...]."""
-    return column[row - 1]
+    return np.choose(row - 1, column)
 
 
 def place_known_of(elevation: Number, qnh: Number) -> Number:

@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import operator
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from typing import Any, NamedTuple
+from typing import Any
 
 import numpy as np
 
@@ -53,6 +53,11 @@ class Node(_Recorded):
                  place: tuple[int, int, int]) -> None:  # fmt: skip
         self.recorder, self.function, self.inputs, self.dtype = recorder, function, inputs, dtype
         self.bits, self.place = bits, place
+
+    @property
+    def number(self) -> int:
+        """Number of the node among all that were recorded."""
+        return self.place[2]
 
     def _no_value(self, *_: object) -> Any:
         raise TypeError("a recorded operation has no value; an equation must use np.where instead of a test in Python")
@@ -109,7 +114,9 @@ class Recorder:
 
 def _sign(item: Any) -> Any:
     """What tells one input of an operation from another."""
-    return (item.dtype, item.tobytes(), item.shape) if isinstance(item, np.ndarray) else item
+    if isinstance(item, Node):
+        return item.number
+    return (item.dtype, item.shape, item.tobytes()) if isinstance(item, np.ndarray) else (type(item), item)
 
 
 def _by_row(ufunc: np.ufunc, inputs: Sequence[Any]) -> Any:
@@ -146,6 +153,12 @@ def _power(node: Node, constant: Any, node_first: bool, row: int | None) -> Any:
     return squared if constant == 2.0 else _operation(np.multiply, (node, squared), row)
 
 
+def _quotient(node: Node, constant: Any, node_first: bool, row: int | None) -> Any:
+    """Division by a number as the much faster product, where both are ordinary numbers."""
+    usual = node_first and node.dtype == float and 1e-100 < abs(constant) < 1e100
+    return _operation(np.multiply, (node, 1.0 / constant), row) if usual else None
+
+
 def _and(node: Node, constant: Any, node_first: bool, row: int | None) -> Any:
     return node if constant else np.bool_(False)
 
@@ -159,6 +172,7 @@ _SIMPLER: dict[Any, Callable[[Node, Any, bool, int | None], Any]] = {
     np.add: lambda node, constant, node_first, row: node if constant == 0.0 else None,
     np.subtract: lambda node, constant, node_first, row: node if node_first and constant == 0.0 else None,
     np.multiply: lambda node, constant, node_first, row: node if constant == 1.0 else None,
+    np.divide: _quotient,
     **dict.fromkeys(_AND, _and),
     **dict.fromkeys(_OR, _or),
 }
@@ -182,7 +196,10 @@ def _chosen(condition: Node, then: Any, otherwise: Any, dtype: np.dtype[Any]) ->
     one, other = (_converted(item, dtype) for item in (then, otherwise))
     if not isinstance(other, Node) and np.isnan(other):
         return record(np.bitwise_or, (one, mask), dtype, bits=True)  # a number with all bits set is a NaN
-    both = record(np.bitwise_xor, (one, other), bits, bits=True)
+    if isinstance(one, Node) or isinstance(other, Node):
+        both: Any = record(np.bitwise_xor, (one, other), bits, bits=True)
+    else:
+        both = one.view(bits) ^ other.view(bits)
     return record(np.bitwise_xor, (record(np.bitwise_and, (both, mask), bits, bits=True), one), dtype, bits=True)
 
 
@@ -197,11 +214,18 @@ def _copy(values: np.ndarray, out: np.ndarray) -> None:
 
 
 def _select(conditions: Sequence[Any], choices: Sequence[int], default: int) -> Any:
-    """The number of the first condition that holds, in a byte."""
-    result: Any = np.uint8(default)
-    for condition, choice in zip(reversed(conditions), reversed(choices), strict=True):
-        result = _where(condition, np.uint8(choice), result)
-    return result
+    """The choice of the first condition that holds: rising numbers below 256, so that it is the least of them."""
+    if not all(low < high for low, high in zip([-1, *choices], [*choices, default], strict=True)) or default > 255:
+        raise TypeError("np.select can be recorded only with choices that rise from 0 to a default of 255 at most")
+    most: Any = np.uint8(0)
+    for condition, choice in zip(conditions, choices, strict=True):
+        short = np.uint8(default - choice)
+        if isinstance(condition, Node):
+            counted: Any = condition.recorder.record(np.multiply, (condition, short), np.dtype(np.uint8), bits=True)
+        else:
+            counted = short if condition else np.uint8(0)
+        most = _operation(np.maximum, (most, counted))
+    return _operation(np.subtract, (np.uint8(default), most))
 
 
 def _sum_of_products(weights: np.ndarray, values: Rows, axes: int) -> Any:
@@ -223,40 +247,130 @@ def _weighted(weight: float, value: Any, row: int) -> Any:
     return _operation(np.multiply, (value, weight), row)
 
 
-def _take(column: np.ndarray, places: Node) -> Node:
-    def looked_up(at: np.ndarray, out: np.ndarray) -> None:
-        np.take(column, at, out=out, mode="clip")  # "clip" writes straight into the buffer
+def _choose(places: Node, column: np.ndarray) -> Node:
+    return places.recorder.record(_looked_up, (places, column), column.dtype)
 
-    return places.recorder.record(_Once(looked_up, (column.tobytes(),)), (places,), column.dtype)
+
+def _looked_up(places: np.ndarray, column: np.ndarray, out: np.ndarray) -> None:
+    np.take(column, places, out=out, mode="clip")  # any other mode writes into an array of its own first
 
 
 def _interpolate(at: Node, nodes: np.ndarray, values: np.ndarray) -> Node:
-    def interpolated(x: np.ndarray, out: np.ndarray) -> None:
-        out[:] = np.interp(x, nodes, values)
-
-    return at.recorder.record(_Once(interpolated, (nodes.tobytes(), values.tobytes())), (at,), np.dtype(float))
+    return at.recorder.record(_interpolated, (at, nodes, values), np.dtype(float))
 
 
-class _Once(NamedTuple):
-    """A function that equals another one where its ``sign`` does."""
-
-    function: Callable[..., None]
-    sign: tuple[Any, ...]
-
-    def __call__(self, *inputs: np.ndarray, out: np.ndarray) -> None:
-        self.function(*inputs, out=out)
-
-    def __eq__(self, other: object) -> bool:
-        return isinstance(other, _Once) and self.sign == other.sign
-
-    def __hash__(self) -> int:
-        return hash(self.sign)
+def _interpolated(at: np.ndarray, nodes: np.ndarray, values: np.ndarray, out: np.ndarray) -> None:
+    out[:] = np.interp(at, nodes, values)
 
 
 _RECORDS: dict[Any, Callable[..., Any]] = {
     np.where: _where,
     np.select: _select,
     np.tensordot: _sum_of_products,
-    np.take: _take,
+    np.choose: _choose,
     np.interp: _interpolate,
 }
+
+
+class Program:
+    """The operations that lead to some results, ready to run over any number of rows.
+
+    ``results`` are the nodes wanted, by key. For an example see `Recorder`.
+    """
+
+    def __init__(self, results: Mapping[str, Node]) -> None:
+        self.results = dict(results)
+        self.order = _needed(self.results.values())
+        self.buffers, self.counts = _share_buffers(self.order, {node.number for node in self.results.values()})
+
+    def run(self, columns: Mapping[str, np.ndarray], size: int) -> dict[str, np.ndarray]:
+        """The results over ``size`` rows, from all columns that were recorded."""
+        nodes = {node.number: node for node in self.results.values()}
+        found = {number: np.empty(size, node.dtype) for number, node in nodes.items()}
+        rows = 0
+        for start in range(0, size, BLOCK):
+            stop = min(start + BLOCK, size)
+            if stop - start != rows:
+                rows = stop - start
+                arrays = self._arrays(rows)
+                loads = [(arrays[node.number], columns[node.inputs[0]]) for node in self.order if not node.function]
+                code = [_bound(node, arrays) for node in self.order if node.function]
+            for array, column in loads:
+                np.copyto(array, column[start:stop], casting="unsafe")
+            for function, inputs, out in code:
+                function(*inputs, out=out)
+            for number, result in found.items():
+                result[start:stop] = arrays[number]
+        return {key: found[node.number] for key, node in self.results.items()}
+
+    def _arrays(self, rows: int) -> dict[Any, np.ndarray]:
+        """Each node's share of the buffers, by its number."""
+        memory = {width: _aligned(count, width * rows) for width, count in self.counts.items()}
+        return {
+            node.number: memory[node.dtype.itemsize][self.buffers[node.number]].view(node.dtype)[:rows]
+            for node in self.order
+        }
+
+
+def _needed(results: Iterable[Node]) -> list[Node]:
+    """The results and all nodes that lead to them, in the order of their places."""
+    needed: dict[int, Node] = {}
+    waiting = list(results)
+    while waiting:
+        node = waiting.pop()
+        if node.number not in needed:
+            needed[node.number] = node
+            waiting += [item for item in node.inputs if isinstance(item, Node)]
+    return sorted(needed.values(), key=operator.attrgetter("place"))
+
+
+def _share_buffers(order: Sequence[Node], kept: set[int]) -> tuple[dict[int, int], dict[int, int]]:
+    """Number of the buffer of each node, and the count of buffers of each width [bytes]: as few as will do."""
+    last = {item.number: node for node in order for item in node.inputs if isinstance(item, Node)}
+    free: dict[int, list[int]] = {width: [] for width in _BITS}
+    counts = dict.fromkeys(_BITS, 0)
+    buffers: dict[int, int] = {}
+    for node in order:
+        ending = {item.number: item for item in node.inputs if isinstance(item, Node) and last[item.number] is node}
+        released = [(item.dtype.itemsize, buffers[number]) for number, item in ending.items() if number not in kept]
+        in_place = isinstance(node.function, np.ufunc)  # a ufunc may write over its own input
+        width = node.dtype.itemsize
+        if in_place:
+            _release(free, released)
+        if not free[width]:
+            free[width].append(counts[width])
+            counts[width] += 1
+        buffers[node.number] = free[width].pop()
+        if not in_place:
+            _release(free, released)
+    return buffers, counts
+
+
+def _release(free: dict[int, list[int]], buffers: Iterable[tuple[int, int]]) -> None:
+    for width, buffer in buffers:
+        free[width].append(buffer)
+
+
+def _aligned(count: int, width: int) -> np.ndarray:
+    """That many buffers of a width [bytes], each at a multiple of ALIGNMENT."""
+    padded = -(-width // ALIGNMENT) * ALIGNMENT
+    memory = np.zeros(count * padded + ALIGNMENT, np.uint8)
+    first = -memory.ctypes.data % ALIGNMENT
+    return memory[first : first + count * padded].reshape(count, padded)
+
+
+def _bound(node: Node, arrays: dict[Any, np.ndarray]) -> tuple[Any, tuple[Any, ...], np.ndarray]:
+    """Function, inputs and result of an operation over these arrays."""
+    out = arrays[node.number]
+    inputs = [arrays[item.number] if isinstance(item, Node) else item for item in node.inputs]
+    bytes_only = all(item.itemsize == 1 for item in inputs if isinstance(item, np.ndarray))
+    if bytes_only or node.function in (np.minimum, np.maximum):  # much faster over two arrays than with a number
+        inputs = [item if np.ndim(item) else _filled(item, len(out), arrays) for item in inputs]
+    if node.bits:
+        *inputs, out = [item.view(_BITS[item.dtype.itemsize]) for item in (*inputs, out)]
+    return node.function, tuple(inputs), out
+
+
+def _filled(number: Any, rows: int, arrays: dict[Any, np.ndarray]) -> np.ndarray:
+    """An array full of a number, one for all operations that read it."""
+    return arrays.setdefault(_sign(number), np.full(rows, number))

@@ -7,11 +7,15 @@ way, so that one check can be put to both. What version 0.9 can't do, found by t
 - a table reference (`Table[Column]`) of an openpyxl-written book did not resolve;
 - IF over an array constant outside an array formula gives #VALUE!;
 - TEXT rounds a half to even ("1,234" for 1234.5), LINEST gives #REF!;
-- ATAN2(0,0) is #DIV/0!, where LibreOffice says 0.
+- ATAN2(0,0) is #DIV/0!, where LibreOffice says 0;
+- an empty cell that has a style is read as the number 0: such cells are taken out of a copy before it is loaded.
 """
 
 from __future__ import annotations
 
+import re
+import tempfile
+import zipfile
 from collections.abc import Mapping
 from pathlib import Path
 
@@ -21,11 +25,25 @@ from openpyxl.utils import range_boundaries
 Value = float | str | None
 
 
+_EMPTY_CELL = re.compile(rb'<c r="[A-Z]+[0-9]+"[^>]*/>|<c r="[A-Z]+[0-9]+"[^>]*></c>')
+
+
+def _without_empty_cells(path: Path, copy: Path) -> None:
+    """Copy a book without the cells that hold nothing but a style."""
+    with zipfile.ZipFile(path) as source, zipfile.ZipFile(copy, "w", zipfile.ZIP_DEFLATED) as target:
+        for part in source.namelist():
+            data = source.read(part)
+            target.writestr(part, _EMPTY_CELL.sub(b"", data) if part.startswith("xl/worksheets/sheet") else data)
+
+
 class Book:
     """One .xlsx file, loaded with its cached values. Nothing is calculated until `recalculate`."""
 
     def __init__(self, path: Path | str) -> None:
-        self._model = ironcalc.load_from_xlsx(str(path), "en", "UTC")
+        with tempfile.TemporaryDirectory() as folder:
+            copy = Path(folder) / "copy.xlsx"
+            _without_empty_cells(Path(path), copy)
+            self._model = ironcalc.load_from_xlsx(str(copy), "en", "UTC")
 
     def sheets(self) -> list[str]:
         """Return the names of the sheets, in order."""

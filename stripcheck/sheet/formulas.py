@@ -20,7 +20,6 @@ from stripcheck.verdict import FAULT
 # the nodes and weights of the quadrature stand once in the workbook, under these defined names
 RUN_TABLE = {
     "run_nodes": ground_run.NODES,
-    "run_ended_nodes": ground_run.ENDED_NODES,
     "run_weights": ground_run.WEIGHTS,
     "run_speed_weights": ground_run.SPEED_WEIGHTS,
 }

@@ -263,7 +263,7 @@ def fill_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step], form
                values: Mapping[str, Any]) -> None:  # fmt: skip
     """The formulas of those rows, now that all places are known."""
     for at, step in enumerate(steps, row + 2):
-        value = values[step.key]
+        value = np.ravel(values[step.key])[0]
         plain = bool(value) if step.truth else (float(value) if np.isfinite(value) else "")
         pages.formula(sheet, f"D{at}", formulas[step.key], plain)
         _style_si(sheet, at)
