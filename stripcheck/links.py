@@ -211,11 +211,11 @@ def loading_known(mass: Number, flap: Number, least: Number, most: Number) -> Nu
     return np.where(given, (mass > 0.0) & (flap >= least) & (flap <= most), False)
 
 
-def side_known_of(density: Number, headwind: Number, slope: Number, friction: Number, factor: Number, length: Number,
-                  loading: Number) -> Number:  # fmt: skip
+def side_known_of(fault: Number, density: Number, headwind: Number, slope: Number, friction: Number, factor: Number,
+                  length: Number, loading: Number) -> Number:  # fmt: skip
     """Whether all is known that one side, take-off or landing, needs."""
     figures = np.isfinite(density) & np.isfinite(headwind) & np.isfinite(friction) & np.isfinite(factor)
-    return figures & known(slope, SLOPES) & known(length, LENGTHS) & loading
+    return np.logical_not(fault) & figures & known(slope, SLOPES) & known(length, LENGTHS) & loading
 
 
 def interpolated(at: Number, nodes: Number, values: Number) -> Number:

@@ -138,7 +138,7 @@ AIR_STEPS = (
 
 TAKEOFF_KNOWN = (
     Step("takeoff_known", "", "", "Take-off can be assessed", ARITHMETIC, links.side_known_of,
-         ("density", "headwind", "takeoff_slope", "rolling", "takeoff_surface_factor", "tora", "takeoff_set"),
+         ("fault", "density", "headwind", "takeoff_slope", "rolling", "takeoff_surface_factor", "tora", "takeoff_set"),
          truth=True, implies=("density", "headwind", "takeoff_set")),
     Step("lift_off_tas", "", "kt", "Lift-off speed, TAS", ISA, speeds.true_airspeed, ("lift_off_eas", "sigma"),
          "takeoff_known"),
@@ -273,7 +273,7 @@ TAKEOFF_DISTANCE_STEPS = (
 
 LANDING_DISTANCE_STEPS = (
     Step("landing_known", "", "", "Landing can be assessed", ARITHMETIC, links.side_known_of,
-         ("density", "headwind", "landing_slope", "braking", "landing_surface_factor", "lda", "landing_set"),
+         ("fault", "density", "headwind", "landing_slope", "braking", "landing_surface_factor", "lda", "landing_set"),
          truth=True, implies=("density", "headwind", "landing_set")),
     Step("approach_tas", "", "kt", "Approach speed, TAS", ISA, speeds.true_airspeed, ("approach_eas", "sigma"),
          "landing_known"),

@@ -102,7 +102,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     method.write_method(made, chain, taken_for_granted(filling), _made_from(filling))
 
     once = [step for step in chain.steps if step.key not in chain.depends_on_strip()]
-    row = aircraft.max_row + 2
+    row = aircraft.max_row + 3
     row = pages.write_book_points(aircraft, row, filling.card)
     pages.write_steps(made, aircraft, row, once)
     made.places.update(strips.places_of(columns, chain))
@@ -182,4 +182,10 @@ def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
             sheet[cell].number_format = styles.number_format(units[key])
         sheet[cell].alignment = styles.Alignment(horizontal="left")
     row = 4 + len(_FACTS)
+    beside = f"{summary.LETTERS['runway']}{row - 1}"
+    direction = values["wind_from"]
+    known = np.isfinite(direction)
+    source = made.value_cells["wind_from"]
+    made.formula(sheet, beside, f'IF(ISNUMBER({source}),{source},"")', tidy(from_si(direction, "°")) if known else "")
+    sheet[beside].number_format, sheet[beside].font = '"from "000"°"', styles.BODY
     made.formula(sheet, f"{column}{row}", "Rules!A1", filling.rules.title)

@@ -29,10 +29,11 @@ def write_skeleton(pages: Pages, directions: Directions) -> Worksheet:
     write_header(sheet, HEADER_ROW, TITLES)
     write_header(sheet, HEADER_ROW, ("Kind", "Runways"), 8)
     write_header(sheet, HEADER_ROW, ("Surface not understood", "Runways"), 11)
+    sheet.row_dimensions[HEADER_ROW].height = 30
     for number, width in enumerate(WIDTHS):
         sheet.column_dimensions["ABCDEFGHIJKL"[number]].width = width
         cell = sheet.cell(FIRST_ROW, number + 1)
-        cell.font, cell.quotePrefix = styles.BODY, number in (1, 2, 10)
+        cell.font, cell.quotePrefix, cell.alignment = styles.BODY, number in (1, 2, 10), styles.INDENT
     sheet.freeze_panes = f"A{FIRST_ROW}"
     rows = max(len(directions.left_out) + len(directions.doubts), 1)
     sheet.auto_filter.ref = f"A{HEADER_ROW}:F{FIRST_ROW + rows - 1}"

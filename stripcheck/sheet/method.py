@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from datetime import datetime
 
 from openpyxl.worksheet.worksheet import Worksheet
@@ -15,6 +16,7 @@ from stripcheck.verdict import CAUTION
 
 SHEET = "Method"
 TABLE_ROW = 6
+LINE = 125  # characters that fit on a line of the page
 
 METHOD = (
     "Air: ISO 2533 standard atmosphere. QNH and elevation give the pressure at the strip, pressure and temperature the "
@@ -66,6 +68,7 @@ def write_method(pages: Pages, chain: Chain, taken: list[str], made_from: list[t
             row += 1
             sheet.cell(row, 1, line).font = styles.BODY
             sheet.cell(row, 1).alignment = styles.WRAP
+            sheet.row_dimensions[row].height = 13.5 * math.ceil(len(line) / LINE)
         row += 2
     _tables(pages, sheet, chain)
     styles.set_print(sheet)

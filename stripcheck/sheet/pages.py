@@ -82,6 +82,14 @@ def write_header(sheet: Worksheet, row: int, titles: tuple[str, ...], first_colu
         cell.font, cell.fill, cell.alignment = styles.HEADER, styles.HEADER_FILL, styles.CENTRE
 
 
+def write_wrapped(sheet: Worksheet, row: int, text: str, last_column: str, characters: int) -> None:
+    """A line of text over several columns, as high as so many characters a line need."""
+    cell = sheet[f"A{row}"]
+    cell.value, cell.font, cell.alignment = text, styles.SMALL, styles.WRAP
+    sheet.merge_cells(f"A{row}:{last_column}{row}")
+    sheet.row_dimensions[row].height = 13.0 * max(1, math.ceil(len(text) / characters))
+
+
 def write_heading(sheet: Worksheet, row: int, text: str) -> None:
     sheet.cell(row, 1, text).font = styles.HEADING
 
@@ -267,12 +275,17 @@ def fill_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step], form
         plain = bool(value) if step.truth else (float(value) if np.isfinite(value) else "")
         pages.formula(sheet, f"D{at}", formulas[step.key], plain)
         _style_si(sheet, at)
+        if step.truth:
+            sheet[f"D{at}"].number_format = "General"
+            pages.formula(sheet, f"B{at}", f'IF(D{at},"yes","no")', "yes" if plain else "no")
+            sheet[f"B{at}"].font, sheet[f"B{at}"].alignment = styles.BODY, styles.RIGHT
+            continue
         entry = UNITS[step.unit]
         shown = f'IF(ISNUMBER(D{at}),(D{at}-{entry.offset:.15g})/{entry.factor:.15g},D{at})'
         number = from_si(plain, step.unit) if isinstance(plain, float) else plain
         pages.formula(sheet, f"B{at}", shown, number)
         cell = sheet[f"B{at}"]
-        cell.number_format, cell.font = "General" if step.truth else styles.number_format(step.unit), styles.BODY
+        cell.number_format, cell.font = styles.number_format(step.unit), styles.BODY
 
 
 def write_day(pages: Pages, day: Day) -> Worksheet:
@@ -294,7 +307,7 @@ def write_rules(pages: Pages, rules: Rules) -> Worksheet:
     told = {"read": "taken from the text", "memory": "from memory: compare with the text", "own": "the user's own"}
     facts = (rules.issue, rules.citation, f"Status of the figures: {told[rules.status]}.", " ".join(rules.note.split()))
     for row, text in enumerate(facts, 3):
-        sheet[f"A{row}"], sheet[f"A{row}"].font = text, styles.SMALL
+        write_wrapped(sheet, row, text, "E", 165)
     write_header(sheet, 8, ("Rule", "Value", "Unit", "In SI", "Meaning"))
     row = 9
     for item in RULES:
@@ -323,7 +336,7 @@ def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> Non
         at = first + i
         sheet[f"A{at}"], sheet[f"A{at}"].font = name, styles.BODY
         sheet[f"E{at}"] = GROUNDS[i].source if i < len(GROUNDS) else "always without figures"
-        sheet[f"E{at}"].font = styles.SMALL
+        sheet[f"E{at}"].font, sheet[f"E{at}"].alignment = styles.SMALL, styles.INDENT
         for key, column in columns.items():
             value = float(rules.values[key][i])  # type: ignore[index]
             _number(sheet, f"{column}{at}", value)

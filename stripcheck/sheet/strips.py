@@ -27,7 +27,7 @@ IDENTITY = (
     ("key", "Key", 4, "Key of this direction, by which the Summary finds it"),
     ("strip", "Strip", 11, "Identifier in the list"),
     ("name", "Name", 24, "Name in the list"),
-    ("direction", "Direction", 9, "Direction of movement, by its designator"),
+    ("direction", "Direction", 10, "Direction of movement, by its designator"),
 )
 KEY_STEPS = (
     "landing_verdict", "landing_reason", "landing_margin", "landing_margin_share", "landing_required",
@@ -46,7 +46,6 @@ GROUPS = (
     ("Take-off, step by step", "takeoff_known"),
     ("Landing, step by step", "landing_known"),
 )
-TEXT_WIDTHS = {"verdict": 13, "reason": 34}
 
 
 @dataclass(frozen=True)
@@ -127,7 +126,7 @@ def _input_column(item: Input) -> Column:
 
 def _step_column(step: Step, group: str, hidden: bool = False) -> Column:
     label = f"{step.label}, {step.symbol}" if step.symbol else step.label
-    width = 34 if step.key.endswith("_reason") else 13 if step.key.endswith("_verdict") else 11
+    width = 42 if step.key.endswith("_reason") else 13 if step.key.endswith("_verdict") else 11
     unit = f"\nUnit: {step.unit}" if step.unit else ""
     comment = f"{step.label}.{unit}\nSource: {step.source}."
     return Column(step.key, _header(label, step.unit), width, step.unit, comment, group, hidden, step)
@@ -195,7 +194,7 @@ def _style_template(sheet: Worksheet, number: int, column: Column) -> None:
         if item.key.endswith("_verdict"):
             cell.alignment = styles.CENTRE
         elif item.key.endswith("_reason"):
-            cell.alignment = styles.INDENT
+            cell.alignment = styles.INDENT_WRAP
     elif not column.carried and column.key != "source_row":
         cell.number_format = "@"
     cell.quotePrefix = column.carried or (item is None and column.key != "source_row")

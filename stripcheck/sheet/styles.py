@@ -39,6 +39,8 @@ CALIBRATED_FILL = PatternFill("solid", fgColor="EFE9F7")
 WRAP = Alignment(wrap_text=True, vertical="top")
 CENTRE = Alignment(horizontal="center", vertical="center", wrap_text=True)
 INDENT = Alignment(horizontal="left", vertical="center", indent=1)
+INDENT_WRAP = Alignment(horizontal="left", vertical="center", indent=1, wrap_text=True)
+RIGHT = Alignment(horizontal="right")
 LEFT = Alignment(horizontal="left")
 UNLOCKED = Protection(locked=False)
 

@@ -84,12 +84,12 @@ COLUMNS = (
     ("in_direction", "Land towards", 9, "Better landing direction"),
     ("in_margin", "Land: margin [m]", 10, "Length available less length required; negative: missing"),
     ("in_share", "Land: margin [%]", 9, "Margin as a share of the length available"),
-    ("in_reason", "Land: limiting reason", 37, "What decides the verdict"),
+    ("in_reason", "Land: limiting reason", 42, "What decides the verdict"),
     ("out_verdict", "Take off: verdict", 13, "Verdict for the better take-off direction"),
     ("out_direction", "Take off towards", 9, "Better take-off direction"),
     ("out_margin", "Take off: margin [m]", 10, "Length available less length required; negative: missing"),
     ("out_share", "Take off: margin [%]", 9, "Margin as a share of the length available"),
-    ("out_reason", "Take off: limiting reason", 37, "What decides the verdict"),
+    ("out_reason", "Take off: limiting reason", 42, "What decides the verdict"),
 )
 HIDDEN = 6
 LETTERS = {key: get_column_letter(number) for number, (key, *_) in enumerate(COLUMNS, 1)}
@@ -129,7 +129,7 @@ def write_skeleton(pages: Pages, strips: int, facts: list[tuple[str, str]]) -> W
         elif key in ("in_direction", "out_direction", "runway"):
             cell.alignment = styles.CENTRE
         elif key.endswith("_reason"):
-            cell.alignment = styles.INDENT
+            cell.alignment = styles.INDENT_WRAP
     sheet.freeze_panes = f"{LETTERS['both']}{FIRST_ROW}"
     sheet.auto_filter.ref = f"{left}{HEADER_ROW}:{LETTERS['out_reason']}{last}"
     sheet.sheet_view.showGridLines = False

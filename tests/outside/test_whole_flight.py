@@ -117,7 +117,7 @@ class Flight:
         excess = (self.thrust(mean) - self.drag(mean, self.level_lift(mean))) / (self.mass * G)
         energy = (screen**2 - lift_off**2) / (2.0 * G) + SCREEN
         carried = 1.0 - self.wind / mean
-        rise = max(self.slope, 0.0) * (carried if self.wind < 0.0 else 1.0)
+        rise = max(self.slope, 0.0) * carried  # under each metre flown through the air
         return roll, roll + self.fitted["takeoff_technique"] * energy * carried / (excess - rise)
 
     def landing(self) -> tuple[float, float]:
@@ -133,7 +133,7 @@ class Flight:
         path = min(max(idle, bounds[0]), bounds[1])
         speed = 0.5 * (approach + touchdown)
         carried = 1.0 - self.wind / speed
-        path += min(self.slope, 0.0) * (carried if self.wind < 0.0 else 1.0)
+        path += min(self.slope, 0.0) * carried
         radius = speed**2 / (0.2 * G)
         angle = math.atan(path)
         air_part = max(SCREEN - radius * (1.0 - math.cos(angle)), 0.0) / path + radius * math.sin(angle)

@@ -1,0 +1,305 @@
+"""The words of the reference pages that people write: prose, and the tables that no part of the program holds."""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+from stripcheck.steps import POWERS
+
+
+class Entry(NamedTuple):
+    """An entry of a file that a user writes: its part, name and chain key; ``takes``, ``usual`` and ``meaning`` where
+    the chain does not tell them. ``usual`` empty: the entry is needed."""
+
+    part: str
+    name: str
+    key: str = ""
+    takes: str = ""
+    usual: str = ""
+    meaning: str = ""
+
+
+RULE_ENTRIES = (
+    Entry("", "title", "", "text", "", "Shown above every result"),
+    Entry("", "issue", "", "text", "", "Issue or date of the text that the figures come from"),
+    Entry("", "citation", "", "text", "", "Where to find that text"),
+    Entry("", "status", "", "read, memory or own", "", "Whether the figures were read in the text, recalled, or are your own"),
+    Entry("", "note", "", "text", "nothing", "What a user of the set must know"),
+    Entry("", "physics_counts", "physics_counts"),
+    Entry("", "corrections_count", "corrections_count"),
+    Entry("wind", "headwind_credit", "headwind_credit"),
+    Entry("wind", "tailwind_count", "tailwind_count"),
+    Entry("takeoff", "safety_factor", "takeoff_factor"),
+    Entry("takeoff", "short_to", "takeoff_factor_to"),
+    Entry("takeoff", "long_safety_factor", "takeoff_factor_long", usual="safety_factor"),
+    Entry("takeoff", "long_from", "takeoff_factor_from"),
+    Entry("landing", "safety_factor", "landing_factor"),
+    Entry("landing", "short_to", "landing_factor_to"),
+    Entry("landing", "long_safety_factor", "landing_factor_long", usual="safety_factor"),
+    Entry("landing", "long_from", "landing_factor_from"),
+    Entry("slope", "takeoff_each_percent_up", "upslope_takeoff"),
+    Entry("slope", "landing_each_percent_down", "downslope_landing"),
+    Entry("slope", "corrections_hold_to", "slope_limit"),
+    Entry("site", "obstacle_clearance", "obstacle_margin"),
+    Entry("site", "least_width", "least_width"),
+    Entry("site", "least_width_light", "least_width_light"),
+    Entry("site", "light_mass", "light_mass"),
+    Entry("site", "greatest_slope", "greatest_slope"),
+    Entry("site", "greatest_local_slope", "greatest_local_slope"),
+    Entry("site", "free_gradient", "free_gradient"),
+    Entry("site", "free_distance", "free_distance"),
+)
+
+CARD_ENTRIES = (
+    Entry("aeroplane", "name", "", "text", "", "Shown above every result"),
+    Entry("aeroplane", "note", "", "text", "nothing", "Shown under the name"),
+    Entry("mass", "empty", "", "kg", "", "Empty mass; only to see that the others are credible"),
+    Entry("mass", "max_takeoff", "max_takeoff_mass"),
+    Entry("mass", "max_landing", "max_landing_mass", usual="max_takeoff"),
+    Entry("mass", "stall_speeds_at", "", "kg", "max_takeoff", "Mass at which the manual states the stall speeds"),
+    Entry("wing", "area", "wing_area"),
+    Entry("wing", "span", "span"),
+    Entry("wing", "height_above_ground", "wing_height", usual="0.15 of the span"),
+    Entry("engine", "kind", "", " or ".join(POWERS), POWERS[0], "How the power falls with height"),
+    Entry("engine", "rated_power", "rated_power"),
+    Entry("engine", "critical_altitude", "", "ft", "", "Turbo-normalised only: up to where the rated power lasts"),
+    Entry("engine", "flat_rated_to", "", "ft", "", "Flat rated only: up to where the rated power lasts"),
+    Entry("engine", "at_isa_deviation", "", "K", "0 K", "Warmth above standard at which that altitude holds"),
+    Entry("propeller", "kind", "", "fixed pitch or constant speed", "", "Decides how thrust is computed"),
+    Entry("propeller", "diameter", "propeller_diameter"),
+    Entry("drag", "parasite", "parasite_drag"),
+    Entry("drag", "span_efficiency", "efficiency"),
+    Entry("drag", "lift_in_the_run", "ground_lift"),
+    Entry("[flap]", "setting", "", "text", "", "Name of the setting, as the manual calls it"),
+    Entry("[flap]", "deflection", "", "°", "", "From up to down; two settings or more"),
+    Entry("[flap]", "stall_speed", "", "kt", "", "Calibrated airspeed, wings level, power off"),
+    Entry("[flap]", "drag", "", "number", "0", "Drag coefficient added to the one with flaps up"),
+    Entry("[flap]", "uses", "", "list of take-off, landing", "both", "What the manual allows the setting for"),
+    Entry("speeds", "lift_off", "lift_off_factor"),
+    Entry("speeds", "screen", "screen_factor"),
+    Entry("speeds", "approach", "approach_factor"),
+    Entry("speeds", "touchdown", "touchdown_factor"),
+    Entry("landing", "shallowest_approach", "approach_shallowest"),
+    Entry("landing", "steepest_approach", "approach_steepest"),
+    Entry("landing", "time_before_braking", "free_roll_seconds"),
+    Entry("limits", "crosswind", "crosswind_limit"),
+    Entry("limits", "tailwind", "tailwind_limit"),
+    Entry("usual", "takeoff_mass", "mass_takeoff", usual="max_takeoff"),
+    Entry("usual", "landing_mass", "mass_landing", usual="max_landing"),
+    Entry("usual", "takeoff_flap", "", "name of a setting", "", "Setting used unless told otherwise"),
+    Entry("usual", "landing_flap", "", "name of a setting", "", "Setting used unless told otherwise"),
+    Entry("[book.takeoff]", "pressure_altitude", "", "ft", "", "Of this point of the manual's table"),
+    Entry("[book.takeoff]", "temperature", "", "°C", "", "Of this point"),
+    Entry("[book.takeoff]", "mass", "", "kg", "max_takeoff", "Of this point"),
+    Entry("[book.takeoff]", "flap", "", "name of a setting", "", "Of this point"),
+    Entry("[book.takeoff]", "roll", "", "m", "", "Take-off roll on level dry pavement in still air"),
+    Entry("[book.takeoff]", "to_50ft", "", "m", "may be left out", "Distance to 50 ft, roll included"),
+    Entry("[book.landing]", "pressure_altitude", "", "ft", "", "Of this point of the manual's table"),
+    Entry("[book.landing]", "temperature", "", "°C", "", "Of this point"),
+    Entry("[book.landing]", "mass", "", "kg", "max_landing", "Of this point"),
+    Entry("[book.landing]", "flap", "", "name of a setting", "", "Of this point"),
+    Entry("[book.landing]", "roll", "", "m", "", "Landing roll on level dry pavement in still air"),
+    Entry("[book.landing]", "from_50ft", "", "m", "may be left out", "Distance from 50 ft, roll included"),
+)
+
+COLUMN_MEANINGS = {
+    "strip": "Identifier of the strip", "code": "Another identifier; used where there is no column for the strip",
+    "name": "Name of the strip", "runway": "Both ends, such as 09/27, or one of them",
+    "designator": "Name of one end", "length": "Length between the ends",
+    "usable": "Length usable for take-off and landing, either way", "tora": "Length usable for take-off",
+    "lda": "Length usable for landing", "width": "Width", "surface": "Surface, in any spelling of the list below",
+    "condition": "dry, wet or soft", "closed": "Whether it is closed", "elevation": "Elevation of the strip, or of an end",
+    "slope": "Mean slope; positive: rising from the end named first to the other",
+    "local_slope": "Steepest part, without sign", "heading": "True heading from an end to the other",
+    "displaced": "Distance of the displaced threshold from its end", "latitude": "Latitude of an end",
+    "longitude": "Longitude of an end", "obstacle_height": "Height of the obstacle above the end",
+    "obstacle_distance": "Distance of the obstacle from the end", "temperature": "Air temperature at this strip",
+    "qnh": "QNH at this strip", "wind_from": "True direction that the wind comes from at this strip",
+    "wind_speed": "Wind at this strip", "land_towards": "The only direction to land in, such as 09",
+    "take_off_towards": "The only direction to take off in, such as 27", "one_way": "Whether it is one-way",
+    "survey_date": "Date of the survey; shown, not used", "notes": "Notes; shown, not used",
+}  # fmt: skip
+PLACES = {"strip": "once", "end": "for each end", "both": "once, or for each end"}
+
+LEFT_OUT = (
+    ("closed", "The list, or the airports file, says that the runway or the airfield is closed"),
+    ("helipad", "A roof, a deck or a helicopter pad by its surface, by its name (such as H1) or by the airports file; "
+                "or an area under 60 m that is about square and has no runway name"),
+    ("water", "The surface is water"),
+)  # fmt: skip
+CONTRADICTIONS = (
+    "A cell that is no number, or whose unit does not measure that quantity.",
+    "A runway that a spreadsheet has turned into a date, such as 9-Mar for 09/03.",
+    "A displaced threshold beyond the other end of the runway.",
+    "Ends that differ in elevation by more than 30 % of the length.",
+    "An obstacle with a height but no distance, or with a distance but no height. A height of 0 says that there is none.",
+    "`Land on` or `Leave by` naming neither end; or `One-way` without telling which way.",
+    "A row with more cells than the header, as when a comma in a note is not within quotes.",
+    "Slopes in a workbook that are all below 0.3 %: they may be cells formatted as percent, a hundred times too small.",
+)
+
+
+
+
+METHOD_INTRO = """
+Each verdict is the end of a chain of small steps, from the pressure on the altimeter to the metres that are
+left over. In a filled workbook each step is a column of the sheet Strips, with a live formula and a comment
+that tells its unit and source, so that any verdict can be followed back cell by cell. This page lists the
+same steps from the same tables."""
+GIVEN_INTRO = """
+What you type, and the unit of a plain number. *Key* is the name by which Python functions know it. A blank
+means "not known": nothing is filled in silently, and what stands in for it is listed on the sheet Method."""
+STEPS_INTRO = """
+*Only where* names what must hold, or be known, before a step has a value; without it the cell stays empty
+and the verdict says why. Lengths are in metres, speeds in knots: inside, all is computed in SI units.
+*Level dry pavement* is the same run or flight as a flight manual's table means it; the published
+corrections are put on that one."""
+FINDINGS_INTRO = """
+Take-off and landing are judged apart, for each direction. The findings are gone through from the top; the
+first that holds decides, and its words are the limiting reason. A suitable strip is one for which none of
+the others holds."""
+BOTH_INTRO = """
+The summary takes the better direction in and the better direction out: first by verdict (*suitable*, then
+*marginal*, then *not assessed*, then *unsuitable*), then by margin. Together they read: {}. As soon as one
+side is not assessed, so is the pair."""
+RULES_INTRO = """
+A rule set says how much of a wind counts, which published corrections are put on a distance, by what factor
+it is then multiplied, and what a site must offer. `--rules NAME` takes a shipped set, `--rules FILE.toml`
+your own. The set's values stand on the sheet Rules of a filled workbook, where each can be changed.
+
+Two distances are compared, and the longer governs: the one that physics gives for the slope and the
+surface, and the one on level dry pavement times the published corrections. The published corrections give
+nothing back for a slope that helps, and so a downhill take-off or an uphill landing counts as a level one
+under the sets that use them. *Physics counts* and *Published corrections count* switch either off.
+
+Rules change and differ from country to country. The shipped figures are only as good as their status says;
+the current local text governs."""
+GROUND_INTRO = """
+Friction coefficients of free and of braked wheels, the same for every set. *None*: a strip with that ground
+is not assessed. Braking is multiplied by the factor that the aircraft card was calibrated to.
+
+[1] W. H. Mason, notes to a take-off program, Virginia Tech. [2] D. P. Raymer, Aircraft Design, and J. D.
+Anderson, Aircraft Performance and Design (from memory). [3] Common practice, no source: between its
+neighbours, on the careful side."""
+OWN_RULES = """
+Write a text file whose name ends in `.toml`, and name it with `--rules`. A misspelt entry is refused, and
+so is a figure that can't be right. Write each figure with its unit, in quotes: a share without `%` would be
+read as per cent. A small one, for an invented operator:
+
+```toml
+title = "Our operations manual"
+issue = "Revision 3"
+citation = "Operations manual, part B, chapter 4"
+status = "own"
+
+[wind]
+headwind_credit = "50 %"
+tailwind_count = "150 %"
+
+[takeoff]
+safety_factor = 1.33
+
+[landing]
+safety_factor = 1.43
+
+[takeoff_surface.grass]
+dry = 1.20
+wet = 1.30
+```
+
+All entries; *needed* ones have no usual value."""
+SURFACE_FACTORS = """
+Published surface corrections go into `[takeoff_surface.WORD]` and `[landing_surface.WORD]`, with the entries
+{0}, each a factor of 1 or more. WORD is one of {1} (in quotes where it has a space:
+`[takeoff_surface."long grass"]`), or `every` for all that have no figure of their own. What is left out is 1:
+then the physics of that surface governs."""
+CARD_INTRO = """
+A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `--card FILE.toml` takes your own,
+`--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own manual's figures
+in their place."""
+CARD_RECIPE = """
+1. Copy a shipped card with the same kind of propeller. Change name, masses, wing and power.
+2. Stall speeds: from the manual, as *calibrated* airspeed, one for each flap setting, at the mass named
+   under `stall_speeds_at`. An indicated stall speed can be several knots low, and every distance goes with
+   its square.
+3. Speeds at lift-off, 50 ft, approach and touchdown: divide what the manual states by the stall speed of
+   that setting. Where it states none, leave the entry out; the usual value is then listed as taken for
+   granted.
+4. Book points: from the manual's distance tables, on level dry pavement in still air, at the flap setting
+   and technique that the table states. Take two take-off points far apart, such as sea level on a standard
+   day and a high, hot one; then both the thrust at rest and its loss with speed can be told. Two landing
+   points likewise.
+5. Load the card and look at the residuals (sheet Aircraft of a filled workbook). A point that is out by
+   more than a few per cent, or a factor far from 1, says that something on the card does not belong
+   together."""
+CALIBRATION = """
+Four things that no manual prints are fitted to the book points, one after the other: thrust on the take-off
+rolls, an airborne factor on the way from lift-off to 50 ft, a braking factor on the landing rolls, an
+airborne factor on the way from 50 ft to touchdown. With one take-off point, or points close together, only
+the thrust at rest of a fixed-pitch propeller can be fitted; its loss with speed is then a typical value,
+and the card says so. Factors that are not credible are refused: airborne {0[0]} to {0[1]}, useful share of
+the shaft power {1[0]} to {1[1]}, braking {2[0]} to {2[1]}.
+
+What the fit leaves over is printed with the card. For the shipped ones:"""
+TRUST = """
+- The card is as good as the manual's table, flown by the manual's technique, in an aeroplane in that
+  condition. A tired engine or a dented propeller is not on it.
+- Between and a little around the book points it is a calibrated model; far outside of them (much hotter,
+  higher or heavier) it is a careful estimate. Choose book points that span what you fly.
+- Slope, surface, wind and soft ground are physics with the coefficients of the ground table. The scatter of
+  real ground is wider than that of any aeroplane: walk the strip.
+- Ground effect, flap drag and lift in the run are single figures. They matter most where the aeroplane
+  barely accelerates, and there the verdict is at best marginal.
+- Nothing is assumed about reverse thrust, short-field tricks or flaps pulled at lift-off."""
+LISTS_INTRO = """
+A list is any table with one runway in a row: .csv, .txt, .tsv, .xlsx, .xlsm, .xls or .ods. Title lines
+above the header are passed over. Delimiter, encoding and decimal comma are found out. The open runway data
+that is published as runways.csv is read as it is; an airports.csv beside it adds names and elevations.
+Columns that are not understood are carried along into the workbook as they are. Nothing in your list is
+ever changed."""
+COLUMNS_INTRO = """
+Headers come in any order; capitals, accents, underscores, hyphens and dots don't matter. A column for the
+strip (or its name) and one for a length are needed; all others help. A unit may stand in the header, in
+brackets or after the word: `Length [ft]`, `elevation_ft`. A cell may carry its own: `2300 ft`. Else the
+unit is the one below, and the sheet Left out says that it was taken for granted. Headings and winds are
+true; a header that says magnetic is carried and not used.
+
+A column about one end says which: `Elevation end 1`, `End 2 elevation`, `elevation 1`, or `le_elevation_ft`
+and `he_elevation_ft` as in the open data. End 1 is the end named first: in 09/27 it is where a landing on
+09 begins."""
+WHICH_WAY = """
+Every runway becomes two directions, and each is assessed. On a one-way strip `Land on` names the direction
+of landing and `Leave by` that of the take-off, such as 09 and 27; the other direction is then closed to it.
+`One-way` alone can't say which way and is a fault.
+
+Slope comes from the column, or from the elevations of both ends over the length. With neither, the strip is
+not assessed unless the day assumes a slope. The true heading comes from the column, else from the
+coordinates of the ends, else from the runway's name, which is then a doubt.
+
+TORA, LDA and usable length shorten what counts; they never lengthen the runway. A displaced threshold
+shortens the landing over it. An obstacle near an end is met in the take-off towards that end, and in the
+landing over it. Its height is above that end, its distance from it."""
+SURFACE_RULE = """
+A spelling is read word by word, in small letters without accents. A quality mark at the end (-G, -F, -P,
+-E) and a pavement strength code are dropped. Every word must be known; one that is not makes the surface
+unknown, for it might be the worst part. Of several surfaces the one that drags most on the wheels counts,
+in the order {}. Two exceptions: what is grassed, or grass over or on something, is grass; and ice mixed
+with anything else is unknown. `long`, `tall` or `high` with grass is long grass. Single letters are
+unknown, and so are *unpaved*, *hard* and *mixed*: they name no surface. An unknown surface is not assessed,
+and the sheet Left out counts its spellings."""
+SURFACE_REST = """
+Words for the condition: {}. The worse of this and of the column Condition counts. Words that change
+nothing: {}."""
+LEFT_OUT_INTRO = """
+Three kinds of runway get no row, because no aeroplane on wheels uses them. Each is listed on the sheet Left
+out, and the counts add up: rows read are rows kept and rows left out."""
+FAULTS_INTRO = """
+A row with a fault stays in the workbook. It is not assessed, and the limiting reason says what is wrong and
+what would be right. With `--strict` the first one stops everything. Besides numbers out of their limits
+these are faults:"""
+DOUBTS = """
+What is missing or was worked out is listed on the sheet Left out as *in doubt*: a heading taken from the
+runway's name, headings or names of the two ends that are not opposite, a heading more than 45 degrees off
+the runway's name, a usable length greater than the runway's, a surface, length, elevation or heading that
+is not known, a unit that was taken for granted, and a header that is nearly one that is understood. A doubt
+by itself does not change a verdict; what is missing does."""

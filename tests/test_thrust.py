@@ -1,0 +1,50 @@
+"""Power and thrust: limits, continuity and inverses. Numeric roots and published figures are in tests/outside."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+
+from stripcheck import thrust
+
+
+def test_fixed_pitch_thrust() -> None:
+    """a Phi + b rho V^2: static at rest, parabola with speed."""
+    assert thrust.fixed_pitch_thrust(2400.0, -0.5, 1.0, 1.225, 0.0) == 2400.0
+    assert thrust.fixed_pitch_thrust(2400.0, -0.5, 1.0, 1.225, 20.0) == pytest.approx(2400.0 - 0.5 * 1.225 * 400.0)
+
+
+def test_turbo_normalised_power() -> None:
+    """Rated up to the critical altitude, then in proportion to a normally aspirated engine; no step between."""
+    sigma = np.array([1.0, 0.8, 0.6001, 0.6, 0.5999, 0.4])
+    power = thrust.turbo_normalised_power(1000.0, sigma, 0.6)
+    assert (power[:4] == 1000.0).all()
+    assert power[4] == pytest.approx(1000.0, rel=1e-3)
+    assert power[5] == pytest.approx(1000.0 * thrust.aspirated_power(1.0, 0.4) / thrust.aspirated_power(1.0, 0.6))
+
+
+def test_flat_rated_power() -> None:
+    power = thrust.flat_rated_power(1000.0, np.array([1.1, 0.8, 0.4]), 0.8)
+    np.testing.assert_allclose(power, [1000.0, 1000.0, 500.0])
+
+
+def test_static_thrust_and_induced_speed_are_one_disk() -> None:
+    """P = T0 w0 and T0 = 2 rho A w0^2: momentum theory at rest."""
+    for power, rho, area in ((50e3, 0.9, 2.5), (300e3, 1.2, 5.0)):
+        pull, induced = thrust.static_disk_thrust(power, rho, area), thrust.disk_speed(power, rho, area)
+        assert pull * induced == pytest.approx(power, rel=1e-13)
+        assert pull == pytest.approx(2.0 * rho * area * induced**2, rel=1e-13)
+
+
+def test_disk_root_solves_its_cubic() -> None:
+    """y^3 - x y^2 - 1 = 0, from a tailwind to a fast airspeed; and back, x = y - 1/y^2."""
+    ratio = np.linspace(-1.75, 12.0, 200)
+    root = thrust.disk_root(ratio)
+    np.testing.assert_allclose(root**3 - ratio * root**2 - 1.0, 0.0, atol=1e-11 * np.max(root) ** 3)
+    np.testing.assert_allclose(thrust.disk_speed_ratio(root), ratio, rtol=1e-11, atol=1e-11)
+    assert (np.diff(root) > 0.0).all()
+
+
+def test_fast_disk_gives_its_power() -> None:
+    """Far above the induced speed all power is thrust times airspeed: y goes to x."""
+    assert thrust.disk_root(50.0) == pytest.approx(50.0, rel=1e-3)
