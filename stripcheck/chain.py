@@ -9,11 +9,14 @@ from __future__ import annotations
 
 from collections.abc import Callable, Collection, Iterable, Mapping
 from dataclasses import dataclass, field
+from functools import lru_cache
+from typing import Any
 
 import numpy as np
 
 from stripcheck.numeric import Number
-from stripcheck.program import Node, Program, Recorder
+from stripcheck.program import Program
+from stripcheck.recording import Node, Recorder
 
 FEW = 4000  # rows below which recording the steps costs more time than it saves
 
@@ -85,7 +88,7 @@ class Chain:
         further = [self.held_with(other) for other in (item.guard, *item.implies) if other]
         return frozenset({key}).union(*further)
 
-    def leading_to(self, keys: Iterable[str]) -> list[Step]:
+    def leading_to(self, keys: Iterable[str]) -> tuple[Step, ...]:
         """The steps with these keys and all that they read, in order. Raises KeyError for a key of no step."""
         needed = set(keys)
         unknown = needed - {step.key for step in self.steps}
@@ -96,7 +99,7 @@ class Chain:
             if step.key in needed:
                 leading.append(step)
                 needed |= {key for key in (*step.inputs, step.guard) if key}
-        return leading[::-1]
+        return tuple(leading[::-1])
 
     def depends_on_strip(self) -> set[str]:
         """Keys of all values that differ from strip to strip; the others are computed once."""
@@ -114,7 +117,7 @@ def evaluate(chain: Chain, values: Mapping[str, Number], keys: Collection[str] |
     equally long, and so are the results (of no dimension where there is no array). Gives the steps by key: floats
     with NaN for "no value", truths, or whole numbers for words. Raises KeyError for a key that is not a step's.
     """
-    wanted = [step.key for step in chain.steps] if keys is None else list(keys)
+    wanted = tuple(step.key for step in chain.steps) if keys is None else tuple(keys)
     steps = chain.leading_to(wanted)
     arrays = {key: np.asarray(value) for key, value in values.items()}
     tables = {item.key for item in chain.inputs if item.kind == "range"}
@@ -139,16 +142,26 @@ def walk(steps: Iterable[Step], values: Mapping[str, Number]) -> dict[str, Numbe
     return found
 
 
-def _run(steps: Iterable[Step], arrays: Mapping[str, np.ndarray], columns: Mapping[str, np.ndarray], size: int,
-         wanted: Iterable[str]) -> dict[str, np.ndarray]:  # fmt: skip
+def _run(steps: tuple[Step, ...], arrays: Mapping[str, np.ndarray], columns: Mapping[str, np.ndarray], size: int,
+         wanted: tuple[str, ...]) -> dict[str, np.ndarray]:  # fmt: skip
     """As ``walk``, for many rows: the steps are recorded as one program, which then runs."""
-    recorder = Recorder()
     varying = {key: column for key, column in columns.items() if not _is_uniform(column)}
-    uniform = {key: column[0] for key, column in columns.items() if key not in varying}
-    nodes = {key: recorder.column(key, column.dtype) for key, column in varying.items()}
-    found = walk(steps, {**arrays, **uniform, **nodes})
-    program = Program({key: found[key] for key in wanted if isinstance(found[key], Node)})
+    fixed = {**arrays, **{key: column[:1].reshape(()) for key, column in columns.items()}}
+    numbers = tuple((key, a.dtype, a.shape, a.tobytes()) for key, a in fixed.items() if key not in varying)
+    program, found = _record(steps, wanted, numbers, tuple((key, column.dtype) for key, column in varying.items()))
     return {**found, **program.run(varying, size)}
+
+
+@lru_cache(maxsize=8)
+def _record(steps: tuple[Step, ...], wanted: tuple[str, ...], numbers: tuple[tuple[str, Any, Any, bytes], ...],
+            columns: tuple[tuple[str, Any], ...]) -> tuple[Program, dict[str, np.ndarray]]:  # fmt: skip
+    """The program for what differs from row to row, and the results that don't; kept for the next call like this."""
+    recorder = Recorder()
+    fixed = {key: np.frombuffer(data, dtype).reshape(shape) for key, dtype, shape, data in numbers}
+    nodes = {key: recorder.column(key, dtype) for key, dtype in columns}
+    found = walk(steps, {**fixed, **nodes})
+    program = Program({key: found[key] for key in wanted if isinstance(found[key], Node)})
+    return program, {key: found[key] for key in wanted if not isinstance(found[key], Node)}
 
 
 def _is_uniform(column: np.ndarray) -> bool:

@@ -1,8 +1,8 @@
-"""The reference pages of the documentation, made from the tables that the program itself runs on.
+"""The reference pages of the documentation, made from the tables that the program runs on.
 
 ``python -m stripcheck.doc_pages docs`` writes method.md, rules.md, lists.md and aircraft-card.md into a folder. The
-prose is written here by hand; every table comes from the chain, the inputs, the rule sets, the cards, the surface table
-and the columns of the register, so that no page can tell another story than the program.
+prose is written by hand in stripcheck/doc_words.py; every table comes from the chain, the inputs, the rule sets, the
+cards, the surface table and the columns of the register, so that no page can tell another story than the program.
 """
 
 from __future__ import annotations
@@ -10,10 +10,13 @@ from __future__ import annotations
 import math
 import sys
 import tempfile
+import textwrap
 from collections.abc import Callable, Iterable, Sequence
 from pathlib import Path
-from typing import NamedTuple
 
+import numpy as np
+
+from stripcheck import doc_words as prose
 from stripcheck import verdict
 from stripcheck.calibrate import BRAKING, QUALITIES, TECHNIQUES
 from stripcheck.card import TYPICAL, load_card, shipped_cards
@@ -23,6 +26,7 @@ from stripcheck.register import surface_words
 from stripcheck.register.columns import COLUMNS, Column
 from stripcheck.register.limits import LIMITS
 from stripcheck.rules import Rules, load_rules, shipped_rules
+from stripcheck.sheet.book import SHORT_ABOVE
 from stripcheck.sheet.method import METHOD, SOURCES
 from stripcheck.sheet.summary import BOTH
 from stripcheck.steps import (
@@ -40,6 +44,7 @@ from stripcheck.surface import CONDITIONS, GROUNDS, SURFACES
 from stripcheck.units import KINDS, from_si, tidy
 
 MADE = "*This page is made by `python -m stripcheck.doc_pages docs`; change the program, not the page.*"
+WIDTH = 110  # characters of a line of prose
 MANY = 15  # inputs above which a step's list of them says nothing to a reader
 STATUS_WORDS = {
     "read": "figures taken from the text",
@@ -60,7 +65,20 @@ def table(headers: Sequence[str], rows: Iterable[Sequence[str]]) -> str:
     return "\n".join("| " + " | ".join(cell.replace("|", "\\|") for cell in line) + " |" for line in lines)
 
 
+def folded(text: str) -> str:
+    """Paragraphs with their lines broken anew, for a text that something was put into.
+
+    >>> folded("one\\ntwo\\n\\nthree")
+    'one two\\n\\nthree'
+    """
+    return "\n\n".join(
+        textwrap.fill(paragraph.strip(), WIDTH, break_long_words=False, break_on_hyphens=False)
+        for paragraph in text.split("\n\n")
+    )
+
+
 def code(text: str) -> str:
+    """A text as code, nothing for nothing."""
     return f"`{text}`" if text else ""
 
 
@@ -79,28 +97,26 @@ def method_page() -> str:
         "# How a verdict comes about",
         f"> {verdict.CAUTION}",
         MADE,
-        METHOD_INTRO,
+        folded(prose.METHOD_INTRO.format(SHORT_ABOVE)),
         "## In short",
         "\n".join(f"- {line}" for line in METHOD),
         "## What is given",
-        GIVEN_INTRO,
+        prose.GIVEN_INTRO,
         *_given_tables(),
         "## Step by step",
-        STEPS_INTRO,
+        prose.STEPS_INTRO,
         *_step_tables(),
         "## Findings and verdicts",
-        FINDINGS_INTRO,
+        prose.FINDINGS_INTRO,
         "### Take-off",
         _findings(verdict.TAKEOFF_FINDINGS),
         "### Landing",
         _findings(verdict.LANDING_FINDINGS),
         "### In and out",
-        BOTH_INTRO.format(", ".join(f"*{words}*" for words in BOTH)),
+        folded(prose.BOTH_INTRO.format("; ".join(f"*{words}*" for words in BOTH))),
         "## Sources",
         "\n".join(f"- {line}" for line in SOURCES),
     )
-
-
 
 
 def _given_tables() -> list[str]:
@@ -145,54 +161,68 @@ def _step_row(step: Step, chain: Chain) -> tuple[str, ...]:
 
 
 def _findings(findings: tuple[verdict.Finding, ...]) -> str:
-    words = [finding.words.replace(verdict.FAULT, "(what is wrong with this row of the list)") for finding in findings]
-    rows = [(str(n), finding.verdict, text) for n, (finding, text) in enumerate(zip(findings, words, strict=True), 1)]
+    said = {verdict.FAULT: "(what is wrong with this row of the list)"}
+    rows = [(str(n), finding.verdict, said.get(finding.words, finding.words)) for n, finding in enumerate(findings, 1)]
     return table(("", "Verdict", "Limiting reason"), rows)
 
 
 def rules_page() -> str:
     """docs/rules.md: the shipped sets, the ground table, and how to write one's own."""
     sets = [load_rules(name) for name in shipped_rules()]
-    overview = [(code(rules.name), rules.title, figure(_number(rules, "takeoff_factor"), ""),
-                 figure(_number(rules, "landing_factor"), ""), STATUS_WORDS[rules.status]) for rules in sets]  # fmt: skip
-    parts = [part for rules in sets for part in _rule_set(rules)]
+    overview = [
+        (code(one.name), one.title, _factor(one, "takeoff"), _factor(one, "landing"), STATUS_WORDS[one.status])
+        for one in sets
+    ]
+    parts = [part for one in sets for part in _rule_set(one)]
     return _joined(
         "# Rule sets",
         f"> {verdict.CAUTION}",
         MADE,
-        RULES_INTRO,
+        prose.RULES_INTRO,
+        "## Shipped sets",
         table(("Name", "Title", "Take-off factor", "Landing factor", "Status"), overview),
         *parts,
         "## Ground table",
-        GROUND_INTRO,
+        prose.GROUND_INTRO,
         _ground_table(),
         "## Your own set",
-        OWN_RULES,
-        _entries_table(RULE_ENTRIES, RULES, _usual_rules()),
-        SURFACE_FACTORS,
+        prose.OWN_RULES,
+        _entries_table(prose.RULE_ENTRIES, RULES, _usual_rules()),
+        folded(prose.SURFACE_FACTORS.format(_listed(CONDITIONS), _listed(SURFACES))),
     )
 
 
-
-
 def _number(rules: Rules, key: str) -> float:
-    value = rules.values[key]
-    assert isinstance(value, float | int)
-    return float(value)
+    return float(np.asarray(rules.values[key]))
+
+
+def _factor(rules: Rules, side: str) -> str:
+    """The safety factor of a side; a range where it grows with the distance."""
+    short, long = _number(rules, f"{side}_factor"), _number(rules, f"{side}_factor_long")
+    return f"{short:g}" if short == long else f"{short:g} to {long:g}"
 
 
 def _rule_set(rules: Rules) -> list[str]:
-    facts = [("Issue", rules.issue), ("Citation", rules.citation), ("Status", STATUS_WORDS[rules.status])]
-    plain = [item for item in RULES if item.kind != "range" and not item.key.startswith("reference_")]
-    figures = [(item.label, _rule_value(rules, item)) for item in plain]
+    facts = [f"- `--rules {rules.name}`", f"- Issue: {rules.issue}", f"- Citation: {rules.citation}",
+             f"- Status: {STATUS_WORDS[rules.status]}"]  # fmt: skip
+    figures = [(item.label, _rule_value(rules, item)) for item in RULES if _tells_something(rules, item)]
     return [
-        f"## {rules.title}",
-        f"`--rules {rules.name}`",
-        table(("", ""), facts),
+        f"### {rules.title}",
+        "\n".join(facts),
         " ".join(rules.note.split()),
         table(("Rule", "Figure"), figures),
         _surface_corrections(rules),
     ]
+
+
+def _tells_something(rules: Rules, item: Input) -> bool:
+    """Whether a set's figure is worth a line: not what it leaves blank, nor where a factor grows that doesn't."""
+    if item.kind == "range" or item.key.startswith("reference_"):
+        return False
+    side, _, growing = item.key.partition("_factor_")
+    if growing and _number(rules, f"{side}_factor") == _number(rules, f"{side}_factor_long"):
+        return False
+    return item.kind == "flag" or not math.isnan(_number(rules, item.key))
 
 
 def _rule_value(rules: Rules, item: Input) -> str:
@@ -202,14 +232,16 @@ def _rule_value(rules: Rules, item: Input) -> str:
 
 
 def _surface_corrections(rules: Rules) -> str:
-    takeoff, landing = rules.values["ground_takeoff_factor"], rules.values["ground_landing_factor"]
-    rows = [(ground.name, f"{one:g}", f"{other:g}")
-            for ground, one, other in zip(GROUNDS, takeoff, landing, strict=False) if (one, other) != (1.0, 1.0)]  # type: ignore[arg-type]  # fmt: skip
+    pairs = np.column_stack([rules.values["ground_takeoff_factor"], rules.values["ground_landing_factor"]])
+    rows = [
+        (ground.name, f"{takeoff:g}", f"{landing:g}")
+        for ground, (takeoff, landing) in zip(GROUNDS, pairs, strict=False)  # the last pair stands for unknown ground
+        if (takeoff, landing) != (1.0, 1.0)
+    ]
     if not rows:
         return "No published surface corrections: the physics of the surface governs."
-    return "Published surface corrections (1 for all other ground: there the physics governs):\n\n" + table(
-        ("Ground", "Take-off", "Landing"), rows
-    )
+    said = "Published surface corrections (1 for all other ground: there the physics governs):"
+    return f"{said}\n\n{table(('Ground', 'Take-off', 'Landing'), rows)}"
 
 
 def _ground_table() -> str:
@@ -223,53 +255,66 @@ def _usual_rules() -> dict[str, str]:
         path = Path(folder) / "empty.toml"
         path.write_text('title = "-"\nissue = "-"\ncitation = "-"\nstatus = "own"\n', encoding="utf-8")
         rules = load_rules(str(path))
-    return {item.key: _rule_value(rules, item) for item in RULES if item.kind != "range"}
+    return {
+        item.key: str(rules.values[item.key]).lower() if item.kind == "flag" else _rule_value(rules, item)
+        for item in RULES
+        if item.kind != "range"
+    }
 
 
-def _entries_table(entries: tuple[Entry, ...], items: Sequence[Input], usual: dict[str, str]) -> str:
+def _entries_table(entries: tuple[prose.Entry, ...], items: Sequence[Input], usual: dict[str, str]) -> str:
     known = {item.key: item for item in items}
-    rows = []
-    for entry in entries:
-        item = known.get(entry.key)
-        takes = entry.takes or ("yes or no" if item and item.kind == "flag" else item.unit if item else "")
-        meaning = entry.meaning or (f"{item.label}. {item.help}".strip(" .") if item else "")
-        stands_in = entry.usual or usual.get(entry.key, "") or "*needed*"
-        rows.append((code(f"[{entry.part}]") if entry.part else "", code(entry.name), takes or "number", stands_in, meaning))
+    rows = [
+        (
+            code(f"[{entry.part}]") if entry.part else "",
+            code(entry.name),
+            entry.takes or _taken_by(known[entry.key]),
+            entry.usual or usual.get(entry.key, "*needed*"),
+            entry.meaning or f"{known[entry.key].label}. {known[entry.key].help}".strip(" ."),
+        )
+        for entry in entries
+    ]
     return table(("Part", "Entry", "Takes", "Usual", "Meaning"), rows)
+
+
+def _taken_by(item: Input) -> str:
+    return "true or false" if item.kind == "flag" else item.unit or "number"
+
+
+def _listed(words: Iterable[str]) -> str:
+    return ", ".join(code(word) for word in words)
 
 
 def card_page() -> str:
     """docs/aircraft-card.md: the entries of a card, how to make one, and how far to trust it."""
-    usual = {entry.key: f"{TYPICAL[entry.part, entry.name]}, and said so" for entry in CARD_ENTRIES
+    usual = {entry.key: TYPICAL[entry.part, entry.name] for entry in prose.CARD_ENTRIES
              if (entry.part, entry.name) in TYPICAL}  # fmt: skip
     parts = [part for name in shipped_cards() for part in _calibration(name)]
     return _joined(
         "# The aircraft card",
         f"> {verdict.CAUTION}",
         MADE,
-        CARD_INTRO,
+        folded(prose.CARD_INTRO.format(_listed(shipped_cards()))),
         "## Making a card from a flight manual",
-        CARD_RECIPE,
+        prose.CARD_RECIPE,
         "## Entries",
-        "Numbers carry their unit, in quotes. *Needed* entries have no usual value; parts in double brackets come again "
-        "for each setting or point.",
-        _entries_table(CARD_ENTRIES, (*CARD, *CONSTANT_SPEED), usual),
+        prose.CARD_ENTRIES_INTRO,
+        _entries_table(prose.CARD_ENTRIES, (*CARD, *CONSTANT_SPEED), usual),
         "## Calibration",
-        CALIBRATION.format(TECHNIQUES, QUALITIES, BRAKING),
+        folded(prose.CALIBRATION.format(TECHNIQUES, QUALITIES, BRAKING)),
         *parts,
         "## How far to trust it",
-        TRUST,
+        prose.TRUST,
     )
-
-
 
 
 def _calibration(name: str) -> list[str]:
     card = load_card(name)
     labels = {item.key: item for item in (*CARD, *FIXED_PITCH, *CONSTANT_SPEED)}
-    fitted = [(labels[key].label, f"{tidy(float(from_si(value, labels[key].unit))):.3g} {labels[key].unit}".strip())
+    fitted = [(labels[key].label, f"{from_si(value, labels[key].unit):,.4g} {labels[key].unit}".strip())
               for key, value in card.fit.values.items()]  # fmt: skip
-    rows = [(label, f"{book:.0f}", f"{model:.1f}", f"{model / book - 1.0:+.1%}") for label, book, model in card.fit.residuals]
+    rows = [(label, f"{book:.0f}", f"{model:.1f}", _per_cent(model / book - 1.0))
+            for label, book, model in card.fit.residuals]  # fmt: skip
     return [
         f"### {card.name}",
         card.note,
@@ -278,42 +323,44 @@ def _calibration(name: str) -> list[str]:
     ]
 
 
+def _per_cent(share: float) -> str:
+    return f"{round(100.0 * share, 1) + 0.0:+.1f} %"  # + 0.0 takes the sign from a zero, which rounding alone decides
+
+
 def lists_page() -> str:
     """docs/lists.md: columns, surface words, what is left out, faults and doubts."""
     return _joined(
         "# Runway lists",
         f"> {verdict.CAUTION}",
         MADE,
-        LISTS_INTRO,
+        prose.LISTS_INTRO,
         "## Columns",
-        COLUMNS_INTRO,
+        prose.COLUMNS_INTRO,
         table(("It tells", "Plain number in", "Comes", "Header words"), [_column_row(column) for column in COLUMNS]),
         "## Which way",
-        WHICH_WAY,
+        prose.WHICH_WAY,
         "## Surface words",
-        SURFACE_RULE,
+        folded(prose.SURFACE_RULE.format(", ".join(surface_words.RANK))),
         _surface_table(),
-        SURFACE_REST,
+        folded(prose.SURFACE_REST.format(_condition_words(), ", ".join(sorted(surface_words._PLAIN_WORDS)))),
         "## What is left out",
-        LEFT_OUT_INTRO,
-        table(("Kind", "When"), LEFT_OUT),
+        prose.LEFT_OUT_INTRO,
+        table(("Kind", "When"), prose.LEFT_OUT),
         "## Faults",
-        FAULTS_INTRO,
-        "\n".join(f"- {line}" for line in CONTRADICTIONS),
+        prose.FAULTS_INTRO,
+        "\n".join(f"- {line}" for line in prose.CONTRADICTIONS),
         "A number outside of these limits is a fault too:",
-        _limits_table(),
+        "\n".join(f"- {limits.sentence}" for limits in LIMITS.values()),
         "## Doubts",
-        DOUBTS,
+        prose.DOUBTS,
     )
-
-
 
 
 def _column_row(column: Column) -> tuple[str, str, str, str]:
     unit = KINDS[column.kind][0] if column.kind in KINDS else column.kind
     unit = "hPa or inHg" if column.kind == "pressure" else unit
-    words = ", ".join(word for word in column.words if word)
-    return COLUMN_MEANINGS[column.key], unit, PLACES[column.scope], words
+    headers = ", ".join(word for word in column.words if word)
+    return prose.COLUMN_MEANINGS[column.key], unit, prose.PLACES[column.scope], headers
 
 
 def _surface_table() -> str:
@@ -323,7 +370,9 @@ def _surface_table() -> str:
         "water": "left out",
         "helipad": "left out",
     }
-    rows = [(meanings.get(word, word), ", ".join(spellings.split())) for word, spellings in surface_words._WORDS.items()]
+    rows = [
+        (meanings.get(word, word), ", ".join(spellings.split())) for word, spellings in surface_words._WORDS.items()
+    ]
     return table(("Counts as", "Words"), rows)
 
 
@@ -332,11 +381,6 @@ def _condition_words() -> str:
     for word, condition in surface_words._CONDITIONS.items():
         by_condition.setdefault(condition, []).append(word)
     return "; ".join(f"*{condition}* for {', '.join(words)}" for condition, words in by_condition.items())
-
-
-def _limits_table() -> str:
-    rows = [(COLUMN_MEANINGS[key], limits.sentence) for key, limits in LIMITS.items()]
-    return table(("Column", "Limits"), rows)
 
 
 def _joined(*parts: str) -> str:
@@ -358,4 +402,4 @@ def write_pages(folder: Path) -> None:
 
 
 if __name__ == "__main__":
-    write_pages(Path(sys.argv[1]))
+    write_pages(Path(sys.argv[1] if len(sys.argv) > 1 else "docs"))

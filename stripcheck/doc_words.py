@@ -1,4 +1,4 @@
-"""The words of the reference pages that people write: prose, and the tables that no part of the program holds."""
+"""What is written by hand for the reference pages: the prose, and the tables that no part of the program holds."""
 
 from __future__ import annotations
 
@@ -23,7 +23,7 @@ RULE_ENTRIES = (
     Entry("", "title", "", "text", "", "Shown above every result"),
     Entry("", "issue", "", "text", "", "Issue or date of the text that the figures come from"),
     Entry("", "citation", "", "text", "", "Where to find that text"),
-    Entry("", "status", "", "read, memory or own", "", "Whether the figures were read in the text, recalled, or are your own"),
+    Entry("", "status", "", "read, memory or own", "", "Whether the figures were read, recalled, or are your own"),
     Entry("", "note", "", "text", "nothing", "What a user of the set must know"),
     Entry("", "physics_counts", "physics_counts"),
     Entry("", "corrections_count", "corrections_count"),
@@ -60,7 +60,7 @@ CARD_ENTRIES = (
     Entry("wing", "area", "wing_area"),
     Entry("wing", "span", "span"),
     Entry("wing", "height_above_ground", "wing_height", usual="0.15 of the span"),
-    Entry("engine", "kind", "", " or ".join(POWERS), POWERS[0], "How the power falls with height"),
+    Entry("engine", "kind", "", ", ".join(POWERS), POWERS[0], "How the power falls with height"),
     Entry("engine", "rated_power", "rated_power"),
     Entry("engine", "critical_altitude", "", "ft", "", "Turbo-normalised only: up to where the rated power lasts"),
     Entry("engine", "flat_rated_to", "", "ft", "", "Flat rated only: up to where the rated power lasts"),
@@ -103,22 +103,38 @@ CARD_ENTRIES = (
 )
 
 COLUMN_MEANINGS = {
-    "strip": "Identifier of the strip", "code": "Another identifier; used where there is no column for the strip",
-    "name": "Name of the strip", "runway": "Both ends, such as 09/27, or one of them",
-    "designator": "Name of one end", "length": "Length between the ends",
-    "usable": "Length usable for take-off and landing, either way", "tora": "Length usable for take-off",
-    "lda": "Length usable for landing", "width": "Width", "surface": "Surface, in any spelling of the list below",
-    "condition": "dry, wet or soft", "closed": "Whether it is closed", "elevation": "Elevation of the strip, or of an end",
+    "strip": "Identifier of the strip",
+    "code": "Another identifier; used where there is no column for the strip",
+    "name": "Name of the strip",
+    "runway": "Both ends, such as 09/27, or one of them",
+    "designator": "Name of one end",
+    "length": "Length between the ends",
+    "usable": "Length usable for take-off and landing, either way",
+    "tora": "Length usable for take-off",
+    "lda": "Length usable for landing",
+    "width": "Width",
+    "surface": "Surface, in any spelling of the list below",
+    "condition": "dry, wet or soft",
+    "closed": "Whether it is closed",
+    "elevation": "Elevation of the strip, or of an end",
     "slope": "Mean slope; positive: rising from the end named first to the other",
-    "local_slope": "Steepest part, without sign", "heading": "True heading from an end to the other",
-    "displaced": "Distance of the displaced threshold from its end", "latitude": "Latitude of an end",
-    "longitude": "Longitude of an end", "obstacle_height": "Height of the obstacle above the end",
-    "obstacle_distance": "Distance of the obstacle from the end", "temperature": "Air temperature at this strip",
-    "qnh": "QNH at this strip", "wind_from": "True direction that the wind comes from at this strip",
-    "wind_speed": "Wind at this strip", "land_towards": "The only direction to land in, such as 09",
-    "take_off_towards": "The only direction to take off in, such as 27", "one_way": "Whether it is one-way",
-    "survey_date": "Date of the survey; shown, not used", "notes": "Notes; shown, not used",
-}  # fmt: skip
+    "local_slope": "Steepest part, without sign",
+    "heading": "True heading from an end to the other",
+    "displaced": "Distance of the displaced threshold from its end",
+    "latitude": "Latitude of an end",
+    "longitude": "Longitude of an end",
+    "obstacle_height": "Height of the obstacle above the end",
+    "obstacle_distance": "Distance of the obstacle from the end",
+    "temperature": "Air temperature at this strip",
+    "qnh": "QNH at this strip",
+    "wind_from": "True direction that the wind comes from at this strip",
+    "wind_speed": "Wind at this strip",
+    "land_towards": "The only direction to land in, such as 09",
+    "take_off_towards": "The only direction to take off in, such as 27",
+    "one_way": "Whether it is one-way",
+    "survey_date": "Date of the survey; shown, not used",
+    "notes": "Notes; shown, not used",
+}
 PLACES = {"strip": "once", "end": "for each end", "both": "once, or for each end"}
 
 LEFT_OUT = (
@@ -132,7 +148,7 @@ CONTRADICTIONS = (
     "A runway that a spreadsheet has turned into a date, such as 9-Mar for 09/03.",
     "A displaced threshold beyond the other end of the runway.",
     "Ends that differ in elevation by more than 30 % of the length.",
-    "An obstacle with a height but no distance, or with a distance but no height. A height of 0 says that there is none.",
+    "An obstacle with a height but no distance, or the other way round. A height of 0 says that there is none.",
     "`Land on` or `Leave by` naming neither end; or `One-way` without telling which way.",
     "A row with more cells than the header, as when a comma in a note is not within quotes.",
     "Slopes in a workbook that are all below 0.3 %: they may be cells formatted as percent, a hundred times too small.",
@@ -143,9 +159,10 @@ CONTRADICTIONS = (
 
 METHOD_INTRO = """
 Each verdict is the end of a chain of small steps, from the pressure on the altimeter to the metres that are
-left over. In a filled workbook each step is a column of the sheet Strips, with a live formula and a comment
-that tells its unit and source, so that any verdict can be followed back cell by cell. This page lists the
-same steps from the same tables."""
+left over. In a filled workbook each step is a column of the sheet Strips, or a row of the sheet Aircraft
+where it is the same for every strip, with a live formula, its unit and its source, so that any verdict can
+be followed back cell by cell. (A list of more than {0:,} directions keeps the main columns only, unless you
+ask for `--detail full`.) This page lists the same steps from the same tables."""
 GIVEN_INTRO = """
 What you type, and the unit of a plain number. *Key* is the name by which Python functions know it. A blank
 means "not known": nothing is filled in silently, and what stands in for it is listed on the sheet Method."""
@@ -183,8 +200,8 @@ Anderson, Aircraft Performance and Design (from memory). [3] Common practice, no
 neighbours, on the careful side."""
 OWN_RULES = """
 Write a text file whose name ends in `.toml`, and name it with `--rules`. A misspelt entry is refused, and
-so is a figure that can't be right. Write each figure with its unit, in quotes: a share without `%` would be
-read as per cent. A small one, for an invented operator:
+so is a figure that can't be right. Write each figure with its unit, in quotes: `"5 %"`, never 0.05, which
+would be read as 0.05 %. A small one, for an invented operator:
 
 ```toml
 title = "Our operations manual"
@@ -209,14 +226,14 @@ wet = 1.30
 
 All entries; *needed* ones have no usual value."""
 SURFACE_FACTORS = """
-Published surface corrections go into `[takeoff_surface.WORD]` and `[landing_surface.WORD]`, with the entries
-{0}, each a factor of 1 or more. WORD is one of {1} (in quotes where it has a space:
-`[takeoff_surface."long grass"]`), or `every` for all that have no figure of their own. What is left out is 1:
-then the physics of that surface governs."""
+Published surface corrections go into `[takeoff_surface.WORD]` and `[landing_surface.WORD]`, with the
+entries {0}, each a factor of 1 or more. WORD is one of {1} (in quotes where it has a space:
+`[takeoff_surface."long grass"]`), or `every` for all that have no figure of their own. What is left out is
+1: then the physics of that surface governs."""
 CARD_INTRO = """
-A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `--card FILE.toml` takes your own,
-`--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own manual's figures
-in their place."""
+A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `--card FILE.toml` takes your
+own, `--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own
+manual's figures in their place."""
 CARD_RECIPE = """
 1. Copy a shipped card with the same kind of propeller. Change name, masses, wing and power.
 2. Stall speeds: from the manual, as *calibrated* airspeed, one for each flap setting, at the mass named
@@ -232,6 +249,9 @@ CARD_RECIPE = """
 5. Load the card and look at the residuals (sheet Aircraft of a filled workbook). A point that is out by
    more than a few per cent, or a factor far from 1, says that something on the card does not belong
    together."""
+CARD_ENTRIES_INTRO = """
+Numbers carry their unit, in quotes. *Needed* entries have no usual value. A usual value of speeds, drag or landing that
+was used is listed as taken for granted. Parts in double brackets come again for each setting or point."""
 CALIBRATION = """
 Four things that no manual prints are fitted to the book points, one after the other: thrust on the take-off
 rolls, an airborne factor on the way from lift-off to 50 ft, a braking factor on the landing rolls, an
@@ -245,7 +265,8 @@ TRUST = """
 - The card is as good as the manual's table, flown by the manual's technique, in an aeroplane in that
   condition. A tired engine or a dented propeller is not on it.
 - Between and a little around the book points it is a calibrated model; far outside of them (much hotter,
-  higher or heavier) it is a careful estimate. Choose book points that span what you fly.
+  higher or heavier) it is an estimate, and no verdict tells you so. Choose book points that span what you
+  fly.
 - Slope, surface, wind and soft ground are physics with the coefficients of the ground table. The scatter of
   real ground is wider than that of any aeroplane: walk the strip.
 - Ground effect, flap drag and lift in the run are single figures. They matter most where the aeroplane
@@ -283,10 +304,10 @@ SURFACE_RULE = """
 A spelling is read word by word, in small letters without accents. A quality mark at the end (-G, -F, -P,
 -E) and a pavement strength code are dropped. Every word must be known; one that is not makes the surface
 unknown, for it might be the worst part. Of several surfaces the one that drags most on the wheels counts,
-in the order {}. Two exceptions: what is grassed, or grass over or on something, is grass; and ice mixed
-with anything else is unknown. `long`, `tall` or `high` with grass is long grass. Single letters are
-unknown, and so are *unpaved*, *hard* and *mixed*: they name no surface. An unknown surface is not assessed,
-and the sheet Left out counts its spellings."""
+the order from least to most drag being {}. Two exceptions: what is grassed, or grass over or on something,
+is grass; and ice mixed with anything else is unknown. `long`, `tall` or `high` with grass is long grass.
+Single letters are unknown, and so are *unpaved*, *hard* and *mixed*: they name no surface. An unknown
+surface is not assessed, and the sheet Left out counts its spellings."""
 SURFACE_REST = """
 Words for the condition: {}. The worse of this and of the column Condition counts. Words that change
 nothing: {}."""

@@ -88,8 +88,11 @@ _SPELLINGS = {
     "m²": "meter**2", "m2": "meter**2", "sq m": "meter**2", "ft²": "foot**2", "ft2": "foot**2", "sq ft": "foot**2",
 }  # fmt: skip
 
+# What may be handed to pint: words, apart by blanks or strokes. It would work out "9**9**9**9" before it says no.
+_UNIT_WORDS = re.compile(r"[^\W\d_]+(?:[ /][^\W\d_]+)*")
 _QUANTITY = re.compile(r"\s*([-+]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][-+]?\d+)?)\s*(.*?)\s*$")
 
+MOST = 10**300  # a whole number beyond this does not fit a float
 PRESSURE_HPA = (800.0, 1100.0)
 PRESSURE_INHG = (24.0, 32.5)
 
@@ -140,6 +143,8 @@ def unit_scale(spelling: str, kind: str) -> tuple[float, float]:
         return UNITS[shown].factor, UNITS[shown].offset
     registry = _registry()
     name = _SPELLINGS.get(shown.lower(), shown)
+    if name == shown and not _UNIT_WORDS.fullmatch(shown):
+        raise InputError(f'"{spelling}" is not a unit of {kind}; write for example "{_example(kind)}"')
     if kind == "temperature difference":
         name = {"degC": "delta_degC", "degF": "delta_degF", "kelvin": "delta_degC"}.get(name, name)
     try:
@@ -166,6 +171,8 @@ def read_quantity(value: object, kind: str, unit: str = "") -> float:
         return math.nan
     if isinstance(value, bool):
         raise InputError(f'"{value}" is not a number; write for example "{_example(kind)}"')
+    if isinstance(value, int) and abs(value) > MOST:
+        raise InputError(f'a whole number that long is no {kind}; write for example "{_example(kind)}"')
     number, spelling = (float(value), "") if isinstance(value, int | float) else _split(str(value), kind)
     if not math.isfinite(number):
         if isinstance(value, float) and math.isnan(number):
@@ -179,9 +186,9 @@ def read_quantity(value: object, kind: str, unit: str = "") -> float:
 
 
 def _split(text: str, kind: str) -> tuple[float, str]:
-    """Number and unit of a text; a comma is a thousands mark in "2,300" and a decimal one in "2,3"."""
+    """Number and unit of a text; a comma is a thousands mark in "2,300" and a decimal one in "2,3" and "0,300"."""
     plain = text.strip().replace("\u00a0", " ").replace("\u2212", "-")
-    plain = re.sub(r"(?<=\d)[, ](?=\d{3}(?!\d))", "", plain) if not re.search(r"\d\.\d*,", plain) else plain
+    plain = re.sub(r"(?<=\d)(?<!\b0)[, ](?=\d{3}(?!\d))", "", plain) if not re.search(r"\d\.\d*,", plain) else plain
     plain = re.sub(r"(?<=\d),(?=\d)", ".", plain)
     match = _QUANTITY.match(plain)
     if match is None:

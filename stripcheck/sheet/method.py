@@ -72,6 +72,7 @@ def write_method(pages: Pages, chain: Chain, taken: list[str], made_from: list[t
         row += 2
     _tables(pages, sheet, chain)
     styles.set_print(sheet)
+    sheet.page_setup.fitToHeight = 1
     sheet.print_area = f"A1:A{row}"
     return sheet
 

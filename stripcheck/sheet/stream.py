@@ -95,10 +95,14 @@ _DATES = (datetime.date, datetime.time, datetime.timedelta)
 
 @dataclass
 class Table:
-    """The rows of one large sheet: number of the first row (the template row), and the columns from A on."""
+    """The rows of one large sheet: number of the first row (the template row), and the columns from A on.
+
+    ``heights`` [points], shape (rows,), sets the height of each row; NaN leaves it as usual.
+    """
 
     first_row: int
     columns: Sequence[Column]
+    heights: np.ndarray | None = None
 
 
 @dataclass
@@ -316,10 +320,18 @@ def _prepare(worksheet: Worksheet, table: Table) -> _Sheet:
         pieces.append(piece)
         fillers.append(filler)
     row = "".join(pieces).encode()
+    if table.heights is not None:
+        heights = table.heights
+        row = b"%b>" + row
+        fillers.insert(0, lambda a, b: [_height_attributes(heights[a:b])])
     rows = len(table.columns[0].values)
     size = rows * (len(row) + 6 * row.count(b"\0") + 60 * len(pieces)) + sum(map(_most_bytes, table.columns))
     width = max(worksheet.max_column, len(template))
     return _Sheet(row, fillers, table.first_row, rows, width, size > _ZIP64_FROM)
+
+
+def _height_attributes(heights: np.ndarray) -> list[bytes]:
+    return [b"" if height != height else b' ht="%.4g" customHeight="1"' % height for height in heights.tolist()]
 
 
 def _most_bytes(column: Column) -> int:
@@ -479,6 +491,8 @@ def _stream(
 ) -> None:
     """Write the sheet's part with all its rows in place of the template row."""
     head, row_start, tail = _split(xml, sheet)
+    if sheet.row.startswith(b"%b>"):  # the first slot, of the height, belongs into the start tag
+        row_start = row_start.removesuffix(">")
     pieces = (row_start.encode() + sheet.row + b"</row>").split(ROW.encode())
     # one block is compressed, which leaves the interpreter free, while the next one is made
     with target.open(part, "w", force_zip64=sheet.may_pass_zip64) as file, ThreadPoolExecutor(1) as writer:

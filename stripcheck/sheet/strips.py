@@ -22,6 +22,7 @@ from stripcheck.verdict import CAUTION
 
 SHEET = "Strips"
 HEADER_ROW, FIRST_ROW = 3, 4
+REASON_WIDTH = 42
 
 IDENTITY = (
     ("key", "Key", 4, "Key of this direction, by which the Summary finds it"),
@@ -126,7 +127,7 @@ def _input_column(item: Input) -> Column:
 
 def _step_column(step: Step, group: str, hidden: bool = False) -> Column:
     label = f"{step.label}, {step.symbol}" if step.symbol else step.label
-    width = 42 if step.key.endswith("_reason") else 13 if step.key.endswith("_verdict") else 11
+    width = REASON_WIDTH if step.key.endswith("_reason") else 13 if step.key.endswith("_verdict") else 11
     unit = f"\nUnit: {step.unit}" if step.unit else ""
     comment = f"{step.label}.{unit}\nSource: {step.source}."
     return Column(step.key, _header(label, step.unit), width, step.unit, comment, group, hidden, step)
@@ -230,7 +231,7 @@ def table_of(columns: list[Column], directions: Directions, given: Mapping[str, 
             made.append(TextColumn(direction_keys(directions)))
         else:
             made.append(TextColumn(directions.texts[column.key]))
-    return Table(FIRST_ROW, made)
+    return Table(FIRST_ROW, made, styles.heights_for(directions.texts["fault"], REASON_WIDTH + 8))
 
 
 def direction_keys(directions: Directions) -> list[str]:

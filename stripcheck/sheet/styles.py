@@ -6,6 +6,9 @@ K. Ito), so that they hold in grey print; the word always stands beside them.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
+import numpy as np
 from openpyxl.formatting.rule import CellIsRule
 from openpyxl.styles import Alignment, Border, Font, PatternFill, Protection, Side
 from openpyxl.styles.differential import DifferentialStyle
@@ -86,6 +89,12 @@ def colour_words(sheet: Worksheet, reference: str, words: dict[str, str]) -> Non
 def colour_verdicts(sheet: Worksheet, reference: str) -> None:
     """Give the cells of a range the colours of the verdicts that they hold."""
     colour_words(sheet, reference, {word: word for word in VERDICT_COLOURS})
+
+
+def heights_for(texts: Sequence[str], width: float) -> np.ndarray | None:
+    """Row heights [points] for texts that wrap in a column of a width [characters]; None where all fit on one line."""
+    lines = np.array([-(-len(text) // int(width)) for text in texts])
+    return np.where(lines > 1, 13.5 * lines, np.nan) if (lines > 1).any() else None
 
 
 def write_caution(sheet: Worksheet, cell: str, caution: str) -> None:

@@ -200,7 +200,8 @@ def table_of(directions: Directions, letters: Mapping[str, str], values: Mapping
                                  [BOTH[int(i) - 1] for i in best["both"]])  # fmt: skip
     if any(len(column.values) != count for column in made.values()):
         raise ValueError("the summary's columns are not equally long")
-    return Table(FIRST_ROW, [made[key] for key, *_ in COLUMNS])
+    longest = [max(pair, key=len) for pair in zip(made["in_reason"].values, made["out_reason"].values, strict=True)]
+    return Table(FIRST_ROW, [made[key] for key, *_ in COLUMNS], styles.heights_for(longest, 50))
 
 
 _RANK_LIST = "{" + ",".join(f'"{word}"' for word in RANKS) + "}"
