@@ -4,22 +4,30 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from itertools import repeat
 from typing import Any
 
 import numpy as np
 
 from stripcheck.card import Card, flap_setting, load_card
-from stripcheck.chain import Chain, Step, evaluate
+from stripcheck.chain import FEW, Chain, Step, evaluate
 from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
 from stripcheck.inputs import STRIP
 from stripcheck.rules import Rules, load_rules
 from stripcheck.surface import CONDITIONS, SURFACES
-from stripcheck.units import from_si, read_quantity, to_si
+from stripcheck.units import UNITS, from_si, read_quantity
 from stripcheck.verdict import FAULT
 
 KIND_OF_UNIT = {"m": "length", "ft": "altitude", "%": "slope", "°": "angle", "°C": "temperature", "hPa": "pressure",
                 "kt": "speed"}  # fmt: skip
+# what nearly everybody asks for; a long list gets the other steps only when they are asked for
+AT_ONCE = (
+    "takeoff_finding", "takeoff_verdict", "takeoff_reason", "takeoff_roll", "takeoff_distance", "takeoff_required",
+    "takeoff_margin", "landing_finding", "landing_verdict", "landing_reason", "landing_roll", "landing_distance",
+    "landing_required", "landing_margin",
+)  # fmt: skip
+_YES_OR_NO = {None: 1, "": 1, "yes": 1, True: 1, "no": 0, False: 0}
 
 
 @dataclass(frozen=True)
@@ -27,11 +35,13 @@ class Result(Mapping[str, Any]):
     """A table of results, one row for each direction: ``result["takeoff_margin"]`` and so on for each step's key.
 
     Numbers come in the unit that ``unit(key)`` tells, NaN where there is no value; verdicts and reasons come as
-    texts; ``si(key)`` gives the plain array in SI, or the number of the words.
+    texts; ``si(key)`` gives the plain array in SI, or the number of the words. ``given`` are the inputs in SI;
+    ``found`` holds the steps computed so far, the others follow when they are asked for.
     """
 
     chain: Chain
     size: int
+    given: Mapping[str, Any]
     found: dict[str, np.ndarray]
     faults: Sequence[str]
 
@@ -39,7 +49,7 @@ class Result(Mapping[str, Any]):
         step = self._step(key)
         if step.words:
             return self._texts(step)
-        values = self.si(key)
+        values: Any = self.si(key)
         return values if values.dtype == bool else np.asarray(from_si(values, step.unit))
 
     def __iter__(self) -> Iterator[str]:
@@ -50,7 +60,10 @@ class Result(Mapping[str, Any]):
 
     def si(self, key: str) -> np.ndarray:
         """Values in SI, one for each direction."""
-        return np.broadcast_to(self.found[self._step(key).key], self.size)
+        step = self._step(key)
+        if step.key not in self.found:
+            self.found.update(evaluate(self.chain, self.given, (step.key,)))
+        return np.broadcast_to(self.found[step.key], self.size)
 
     def unit(self, key: str) -> str:
         """Unit in which ``result[key]`` comes."""
@@ -64,13 +77,16 @@ class Result(Mapping[str, Any]):
 
     def _texts(self, step: Step) -> list[str]:
         numbers = self.si(step.key)
-        texts = [step.words[int(number) - 1] for number in numbers]
-        return [self.faults[i] if text == FAULT else text for i, text in enumerate(texts)]
+        texts: list[str] = np.array(step.words, object)[numbers - 1].tolist()
+        if FAULT in step.words:
+            for i in np.flatnonzero(numbers == step.words.index(FAULT) + 1).tolist():
+                texts[i] = self.faults[i]
+        return texts
 
 
-def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, Any], rules: Rules | str = "manual-only",
-           *, takeoff_mass: Any = None, landing_mass: Any = None, takeoff_flap: str | None = None,
-           landing_flap: str | None = None) -> Result:  # fmt: skip
+def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, Any],
+           rules: Rules | str = "manual-only", *, takeoff_mass: Any = None, landing_mass: Any = None,
+           takeoff_flap: str | None = None, landing_flap: str | None = None) -> Result:  # fmt: skip
     """Assess strips, one direction a row, for one aeroplane on one day under one rule set.
 
     Parameters
@@ -78,8 +94,10 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     strips
         Columns by key of ``stripcheck.inputs.STRIP``: numbers in the units given there (lengths [m], elevations and
         obstacle heights [ft], slope [%], headings [deg], wind [kt]) or texts such as "2300 ft"; ``surface`` and
-        ``condition`` as words of the ground table. Columns are equally long, or single values for all rows.
-        Missing columns are "not known".
+        ``condition`` as words of the ground table, or arrays of their places [0, 1, ...] in
+        ``stripcheck.surface.SURFACES`` and ``CONDITIONS`` (-1: not known); whether a direction may be used as
+        "yes" or "no", or truths. Columns are equally long, or single values for all rows. Missing columns are
+        "not known". Arrays of numbers are by far the fastest.
     card, rules
         As loaded, or the name of a shipped one, or the path of a file.
     day
@@ -108,8 +126,9 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
         **_flap("landing_flap", landing_flap, card, "landing"),
     }
     chain = card.chain
-    values = evaluate(chain, {**card.values, **rules.values, **day.values, **columns, **loading})
-    return Result(chain, size, values, faults)
+    values = {**card.values, **rules.values, **day.values, **columns, **loading}
+    found = evaluate(chain, values, None if size < FEW else AT_ONCE)
+    return Result(chain, size, values, found, faults)
 
 
 def strip_columns(strips: Mapping[str, Any]) -> tuple[dict[str, Any], Sequence[str], int]:
@@ -127,58 +146,81 @@ def strip_columns(strips: Mapping[str, Any]) -> tuple[dict[str, Any], Sequence[s
     for item in STRIP:
         column = strips.get(item.key)
         if item.kind == "fault":
-            columns[item.key] = np.array([bool(text) for text in faults])
+            columns[item.key] = np.fromiter(map(bool, faults), bool, size) if item.key in strips else _all(False, size)
         elif item.kind == "flag":
-            columns[item.key] = np.array([_is_yes(flag, item.key) for flag in _repeated(column, size)])
+            columns[item.key] = _flags(column, item.key, size)
         elif item.kind == "choice":
-            words = SURFACES if item.key == "surface" else CONDITIONS
-            columns[item.key] = _codes(_repeated(column, size), words)
+            columns[item.key] = _codes(column, SURFACES if item.key == "surface" else CONDITIONS, item.key, size)
         else:
             columns[item.key] = _numbers(column, item.unit, item.key, size)
     return columns, faults, size
 
 
 def _is_column(column: Any) -> bool:
-    return not isinstance(column, str) and hasattr(column, "__len__")
+    return not isinstance(column, str) and hasattr(column, "__len__") and getattr(column, "ndim", 1) > 0
 
 
 def _repeated(column: Any, size: int) -> Sequence[Any]:
     return column if _is_column(column) else [column] * size
 
 
-def _is_yes(flag: Any, key: str) -> bool:
-    if flag in (None, "", "yes", True, 1):
-        return True
-    if flag in ("no", False, 0):
-        return False
-    raise InputError(f'strips: {key} = "{flag}" is neither yes nor no')
+def _all(value: Any, size: int) -> np.ndarray:
+    """One value for all rows, in the memory of one."""
+    return np.broadcast_to(np.asarray(value), size)
 
 
-def _codes(words: Sequence[Any], table: tuple[str, ...]) -> np.ndarray:
+def _flags(column: Any, key: str, size: int) -> np.ndarray:
+    """Truth for each yes or no; what is blank is yes."""
+    codes = _mapped(column, _YES_OR_NO, size)
+    if codes.dtype != bool and ((codes < 0) | (codes > 1)).any():
+        row = int(np.argmax((codes < 0) | (codes > 1)))
+        flag = column[row] if _is_column(column) else column
+        raise InputError(f'strips: {key}, row {row + 1}: "{flag}" is neither yes nor no')
+    return codes.astype(bool)
+
+
+def _codes(column: Any, table: tuple[str, ...], key: str, size: int) -> np.ndarray:
     """Place of each word in the table, -1 where it is not there."""
-    code = {word: number for number, word in enumerate(table)}
-    return np.array([code.get(word, -1) for word in words])
+    codes = _mapped(column, {word: number for number, word in enumerate(table)}, size)
+    if codes.min(initial=-1) < -1 or codes.max(initial=-1) >= len(table):
+        row = int(np.argmax((codes < -1) | (codes >= len(table))))
+        raise InputError(
+            f"strips: {key}, row {row + 1}: {codes[row]} is not the place of a word; write one of: {', '.join(table)}"
+        )
+    return codes.astype(np.int8)
+
+
+def _mapped(column: Any, code: Mapping[Any, int], size: int) -> np.ndarray:
+    """The code of each word, -1 where it has none; arrays of whole numbers or truths are codes already."""
+    if not _is_column(column):
+        return _all(code.get(column, -1), size)
+    if isinstance(column, np.ndarray):
+        if column.dtype.kind in "biu":
+            return column
+        column = column.tolist()
+    return np.fromiter(map(code.get, column, repeat(-1)), np.int8, size)
 
 
 def _numbers(column: Any, unit: str, key: str, size: int) -> np.ndarray:
+    """SI values; always in an array of their own, from which results are computed later too."""
     if column is None:
-        return np.full(size, np.nan)
+        return _all(np.nan, size)
     array = np.asarray(column)
     if array.dtype.kind in "fiu":
-        return np.broadcast_to(np.asarray(to_si(array.astype(float), unit), float), size)
+        values = array * UNITS[unit].factor
+        return np.broadcast_to(values + UNITS[unit].offset if UNITS[unit].offset else values, size)
     try:
-        values = [read_quantity(value, KIND_OF_UNIT[unit], unit if unit != "hPa" else "") for value in
-                  _repeated(column, size)]  # fmt: skip
+        return np.array([read_quantity(value, KIND_OF_UNIT[unit], unit if unit != "hPa" else "") for value in
+                         _repeated(column, size)])  # fmt: skip
     except InputError as error:
         raise InputError(f"strips: {key}: {error}") from None
-    return np.array(values)
 
 
 def _mass(key: str, mass: Any) -> dict[str, Any]:
     if mass is None:
         return {}
     if _is_column(mass):
-        return {key: np.asarray(mass, float)}
+        return {key: np.array(mass, float)}
     value = read_quantity(mass, "mass")
     if not value > 0.0:
         raise InputError(f"{key}: {mass} is not a mass; write for example 1050 kg")
@@ -187,5 +229,3 @@ def _mass(key: str, mass: Any) -> dict[str, Any]:
 
 def _flap(key: str, name: str | None, card: Card, use: str) -> dict[str, float]:
     return {} if name is None else {key: flap_setting(name, card.flaps, use, card.file)}
-
-

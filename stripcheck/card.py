@@ -57,6 +57,8 @@ class Card:
     stall_mass: float
     values: dict[str, Any]
     assumed: list[str]
+    takeoff: BookPoints
+    landing: BookPoints
     fit: Fit
 
     @property
@@ -97,7 +99,8 @@ def load_card(name: str) -> Card:
     name, note = aeroplane.text("name"), aeroplane.text("note", "")
     top.refuse_unknown()
     fit = calibrate(build_chain(kind, power), values, takeoff, landing, path.name)
-    return Card(name, note, path.name, kind, power, flaps, _stall_mass(top.section("mass")), {**values, **fit.values}, assumed, fit)
+    return Card(name, note, path.name, kind, power, flaps, _stall_mass(top.section("mass")), {**values, **fit.values}, assumed,
+                takeoff, landing, fit)  # fmt: skip
 
 
 def shipped_cards() -> list[str]:

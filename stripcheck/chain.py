@@ -23,7 +23,10 @@ FEW = 4000  # rows below which recording the steps costs more time than it saves
 
 @dataclass(frozen=True)
 class Input:
-    """A value that a user gives: ``where`` is strip, day, card or rules; ``kind`` number, flag, fault, choice or range."""
+    """A value that a user gives.
+
+    ``where`` is strip, day, card or rules; ``kind`` is number, flag, fault, choice or range.
+    """
 
     key: str
     label: str
@@ -37,11 +40,12 @@ class Input:
 class Step:
     """A computed value.
 
-    ``symbol`` is the trade's sign for it, ``guard`` the key of a truth, or of a number, without which it has no value, ``source``
-    where its method comes from, ``words`` the texts that its number stands for (1 is the first), ``lookup`` the
-    column of the ground table that it is read from, ``short`` whether a long list keeps it as a column of its own,
-    ``implies`` further keys that have a value wherever this truth holds, ``late`` the guards that are sure to hold
-    by the time the step reads the values that stand under them, because it tests the guards themselves before.
+    ``symbol`` is the trade's sign for it, ``guard`` the key of a truth, or of a number, without which it has no
+    value, ``source`` where its method comes from, ``words`` the texts that its number stands for (1 is the first),
+    ``lookup`` the column of the ground table that it is read from, ``short`` whether a long list keeps it as a
+    column of its own, ``implies`` further keys that have a value wherever this truth holds, ``late`` the guards that
+    are sure to hold by the time the step reads the values that stand under them, because it tests the guards
+    themselves before.
     """
 
     key: str
@@ -69,7 +73,7 @@ class Chain:
     by_key: Mapping[str, Input | Step] = field(init=False)
 
     def __post_init__(self) -> None:
-        items = (*self.inputs, *self.steps)
+        items: tuple[Input | Step, ...] = (*self.inputs, *self.steps)
         object.__setattr__(self, "by_key", {item.key: item for item in items})
         if len(self.by_key) != len(items):
             raise ValueError("two items of the chain have the same key")

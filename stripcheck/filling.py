@@ -134,10 +134,10 @@ def _progress(filling: Filling, quiet: bool) -> Iterator[Callable[[int], None] |
 def summary_lines(filling: Filling, output: Path) -> list[str]:
     """Counts of verdicts, and what was left out, in a few lines."""
     counts, directions = filling.counts(), filling.directions
-    lines = [f"{output}: {directions.n // 2} strips, {len(directions.left_out)} of {directions.rows_read} left out"]
+    lines = [f"{output}: {directions.n // 2} runways, {len(directions.left_out)} of {directions.rows_read} left out"]
     for side, label in (("in", "Landing"), ("out", "Take-off")):
         lines.append(f"{label}: " + ", ".join(f"{counts[side][verdict]} {verdict}" for verdict in VERDICTS))
-    lines.append("In and out: " + ", ".join(f"{number} {words}" for words, number in counts["both"].items() if number))
+    lines.append("In and out: " + "; ".join(f"{number} {words}" for words, number in counts["both"].items() if number))
     return lines
 
 

@@ -93,7 +93,7 @@ def air_acceleration(rho: Number, wing_area: Number, mass: Number, drag: Number,
     ``friction`` [-]. It is negative where lift relieves the wheels more than drag holds back.
 
     >>> round(air_acceleration(1.225, 16.0, 1000.0, 0.06, 0.5, 0.05), 8)
-    0.00034300
+    0.000343
     """
     return 0.5 * rho * wing_area / mass * (drag - friction * lift)
 

@@ -188,7 +188,7 @@ def ground_row(surface: Number, condition: Number, day_condition: Number) -> Num
 
     A code of -1 stands for "not known"; such a pair has the row after the last, GROUND_UNKNOWN.
     """
-    used = np.where(condition >= 0, condition, day_condition)
+    used: Number = np.where(condition >= 0, condition, day_condition)
     return np.where((surface >= 0) & (used >= 0), surface * len(CONDITIONS) + used + 1, GROUND_UNKNOWN)
 
 
@@ -212,10 +212,12 @@ def loading_known(mass: Number, flap: Number, least: Number, most: Number) -> Nu
 
 
 def side_known_of(fault: Number, density: Number, headwind: Number, slope: Number, friction: Number, factor: Number,
-                  length: Number, loading: Number) -> Number:  # fmt: skip
+                  length: Number, loading: Number, physics_counts: Number,
+                  corrections_count: Number) -> Number:  # fmt: skip
     """Whether all is known that one side, take-off or landing, needs."""
     figures = np.isfinite(density) & np.isfinite(headwind) & np.isfinite(friction) & np.isfinite(factor)
-    return np.logical_not(fault) & figures & known(slope, SLOPES) & known(length, LENGTHS) & loading
+    rules = physics_counts | corrections_count
+    return np.logical_not(fault) & figures & known(slope, SLOPES) & known(length, LENGTHS) & loading & rules
 
 
 def interpolated(at: Number, nodes: Number, values: Number) -> Number:

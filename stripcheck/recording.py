@@ -9,11 +9,13 @@ replaced by faster ones with the same result. stripcheck/program.py runs what wa
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from itertools import pairwise
 from typing import Any, NoReturn
 
 import numpy as np
 
-BITS = {1: np.dtype(np.int8), 8: np.dtype(np.int64)}  # how results of one and of eight bytes are taken as bare bits
+# how results of one and of eight bytes are taken as bare bits
+BITS: dict[int, np.dtype[Any]] = {1: np.dtype(np.int8), 8: np.dtype(np.int64)}
 
 _BYTE = np.dtype(np.uint8)
 _AND, _OR = (np.logical_and, np.bitwise_and), (np.logical_or, np.bitwise_or)
@@ -86,7 +88,8 @@ class Recorder:
 
     def column(self, key: str, dtype: np.dtype[Any]) -> Node:
         """Node of a column of the data: floats, whole numbers or truths, taken as types of eight or one bytes."""
-        kept = dtype if dtype == bool or dtype.itemsize in BITS else np.dtype({"f": float}.get(dtype.kind, np.int64))
+        usual = dtype.kind in "biuf" and dtype.itemsize in BITS
+        kept = dtype if usual else np.dtype(float if dtype.kind == "f" else np.int64)
         node = self._nodes[key] = Node(self, len(self._nodes), None, (key,), kept)
         node.needs = _needs_of(node, _NONE)
         return node
@@ -248,7 +251,7 @@ def _copy(values: np.ndarray, out: np.ndarray) -> None:
 def _select(conditions: Sequence[Any], choices: Sequence[int], default: int) -> Any:
     """The choice of the first condition that holds: as the choices rise, it is the least of those that hold."""
     rising = [-1, *choices, default]
-    if not all(low < high < 256 for low, high in zip(rising, rising[1:], strict=False)):
+    if not all(low < high < 256 for low, high in pairwise(rising)):
         raise TypeError("np.select can be recorded only with choices that rise from 0 to a default of 255 at most")
     most: Any = np.uint8(0)
     for condition, choice in zip(conditions, choices, strict=True):

@@ -53,6 +53,8 @@ def load_rules(name: str) -> Rules:
         values,
     )
     top.refuse_unknown()
+    if not (values["physics_counts"] or values["corrections_count"]):
+        raise InputError(f"{path.name}: physics_counts and corrections_count can't both be false: nothing would count")
     return rules
 
 

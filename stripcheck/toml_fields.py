@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import os
 import tomllib
 from collections.abc import Iterator
 from pathlib import Path
@@ -12,6 +13,7 @@ from stripcheck.errors import InputError
 from stripcheck.units import read_quantity
 
 REQUIRED = object()
+BARE_SHARE = 0.003  # 0.3 per cent, below which a bare figure was probably meant as a share
 
 
 class Section:
@@ -32,6 +34,8 @@ class Section:
             return float(self._default(name, default, f"a {kind}"))
         try:
             value = read_quantity(self.entries[name], kind)
+            if kind == "slope" and isinstance(self.entries[name], int | float) and 0.0 < abs(value) < BARE_SHARE:
+                raise InputError("a bare figure below 0.3 could be a share or a percentage; write it with its sign, as 5 %")
         except InputError as error:
             raise InputError(f"{self.where}: {name}: {error}") from None
         if not low <= value <= high:
@@ -57,7 +61,7 @@ class Section:
     def texts(self, name: str, choices: tuple[str, ...]) -> tuple[str, ...]:
         self.asked.add(name)
         value = self.entries.get(name, list(choices))
-        if not isinstance(value, list) or not set(value) <= set(choices):
+        if not isinstance(value, list) or not all(word in choices for word in value):
             raise InputError(f"{self.where}: {name} must be a list out of: {', '.join(choices)}")
         return tuple(value)
 
@@ -123,10 +127,10 @@ def shipped_or_own(name: str, folder: str) -> Path:
     """Path of a user's own file, or of the one shipped under that name. Raises InputError where there is neither."""
     shipped = Path(__file__).parent / folder
     own = Path(name)
-    if own.suffix == ".toml" or own.exists():
+    if own.suffix == ".toml" or os.path.exists(own):  # unlike Path.exists, this takes a name of any length
         return own
     candidate = shipped / f"{name}.toml"
-    if candidate.is_file() and candidate.parent == shipped:
+    if os.path.isfile(candidate) and candidate.parent == shipped:
         return candidate
     names = ", ".join(sorted(path.stem for path in shipped.glob("*.toml")))
     raise InputError(f'"{name}" is neither a file nor one of the shipped {folder}: {names}')

@@ -19,6 +19,8 @@ from stripcheck.numeric import Number
 SUITABLE, MARGINAL, UNSUITABLE, NOT_ASSESSED = VERDICTS = ("suitable", "marginal", "unsuitable", "not assessed")
 FAULT = "{fault}"  # stands for the text of the row's fault where a reason is put into words
 
+NO_RULE = "the rules count neither physics nor corrections"
+
 CAUTION = (
     "Planning aid only. The approved flight manual, the rules of the local authority and the pilot in command decide."
 )
@@ -36,6 +38,10 @@ class Finding:
 
 def _no(truth: Number) -> Number:
     return np.logical_not(truth)
+
+
+def _neither(one: Number, other: Number) -> Number:
+    return np.logical_not(one | other)
 
 
 def _yes(truth: Number) -> Number:
@@ -128,8 +134,8 @@ def _site_findings(slope: str) -> tuple[Finding, ...]:
         Finding(MARGINAL, "steeper than the site criterion", (slope, "greatest_slope"), _steeper),
         Finding(MARGINAL, "a part is steeper than the site criterion", ("local_slope", "greatest_local_slope"),
                 _steeper_part),
-        Finding(MARGINAL, "obstacle ahead above the obstacle-free surface", ahead, _stands_in_free_area),
-        Finding(MARGINAL, "obstacle behind above the obstacle-free surface", behind, _stands_in_free_area),
+        Finding(MARGINAL, "obstacle on the climb-out stands in the area to be kept free", ahead, _stands_in_free_area),
+        Finding(MARGINAL, "obstacle on the approach stands in the area to be kept free", behind, _stands_in_free_area),
     )  # fmt: skip
 
 
@@ -141,23 +147,24 @@ TAKEOFF_FINDINGS = (
     Finding(NOT_ASSESSED, "no figures for this surface in this condition", ("rolling",), _missing),
     Finding(NOT_ASSESSED, "length usable for take-off not known", ("tora",), _unknown(links.LENGTHS)),
     Finding(NOT_ASSESSED, "take-off mass or flap missing or not in the card", ("takeoff_set",), _no),
-    Finding(NOT_ASSESSED, "a value is missing", ("takeoff_known",), _no),
+    Finding(NOT_ASSESSED, NO_RULE, ("physics_counts", "corrections_count"), _neither),
+    Finding(NOT_ASSESSED, "a value needed is missing", ("takeoff_known",), _no),
     Finding(UNSUITABLE, "over the greatest take-off mass", ("mass_takeoff", "max_takeoff_mass"), _above),
     Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),
     Finding(UNSUITABLE, "does not lift off", ("lifts_off",), _no),
     Finding(UNSUITABLE, "does not climb away", ("climbs",), _no),
     Finding(UNSUITABLE, "take-off distance longer than the strip", ("takeoff_distance", "tora"), _above),
-    Finding(UNSUITABLE, "does not clear the obstacle ahead", ("obstacle_ahead", "over_obstacle"), _below),
+    Finding(UNSUITABLE, "does not clear the obstacle on the climb-out", ("obstacle_ahead", "over_obstacle"), _below),
     Finding(MARGINAL, "take-off fits only without the safety factor", ("takeoff_margin",), _negative),
-    Finding(MARGINAL, "clears the obstacle ahead by less than is asked",
+    Finding(MARGINAL, "clears the obstacle on the climb-out by less than is asked",
             ("obstacle_ahead", "over_obstacle_factored", "obstacle_margin"), _below_margin),
     Finding(MARGINAL, "barely accelerates near lift-off", ("least_acceleration", "first_acceleration"),
             links.barely_of),
-    Finding(MARGINAL, "steeper uphill than the rule set's corrections cover", ("takeoff_slope", "slope_limit"),
+    Finding(MARGINAL, "steeper uphill than the rules allow for", ("takeoff_slope", "slope_limit"),
             _above_given),
     *_site_findings("takeoff_slope"),
-    Finding(SUITABLE, "take-off fits with the factors", (), lambda: True),
+    Finding(SUITABLE, "take-off fits, factors included", (), lambda: True),
 )  # fmt: skip
 
 LANDING_FINDINGS = (
@@ -168,20 +175,21 @@ LANDING_FINDINGS = (
     Finding(NOT_ASSESSED, "no figures for this surface in this condition", ("braking",), _missing),
     Finding(NOT_ASSESSED, "length usable for landing not known", ("lda",), _unknown(links.LENGTHS)),
     Finding(NOT_ASSESSED, "landing mass or flap missing or not in the card", ("landing_set",), _no),
-    Finding(NOT_ASSESSED, "a value is missing", ("landing_known",), _no),
+    Finding(NOT_ASSESSED, NO_RULE, ("physics_counts", "corrections_count"), _neither),
+    Finding(NOT_ASSESSED, "a value needed is missing", ("landing_known",), _no),
     Finding(UNSUITABLE, "over the greatest landing mass", ("mass_landing", "max_landing_mass"), _above),
     Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),
-    Finding(UNSUITABLE, "ground falls away as steeply as the approach", ("path_closes",), _no),
+    Finding(UNSUITABLE, "ground drops away too steeply for the approach", ("path_closes",), _no),
     Finding(UNSUITABLE, "does not stop", ("stops",), _no),
-    Finding(UNSUITABLE, "obstacle behind leaves too little to land on",
+    Finding(UNSUITABLE, "obstacle on the approach leaves too little to land on",
             ("landing_distance", "landing_available", "lda"), _obstacle_decides),
     Finding(UNSUITABLE, "landing distance longer than the strip", ("landing_distance", "landing_available"), _above),
     Finding(MARGINAL, "landing fits only without the safety factor", ("landing_margin",), _negative),
-    Finding(MARGINAL, "steeper downhill than the rule set's corrections cover", ("landing_slope", "slope_limit"),
+    Finding(MARGINAL, "steeper downhill than the rules allow for", ("landing_slope", "slope_limit"),
             _steeper_down),
     *_site_findings("landing_slope"),
-    Finding(SUITABLE, "landing fits with the factors", (), lambda: True),
+    Finding(SUITABLE, "landing fits, factors included", (), lambda: True),
 )  # fmt: skip
 
 

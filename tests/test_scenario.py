@@ -116,9 +116,9 @@ def test_what_is_not_assessed_says_why(demo: Filling) -> None:
         ("XTNM", "IN BUT NOT OUT", "take-off distance longer than the strip"),  # nearly 9,000 ft
         ("XRSL", "IN BUT NOT OUT", "does not lift off"),  # soft sand
         ("XBLS", "neither in nor out", "crosswind above the limit"),  # 22 kt across, from the strip's own wind
-        ("XGRD", "in and out, marginal", "clears the obstacle ahead by less than is asked"),
+        ("XGRD", "in and out, marginal", "clears the obstacle on the climb-out by less than is asked"),
         ("XSPH", "in and out, marginal", "take-off fits only without the safety factor"),
-        ("XTLF", "in and out", "take-off fits with the factors"),
+        ("XTLF", "in and out", "take-off fits, factors included"),
     ],
 )
 def test_the_story_of_a_strip(demo: Filling, strip: str, both: str, reason: str) -> None:

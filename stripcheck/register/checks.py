@@ -70,10 +70,10 @@ def _check_obstacles(runways: Runways) -> None:
     for end in (1, 2):
         height, distance = runways.at_end("obstacle_height", end), runways.at_end("obstacle_distance", end)
         no_distance = np.flatnonzero((height > 0.0) & np.isnan(distance))
-        _add(runways, no_distance, "obstacle_height", "an obstacle needs a distance from the end too; add it")
+        _add(runways, no_distance, "obstacle_height", "an obstacle needs a distance from the end too; add it", end)
         no_height = np.flatnonzero(np.isnan(height) & ~np.isnan(distance))
-        _add(runways, no_height, "obstacle_distance", "an obstacle needs a height too; add it")
+        _add(runways, no_height, "obstacle_distance", "an obstacle needs a height too; add it", end)
 
 
-def _add(runways: Runways, indexes: NDArray[np.intp], key: str, message: str) -> None:
-    runways.faults += [Fault(int(index), runways.header(key), message) for index in indexes]
+def _add(runways: Runways, indexes: NDArray[np.intp], key: str, message: str, end: int = 0) -> None:
+    runways.faults += [Fault(int(index), runways.header(key, end), message) for index in indexes]

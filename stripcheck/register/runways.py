@@ -74,9 +74,10 @@ class Runways:
         own = self.number(key, end)
         return np.where(np.isnan(own), self.number(key), own)
 
-    def header(self, key: str) -> str:
-        """Header of the first column with that key, for a message."""
-        return next(item.header for (name, _), item in self.found.items() if name == key)
+    def header(self, key: str, end: int = 0) -> str:
+        """Header of the column with that key for an end, or of the first with that key, for a message."""
+        own = self.found.get((key, end))
+        return own.header if own else next(item.header for (name, _), item in self.found.items() if name == key)
 
     def read_each(self, key: str, read: Callable[[object], T], if_bad: T) -> list[T]:
         """Cells of a column read one by one; a cell that can't be read gives a fault and ``if_bad``."""

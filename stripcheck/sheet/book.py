@@ -76,7 +76,7 @@ def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Map
     return Filling(directions, card, day, rules, chosen, flap_names, given, values, summary.summarise(values, words))
 
 
-_SUMMARISED = {f"{step}_{part}" for _, step, _ in summary.SIDES for part in ("verdict", "margin", "margin_share", "reason")}
+_SUMMARISED = {f"{step}_{part}" for _, step, _ in summary.SIDES for part in ("finding", "verdict", "margin", "margin_share", "reason")}
 
 
 def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[[int], None] | None = None) -> list[str]:
@@ -129,7 +129,8 @@ def taken_for_granted(filling: Filling) -> list[str]:
     """Every default and assumed value that stands in this filling, in words."""
     lines = [*filling.day.defaults, *filling.card.assumed, *filling.card.fit.remarks]
     kinds = Counter(item.what for item in filling.directions.doubts)
-    lines += [f"{what}: {number} runways, listed on the sheet Left out" for what, number in kinds.most_common()]
+    lines += [f"{what}: {_runways(number)}, listed on the sheet Left out" for what, number in kinds.most_common()]
+    lines.append(_book_range(filling.card))
     slope = filling.day.values["assumed_slope"]
     if np.isfinite(slope):
         lines.append(f"Slope of {slope:.1%} against you, both ways, where none is known")
@@ -138,9 +139,23 @@ def taken_for_granted(filling: Filling) -> list[str]:
     return lines
 
 
+def _runways(number: int) -> str:
+    return f"{number:,} runway" if number == 1 else f"{number:,} runways"
+
+
+def _book_range(card: Card) -> str:
+    """How far the book points of the card reach: beyond them nothing of the manual's stands behind the model."""
+    altitudes = [from_si(point, "ft") for points in (card.takeoff, card.landing) for point in points.pressure_altitude]
+    heats = [from_si(point, "°C") for points in (card.takeoff, card.landing) for point in points.temperature]
+    return (
+        f"The card's book points lie between {min(altitudes):,.0f} and {max(altitudes):,.0f} ft pressure altitude and "
+        f"{min(heats):.0f} and {max(heats):.0f} °C; beyond them the model is carried on without the manual"
+    )
+
+
 def _made_from(filling: Filling) -> list[tuple[str, str]]:
     return [
-        ("Runway list", f"{filling.directions.source}, {filling.directions.rows_read} runways"),
+        ("Runway list", f"{filling.directions.source}, {_runways(filling.directions.rows_read)}"),
         ("Aircraft card", f"{filling.card.file}: {filling.card.name}"),
         ("Rule set", f"{filling.rules.name}: {filling.rules.title}"),
     ]

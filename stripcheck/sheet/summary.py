@@ -23,12 +23,14 @@ SHEET = "Summary"
 HEADER_ROW, FIRST_ROW = 14, 15
 # from worst to best: one direction that is known to be usable is enough, one that is not known may yet be
 RANKS = (UNSUITABLE, NOT_ASSESSED, MARGINAL, SUITABLE)
+FORBIDDEN = 1  # number of the finding of a one-way strip's wrong direction, which ranks below all verdicts
 BOTH = ("in and out", "in and out, marginal", "IN BUT NOT OUT", "out but not in", "neither in nor out", "not assessed")
 SIDES = (("in", "landing", "Land"), ("out", "takeoff", "Take off"))
 
 
 def first_is_better(rank_1: Number, margin_1: Number, rank_2: Number, margin_2: Number) -> Number:
-    """Whether direction 1 is the better: by rank of its verdict [1 to 4], then by margin [m], a known one first."""
+    """Whether direction 1 is the better: by rank of its verdict [1 to 4; 0 for a forbidden direction], then by
+    margin [m], a known one first."""
     both = np.isfinite(margin_1) & np.isfinite(margin_2)
     by_margin = np.where(both, margin_1 >= margin_2, np.logical_not(np.isfinite(margin_2)))
     return (rank_1 > rank_2) | ((rank_1 == rank_2) & by_margin)
@@ -61,8 +63,9 @@ def summarise(values: Mapping[str, np.ndarray], words: Mapping[str, tuple[str, .
     found: dict[str, np.ndarray] = {}
     for side, step, _ in SIDES:
         rank = ranks_of(values[f"{step}_verdict"], words[f"{step}_verdict"])
+        order = np.where(values[f"{step}_finding"] == FORBIDDEN, 0, rank)
         margin = values[f"{step}_margin"]
-        first = first_is_better(rank[::2], margin[::2], rank[1::2], margin[1::2])
+        first = first_is_better(order[::2], margin[::2], order[1::2], margin[1::2])
         found[side] = np.arange(0, len(rank), 2) + np.where(first, 0, 1)
         found[f"{side}_rank"] = rank[found[side]]
     found["both"] = in_and_out(found["in_rank"], found["out_rank"])
@@ -81,12 +84,12 @@ COLUMNS = (
     ("runway", "Runway", 10, "Both directions"),
     ("both", "In and out", 21, "Whether you get in, and out again"),
     ("in_verdict", "Land: verdict", 13, "Verdict for the better landing direction"),
-    ("in_direction", "Land towards", 9, "Better landing direction"),
+    ("in_direction", "Land on", 9, "Direction in which to land"),
     ("in_margin", "Land: margin [m]", 10, "Length available less length required; negative: missing"),
     ("in_share", "Land: margin [%]", 9, "Margin as a share of the length available"),
     ("in_reason", "Land: limiting reason", 42, "What decides the verdict"),
     ("out_verdict", "Take off: verdict", 13, "Verdict for the better take-off direction"),
-    ("out_direction", "Take off towards", 9, "Better take-off direction"),
+    ("out_direction", "Leave by", 9, "Direction in which to take off"),
     ("out_margin", "Take off: margin [m]", 10, "Length available less length required; negative: missing"),
     ("out_share", "Take off: margin [%]", 9, "Margin as a share of the length available"),
     ("out_reason", "Take off: limiting reason", 42, "What decides the verdict"),
@@ -212,7 +215,9 @@ def _better_row(column: Mapping[str, str], step: str) -> str:
     cells = []
     for i in (1, 2):
         row = f"${LETTERS[f'row_{i}']}{ROW}"
-        cells.append(Cell(f"MATCH(INDEX({column[f'{step}_verdict']},{row}),{_RANK_LIST},0)", depth=2))
+        rank = Cell(f"MATCH(INDEX({column[f'{step}_verdict']},{row}),{_RANK_LIST},0)", depth=2)
+        finding = Cell(f"INDEX({column[f'{step}_finding']},{row})", depth=1)
+        cells.append(np.where(finding == float(FORBIDDEN), 0.0, rank))
         cells.append(Cell(f"INDEX({column[f'{step}_margin']},{row})", depth=1))
     better = first_is_better(*cells)
     row_1, row_2 = (f"${LETTERS[f'row_{i}']}{ROW}" for i in (1, 2))

@@ -1,0 +1,179 @@
+"""The aircraft card: what it reads, what it assumes, and one sentence for everything that can't be right."""
+
+from __future__ import annotations
+
+import math
+import re
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from stripcheck.card import TYPICAL, flap_setting, load_card, shipped_cards
+from stripcheck.errors import InputError
+from stripcheck.inputs import CARD, CONSTANT_SPEED, FIXED_PITCH, POWER_LIMIT
+from tests.aircraft import HERON, changed, load_text, shipped_text
+
+KNOT, FOOT = 1852.0 / 3600.0, 0.3048
+
+
+@pytest.mark.parametrize("name", shipped_cards())
+def test_shipped_cards(name: str) -> None:
+    """Each says that it is invented, needs no typical value, and is met by its book points within 8 %."""
+    card = load_card(name)
+    assert "nvented" in card.note and card.assumed == [] and card.fit.remarks == []
+    for label, book, model in card.fit.residuals:
+        assert model == pytest.approx(book, rel=0.08), label
+
+
+def test_a_fixed_pitch_card() -> None:
+    card = load_card("ridge-runner")
+    assert (card.name, card.propeller, card.power) == ("Ridge Runner 180", "fixed pitch", "normally aspirated")
+    assert set(card.values) == {item.key for item in (*CARD, *FIXED_PITCH)}
+    assert card.values["mass_takeoff"] == 1050.0 and card.values["max_takeoff_mass"] == 1110.0
+    assert card.values["crosswind_limit"] == pytest.approx(15.0 * KNOT)
+    assert card.values["takeoff_flap"] == pytest.approx(math.radians(10.0))
+    assert [flap.name for flap in card.flaps] == ["up", "10", "20", "30"]
+    assert card.flaps[3].uses == ("landing",)
+    # CLmax = 2 m g / (rho0 S Vs^2), lift equation, by hand for 50 kt
+    lift = 2.0 * 1110.0 * 9.80665 / (1.225 * 16.3 * (50.0 * KNOT) ** 2)
+    assert card.values["flap_lift"][1] == pytest.approx(lift, rel=1e-6)
+
+
+def test_a_flat_rated_card() -> None:
+    """The rating ends at 10,000 ft in the standard atmosphere: density ratio 0.7385 (ISO 2533)."""
+    card = load_card("high-mule")
+    assert set(card.values) == {item.key for item in (*CARD, *CONSTANT_SPEED, POWER_LIMIT)}
+    assert card.values["limit_sigma"] == pytest.approx(0.7385, abs=1e-4)
+    assert card.values["rated_power"] == 410e3 and card.values["propeller_diameter"] == 2.6
+
+
+def test_a_turbo_normalised_card(tmp_path: Path) -> None:
+    text = changed(shipped_text("high-mule"), ('kind = "flat rated"', 'kind = "turbo-normalised"'),
+                   ("flat_rated_to", "critical_altitude"))  # fmt: skip
+    card = load_text(text, tmp_path)
+    assert card.power == "turbo-normalised" and "limit_sigma" in card.values
+
+
+def test_typical_values_are_told(tmp_path: Path) -> None:
+    """Every entry that a manual seldom prints may be left out; the card lists what stood in."""
+    text = HERON
+    for _, entry in TYPICAL:
+        text = re.sub(rf"^{entry} = .*\n", "", text, flags=re.MULTILINE)
+    text = re.sub(r"^height_above_ground = .*\n", "", text, flags=re.MULTILINE)
+    card = load_text(text, tmp_path)
+    told = "\n".join(card.assumed)
+    assert len(card.assumed) == len(TYPICAL) + 1
+    for (part, entry), value in TYPICAL.items():
+        assert f"trial.toml [{part}]: {entry} not given, {value} used" in told
+    assert card.values["wing_height"] == pytest.approx(0.15 * 11.0)
+    assert card.values["efficiency"] == 0.75 and card.values["free_roll_seconds"] == 2.0
+
+
+def test_masses_and_usual_loading_may_be_left_out(tmp_path: Path) -> None:
+    text = changed(HERON, ('max_landing = "1110 kg"\n', ""), ('stall_speeds_at = "1110 kg"\n', ""),
+                   ('takeoff_mass = "1050 kg"\n', ""), ('landing_mass = "1000 kg"\n', ""))  # fmt: skip
+    values = load_text(text, tmp_path).values
+    assert [values[key] for key in ("max_landing_mass", "mass_takeoff", "mass_landing")] == [1110.0] * 3
+    np.testing.assert_allclose(values["flap_lift"], load_text(HERON, tmp_path).values["flap_lift"])
+
+
+def test_flap_settings() -> None:
+    card = load_card("ridge-runner")
+    assert flap_setting("20", card.flaps, "landing", "here") == pytest.approx(math.radians(20.0))
+    with pytest.raises(InputError, match='^here: flap "30" is not allowed for take-off by the card$'):
+        flap_setting("30", card.flaps, "take-off", "here")
+    with pytest.raises(InputError, match='^here: there is no flap setting "15"; the card has: up, 10, 20, 30$'):
+        flap_setting("15", card.flaps, "take-off", "here")
+
+
+def without(part: str) -> tuple[str, str]:
+    """A part of the card taken away, up to the next one."""
+    match = re.search(rf"^\[{re.escape(part)}\]\n(?:(?!\[).*\n)*", HERON, flags=re.MULTILINE)
+    assert match is not None
+    return match[0], ""
+
+
+BOOK_TAKEOFF = re.findall(r"\[\[book\.takeoff\]\]\n(?:(?!\[).*\n)*", HERON)
+BOOK_LANDING = re.findall(r"\[\[book\.landing\]\]\n(?:(?!\[).*\n)*", HERON)
+REFUSALS = [
+    ([without("aeroplane")], "trial.toml: the part [aeroplane] is missing"),
+    ([without("mass")], "trial.toml: the part [mass] is missing"),
+    ([without("wing")], "trial.toml: the part [wing] is missing"),
+    ([without("engine")], "trial.toml: the part [engine] is missing"),
+    ([without("propeller")], "trial.toml: the part [propeller] is missing"),
+    ([without("limits")], "trial.toml: the part [limits] is missing"),
+    ([without("usual")], "trial.toml: the part [usual] is missing"),
+    ([(text, "") for text in BOOK_TAKEOFF + BOOK_LANDING], "trial.toml: the part [book] is missing"),
+    ([(text, "") for text in BOOK_TAKEOFF],
+     "trial.toml [book]: one [[book.takeoff]] point or more is needed to calibrate the card"),
+    ([(text, "") for text in BOOK_LANDING],
+     "trial.toml [book]: one [[book.landing]] point or more is needed to calibrate the card"),
+    ([('name = "Trial Heron"\n', "")], "trial.toml [aeroplane]: name is missing; it takes a text"),
+    ([('"fixed pitch"', '"paddle"')],
+     'trial.toml [propeller]: kind = "paddle" is none of: fixed pitch, constant speed'),
+    ([('"normally aspirated"', '"steam"')],
+     'trial.toml [engine]: kind = "steam" is none of: normally aspirated, turbo-normalised, flat rated'),
+    ([('"normally aspirated"', '"flat rated"')], "trial.toml [engine]: flat_rated_to is missing; it takes a altitude"),
+    ([('"normally aspirated"', '"flat rated"\nflat_rated_to = "8000 ft"')],
+     "trial.toml [engine]: a flat rated engine goes with a constant-speed propeller"),
+    ([('"normally aspirated"', '"turbo-normalised"\ncritical_altitude = "8000 ft"')],
+     "trial.toml [engine]: a turbo-normalised engine goes with a constant-speed propeller"),
+    ([('empty = "665 kg"', 'empty = "1200 kg"')],
+     "trial.toml [mass]: empty mass below landing mass, and that not above take-off mass, is expected"),
+    ([('max_landing = "1110 kg"', 'max_landing = "1150 kg"')],
+     "trial.toml [mass]: empty mass below landing mass, and that not above take-off mass, is expected"),
+    ([('area = "16.3 m²"', 'area = "16.3 m"')],
+     'trial.toml [wing]: area: "m" is not a unit of area; write for example "12 m²"'),
+    ([('span = "11.0 m"', 'span = "110 m"')], "trial.toml [wing]: span = 110 m can't be right for a length"),
+    ([('rated_power = "134 kW"', 'rated_power = "134 W"')],
+     "trial.toml [engine]: rated_power = 134 W can't be right for a power"),
+    ([('height_above_ground = "2.0 m"', 'height_over_ground = "2.0 m"')],
+     'trial.toml [wing]: "height_over_ground" is not an entry here; the entries are: area, height_above_ground, span'),
+    ([("[usual]", "[tail]\narea = 3\n[usual]")], 'trial.toml: "tail" is not an entry here; the entries are: '),
+    ([('deflection = "10°"', 'deflection = "35°"')],
+     "trial.toml: flap settings must be listed from up to down, by deflection"),
+    ([('stall_speed = "50 kt"', 'stall_speed = "54 kt"')],
+     "trial.toml: the stall speed with flap 10 is above the one with flap up; more flap never raises it"),
+    ([('stall_speed = "46 kt"', 'stall_speed = "46"'), ('stall_speed = "46"', 'stall_speed = "25 kt"')],
+     "trial.toml: the stall speeds mean lift coefficients of 1.47 to 6.59, which is not credible (0.8 to 4.5): check "
+     "the stall speeds, the mass and the wing area"),
+    ([('uses = ["landing"]', 'uses = ["taxi"]')],
+     "trial.toml [[flap]] number 4: uses must be a list out of: take-off, landing"),
+    ([("lift_off = 1.08", "lift_off = 1.25")],
+     "trial.toml [speeds]: screen must not be below lift_off, nor approach below touchdown"),
+    ([("touchdown = 1.10", "touchdown = 1.35")],
+     "trial.toml [speeds]: screen must not be below lift_off, nor approach below touchdown"),
+    ([('steepest_approach = "8 %"', 'steepest_approach = "4 %"')],
+     "trial.toml [landing]: steepest_approach = 4 % can't be right for a slope"),
+    ([('takeoff_flap = "10"', 'takeoff_flap = "30"')],
+     'trial.toml [usual]: flap "30" is not allowed for take-off by the card'),
+    ([('landing_flap = "30"', 'landing_flap = "45"')],
+     'trial.toml [usual]: there is no flap setting "45"; the card has: up, 10, 20, 30'),
+    ([('takeoff_mass = "1050 kg"', 'takeoff_mass = "1200 kg"')],
+     "trial.toml [usual]: takeoff_mass = 1200 kg can't be right for a mass"),
+    ([('to_50ft = "475 m"', 'to_50ft = "265 m"')],
+     "trial.toml [book] [[takeoff]] number 1: to_50ft must be longer than roll"),
+    ([('from_50ft = "480 m"', 'from_50ft = "225 m"')],
+     "trial.toml [book] [[landing]] number 2: from_50ft must be longer than roll"),
+    ([('roll = "265 m"', 'roll = "2.65 m"')],
+     "trial.toml [book] [[takeoff]] number 1: roll = 2.65 m can't be right for a length"),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize(("changes", "sentence"), REFUSALS)
+def test_what_can_not_be_right(tmp_path: Path, changes: list[tuple[str, str]], sentence: str) -> None:
+    with pytest.raises(InputError, match=f"^{re.escape(sentence)}") as refused:
+        load_text(changed(HERON, *changes), tmp_path)
+    assert "\n" not in str(refused.value)
+
+
+def test_one_flap_setting_is_too_few(tmp_path: Path) -> None:
+    text = re.sub(r"\[\[flap\]\]\nsetting = \"(?:10|20|30)\"\n(?:[^\[\n].*\n)*", "", HERON)
+    with pytest.raises(InputError, match=r"two \[\[flap\]\] parts or more are expected, with flaps up and down"):
+        load_text(text, tmp_path)
+
+
+def test_neither_file_nor_shipped() -> None:
+    with pytest.raises(InputError, match='^"heron" is neither a file nor one of the shipped cards: high-mule, '):
+        load_card("heron")
