@@ -193,7 +193,7 @@ def _codes(column: Any, table: tuple[str, ...], key: str, size: int) -> np.ndarr
 def _mapped(column: Any, code: Mapping[Any, int], size: int) -> np.ndarray:
     """The code of each word, -1 where it has none; arrays of whole numbers or truths are codes already."""
     if not _is_column(column):
-        return _all(code.get(column, -1), size)
+        return _all(code.get(column.item() if isinstance(column, np.ndarray) else column, -1), size)
     if isinstance(column, np.ndarray):
         if column.dtype.kind in "biu":
             return column

@@ -181,7 +181,8 @@ def least_squares(residuals: Callable[[np.ndarray], np.ndarray], start: np.ndarr
     array([2.])
     """
     low, high = np.minimum(low, high), np.maximum(low, high)
-    p, damping = np.clip(start, low, high), 1e-3
+    p: np.ndarray = np.clip(start, low, high)
+    damping = 1e-3
     r = residuals(p)
     for _ in range(60):
         steps = 1e-6 * np.maximum(np.abs(p), 1e-9)
@@ -189,7 +190,7 @@ def least_squares(residuals: Callable[[np.ndarray], np.ndarray], start: np.ndarr
                            for step, unit in zip(steps, np.eye(len(p)), strict=True)], axis=1)  # fmt: skip
         normal = slopes.T @ slopes
         move = np.linalg.lstsq(normal + damping * np.diag(np.diag(normal)), -slopes.T @ r, rcond=None)[0]
-        trial = np.clip(p + move, low, high)
+        trial: np.ndarray = np.clip(p + move, low, high)
         r_trial = residuals(trial)
         better = r_trial @ r_trial < r @ r
         if better and np.allclose(trial, p, rtol=1e-10, atol=0.0):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -176,7 +177,7 @@ def _flaps(top: Section) -> tuple[Flap, ...]:
         )
     if len(rows) < 2:
         raise InputError(f"{top.where}: two [[flap]] parts or more are expected, with flaps up and down")
-    for less, more in zip(rows, rows[1:], strict=False):
+    for less, more in itertools.pairwise(rows):
         if more.deflection <= less.deflection:
             raise InputError(f"{top.where}: flap settings must be listed from up to down, by deflection")
         if more.stall_speed > less.stall_speed:

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from functools import cache
 
 from stripcheck.errors import InputError
+from stripcheck.numeric import Number
 
 
 @dataclass(frozen=True)
@@ -97,7 +98,7 @@ PRESSURE_HPA = (800.0, 1100.0)
 PRESSURE_INHG = (24.0, 32.5)
 
 
-def to_si(value: float, unit: str) -> float:
+def to_si(value: Number, unit: str) -> Number:
     """Value in SI of ``value`` [unit].
 
     >>> to_si(1000, "ft")
@@ -109,7 +110,7 @@ def to_si(value: float, unit: str) -> float:
     return value * entry.factor + entry.offset
 
 
-def from_si(value: float, unit: str) -> float:
+def from_si(value: Number, unit: str) -> Number:
     """Value in ``unit`` of ``value`` [SI].
 
     >>> from_si(288.15, "°C")
@@ -180,9 +181,9 @@ def read_quantity(value: object, kind: str, unit: str = "") -> float:
         raise InputError(f'"{value}" is not a number; write for example "{_example(kind)}"')
     spelling = spelling or unit
     if kind == "pressure" and not spelling:
-        return to_si(number, _pressure_unit(number))
+        return float(to_si(number, _pressure_unit(number)))
     factor, offset = unit_scale(spelling, kind)
-    return number * factor + offset
+    return float(number * factor + offset)
 
 
 def _split(text: str, kind: str) -> tuple[float, str]:

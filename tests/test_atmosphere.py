@@ -11,7 +11,7 @@ from stripcheck import atmosphere
 def test_constants() -> None:
     """ISO 2533: 1.225 kg/m3 at sea level, exponents 5.2559 and 4.2559."""
     assert pytest.approx(1.225, abs=5e-6) == atmosphere.RHO0
-    assert 1.0 / atmosphere.BARO == pytest.approx(5.25588, abs=5e-6)
+    assert pytest.approx(5.25588, abs=5e-6) == 1.0 / atmosphere.BARO
     assert pytest.approx(4.25588, abs=5e-6) == atmosphere.DENSITY_EXPONENT
 
 

@@ -37,7 +37,7 @@ def test_drag_polar() -> None:
 
 def test_ground_effect_grows_with_height() -> None:
     factors = ground_run.ground_effect_factor(np.array([0.1, 1.0, 3.0, 30.0]), 10.0)
-    assert (np.diff(factors) > 0.0).all() and 0.0 < factors[0] and factors[-1] < 1.0
+    assert (np.diff(factors) > 0.0).all() and factors[0] > 0.0 and factors[-1] < 1.0
 
 
 def closed_form(start: float, square: float, slow: float, fast: float, wind: float) -> float:

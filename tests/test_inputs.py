@@ -133,7 +133,7 @@ def test_a_condition_that_is_not_in_the_table_is_never_taken_for_the_days(condit
         ({"tora": ["long"]}, 'strips: tora: "long" is not a number; write for example "620 m"'),
         ({"tora": "900 kg"}, 'strips: tora: "kg" is not a unit of length; write for example "620 m"'),
         ({"heading": "north"}, 'strips: heading: "north" is not a number; write for example "12 °"'),
-        ({"take_off_here": "perhaps"}, 'strips: take_off_here = "perhaps" is neither yes nor no'),
+        ({"take_off_here": "perhaps"}, 'strips: take_off_here, row 1: "perhaps" is neither yes nor no'),
     ],
 )
 def test_strips_that_can_not_be_right(strips: dict[str, Any], sentence: str) -> None:

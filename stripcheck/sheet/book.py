@@ -76,7 +76,8 @@ def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Map
     return Filling(directions, card, day, rules, chosen, flap_names, given, values, summary.summarise(values, words))
 
 
-_SUMMARISED = {f"{step}_{part}" for _, step, _ in summary.SIDES for part in ("finding", "verdict", "margin", "margin_share", "reason")}
+_PARTS = ("finding", "verdict", "margin", "margin_share", "reason")
+_SUMMARISED = {f"{step}_{part}" for _, step, _ in summary.SIDES for part in _PARTS}
 
 
 def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[[int], None] | None = None) -> list[str]:
@@ -93,7 +94,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     columns = strips.layout(chain, directions, full)
     letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
 
-    summary_sheet = summary.write_skeleton(made, count, _facts(filling))
+    summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in _FACTS), "Rules"])
     strips.write_skeleton(made, columns, directions.n, f"{card_title(filling)}: every direction")
     aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names)
     pages.write_day(made, filling.day)
@@ -174,10 +175,6 @@ _FACTS = (
 )
 
 
-def _facts(filling: Filling) -> list[tuple[str, str]]:
-    return [*((label, "") for label, _ in _FACTS), ("Rules", "")][: summary.HEADER_ROW - 4]
-
-
 def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
     """What the verdicts stand on, read live from the other sheets, at the top of the summary."""
     column = summary.LETTERS["name"]
@@ -195,7 +192,7 @@ def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
             text = f'IF(ISNUMBER({source}),{source},"not given")'
             made.formula(sheet, cell, text, tidy(from_si(values[key], units[key])) if known else "not given")
             sheet[cell].number_format = styles.number_format(units[key])
-        sheet[cell].alignment = styles.Alignment(horizontal="left")
+        sheet[cell].alignment = styles.LEFT
     row = 4 + len(_FACTS)
     beside = f"{summary.LETTERS['runway']}{row - 1}"
     direction = values["wind_from"]

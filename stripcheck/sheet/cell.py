@@ -23,7 +23,7 @@ BLANK = '""'  # stands for "no number" in the sheets; what reads it tests for it
 # binding strength: a spreadsheet binds unary minus tighter than ^, so a negative is always bracketed
 COMPARE, ADD, MULTIPLY, POWER, ATOM = 1, 2, 3, 4, 9
 
-_BINARY = {
+_BINARY: dict[Any, tuple[str, int, int]] = {
     np.add: ("+", ADD, ADD),
     np.subtract: ("-", ADD, ADD + 1),
     np.multiply: ("*", MULTIPLY, MULTIPLY),
@@ -81,7 +81,7 @@ class Cell(np.lib.mixins.NDArrayOperatorsMixin):
             "an equation must use np.where, np.minimum or np.select instead of a test in Python"
         )
 
-    __bool__ = __float__ = __int__ = __index__ = __len__ = __iter__ = __getitem__ = _no_value  # type: ignore[assignment]
+    __bool__ = __float__ = __int__ = __index__ = __len__ = __iter__ = __getitem__ = _no_value
 
     def __array_ufunc__(self, ufunc: np.ufunc, method: str, *inputs: Any, **kwargs: Any) -> Cell:
         if kwargs or method not in ("__call__", "outer"):
@@ -97,7 +97,7 @@ class Cell(np.lib.mixins.NDArrayOperatorsMixin):
             return _UNARY[ufunc](*cells)
         raise TypeError(f"np.{ufunc.__name__} can't be written as a cell formula")
 
-    def __array_function__(self, func: Callable, types: Any, args: tuple, kwargs: dict) -> Cell:
+    def __array_function__(self, func: Any, types: Any, args: Any, kwargs: Any) -> Cell:
         if func not in _ARRAY_FUNCTIONS:
             raise TypeError(f"np.{func.__name__} can't be written as a cell formula")
         return _ARRAY_FUNCTIONS[func](*args, **kwargs)
@@ -158,10 +158,10 @@ def shown(cell: Cell, unit: str) -> Cell:
         return Cell(cell.raw)  # the cell read shows that very unit
     if cell.branches:
         condition, then, otherwise = cell.branches
-        return _where(condition, shown(then, unit), shown(otherwise, unit))
+        return where(condition, shown(then, unit), shown(otherwise, unit))
     if entry.offset:
-        return cell - entry.offset
-    return cell / entry.factor
+        return _binary(np.subtract, cell, as_cell(entry.offset))
+    return _binary(np.divide, cell, as_cell(entry.factor))
 
 
 def formula(cell: Cell) -> str:
@@ -244,7 +244,8 @@ _UNARY: dict[Any, Callable[..., Cell]] = {
 }
 
 
-def _where(condition: Any, then: Any, otherwise: Any) -> Cell:
+def where(condition: Any, then: Any, otherwise: Any) -> Cell:
+    """np.where as IF; a condition that is already decided leaves only the value that it decides for."""
     cells = [as_cell(item) for item in (condition, then, otherwise)]
     if any(cell.many for cell in cells):
         raise TypeError("np.where of an array inside a sum can't be written as a cell formula: write it as algebra")
@@ -255,15 +256,15 @@ def _where(condition: Any, then: Any, otherwise: Any) -> Cell:
     return written
 
 
-def _select(conditions: list, choices: list, default: Any = 0) -> Cell:
+def _select(conditions: list[Any], choices: list[Any], default: Any = 0) -> Cell:
     result = as_cell(default)
     for condition, choice in zip(reversed(conditions), reversed(choices), strict=True):
-        result = _where(condition, choice, result)
+        result = where(condition, choice, result)
     return result
 
 
 def _clip(cell: Any, low: Any, high: Any) -> Cell:
-    return np.maximum(as_cell(low), np.minimum(as_cell(cell), high))
+    return _swallowing("MAX", as_cell(low), _swallowing("MIN", as_cell(cell), as_cell(high)))
 
 
 def _sum_of_products(one: Any, other: Any, axes: int = 2) -> Cell:
@@ -293,8 +294,8 @@ def _interpolate(at: Any, nodes: Any, values: Any) -> Cell:
     return Cell(f"{y0}+({held}-{x0})/({x1}-{x0})*({y1}-{y0})", ADD, x.depth + 6)
 
 
-_ARRAY_FUNCTIONS: dict[Callable, Callable[..., Cell]] = {
-    np.where: _where,
+_ARRAY_FUNCTIONS: dict[Any, Callable[..., Cell]] = {
+    np.where: where,
     np.select: _select,
     np.clip: _clip,
     np.tensordot: _sum_of_products,

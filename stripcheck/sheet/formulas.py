@@ -7,14 +7,14 @@ the steps that use it.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 
 from stripcheck import ground_run
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.links import GROUND_UNKNOWN
-from stripcheck.sheet.cell import ATOM, BLANK, COMPARE, Cell, as_cell, call, formula, reference, shown
+from stripcheck.sheet.cell import ATOM, BLANK, COMPARE, Cell, as_cell, call, formula, reference, shown, where
 from stripcheck.verdict import FAULT
 
 # the nodes and weights of the quadrature stand once in the workbook, under these defined names
@@ -81,11 +81,12 @@ class _Writer:
     def expression(self, step: Step, holding: frozenset[str]) -> Cell:
         values = [self.value(key, holding) for key in step.inputs]
         if step.lookup == "name":
-            return _row_in_table(*values, self.names)
+            surface, condition, day_condition = values
+            return _row_in_table(surface, condition, day_condition, self.names)
         if step.lookup:
             return _looked_up(*values)
         if step.words:
-            return _in_words(step, *values, self.fault, Cell(self.places[step.key + WORDS].reference))
+            return _in_words(step, values[0], self.fault, Cell(self.places[step.key + WORDS].reference))
         return as_cell(step.function(*values))
 
     def guarded(self, step: Step, expression: Cell, holding: frozenset[str]) -> Cell:
@@ -93,8 +94,8 @@ class _Writer:
             return expression
         guard = self.value(step.guard, holding)
         guarding = self.chain.by_key[step.guard]
-        holds = guard if isinstance(guarding, Step) and guarding.truth else np.isfinite(guard)
-        return np.where(holds, expression, False if step.truth else np.nan)
+        holds: Any = guard if isinstance(guarding, Step) and guarding.truth else np.isfinite(guard)
+        return where(holds, expression, False if step.truth else np.nan)
 
 
 def _input_cell(item: Input, place: Place) -> Cell:

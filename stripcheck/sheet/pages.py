@@ -23,7 +23,7 @@ from stripcheck.day import Day
 from stripcheck.inputs import CARD, DAY, RULES
 from stripcheck.rules import Rules
 from stripcheck.sheet import styles
-from stripcheck.sheet.cell import Cell, formula, reference
+from stripcheck.sheet.cell import Cell, formula, reference, where
 from stripcheck.sheet.formulas import GROUND_NAMES, WORDS, Place
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.surface import CONDITIONS, GROUNDS, REFERENCE_GROUND
@@ -112,7 +112,7 @@ def value_row(pages: Pages, sheet: Worksheet, row: int, item: Input, value: Any,
     cell.value, cell.number_format = shown, _input_format(item.unit)
     _number_only(sheet, f"{VALUE}{row}")
     source = reference(f"{VALUE}{row}", item.unit)
-    text = formula(np.where(np.isfinite(source), source, np.nan))
+    text = formula(where(np.isfinite(source), source, np.nan))
     pages.formula(sheet, f"{SI}{row}", text, value if known else "")
     _style_si(sheet, row)
     pages.places[item.key] = Place(pages.name(item.key, sheet, f"{SI}{row}"))

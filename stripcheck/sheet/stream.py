@@ -134,7 +134,8 @@ def write_book(
     cached : name of a sheet -> cell such as "D5" -> the value beside the formula that the skeleton has there
 
     The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself
-    get the value that ``cached`` has for them. Raises InputError when there are more rows than a sheet holds or the file can't be written,
+    get the value that ``cached`` has for them. Raises InputError when there are more rows than a sheet holds or
+    the file can't be written,
     ValueError when the tables don't fit the skeleton or hold what a sheet can't keep.
     Method: SpreadsheetML as in the heading of this module.
 

@@ -16,6 +16,7 @@ from stripcheck.sheet import styles
 from stripcheck.sheet.formulas import NOWHERE, Place
 from stripcheck.sheet.pages import Pages, choice, note, write_header
 from stripcheck.sheet.stream import ROW, FormulaColumn, NumberColumn, Table, TextColumn
+from stripcheck.sheet.stream import Column as AnyColumn
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import from_si, to_si
 from stripcheck.verdict import CAUTION
@@ -70,7 +71,7 @@ def given_columns(directions: Directions) -> dict[str, Any]:
     for item in _strip_inputs():
         if item.kind == "number":
             values = directions.numbers[REGISTER_KEYS.get(item.key, item.key)]
-            columns[item.key] = to_si(np.round(from_si(values, item.unit), 6), item.unit)  # type: ignore[arg-type]
+            columns[item.key] = to_si(np.round(from_si(values, item.unit), 6), item.unit)
     texts = directions.texts
     columns["fault"] = np.array([bool(text) for text in texts["fault"]])
     columns["land_here"] = np.array([text != "no" for text in texts["land_here"]])
@@ -216,7 +217,7 @@ def _dress(sheet: Worksheet, column: Column, cells: str) -> None:
 def table_of(columns: list[Column], directions: Directions, given: Mapping[str, Any], formulas: Mapping[str, str],
              values: Mapping[str, Any]) -> Table:  # fmt: skip
     """The rows of the sheet: texts and numbers as given, formulas with the values that they have now."""
-    made = []
+    made: list[AnyColumn] = []
     for column in columns:
         item = column.item
         if isinstance(item, Step):

@@ -12,7 +12,7 @@ from openpyxl.worksheet.worksheet import Worksheet
 from stripcheck.numeric import Number
 from stripcheck.register import Directions
 from stripcheck.sheet import styles
-from stripcheck.sheet.cell import Cell, formula
+from stripcheck.sheet.cell import Cell, formula, where
 from stripcheck.sheet.pages import Pages, note, write_header
 from stripcheck.sheet.stream import ROW, FormulaColumn, Table, TextColumn
 from stripcheck.sheet.strips import FIRST_ROW as STRIPS_ROW
@@ -51,7 +51,8 @@ def in_and_out(rank_in: Number, rank_out: Number) -> Number:
 
 def ranks_of(verdict_codes: np.ndarray, words: tuple[str, ...]) -> np.ndarray:
     """Rank [1 to 4] of each verdict, from the number of its words."""
-    return np.array([RANKS.index(word) + 1 for word in words])[verdict_codes - 1]
+    ranks: np.ndarray = np.array([RANKS.index(word) + 1 for word in words])[verdict_codes - 1]
+    return ranks
 
 
 def summarise(values: Mapping[str, np.ndarray], words: Mapping[str, tuple[str, ...]]) -> dict[str, np.ndarray]:
@@ -98,10 +99,10 @@ HIDDEN = 6
 LETTERS = {key: get_column_letter(number) for number, (key, *_) in enumerate(COLUMNS, 1)}
 
 
-def write_skeleton(pages: Pages, strips: int, facts: list[tuple[str, str]]) -> Worksheet:
+def write_skeleton(pages: Pages, strips: int, facts: list[str]) -> Worksheet:
     """Title, caution, the facts of this filling, counts, headers, colours, and one row that carries the styles.
 
-    ``facts`` are labels and formulas of what the verdicts stand on.
+    ``facts`` are the labels of what the verdicts stand on; the values beside them come later.
     """
     sheet: Worksheet = pages.book.create_sheet(SHEET)
     last = FIRST_ROW + max(strips, 1) - 1
@@ -138,7 +139,7 @@ def write_skeleton(pages: Pages, strips: int, facts: list[tuple[str, str]]) -> W
     sheet.sheet_view.showGridLines = False
     styles.set_print(sheet, f"{HEADER_ROW}:{HEADER_ROW}")
     sheet.print_area = f"{left}1:{LETTERS['out_reason']}{last}"
-    for row, (label, text) in enumerate(facts, 4):
+    for row, label in enumerate(facts, 4):
         sheet[f"{left}{row}"], sheet[f"{left}{row}"].font = label, styles.SMALL
         sheet[f"{LETTERS['name']}{row}"].font = styles.BODY
     return sheet
@@ -217,7 +218,7 @@ def _better_row(column: Mapping[str, str], step: str) -> str:
         row = f"${LETTERS[f'row_{i}']}{ROW}"
         rank = Cell(f"MATCH(INDEX({column[f'{step}_verdict']},{row}),{_RANK_LIST},0)", depth=2)
         finding = Cell(f"INDEX({column[f'{step}_finding']},{row})", depth=1)
-        cells.append(np.where(finding == float(FORBIDDEN), 0.0, rank))
+        cells.append(where(finding == float(FORBIDDEN), 0.0, rank))
         cells.append(Cell(f"INDEX({column[f'{step}_margin']},{row})", depth=1))
     better = first_is_better(*cells)
     row_1, row_2 = (f"${LETTERS[f'row_{i}']}{ROW}" for i in (1, 2))

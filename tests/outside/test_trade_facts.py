@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 import pytest
 
@@ -71,7 +73,7 @@ def test_flaps_down_the_whole_landing_is_shorter(card: Card) -> None:
 
 def test_flaps_lower_the_speed_needed_and_leave_more_above_the_stall(card: Card) -> None:
     by_flap = stalls(card)
-    assert all(more < less for less, more in zip(by_flap, by_flap[1:], strict=False))
+    assert all(more < less for less, more in itertools.pairwise(by_flap))
     level_speed = 1.2 * by_flap[0]
     margins = [level_speed / stall for stall in by_flap]
     assert margins == sorted(margins) and margins[0] == pytest.approx(1.2)

@@ -1,5 +1,6 @@
 """The filled workbook, recalculated by LibreOffice and ironcalc against the arrays, before and after edits in it."""
 
+import re
 from pathlib import Path
 
 import numpy as np
@@ -184,3 +185,39 @@ def test_short_detail_has_at_most_24_live_columns(messy_list, tmp_path):
         write_workbook(filling(messy_list, card), path, False)
         live = {column for _, _, column, _ in formula_cells(path)["Strips"]}
         assert 15 < len(live) <= 24
+
+
+# functions that Excel 2010, Calc and others know, and that mean the same in all of them
+PLAIN_FUNCTIONS = {
+    "ABS", "AND", "CHOOSE", "COS", "COUNT", "COUNTIF", "EXP", "IF", "IFERROR", "INDEX", "ISNUMBER", "LN", "MATCH", "MAX", "MIN",
+    "NOT", "OR", "ROW", "SIN", "SQRT", "SUMPRODUCT",
+}  # fmt: skip
+
+
+@pytest.mark.parametrize("card", ["ridge-runner", "high-mule"])
+@pytest.mark.parametrize("full", [True, False], ids=["full", "short"])
+def test_formulas_keep_to_plain_functions_and_to_the_limits(messy_list, tmp_path, card, full):
+    path = tmp_path / "out.xlsx"
+    write_workbook(filling(messy_list, card), path, full)
+    used, longest, deepest = set(), 0, 0
+    for sheet in openpyxl.load_workbook(path).worksheets:
+        for row in sheet.iter_rows(max_row=40):
+            for text in (cell.value for cell in row if cell.data_type == "f"):
+                bare = re.sub(r'"[^"]*"', '""', text)
+                used |= set(re.findall(r"([A-Z][A-Z0-9.]*)\(", bare))
+                longest, deepest = max(longest, len(text)), max(deepest, nesting(bare))
+    assert used <= PLAIN_FUNCTIONS
+    assert 1_000 < longest <= 8_192
+    assert 10 < deepest <= 64
+
+
+def nesting(text: str) -> int:
+    """How many functions are nested in a formula."""
+    deepest, open_calls = 0, []
+    for before, sign in zip(" " + text, text, strict=False):
+        if sign == "(":
+            open_calls.append(before.isalnum())
+            deepest = max(deepest, sum(open_calls))
+        elif sign == ")":
+            open_calls.pop()
+    return deepest
