@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from contextlib import AbstractContextManager
 from pathlib import Path
 
 import pytest
@@ -14,9 +16,7 @@ def section(**entries: object) -> Section:
     return Section("strip.toml", dict(entries))
 
 
-def refused(sentence: str) -> object:
-    import re
-
+def refused(sentence: str) -> AbstractContextManager[object]:
     return pytest.raises(InputError, match=f"^{re.escape(sentence)}$")
 
 

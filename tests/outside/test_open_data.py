@@ -10,6 +10,7 @@ from stripcheck.cli import main
 from stripcheck.sheet.summary import BOTH
 from stripcheck.verdict import VERDICTS
 from tests import open_data
+from tests.sheet.recalculated import differences
 
 VERIFICATION = Path(__file__).parents[2] / "docs" / "verification.md"
 
@@ -42,3 +43,20 @@ def test_every_runway_is_in_a_verdict_or_left_out(filled):
                 f"docs/verification.md does not say: | {title} | {word} | {count:,} |"
             )
     assert f"| Left out | | {len(left_out):,} |" in text
+
+
+def test_a_sample_recalculates_to_the_values_it_was_written_with(office, tmp_path):
+    """Every formula of 300 real runways, drawn with a fixed step, in LibreOffice."""
+    runways = open_data.unpack(tmp_path)
+    lines = runways.read_text(encoding="utf-8").splitlines()
+    runways.write_text("\n".join([lines[0], *lines[1 :: len(lines) // 300]]), encoding="utf-8")
+    output = tmp_path / "sample.xlsx"
+    command = ["fill", str(runways), "--card", "high-mule", "--rules", "au-small", "--temp", "31", "--temp-at", "900",
+               "--wind", "240/12", "--assume-slope", "2", "--detail", "short", "-o", str(output), "--quiet"]  # fmt: skip
+    assert main(command) == 0
+    book = office.open(output)
+    book.recalculate()
+    count, found = differences(book, output)
+    book.close()
+    assert found == []
+    assert count > 12_000
