@@ -145,7 +145,7 @@ def disk_run(thrust: Number, lost: Number, square: Number, disk_speed: Number, w
     are both rational: V = w (y - 1/y^2), T = T0 / y. The acceleration must be positive all along.
 
     >>> round(disk_run(4.0, 0.5, 0.0005, 24.0, 0.0, 30.0), 3)
-    184.594
+    213.02
     """
     slow = disk_root(wind / disk_speed)
     fast = disk_root(np.maximum(speed, wind) / disk_speed)
@@ -157,7 +157,7 @@ def disk_run_between(thrust: Number, lost: Number, square: Number, disk_speed: N
     """As ``disk_run``, given the roots [-] of the disk at the slow and the fast end of the run.
 
     >>> round(disk_run_between(4.0, 0.5, 0.0005, 24.0, 0.0, disk_root(0.0), disk_root(1.25)), 3)
-    184.594
+    213.02
     """
     root = slow + np.multiply.outer(NODES, fast - slow)
     share = 1.0 / root
@@ -171,7 +171,7 @@ def disk_acceleration(thrust: Number, lost: Number, square: Number, disk_speed: 
     """Acceleration [m/s2] where the disk has the root [-]. Arguments as for ``disk_run``.
 
     >>> round(disk_acceleration(4.0, 0.5, 0.0005, 24.0, disk_root(1.25)), 6)
-    1.443195
+    1.50772
     """
     share = 1.0 / root
     return thrust * share - lost - square * np.square(disk_speed * (root - np.square(share)))
@@ -186,7 +186,7 @@ def least_disk_acceleration(thrust: Number, lost: Number, square: Number, disk_s
     sum of the two is on the safe side.
 
     >>> round(least_disk_acceleration(4.0, 0.5, 0.0005, 24.0, disk_root(0.0), disk_root(1.25)), 6)
-    1.443195
+    1.50772
     """
     slow_speed, fast_speed = disk_speed_ratio(slow), disk_speed_ratio(fast)
     least = np.square(disk_speed * np.maximum(slow_speed, 0.0))

@@ -25,7 +25,7 @@ if ! ready; then
 fi
 
 [ -x .venv/bin/python ] || "$python" -m venv .venv
-.venv/bin/python -m pip install --quiet --disable-pip-version-check --editable '.[test]'
+.venv/bin/python -m pip install -qq --disable-pip-version-check --editable '.[test]'
 .venv/bin/python tests/office.py
 
 .venv/bin/ruff check .

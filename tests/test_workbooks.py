@@ -19,7 +19,7 @@ def fresh(tmp_path_factory):
 
 @pytest.mark.parametrize("values", [False, True], ids=["formulas", "values"])
 def test_the_shipped_workbook_is_current(fresh, values):
-    """Cell by cell; only the date of filling differs. Remake it with: stripcheck demo -o workbooks/lantern-range.xlsx --force"""
+    """Cell by cell; only the date differs. Remake it: stripcheck demo -o workbooks/lantern-range.xlsx --force"""
     shipped, made = (openpyxl.load_workbook(path, data_only=values) for path in (SHIPPED, fresh))
     assert shipped.sheetnames == made.sheetnames
     compared = 0
