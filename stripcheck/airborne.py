@@ -50,6 +50,28 @@ def excess_gradient(thrust: Number, mass: Number, drag: Number, lift: Number) ->
     return thrust / (mass * G0) - drag / lift
 
 
+def drift_factor(speed: Number, wind: Number) -> Number:
+    """Distance over the ground for each metre flown through the air [-], at a speed [m/s TAS] in a wind [m/s].
+
+    Source: geometry of small angles.
+
+    >>> drift_factor(40.0, 10.0), drift_factor(40.0, -10.0)
+    (0.75, 1.25)
+    """
+    return np.maximum(1.0 - wind / speed, 0.0)
+
+
+def rise_under(slope: Number, drift: Number) -> Number:
+    """Rise of the ground [-] under each metre flown through the air; ``slope`` [-], ``drift`` factor [-].
+
+    Ground that falls away counts as level, and a headwind's relief is not taken. Source: geometry, on the safe side.
+
+    >>> rise_under(0.05, 1.2), rise_under(0.05, 0.8), rise_under(-0.05, 1.2)
+    (0.06, 0.05, 0.0)
+    """
+    return np.maximum(slope, 0.0) * np.maximum(drift, 1.0)
+
+
 def screen_distance(lift_off: Number, screen: Number, excess: Number, slope: Number, wind: Number,
                     technique: Number) -> Number:  # fmt: skip
     """Distance over the ground [m] from lift-off to 50 ft above the strip.
@@ -62,8 +84,8 @@ def screen_distance(lift_off: Number, screen: Number, excess: Number, slope: Num
     228.97
     """
     energy = (np.square(screen) - np.square(lift_off)) / (2.0 * G0) + SCREEN
-    drift = 1.0 - wind / mean_square_speed(lift_off, screen)
-    return technique * energy / (excess - np.maximum(slope, 0.0)) * np.maximum(drift, 0.0)
+    drift = drift_factor(mean_square_speed(lift_off, screen), wind)
+    return technique * energy / (excess - rise_under(slope, drift)) * drift
 
 
 def ground_gradient(climb_gradient: Number, tas: Number, wind: Number) -> Number:
@@ -145,11 +167,12 @@ def landing_air_distance(approach: Number, touchdown: Number, gradient: Number, 
     305.38
     """
     speed = 0.5 * (approach + touchdown)
-    path = gradient + np.minimum(slope, 0.0)
+    drift = drift_factor(speed, wind)
+    path = gradient - rise_under(-slope, drift)
     radius = flare_radius(speed)
     straight = np.maximum(SCREEN - flare_height(radius, path), 0.0) / path
     flare = radius * path / np.sqrt(1.0 + np.square(path))
-    return technique * (straight + flare) * np.maximum(1.0 - wind / speed, 0.0)
+    return technique * (straight + flare) * drift
 
 
 def free_roll(touchdown: Number, wind: Number, seconds: Number) -> Number:

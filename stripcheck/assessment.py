@@ -16,7 +16,7 @@ from stripcheck.errors import InputError
 from stripcheck.inputs import STRIP
 from stripcheck.rules import Rules, load_rules
 from stripcheck.surface import CONDITIONS, SURFACES
-from stripcheck.units import UNITS, from_si, read_quantity
+from stripcheck.units import PRESSURE_INHG, UNITS, from_si, read_quantity
 from stripcheck.verdict import FAULT
 
 KIND_OF_UNIT = {"m": "length", "ft": "altitude", "%": "slope", "°": "angle", "°C": "temperature", "hPa": "pressure",
@@ -118,7 +118,8 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     card = load_card(card) if isinstance(card, str) else card
     rules = load_rules(rules) if isinstance(rules, str) else rules
     day = day if isinstance(day, Day) else read_day(day)
-    columns, faults, size = strip_columns(strips)
+    masses = [mass for mass in (takeoff_mass, landing_mass) if _is_column(mass)]
+    columns, faults, size = strip_columns(strips, masses)
     loading = {
         **_mass("mass_takeoff", takeoff_mass),
         **_mass("mass_landing", landing_mass),
@@ -131,13 +132,16 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     return Result(chain, size, values, found, faults)
 
 
-def strip_columns(strips: Mapping[str, Any]) -> tuple[dict[str, Any], Sequence[str], int]:
-    """Columns for the chain from what a user gives: SI arrays, codes and truths; the faults' texts; the row count."""
+def strip_columns(strips: Mapping[str, Any], masses: Sequence[Any] = ()) -> tuple[dict[str, Any], Sequence[str], int]:
+    """Columns for the chain from what a user gives: SI arrays, codes and truths; the faults' texts; the row count.
+
+    ``masses`` are columns that go beside them, and so must be equally long.
+    """
     known = {item.key: item for item in STRIP}
     unknown = [key for key in strips if key not in known]
     if unknown:
         raise InputError(f'strips: "{unknown[0]}" is not a column; the columns are: {", ".join(known)}')
-    lengths = {len(column) for column in strips.values() if _is_column(column)}
+    lengths = {len(column) for column in (*strips.values(), *masses) if _is_column(column)}
     if len(lengths) > 1:
         raise InputError(f"strips: the columns are not equally long: {sorted(lengths)} rows")
     size = lengths.pop() if lengths else 1
@@ -180,25 +184,27 @@ def _flags(column: Any, key: str, size: int) -> np.ndarray:
 
 
 def _codes(column: Any, table: tuple[str, ...], key: str, size: int) -> np.ndarray:
-    """Place of each word in the table, -1 where it is not there."""
-    codes = _mapped(column, {word: number for number, word in enumerate(table)}, size)
-    if codes.min(initial=-1) < -1 or codes.max(initial=-1) >= len(table):
-        row = int(np.argmax((codes < -1) | (codes >= len(table))))
+    """Place of each word in the table, -1 where there is none; -2 for a condition that is not in the table, so that the
+    day's is not taken for it."""
+    strange = -2 if table is CONDITIONS else -1
+    codes = _mapped(column, {"": -1, None: -1, **{word: number for number, word in enumerate(table)}}, size, strange)
+    if codes.min(initial=-1) < -2 or codes.max(initial=-1) >= len(table):
+        row = int(np.argmax((codes < -2) | (codes >= len(table))))
         raise InputError(
             f"strips: {key}, row {row + 1}: {codes[row]} is not the place of a word; write one of: {', '.join(table)}"
         )
     return codes.astype(np.int8)
 
 
-def _mapped(column: Any, code: Mapping[Any, int], size: int) -> np.ndarray:
-    """The code of each word, -1 where it has none; arrays of whole numbers or truths are codes already."""
+def _mapped(column: Any, code: Mapping[Any, int], size: int, strange: int = -1) -> np.ndarray:
+    """The code of each word, ``strange`` where it has none; arrays of whole numbers or truths are codes already."""
     if not _is_column(column):
-        return _all(code.get(column.item() if isinstance(column, np.ndarray) else column, -1), size)
+        return _all(code.get(column.item() if isinstance(column, np.ndarray) else column, strange), size)
     if isinstance(column, np.ndarray):
         if column.dtype.kind in "biu":
             return column
         column = column.tolist()
-    return np.fromiter(map(code.get, column, repeat(-1)), np.int8, size)
+    return np.fromiter(map(code.get, column, repeat(strange)), np.int8, size)
 
 
 def _numbers(column: Any, unit: str, key: str, size: int) -> np.ndarray:
@@ -207,6 +213,7 @@ def _numbers(column: Any, unit: str, key: str, size: int) -> np.ndarray:
         return _all(np.nan, size)
     array = np.asarray(column)
     if array.dtype.kind in "fiu":
+        array = _as_hectopascals(array) if unit == "hPa" else array
         values = array * UNITS[unit].factor
         return np.broadcast_to(values + UNITS[unit].offset if UNITS[unit].offset else values, size)
     try:
@@ -216,15 +223,25 @@ def _numbers(column: Any, unit: str, key: str, size: int) -> np.ndarray:
         raise InputError(f"strips: {key}: {error}") from None
 
 
+def _as_hectopascals(pressures: np.ndarray) -> np.ndarray:
+    """Bare pressures [hPa]; those that can only be inches of mercury are converted."""
+    inches = (pressures >= PRESSURE_INHG[0]) & (pressures <= PRESSURE_INHG[1])
+    return np.where(inches, pressures * (UNITS["inHg"].factor / UNITS["hPa"].factor), pressures) if inches.any() else pressures
+
+
 def _mass(key: str, mass: Any) -> dict[str, Any]:
     if mass is None:
         return {}
     if _is_column(mass):
-        return {key: np.array(mass, float)}
-    value = read_quantity(mass, "mass")
-    if not value > 0.0:
+        return {key: np.array([_one_mass(key, one) for one in mass])}
+    return {key: _one_mass(key, mass)}
+
+
+def _one_mass(key: str, mass: Any) -> float:
+    value = read_quantity(mass.item() if isinstance(mass, np.generic) else mass, "mass")
+    if value <= 0.0:
         raise InputError(f"{key}: {mass} is not a mass; write for example 1050 kg")
-    return {key: value}
+    return value
 
 
 def _flap(key: str, name: str | None, card: Card, use: str) -> dict[str, float]:

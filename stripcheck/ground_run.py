@@ -108,6 +108,7 @@ def speed_run(start: Number, square: Number, wind: Number, speed: Number) -> Num
     >>> round(speed_run(2.0, -0.0005, 0.0, 30.0), 3)
     254.892
     """
+    start, square, wind, speed = np.broadcast_arrays(start, square, wind, speed)
     gained = np.maximum(speed - wind, 0.0)
     airspeed = wind + np.multiply.outer(NODES, gained)
     return np.tensordot(SPEED_WEIGHTS, 1.0 / (start + square * np.square(airspeed)), 1) * np.square(gained)
@@ -159,6 +160,9 @@ def disk_run_between(thrust: Number, lost: Number, square: Number, disk_speed: N
     >>> round(disk_run_between(4.0, 0.5, 0.0005, 24.0, 0.0, disk_root(0.0), disk_root(1.25)), 3)
     213.02
     """
+    thrust, lost, square, disk_speed, wind, slow, fast = np.broadcast_arrays(
+        thrust, lost, square, disk_speed, wind, slow, fast
+    )
     root = slow + np.multiply.outer(NODES, fast - slow)
     share = 1.0 / root
     speed_ratio = root - np.square(share)

@@ -141,8 +141,9 @@ def barely_of(least: Number, first: Number) -> Number:
     return least < BARELY * first
 
 
-def climbs_of(excess: Number, slope: Number) -> Number:
-    return excess - np.maximum(slope, 0.0) >= LEAST_CLIMB
+def climbs_of(excess: Number, slope: Number, tas: Number, wind: Number) -> Number:
+    """Whether the climb gains on the ground that rises under it."""
+    return excess - airborne.rise_under(slope, airborne.drift_factor(tas, wind)) >= LEAST_CLIMB
 
 
 def obstacle_known_of(height: Number, distance: Number) -> Number:
@@ -186,9 +187,10 @@ def braked_square(rho: Number, area: Number, mass: Number, drag: Number, lift: N
 def ground_row(surface: Number, condition: Number, day_condition: Number) -> Number:
     """Row [1, 2, ...] in the ground table of the codes [0, 1, ...] of a surface and a condition.
 
-    A code of -1 stands for "not known"; such a pair has the row after the last, GROUND_UNKNOWN.
+    A surface of -1 is not known; a condition of -1 was not given, and the day's stands for it; one of -2 is not
+    understood. What is not known has the row after the last, GROUND_UNKNOWN.
     """
-    used: Number = np.where(condition >= 0, condition, day_condition)
+    used: Number = np.where(condition == -1, day_condition, condition)
     return np.where((surface >= 0) & (used >= 0), surface * len(CONDITIONS) + used + 1, GROUND_UNKNOWN)
 
 
@@ -212,12 +214,12 @@ def loading_known(mass: Number, flap: Number, least: Number, most: Number) -> Nu
 
 
 def side_known_of(fault: Number, density: Number, headwind: Number, slope: Number, friction: Number, factor: Number,
-                  length: Number, loading: Number, physics_counts: Number,
-                  corrections_count: Number) -> Number:  # fmt: skip
+                  length: Number, loading: Number, physics_counts: Number, corrections_count: Number,
+                  obstacle_whole: Number) -> Number:  # fmt: skip
     """Whether all is known that one side, take-off or landing, needs."""
     figures = np.isfinite(density) & np.isfinite(headwind) & np.isfinite(friction) & np.isfinite(factor)
     rules = physics_counts | corrections_count
-    return np.logical_not(fault) & figures & known(slope, SLOPES) & known(length, LENGTHS) & loading & rules
+    return np.logical_not(fault) & figures & known(slope, SLOPES) & known(length, LENGTHS) & loading & rules & obstacle_whole
 
 
 def interpolated(at: Number, nodes: Number, values: Number) -> Number:
@@ -277,9 +279,15 @@ def landing_length_of(usable: Number, present: Number, height: Number, distance:
     return np.where(present, usable - airborne.threshold_shift(height, distance, path), usable)
 
 
-def path_closes_of(path: Number, slope: Number) -> Number:
+def path_closes_of(path: Number, slope: Number, approach: Number, touchdown: Number, wind: Number) -> Number:
     """Whether the approach path meets the ground that falls away under it."""
-    return path + np.minimum(slope, 0.0) >= LEAST_CLIMB
+    drift = airborne.drift_factor(0.5 * (approach + touchdown), wind)
+    return path - airborne.rise_under(-slope, drift) >= LEAST_CLIMB
+
+
+def obstacle_whole_of(height: Number, distance: Number) -> Number:
+    """Whether an obstacle has both its figures, or neither."""
+    return np.equal(np.isfinite(height), np.isfinite(distance))
 
 
 def level_landing_air(approach: Number, touchdown: Number, path: Number, wind: Number, technique: Number) -> Number:

@@ -33,9 +33,9 @@ class _Recorded(np.lib.mixins.NDArrayOperatorsMixin):
     __slots__ = ()
 
     def __array_ufunc__(self, ufunc: np.ufunc, method: str, *inputs: Any, **kwargs: Any) -> Any:
-        if kwargs or method not in ("__call__", "outer"):
+        if kwargs or method not in ("__call__", "outer") or (method == "outer" and isinstance(inputs[0], _Recorded)):
             raise TypeError(f"np.{ufunc.__name__} with {method} {sorted(kwargs)} can't be recorded")
-        return _by_row(ufunc, (Rows(tuple(inputs[0])), inputs[1]) if method == "outer" else inputs)
+        return _by_row(ufunc, inputs)
 
     def __array_function__(self, function: Callable[..., Any], types: Any, args: Any, kwargs: Any) -> Any:
         if function not in _RECORDS:
@@ -138,6 +138,8 @@ def _needs(ufunc: np.ufunc, inputs: Sequence[Any]) -> frozenset[int]:
 
 
 def _by_row(ufunc: np.ufunc, inputs: Sequence[Any]) -> Any:
+    """Result of a ufunc, row by row where there are rows: an array of numbers is one number for each row."""
+    inputs = [Rows(tuple(item)) if isinstance(item, np.ndarray) and item.ndim else item for item in inputs]
     count = next((len(item.rows) for item in inputs if isinstance(item, Rows)), 0)
     if not count:
         return _operation(ufunc, inputs)
@@ -302,6 +304,7 @@ _RECORDS: dict[Any, Callable[..., Any]] = {
     np.where: _where,
     np.select: _select,
     np.tensordot: _sum_of_products,
+    np.broadcast_arrays: lambda *values: values,
     np.choose: _choose,
     np.interp: _interpolate,
 }

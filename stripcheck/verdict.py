@@ -19,6 +19,7 @@ from stripcheck.numeric import Number
 SUITABLE, MARGINAL, UNSUITABLE, NOT_ASSESSED = VERDICTS = ("suitable", "marginal", "unsuitable", "not assessed")
 FAULT = "{fault}"  # stands for the text of the row's fault where a reason is put into words
 
+HALF_AN_OBSTACLE = "obstacle without height or without distance"
 NO_RULE = "the rules count neither physics nor corrections"
 
 CAUTION = (
@@ -148,6 +149,7 @@ TAKEOFF_FINDINGS = (
     Finding(NOT_ASSESSED, "length usable for take-off not known", ("tora",), _unknown(links.LENGTHS)),
     Finding(NOT_ASSESSED, "take-off mass or flap missing or not in the card", ("takeoff_set",), _no),
     Finding(NOT_ASSESSED, NO_RULE, ("physics_counts", "corrections_count"), _neither),
+    Finding(NOT_ASSESSED, HALF_AN_OBSTACLE, ("ahead_whole",), _no),
     Finding(NOT_ASSESSED, "a value needed is missing", ("takeoff_known",), _no),
     Finding(UNSUITABLE, "over the greatest take-off mass", ("mass_takeoff", "max_takeoff_mass"), _above),
     Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
@@ -176,6 +178,7 @@ LANDING_FINDINGS = (
     Finding(NOT_ASSESSED, "length usable for landing not known", ("lda",), _unknown(links.LENGTHS)),
     Finding(NOT_ASSESSED, "landing mass or flap missing or not in the card", ("landing_set",), _no),
     Finding(NOT_ASSESSED, NO_RULE, ("physics_counts", "corrections_count"), _neither),
+    Finding(NOT_ASSESSED, HALF_AN_OBSTACLE, ("behind_whole",), _no),
     Finding(NOT_ASSESSED, "a value needed is missing", ("landing_known",), _no),
     Finding(UNSUITABLE, "over the greatest landing mass", ("mass_landing", "max_landing_mass"), _above),
     Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),

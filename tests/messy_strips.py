@@ -34,4 +34,8 @@ def messy_columns(rows: int, seed: int) -> dict[str, np.ndarray]:
         else:
             columns[item.key] = random.random(rows) < (0.02 if item.kind == "fault" else 0.95)
     columns["own_wind_speed"][random.random(rows) < 0.2] = 0.0
+    for side in ("obstacle", "approach_obstacle"):  # most obstacles have both figures or neither
+        height, distance = columns[f"{side}_height"], columns[f"{side}_distance"]
+        half = (np.isfinite(height) != np.isfinite(distance)) & (random.random(rows) < 0.95)
+        height[half] = distance[half] = np.nan
     return columns

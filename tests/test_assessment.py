@@ -138,7 +138,7 @@ def test_what_is_missing_is_not_known() -> None:
         ({"land_here": "perhaps"}, r'land_here, row 1: "perhaps" is neither yes nor no'),
         ({"land_here": np.array([1, 0, 2])}, r'land_here, row 3: "2" is neither yes nor no'),
         ({"surface": np.array([0, 8])}, r"surface, row 2: 8 is not the place of a word; write one of: paved, "),
-        ({"condition": np.array([-2, 0])}, r"condition, row 1: -2 is not the place of a word"),
+        ({"condition": np.array([-3, 0])}, r"condition, row 1: -3 is not the place of a word"),
         ({"tora": ["500 m", "long"]}, r'tora: "long" is not a number; write for example "620 m"'),
     ],
 )

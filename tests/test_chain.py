@@ -74,6 +74,24 @@ def test_a_column_of_one_value_is_as_good_as_the_value(rows: int) -> None:
     assert_same(evaluate(chain, {**values, **single}), evaluate(chain, {**values, **columns}))
 
 
+@pytest.mark.parametrize("card", shipped_cards())
+@pytest.mark.parametrize("rows", [10, FEW + 10])
+def test_all_strips_at_one_place(card: str, rows: int) -> None:
+    """Air and speeds are the same in all rows, and only the ground differs."""
+    values = {**given(card, "uk-leaflet", DAYS[1], 1), "fault": False, "take_off_here": True, "land_here": True,
+              "elevation_field": 500.0, "own_wind_speed": np.nan, "own_qnh": np.nan, "own_temperature": np.nan,
+              "elevation_start": np.nan, "elevation_end": np.nan, "tora": 800.0, "lda": 800.0, "obstacle_height": np.nan,
+              "obstacle_distance": np.nan}  # fmt: skip
+    values = {key: np.ravel(value)[0] if np.shape(value) == (1,) else value for key, value in values.items()}
+    slopes = np.linspace(-0.05, 0.05, rows)
+    together = evaluate(CARDS[card].chain, {**values, "surface": 3, "slope_given": slopes})
+    assert np.isfinite(together["takeoff_roll"]).sum() > rows // 2
+    for row in (0, rows - 1):
+        single = evaluate(CARDS[card].chain, {**values, "surface": 3, "slope_given": slopes[row]})
+        assert_same({key: value[row : row + 1] for key, value in together.items()},
+                    {key: value.reshape(1) for key, value in single.items()})  # fmt: skip
+
+
 def test_the_same_again_with_other_values() -> None:
     """A program is kept for the next call, but only for one with the same numbers."""
     chain = CARDS["ridge-runner"].chain

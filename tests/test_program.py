@@ -39,7 +39,7 @@ def test_few_buffers_serve_a_long_program() -> None:
 def test_rows_of_a_sum_run_one_after_the_other() -> None:
     recorder = Recorder()
     x, y = (recorder.column(key, np.dtype(float)) for key in "xy")
-    total = np.tensordot([0.3, 0.5, 0.2], 1.0 / (x + y * np.multiply.outer([0.1, 0.5, 0.8], x)), 1)
+    total = np.tensordot(np.ones(3), 1.0 / (x + y * np.multiply.outer(np.array([0.1, 0.5, 0.8]), x)), 1)
     rows = [node.row for node in Program({"sum": total}).order if node.stage == 1]
     assert rows == sorted(rows) and set(rows) == {0, 1, 2}
 

@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+from stripcheck.ground_run import disk_run_between, speed_run
 from stripcheck.program import Program
 from stripcheck.recording import Node, Recorder, Rows
 
@@ -67,6 +68,8 @@ EXPRESSIONS: list[Callable[[Any, Any], Any]] = [
     lambda x, y: np.interp(np.where(np.isfinite(x), x, 0.0), [-1.0, 0.0, 2.0], [4.0, 5.0, 9.0]),
     sum_of,
     two_sums,
+    lambda x, y: speed_run(1.0 + y * y, -1e-4, 2.0, 25.0),
+    lambda x, y: disk_run_between(4.0 + y * y, 0.5, 5e-4, 24.0, 0.0, 1.0, 1.6),
 ]
 
 
@@ -90,9 +93,7 @@ def test_whole_numbers_and_truths() -> None:
     found = ran(lambda p: np.where(p >= 2, p * 3 + 1, 99), p=PLACES.astype(np.int8))
     np.testing.assert_array_equal(found, np.where(PLACES >= 2, PLACES * 3 + 1, 99))
     np.testing.assert_array_equal(ran(lambda p: np.choose(p, TABLE), p=PLACES), TABLE[PLACES])
-    np.testing.assert_array_equal(
-        ran(lambda t, p: np.where(t, p, 7) + 1, t=TRUE, p=PLACES), np.where(TRUE, PLACES, 7) + 1
-    )
+    np.testing.assert_array_equal(ran(lambda t, p: np.where(t, p, 7) + 1, t=TRUE, p=PLACES), np.where(TRUE, PLACES, 7) + 1)
     np.testing.assert_array_equal(ran(lambda t, x: x * t, t=TRUE, x=PLACES + 0.5), (PLACES + 0.5) * TRUE)
 
 
@@ -128,6 +129,8 @@ def test_what_is_not_provided_for_is_refused() -> None:
     x = Recorder().column("x", np.dtype(float))
     with pytest.raises(TypeError, match=r"np\.median can't be recorded"):
         np.median(x)
+    with pytest.raises(TypeError, match=r"np\.multiply with outer"):
+        np.multiply.outer(x, NODES)
     with pytest.raises(TypeError, match=r"np\.add with reduce"):
         np.add.reduce(x)
     with pytest.raises(TypeError, match="only over one axis"):

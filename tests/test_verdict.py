@@ -85,6 +85,7 @@ BOTH: dict[str, Case] = {
         {"approach_obstacle_height": 140.0, "approach_obstacle_distance": 600.0, "*rules": "au-small"},
 }  # fmt: skip
 TAKEOFF: dict[str, Case] = BOTH | {
+    "obstacle without height or without distance": {"obstacle_height": 100.0},
     "one-way strip: no take-off in this direction": {"take_off_here": "no"},
     "length usable for take-off not known": {"tora": None},
     "take-off mass or flap missing or not in the card": {"*takeoff_mass": NAN},
@@ -104,6 +105,7 @@ TAKEOFF: dict[str, Case] = BOTH | {
     "take-off fits, factors included": {},
 }  # fmt: skip
 LANDING: dict[str, Case] = BOTH | {
+    "obstacle without height or without distance": {"approach_obstacle_distance": 100.0},
     "one-way strip: no landing in this direction": {"land_here": "no"},
     "slope not credible": {"slope_given": -35.0},
     "length usable for landing not known": {"lda": None},

@@ -97,7 +97,7 @@ class Cell(np.lib.mixins.NDArrayOperatorsMixin):
             return _UNARY[ufunc](*cells)
         raise TypeError(f"np.{ufunc.__name__} can't be written as a cell formula")
 
-    def __array_function__(self, func: Any, types: Any, args: Any, kwargs: Any) -> Cell:
+    def __array_function__(self, func: Any, types: Any, args: Any, kwargs: Any) -> Any:
         if func not in _ARRAY_FUNCTIONS:
             raise TypeError(f"np.{func.__name__} can't be written as a cell formula")
         return _ARRAY_FUNCTIONS[func](*args, **kwargs)
@@ -178,6 +178,8 @@ def formula(cell: Cell) -> str:
 def _binary(ufunc: np.ufunc, left: Cell, right: Cell) -> Cell:
     if ufunc in (np.add, np.subtract) and right.text == "0":
         return left
+    if ufunc is np.equal and {left.text, right.text} <= {"TRUE", "FALSE"}:
+        return Cell("TRUE" if left.text == right.text else "FALSE")
     sign, left_rank, right_rank = _BINARY[ufunc]
     text = left.within(left_rank) + sign + right.within(right_rank)
     many = left.many or right.many
@@ -294,11 +296,12 @@ def _interpolate(at: Any, nodes: Any, values: Any) -> Cell:
     return Cell(f"{y0}+({held}-{x0})/({x1}-{x0})*({y1}-{y0})", ADD, x.depth + 6)
 
 
-_ARRAY_FUNCTIONS: dict[Any, Callable[..., Cell]] = {
+_ARRAY_FUNCTIONS: dict[Any, Callable[..., Any]] = {
     np.where: where,
     np.select: _select,
     np.clip: _clip,
     np.tensordot: _sum_of_products,
+    np.broadcast_arrays: lambda *cells: cells,
     np.min: _extreme("MIN"),
     np.max: _extreme("MAX"),
     np.interp: _interpolate,

@@ -11,6 +11,7 @@ from __future__ import annotations
 import math
 import tomllib
 from collections.abc import Callable
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -21,6 +22,7 @@ from scipy.optimize import brentq
 
 import stripcheck
 from stripcheck import assess, load_card
+from stripcheck.card import Card
 from stripcheck.units import read_quantity
 
 G, SCREEN, RADIUS = 9.80665, 15.24, 6356766.0
@@ -35,6 +37,11 @@ CASES = [
     ("long grass", 0.10, 0.25, 800.0, 20.0, 2.0, -5.0),
     ("dirt", 0.04, 0.30, 4100.0, 5.0, -5.0, 0.0),
 ]
+
+
+@cache
+def loaded(name: str) -> Card:
+    return load_card(name)
 
 
 def card_file(name: str) -> dict[str, Any]:
@@ -53,7 +60,7 @@ class Flight:
     """One aeroplane on one strip on one day; SI, drag and thrust as in the card's file."""
 
     def __init__(self, name: str, case: tuple[Any, ...]) -> None:
-        self.card, self.fitted = card_file(name), load_card(name).fit.values
+        self.card, self.fitted = card_file(name), loaded(name).fit.values
         _, self.rolling, self.braking, feet, celsius, slope, wind = case
         self.rho, self.sigma = air(feet, celsius)
         self.slope, self.wind = slope / 100.0, wind * 1852.0 / 3600.0
@@ -147,7 +154,7 @@ def test_distances(name: str, case: tuple[Any, ...]) -> None:
     surface, _, _, feet, celsius, slope, wind = case
     strip = {"surface": surface, "elevation_field": feet, "slope_given": slope, "tora": 3000.0, "lda": 3000.0,
              "heading": 90.0, "own_wind_from": 90.0 if wind >= 0.0 else 270.0, "own_wind_speed": abs(wind)}  # fmt: skip
-    result = assess(strip, name, {"temperature": celsius}, "manual-only")
+    result = assess(strip, loaded(name), {"temperature": celsius}, "manual-only")
     flight = Flight(name, case)
     for side, roll, whole in (("takeoff", *flight.takeoff()), ("landing", *flight.landing())):
         assert result[f"{side}_roll"][0] == pytest.approx(roll, rel=1e-5), side
