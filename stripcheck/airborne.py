@@ -154,21 +154,33 @@ def flare_height(radius: Number, gradient: Number) -> Number:
     return radius * (1.0 - 1.0 / np.sqrt(1.0 + np.square(gradient)))
 
 
-def landing_air_distance(approach: Number, touchdown: Number, gradient: Number, slope: Number, wind: Number,
+def descent_path(gradient: Number, slope: Number, wind: Number, slowest: Number) -> Number:
+    """Gradient of descent [-] towards ground of a slope [-], for each metre flown through the air.
+
+    ``gradient`` of descent through the air [-]; ``slope`` [-]: ground that falls away takes from the gradient, and the
+    more of it a tailwind carries past; ground that rises and a headwind give nothing. ``wind`` [m/s]; ``slowest``
+    [m/s]: the slowest touchdown, against which a tailwind is weighed so that flying faster never helps.
+    Source: geometry, on the safe side.
+
+    >>> round(descent_path(0.08, -0.03, -5.0, 20.0), 6)
+    0.0425
+    """
+    return gradient - rise_under(-slope, drift_factor(slowest, wind))
+
+
+def landing_air_distance(approach: Number, touchdown: Number, path: Number, wind: Number,
                          technique: Number) -> Number:  # fmt: skip
     """Distance over the ground [m] from 50 ft above the threshold to touchdown: straight path, then a round flare.
 
-    ``approach`` and ``touchdown`` speeds [m/s TAS]; ``gradient`` of descent [-]; ``slope`` [-]: ground that falls
-    away under the approach takes from the gradient, ground that rises gives nothing; ``wind`` [m/s]; ``technique``
-    [-] calibrated factor on the distance. Source: [1]. The straight part ends where the flare begins, and is nil
-    when the flare would begin above 50 ft.
+    ``approach`` and ``touchdown`` speeds [m/s TAS]; ``path`` [-]: ``descent_path``, positive; ``wind`` [m/s];
+    ``technique`` [-] calibrated factor on the distance. Source: [1]. The straight part ends where the flare begins, and
+    is nil when the flare would begin above 50 ft.
 
-    >>> round(landing_air_distance(35.0, 31.0, 0.0524, 0.0, 0.0, 1.0), 2)
+    >>> round(landing_air_distance(35.0, 31.0, 0.0524, 0.0, 1.0), 2)
     305.38
     """
     speed = 0.5 * (approach + touchdown)
     drift = drift_factor(speed, wind)
-    path = gradient - rise_under(-slope, drift)
     radius = flare_radius(speed)
     straight = np.maximum(SCREEN - flare_height(radius, path), 0.0) / path
     flare = radius * path / np.sqrt(1.0 + np.square(path))

@@ -23,7 +23,6 @@ TECHNIQUES = (0.4, 2.5)  # an airborne factor outside of this says that the card
 QUALITIES = (0.25, 0.92)  # useful share of the shaft power of a constant-speed propeller at low speed
 BRAKING = (0.3, 2.0)  # braking factor: 1 is the ground table's figure
 SLOPE_OF_THRUST = -1.5e-4  # b over a [m2/N] of a usual fixed-pitch propeller; common practice, no source
-SEPARATION = 1.03  # ratio of thrusts needed, between the extremes of two points, to tell a and b apart
 
 
 @dataclass(frozen=True)

@@ -18,6 +18,7 @@ PRESSURES = (85000.0, 108500.0)  # Pa: beyond any QNH on record
 LENGTHS = (1.0, 10000.0)  # m: any length that could be meant
 SLOPES = (-0.30, 0.30)  # fraction: beyond any strip in use
 LEAST_CLIMB = 0.005  # excess gradient below which the airborne part has no meaningful length
+LEAST_DESCENT = 0.03  # towards falling ground; below it the distance would hang on the wind alone
 GROUND_UNKNOWN = len(GROUNDS) + 1  # row of the ground table for a surface or condition that is not known
 # A run "barely accelerates" when its least acceleration is below this share of the first one. Falling with the square
 # of speed, that is a little before the last acceleration is a quarter of the mean one.
@@ -94,9 +95,14 @@ def cross_of(speed: Number, direction: Number, heading: Number) -> Number:
     return np.where(speed == 0.0, 0.0, speeds.crosswind(speed, direction, heading))
 
 
-def run_speed_of(lift_off: Number, wind: Number) -> Number:
-    """Airspeed at the end of a run: at least 1 m/s over the ground, however strong the wind."""
-    return np.maximum(lift_off, wind + 1.0)
+def run_wind_of(wind: Number, lift_off: Number) -> Number:
+    """Headwind counted in the run: at least the last 1 m/s is run over the ground, however strong the wind."""
+    return np.minimum(wind, lift_off - 1.0)
+
+
+def first_acceleration_of(start: Number, square: Number, wind: Number) -> Number:
+    """Acceleration where a run begins; in a tailwind where it passes zero airspeed, so that it never looks worse."""
+    return ground_run.acceleration_at(start, square, np.maximum(wind, 0.0))
 
 
 def rule_correction(surface_factor: Number, per_percent: Number, against: Number) -> Number:
@@ -141,9 +147,10 @@ def barely_of(least: Number, first: Number) -> Number:
     return least < BARELY * first
 
 
-def climbs_of(excess: Number, slope: Number, tas: Number, wind: Number) -> Number:
-    """Whether the climb gains on the ground that rises under it."""
-    return excess - airborne.rise_under(slope, airborne.drift_factor(tas, wind)) >= LEAST_CLIMB
+def climbs_of(excess: Number, slope: Number, tas: Number, wind: Number, over_ground: Number) -> Number:
+    """Whether the climb gains on the ground that rises under it, to 50 ft and after it."""
+    gains = excess - airborne.rise_under(slope, airborne.drift_factor(tas, wind)) >= LEAST_CLIMB
+    return gains & (over_ground >= np.maximum(slope, 0.0))
 
 
 def obstacle_known_of(height: Number, distance: Number) -> Number:
@@ -279,19 +286,19 @@ def landing_length_of(usable: Number, present: Number, height: Number, distance:
     return np.where(present, usable - airborne.threshold_shift(height, distance, path), usable)
 
 
-def path_closes_of(path: Number, slope: Number, approach: Number, touchdown: Number, wind: Number) -> Number:
+def slowest_touchdown_of(lift: Number, max_mass: Number, area: Number, factor: Number) -> Number:
+    """Touchdown speed at half the greatest landing mass, which is less than any aeroplane lands at."""
+    return factor * speeds.stall_speed_of_lift(lift, 0.5 * max_mass, area)
+
+
+def path_closes_of(path: Number) -> Number:
     """Whether the approach path meets the ground that falls away under it."""
-    drift = airborne.drift_factor(0.5 * (approach + touchdown), wind)
-    return path - airborne.rise_under(-slope, drift) >= LEAST_CLIMB
+    return path >= LEAST_DESCENT
 
 
 def obstacle_whole_of(height: Number, distance: Number) -> Number:
     """Whether an obstacle has both its figures, or neither."""
     return np.equal(np.isfinite(height), np.isfinite(distance))
-
-
-def level_landing_air(approach: Number, touchdown: Number, path: Number, wind: Number, technique: Number) -> Number:
-    return airborne.landing_air_distance(approach, touchdown, path, 0.0, wind, technique)
 
 
 def braked_start(braking: Number, quality: Number, slope: Number) -> Number:

@@ -276,16 +276,6 @@ def _sum_of_products(one: Any, other: Any, axes: int = 2) -> Cell:
     return Cell(f"SUMPRODUCT({(left * right).text})", ATOM, 1 + max(left.depth, right.depth))
 
 
-def _extreme(name: str) -> Callable[..., Cell]:
-    def write(cell: Cell, axis: int | None = None) -> Cell:
-        """SUMPRODUCT makes every spreadsheet program evaluate the array that MIN or MAX swallows."""
-        if axis != 0 or not cell.many:
-            raise TypeError(f"np.{name.lower()} can be written as a cell formula only over the first axis of an array")
-        return Cell(f"SUMPRODUCT({name}({cell.text}))", ATOM, cell.depth + 2)
-
-    return write
-
-
 def _interpolate(at: Any, nodes: Any, values: Any) -> Cell:
     """np.interp over two ranges of cells: held at the ends, straight between the nodes."""
     x, xs, ys = as_cell(at), as_cell(nodes), as_cell(values)
@@ -302,7 +292,5 @@ _ARRAY_FUNCTIONS: dict[Any, Callable[..., Any]] = {
     np.clip: _clip,
     np.tensordot: _sum_of_products,
     np.broadcast_arrays: lambda *cells: cells,
-    np.min: _extreme("MIN"),
-    np.max: _extreme("MAX"),
     np.interp: _interpolate,
 }

@@ -66,7 +66,7 @@ def test_anderson_6_7_flare_and_air_distance() -> None:
     assert airborne.flare_height(radius, THREE_DEGREES) == pytest.approx(8.71 * FOOT, rel=2e-3)
     assert pytest.approx(50.0 * FOOT, rel=1e-12) == SCREEN
     # 1.3 and 1.15 Vstall are the book's approach and touchdown; it rounds the mean, 1.225, to 1.23: the same here
-    whole = airborne.landing_air_distance(flare_speed, flare_speed, THREE_DEGREES, 0.0, 0.0, 1.0)
+    whole = airborne.landing_air_distance(flare_speed, flare_speed, THREE_DEGREES, 0.0, 1.0)
     assert whole == pytest.approx((788.0 + 333.0) * FOOT, rel=1e-3)
 
 

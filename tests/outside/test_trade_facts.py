@@ -58,7 +58,7 @@ def test_flaps_make_the_descent_steeper_and_the_landing_shorter_at_one_speed(car
                                              card.values["ground_lift"], 0.3)  # fmt: skip
         roll = ground_run.speed_run(ground_run.resistance(0.3, 0.0), square, 0.0, speed)
         paths.append(path)
-        distances.append(airborne.landing_air_distance(speed, speed, path, 0.0, 0.0, 1.0) + roll)
+        distances.append(airborne.landing_air_distance(speed, speed, path, 0.0, 1.0) + roll)
     assert paths[1] > paths[0]
     assert distances[1] < distances[0]
 
