@@ -67,12 +67,13 @@ def fill_list(request: Request) -> list[str]:
     day = read_day(request.day)
     directions = read_list(request.list, airports=request.airports, sheet=request.sheet, strict=request.strict)
     _check_air(day, directions)
-    filling = fill(directions, card, day, rules, chosen, flap_names)
-    if request.output.suffix == ".csv":
+    is_table = request.output.suffix == ".csv"
+    full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
+    filling = fill(directions, card, day, rules, chosen, flap_names, short=not (is_table or full))
+    if is_table:
         write_csv(filling, request.output)
         cuts: list[str] = []
     else:
-        full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
         with _progress(filling, request.quiet) as progress:
             cuts = write_workbook(filling, request.output, full, progress)
     return [*cuts, *summary_lines(filling, request.output)]

@@ -67,13 +67,22 @@ class Filling:
 
 
 def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Mapping[str, float],
-         flap_names: Mapping[str, str]) -> Filling:  # fmt: skip
-    """Compute all steps of all directions, and the better direction of each strip."""
+         flap_names: Mapping[str, str], short: bool = False) -> Filling:  # fmt: skip
+    """Compute the steps of all directions, and the better direction of each strip.
+
+    ``short``: only the steps that a workbook of short detail shows, to spare memory.
+    """
     given = strips.given_columns(directions)
-    values = evaluate(card.chain, {**card.values, **rules.values, **day.values, **given, **chosen})
+    keys = _short_keys(card.chain) if short else None
+    values = evaluate(card.chain, {**card.values, **rules.values, **day.values, **given, **chosen}, keys)
     values = {key: np.broadcast_to(value, directions.n) if key in _SUMMARISED else value for key, value in values.items()}
     words = {step.key: step.words for step in card.chain.steps}
     return Filling(directions, card, day, rules, chosen, flap_names, given, values, summary.summarise(values, words))
+
+
+def _short_keys(chain: Chain) -> list[str]:
+    varying = chain.depends_on_strip()
+    return [step.key for step in chain.steps if step.short or step.key not in varying or step.key in _SUMMARISED]
 
 
 _PARTS = ("finding", "verdict", "margin", "margin_share", "reason")
