@@ -75,7 +75,7 @@ GROUND_NAMES = tuple(ground.name for ground in GROUNDS)
 
 
 def ground(surface: str, condition: str) -> Ground:
-    """The table's row for a surface and a condition. Raises ValueError for words that are not in the table.
+    """Row of the table, coefficients [-], for a surface and a condition. Raises ValueError for words not in the table.
 
     >>> ground("grass", "wet").rolling
     0.08
