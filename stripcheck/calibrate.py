@@ -139,7 +139,8 @@ def _fit_airborne(chain: Chain, values: dict[str, Any], points: BookPoints, side
     if not TECHNIQUES[0] <= factor <= TECHNIQUES[1]:
         raise InputError(
             f"{where}: from the {side} roll to the distance over 50 ft the book is {factor:.2f} times the model, which "
-            f"is not credible ({TECHNIQUES[0]} to {TECHNIQUES[1]}): check the speeds and both distances"
+            f"is not credible ({TECHNIQUES[0]} to {TECHNIQUES[1]}): check the speeds and both distances; well below 1 the "
+            "drag or the screen speed of the card is too high, well above 1 too low"
         )
     return factor
 

@@ -7,6 +7,7 @@ Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in
 from __future__ import annotations
 
 import argparse
+import os
 import sys
 from collections.abc import Sequence
 from pathlib import Path
@@ -25,10 +26,15 @@ def main(arguments: Sequence[str] | None = None) -> int:
     options = _parser().parse_args(arguments)
     try:
         run: Any = options.run
-        return int(run(options))
+        code = int(run(options))
+        sys.stdout.flush()
+        return code
     except InputError as error:
         print(f"stripcheck: {error}", file=sys.stderr)
         return 2
+    except BrokenPipeError:  # whoever read the output has gone; what was to be written is written
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return 0
     except KeyboardInterrupt:
         print("stripcheck: interrupted, nothing was written", file=sys.stderr)
         return 130

@@ -10,7 +10,8 @@ from typing import Any
 from stripcheck.errors import InputError
 from stripcheck.inputs import DAY
 from stripcheck.surface import CONDITIONS
-from stripcheck.units import read_quantity
+from stripcheck.units import KINDS as UNIT_KINDS
+from stripcheck.units import from_si, read_quantity, tidy
 
 KINDS = {
     "qnh": "pressure", "temperature": "temperature", "temperature_elevation": "altitude",
@@ -22,6 +23,7 @@ LIMITS = {
     "isa_deviation": (-60.0, 60.0), "humidity": (0.0, 1.0), "dew_point": (193.15, 308.15),
     "wind_from": (0.0, 6.2831854), "wind_speed": (0.0, 51.5), "assumed_slope": (0.0, 0.3),
 }  # fmt: skip
+KINDS_SHOWN = {kind: unit for kind, (unit, _) in UNIT_KINDS.items()}
 # what stands in for a value that nobody gave; each is listed in the workbook
 DEFAULTS = {"qnh": 1013.25, "wind_speed": 0.0, "day_condition": "dry"}
 
@@ -67,7 +69,9 @@ def _value(key: str, typed: Any, label: str) -> float:
         raise InputError(f"day: {label}: {error}") from None
     low, high = LIMITS[key]
     if not low <= value <= high:
-        raise InputError(f"day: {label} of {typed} is not credible")
+        unit = KINDS_SHOWN[KINDS[key]]
+        between = " to ".join(f"{tidy(from_si(limit, unit)):.5g}" for limit in (low, high))
+        raise InputError(f"day: {label} of {typed} is not credible; {between} {unit} is expected, or a number with its unit")
     return value
 
 

@@ -21,8 +21,8 @@ from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
 from stripcheck.register import Directions, read_list
 from stripcheck.rules import load_rules
+from stripcheck.sheet import strips
 from stripcheck.sheet.book import SHORT_ABOVE, Filling, fill, write_workbook
-from stripcheck.sheet.strips import IDENTITY, KEY_STEPS
 from stripcheck.units import read_quantity
 from stripcheck.verdict import CAUTION, VERDICTS
 
@@ -105,6 +105,9 @@ def _mass(typed: str, which: str, greatest: float) -> float:
 def _check_output(request: Request) -> None:
     if request.output.suffix not in (".xlsx", ".csv"):
         raise InputError(f"{request.output}: the name of the file to write must end in .xlsx or .csv")
+    for given in (request.list, Path(request.airports or request.list)):
+        if request.output.exists() and given.exists() and request.output.samefile(given):
+            raise InputError(f"{request.output}: this is the list itself; choose another name for what is written")
     if request.output.exists() and not request.force:
         raise InputError(f"{request.output}: this file exists; choose another name, or add --force to replace it")
     if not request.output.resolve().parent.is_dir():
@@ -135,27 +138,23 @@ def _progress(filling: Filling, quiet: bool) -> Iterator[Callable[[int], None] |
 def summary_lines(filling: Filling, output: Path) -> list[str]:
     """Counts of verdicts, and what was left out, in a few lines."""
     counts, directions = filling.counts(), filling.directions
+    guessed = [f"Taken for granted: {doubt.reason}" for doubt in directions.doubts if doubt.what == "unit not named"]
     lines = [f"{output}: {directions.n // 2} runways, {len(directions.left_out)} of {directions.rows_read} left out"]
     for side, label in (("in", "Landing"), ("out", "Take-off")):
         lines.append(f"{label}: " + ", ".join(f"{counts[side][verdict]} {verdict}" for verdict in VERDICTS))
     lines.append("In and out: " + "; ".join(f"{number} {words}" for words, number in counts["both"].items() if number))
-    return lines
+    return [*guessed, *lines]
 
 
 def write_csv(filling: Filling, path: Path) -> None:
     """The result table, one row for each direction, whole or not at all. Text that a spreadsheet would take for a
     formula gets an apostrophe before it."""
-    steps = {step.key: step for step in filling.chain.steps}
-    varying = filling.chain.depends_on_strip()
-    keys = [*KEY_STEPS, *(key for key in steps if key in varying and key not in KEY_STEPS)]
-    heads = [label for key, label, _, _ in IDENTITY if key != "key"]
-    heads += [f"{steps[key].label} [{steps[key].unit}]" if steps[key].unit else steps[key].label for key in keys]
-    texts = filling.directions.texts
-    columns: list[Any] = [[_harmless(text) for text in texts[key]] for key, *_ in IDENTITY if key != "key"]
-    columns += [_plain(filling.shown(steps[key])) for key in keys]
-    heads += list(filling.directions.carried)
-    columns += [[_harmless(value) if isinstance(value, str) else value for value in values]
-                for values in filling.directions.carried.values()]  # fmt: skip
+    shown = {step.key: filling.shown(step) for step in filling.chain.steps if step.key in filling.chain.depends_on_strip()}
+    layout = strips.layout(filling.chain, filling.directions, True)
+    table = strips.table_of(layout, filling.directions, filling.given, dict.fromkeys(shown, ""), shown)
+    kept = [(column.header, made.values) for column, made in zip(layout, table.columns, strict=True) if column.key != "key"]
+    heads = [header for header, _ in kept]
+    columns = [_plain(values) for _, values in kept]
     spare = path.with_name(f".{secrets.token_hex(8)}.tmp")
     try:
         with open(spare, "x", newline="", encoding="utf-8-sig") as file:
@@ -172,7 +171,7 @@ def write_csv(filling: Filling, path: Path) -> None:
 
 
 def _plain(values: Any) -> list[Any]:
-    if isinstance(values, list):
+    if not isinstance(values, np.ndarray):
         return [_harmless(value) if isinstance(value, str) else value for value in values]
     if values.dtype == bool:
         return ["yes" if value else "no" for value in values.tolist()]

@@ -95,9 +95,9 @@ def cross_of(speed: Number, direction: Number, heading: Number) -> Number:
     return np.where(speed == 0.0, 0.0, speeds.crosswind(speed, direction, heading))
 
 
-def run_wind_of(wind: Number, lift_off: Number) -> Number:
-    """Headwind counted in the run: at least the last 1 m/s is run over the ground, however strong the wind."""
-    return np.minimum(wind, lift_off - 1.0)
+def counted_wind_of(wind: Number, flying_speed: Number) -> Number:
+    """Headwind counted: at most half of the speed at which the wheels leave or touch the ground, however strong it is."""
+    return np.minimum(wind, 0.5 * flying_speed)
 
 
 def first_acceleration_of(start: Number, square: Number, wind: Number) -> Number:

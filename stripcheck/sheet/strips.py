@@ -184,7 +184,7 @@ def write_skeleton(pages: Pages, columns: list[Column], rows: int, title: str) -
 
 def _style_template(sheet: Worksheet, number: int, column: Column) -> None:
     cell = sheet.cell(FIRST_ROW, number)
-    cell.font, cell.border = styles.BODY, styles.LINE
+    cell.font, cell.border, cell.alignment = styles.BODY, styles.LINE, styles.MIDDLE
     item = column.item
     if isinstance(item, Input):
         cell.fill, cell.border, cell.protection = styles.INPUT_FILL, styles.BOX, styles.UNLOCKED

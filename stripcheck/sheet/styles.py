@@ -44,6 +44,7 @@ CENTRE = Alignment(horizontal="center", vertical="center", wrap_text=True)
 INDENT = Alignment(horizontal="left", vertical="center", indent=1)
 INDENT_WRAP = Alignment(horizontal="left", vertical="center", indent=1, wrap_text=True)
 RIGHT = Alignment(horizontal="right")
+MIDDLE = Alignment(vertical="center")
 LEFT = Alignment(horizontal="left")
 UNLOCKED = Protection(locked=False)
 

@@ -118,7 +118,7 @@ def write_skeleton(pages: Pages, strips: int, facts: list[str]) -> Worksheet:
         if text:
             sheet.cell(HEADER_ROW, number).comment = note(text, 240, 70)
         cell = sheet.cell(FIRST_ROW, number)
-        cell.font, cell.border = styles.BODY, styles.LINE
+        cell.font, cell.border, cell.alignment = styles.BODY, styles.LINE, styles.MIDDLE
         cells = f"{letter}{FIRST_ROW}:{letter}{last}"
         if key.endswith("_verdict"):
             styles.colour_verdicts(sheet, cells)
