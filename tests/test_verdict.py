@@ -131,7 +131,7 @@ def every_finding() -> Iterator[Any]:
             yield pytest.param(side, number, id=f"{side}: {finding.words}")
 
 
-@pytest.mark.parametrize(("side", "number"), every_finding())
+@pytest.mark.parametrize(("side", "number"), list(every_finding()))
 def test_every_finding_can_be_met(side: str, number: int) -> None:
     findings, cases = SIDES[side]
     finding = findings[number]
