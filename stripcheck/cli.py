@@ -14,9 +14,9 @@ from pathlib import Path
 from typing import Any
 
 from stripcheck import __version__
+from stripcheck.caution import CAUTION
 from stripcheck.errors import InputError
 
-CAUTION = "Planning aid only. The approved flight manual, the rules of the local authority and the pilot in command decide."
 EPILOG = f"Exit codes: 0 done, 2 bad input (one sentence, nothing written), 130 interrupted. {CAUTION}"
 DEMO_FILE = "stripcheck-demo.xlsx"
 

@@ -20,6 +20,7 @@ from stripcheck import doc_words as prose
 from stripcheck import verdict
 from stripcheck.calibrate import BRAKING, QUALITIES, TECHNIQUES
 from stripcheck.card import TYPICAL, load_card, shipped_cards
+from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.inputs import CARD, CONSTANT_SPEED, DAY, FIXED_PITCH, POWER_LIMIT, RULES, STRIP
 from stripcheck.register import surface_words
@@ -95,7 +96,7 @@ def method_page() -> str:
     """docs/method.md: what is given, every step, and the findings."""
     return _joined(
         "# How a verdict comes about",
-        f"> {verdict.CAUTION}",
+        f"> {CAUTION}",
         MADE,
         folded(prose.METHOD_INTRO.format(SHORT_ABOVE)),
         "## In short",
@@ -176,7 +177,7 @@ def rules_page() -> str:
     parts = [part for one in sets for part in _rule_set(one)]
     return _joined(
         "# Rule sets",
-        f"> {verdict.CAUTION}",
+        f"> {CAUTION}",
         MADE,
         prose.RULES_INTRO,
         "## Shipped sets",
@@ -292,7 +293,7 @@ def card_page() -> str:
     parts = [part for name in shipped_cards() for part in _calibration(name)]
     return _joined(
         "# The aircraft card",
-        f"> {verdict.CAUTION}",
+        f"> {CAUTION}",
         MADE,
         folded(prose.CARD_INTRO.format(_listed(shipped_cards()))),
         "## Making a card from a flight manual",
@@ -331,7 +332,7 @@ def lists_page() -> str:
     """docs/lists.md: columns, surface words, what is left out, faults and doubts."""
     return _joined(
         "# Runway lists",
-        f"> {verdict.CAUTION}",
+        f"> {CAUTION}",
         MADE,
         prose.LISTS_INTRO,
         "## Columns",

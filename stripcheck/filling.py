@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import csv
-import os
-import secrets
+import io
 import sys
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
@@ -17,14 +16,16 @@ from typing import Any
 import numpy as np
 
 from stripcheck.card import Card, flap_setting, load_card
+from stripcheck.caution import CAUTION
 from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
 from stripcheck.register import Directions, read_list
 from stripcheck.rules import load_rules
 from stripcheck.sheet import strips
 from stripcheck.sheet.book import SHORT_ABOVE, Filling, fill, write_workbook
+from stripcheck.sheet.stream import whole_or_not_at_all
 from stripcheck.units import read_quantity
-from stripcheck.verdict import CAUTION, VERDICTS
+from stripcheck.verdict import VERDICTS
 
 LONG = 5000  # directions from which a progress bar is worth its line
 DEMO_LIST = "lantern-range.csv"
@@ -149,25 +150,18 @@ def summary_lines(filling: Filling, output: Path) -> list[str]:
 def write_csv(filling: Filling, path: Path) -> None:
     """The result table, one row for each direction, whole or not at all. Text that a spreadsheet would take for a
     formula gets an apostrophe before it."""
-    shown = {step.key: filling.shown(step) for step in filling.chain.steps if step.key in filling.chain.depends_on_strip()}
+    varying = filling.chain.depends_on_strip()
+    shown = {step.key: filling.shown(step) for step in filling.chain.steps if step.key in varying}
     layout = strips.layout(filling.chain, filling.directions, True)
     table = strips.table_of(layout, filling.directions, filling.given, dict.fromkeys(shown, ""), shown)
     kept = [(column.header, made.values) for column, made in zip(layout, table.columns, strict=True) if column.key != "key"]
-    heads = [header for header, _ in kept]
     columns = [_plain(values) for _, values in kept]
-    spare = path.with_name(f".{secrets.token_hex(8)}.tmp")
-    try:
-        with open(spare, "x", newline="", encoding="utf-8-sig") as file:
-            writer = csv.writer(file)
-            writer.writerow([*heads, "Caution"])
-            writer.writerows((*row, CAUTION) for row in zip(*columns, strict=True))
-            file.flush()
-            os.fsync(file.fileno())
-        os.replace(spare, path)
-    except OSError as error:
-        raise InputError(f"{path}: can't be written ({error.strerror}); check the folder and the space on the disk") from None
-    finally:
-        spare.unlink(missing_ok=True)
+    with whole_or_not_at_all(path) as file:
+        text = io.TextIOWrapper(file, encoding="utf-8-sig", newline="")
+        writer = csv.writer(text)
+        writer.writerow([*(header for header, _ in kept), "Caution"])
+        writer.writerows((*row, CAUTION) for row in zip(*columns, strict=True))
+        text.detach()  # which empties the buffer; the file itself is closed by who opened it
 
 
 def _plain(values: Any) -> list[Any]:

@@ -22,10 +22,6 @@ FAULT = "{fault}"  # stands for the text of the row's fault where a reason is pu
 HALF_AN_OBSTACLE = "obstacle without height or without distance"
 NO_RULE = "the rules count neither physics nor corrections"
 
-CAUTION = (
-    "Planning aid only. The approved flight manual, the rules of the local authority and the pilot in command decide."
-)
-
 
 @dataclass(frozen=True)
 class Finding:

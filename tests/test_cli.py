@@ -8,8 +8,8 @@ from pathlib import Path
 import openpyxl
 import pytest
 
+from stripcheck.caution import CAUTION
 from stripcheck.cli import main
-from stripcheck.verdict import CAUTION
 
 GOOD = "Strip,Name,Runway,Length [m],Surface,Elevation [ft],Slope [%]\nAAA,Invented Flat,09/27,900,grass,1500,1\n"
 
@@ -205,3 +205,18 @@ def test_help_starts_without_the_heavy_libraries():
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
     assert done.returncode == 0, done.stderr
     assert "COMMAND" in done.stdout and CAUTION.split(".")[0] in " ".join(done.stdout.split())
+
+
+def test_the_list_itself_is_never_overwritten(strips, tmp_path, capsys):
+    (tmp_path / "link.csv").symlink_to(strips)
+    for output in (strips, tmp_path / "link.csv"):
+        assert fill(strips, output, "--force") == 2
+        assert "this is the list itself" in capsys.readouterr().err
+        assert strips.read_text() == GOOD
+
+
+def test_a_length_without_unit_is_taken_in_metres_and_said_so(tmp_path, capsys):
+    path = tmp_path / "strips.csv"
+    path.write_text(GOOD.replace("Length [m]", "Length"))
+    assert fill(path, tmp_path / "out.xlsx") == 0
+    assert "Taken for granted: " in capsys.readouterr().out.splitlines()[0]

@@ -8,6 +8,7 @@ from pathlib import Path
 import pytest
 
 from stripcheck.card import load_card
+from stripcheck.caution import CAUTION
 from stripcheck.doc_pages import PAGES, write_pages
 from stripcheck.doc_words import CARD_ENTRIES, COLUMN_MEANINGS, LEFT_OUT, OWN_RULES, RULE_ENTRIES, Entry
 from stripcheck.errors import InputError
@@ -15,7 +16,7 @@ from stripcheck.register.columns import COLUMNS
 from stripcheck.register.reader import read_list
 from stripcheck.rules import load_rules
 from stripcheck.steps import POWERS, build_chain
-from stripcheck.verdict import CAUTION, FAULT, LANDING_FINDINGS, TAKEOFF_FINDINGS
+from stripcheck.verdict import FAULT, LANDING_FINDINGS, TAKEOFF_FINDINGS
 
 ROOT = Path(__file__).parent.parent
 CARDS = ROOT / "stripcheck" / "cards"

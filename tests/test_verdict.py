@@ -14,9 +14,9 @@ import pytest
 
 from stripcheck import assess, load_rules
 from stripcheck.assessment import Result
+from stripcheck.caution import CAUTION
 from stripcheck.rules import Rules
 from stripcheck.verdict import (
-    CAUTION,
     FAULT,
     LANDING_FINDINGS,
     MARGINAL,

@@ -104,7 +104,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
 
     summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in _FACTS), "Rules"])
-    strips.write_skeleton(made, columns, directions.n, f"{card_title(filling)}: every direction")
+    strips.write_skeleton(made, columns, directions.n, f"{filling.card.name}: every direction")
     aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names)
     pages.write_day(made, filling.day)
     pages.write_rules(made, filling.rules)
@@ -129,10 +129,6 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
         left_out.SHEET: left_out.table_of(directions),
     }
     return write_book(book, tables, path, progress=progress, cached=made.cached)
-
-
-def card_title(filling: Filling) -> str:
-    return filling.card.name
 
 
 def taken_for_granted(filling: Filling) -> list[str]:

@@ -6,11 +6,11 @@ from collections import Counter
 
 from openpyxl.worksheet.worksheet import Worksheet
 
+from stripcheck.caution import CAUTION
 from stripcheck.register import Directions, unknown_surfaces
 from stripcheck.sheet import styles
 from stripcheck.sheet.pages import Pages, write_header
 from stripcheck.sheet.stream import Table, TextColumn
-from stripcheck.verdict import CAUTION
 
 SHEET = "Left out"
 HEADER_ROW, FIRST_ROW = 4, 5

@@ -8,11 +8,11 @@ from datetime import datetime
 from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck import __version__
+from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain
 from stripcheck.sheet import styles
 from stripcheck.sheet.formulas import RUN_TABLE
 from stripcheck.sheet.pages import Pages, words_places, write_header, write_heading
-from stripcheck.verdict import CAUTION
 
 SHEET = "Method"
 TABLE_ROW = 6

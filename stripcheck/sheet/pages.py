@@ -18,6 +18,7 @@ from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck.card import Card
+from stripcheck.caution import CAUTION
 from stripcheck.chain import Input, Step
 from stripcheck.day import Day
 from stripcheck.inputs import CARD, DAY, RULES
@@ -28,7 +29,6 @@ from stripcheck.sheet.formulas import GROUND_NAMES, WORDS, Place
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.surface import CONDITIONS, GROUNDS, REFERENCE_GROUND
 from stripcheck.units import UNITS, from_si, tidy
-from stripcheck.verdict import CAUTION
 
 UNKNOWN_GROUND = "not known"
 NO_FIGURE = "none"

@@ -168,7 +168,7 @@ def write_book(
     beside = {skeleton[name].path.lstrip("/"): values for name, values in (cached or {}).items()}
     with (
         zipfile.ZipFile(packed) as source,
-        _whole_or_not_at_all(path) as file,
+        whole_or_not_at_all(path) as file,
         zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, compresslevel=_LEVEL) as target,
     ):
         for part in source.namelist():
@@ -209,7 +209,7 @@ def _with_relative_targets(part: str, data: bytes) -> bytes:
 
 
 @contextmanager
-def _whole_or_not_at_all(path: Path) -> Iterator[BinaryIO]:
+def whole_or_not_at_all(path: Path) -> Iterator[BinaryIO]:
     """A file beside ``path`` that takes its place at the end; after any failure ``path`` is as it was."""
     place = Path(os.path.realpath(path))  # a link stays a link
     if place.is_dir():

@@ -10,7 +10,9 @@ import numpy as np
 from openpyxl.utils import get_column_letter
 from openpyxl.worksheet.worksheet import Worksheet
 
+from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
+from stripcheck.inputs import STRIP
 from stripcheck.register import Directions
 from stripcheck.sheet import styles
 from stripcheck.sheet.formulas import NOWHERE, Place
@@ -19,7 +21,6 @@ from stripcheck.sheet.stream import ROW, FormulaColumn, NumberColumn, Table, Tex
 from stripcheck.sheet.stream import Column as AnyColumn
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import from_si, to_si
-from stripcheck.verdict import CAUTION
 
 SHEET = "Strips"
 HEADER_ROW, FIRST_ROW = 3, 4
@@ -68,7 +69,7 @@ class Column:
 def given_columns(directions: Directions) -> dict[str, Any]:
     """The strips' inputs by chain key in SI, from the register; numbers rounded as the sheet will show them."""
     columns: dict[str, Any] = {}
-    for item in _strip_inputs():
+    for item in STRIP:
         if item.kind == "number":
             values = directions.numbers[REGISTER_KEYS.get(item.key, item.key)]
             columns[item.key] = to_si(np.round(from_si(values, item.unit), 6), item.unit)
@@ -86,19 +87,13 @@ def _codes(words: Sequence[str], table: tuple[str, ...], blank: int = -1, strang
     return np.array([code.get(word, strange) for word in words], dtype=np.int64)
 
 
-def _strip_inputs() -> tuple[Input, ...]:
-    from stripcheck.inputs import STRIP
-
-    return STRIP
-
-
 def layout(chain: Chain, directions: Directions, full: bool) -> list[Column]:
     """The columns of the sheet, in order. A short one leaves out inputs that are blank in every row."""
     varying = chain.depends_on_strip()
     steps = {step.key: step for step in chain.steps if step.key in varying and (full or step.short)}
     columns = [Column(key, header, width, comment=text, hidden=key == "key") for key, header, width, text in IDENTITY]
     columns += [_step_column(steps.pop(key), "Verdicts") for key in KEY_STEPS if key in steps]
-    for item in _strip_inputs():
+    for item in STRIP:
         if full or _has_any(item, directions):
             columns.append(_input_column(item))
     group, openers = "", {key: name for name, key in GROUPS}

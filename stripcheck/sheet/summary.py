@@ -9,6 +9,7 @@ import numpy as np
 from openpyxl.utils import get_column_letter
 from openpyxl.worksheet.worksheet import Worksheet
 
+from stripcheck.caution import CAUTION
 from stripcheck.numeric import Number
 from stripcheck.register import Directions
 from stripcheck.sheet import styles
@@ -17,7 +18,7 @@ from stripcheck.sheet.pages import Pages, note, write_header
 from stripcheck.sheet.stream import ROW, FormulaColumn, Table, TextColumn
 from stripcheck.sheet.strips import FIRST_ROW as STRIPS_ROW
 from stripcheck.sheet.strips import direction_keys
-from stripcheck.verdict import CAUTION, MARGINAL, NOT_ASSESSED, SUITABLE, UNSUITABLE, VERDICTS
+from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE, UNSUITABLE, VERDICTS
 
 SHEET = "Summary"
 HEADER_ROW, FIRST_ROW = 14, 15

@@ -8,11 +8,11 @@ import openpyxl
 import pytest
 
 from stripcheck.card import load_card
+from stripcheck.caution import CAUTION
 from stripcheck.day import read_day
 from stripcheck.register import read_list
 from stripcheck.rules import load_rules
 from stripcheck.sheet.book import Filling, fill, write_workbook
-from stripcheck.verdict import CAUTION
 from tests import ironcalc_book
 from tests.sheet.messy import write_list
 from tests.sheet.package_check import package_faults
