@@ -9,10 +9,11 @@ from typing import Any
 
 import numpy as np
 
-from stripcheck.card import Card, flap_setting, load_card
+from stripcheck.card import Card, load_card
 from stripcheck.chain import FEW, Chain, Step, evaluate
 from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
+from stripcheck.flaps import flap_setting
 from stripcheck.inputs import STRIP
 from stripcheck.rules import Rules, load_rules
 from stripcheck.surface import CONDITIONS, SURFACES
@@ -115,6 +116,20 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     >>> result["takeoff_verdict"]
     ['suitable', 'unsuitable']
     """
+    result = prepare(strips, card, day, rules, takeoff_mass=takeoff_mass, landing_mass=landing_mass,
+                     takeoff_flap=takeoff_flap, landing_flap=landing_flap)  # fmt: skip
+    result.found.update(evaluate(result.chain, result.given, None if result.size < FEW else AT_ONCE))
+    return result
+
+
+def prepare(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, Any],
+            rules: Rules | str = "manual-only", *, takeoff_mass: Any = None, landing_mass: Any = None,
+            takeoff_flap: str | None = None, landing_flap: str | None = None) -> Result:  # fmt: skip
+    """As ``assess``, with the inputs read and nothing computed yet.
+
+    >>> prepare({"tora": 950.0}, "ridge-runner", {"temperature": 22}).given["mass_takeoff"]
+    1050.0
+    """
     card = load_card(card) if isinstance(card, str) else card
     rules = load_rules(rules) if isinstance(rules, str) else rules
     day = day if isinstance(day, Day) else read_day(day)
@@ -126,10 +141,7 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
         **_flap("takeoff_flap", takeoff_flap, card, "take-off"),
         **_flap("landing_flap", landing_flap, card, "landing"),
     }
-    chain = card.chain
-    values = {**card.values, **rules.values, **day.values, **columns, **loading}
-    found = evaluate(chain, values, None if size < FEW else AT_ONCE)
-    return Result(chain, size, values, found, faults)
+    return Result(card.chain, size, {**card.values, **rules.values, **day.values, **columns, **loading}, {}, faults)
 
 
 def strip_columns(strips: Mapping[str, Any], masses: Sequence[Any] = ()) -> tuple[dict[str, Any], Sequence[str], int]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import itertools
+from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -10,13 +10,23 @@ from typing import Any
 import numpy as np
 
 from stripcheck import links
+from stripcheck.book_tables import BookTables
 from stripcheck.calibrate import BookPoints, Fit, calibrate
 from stripcheck.chain import Chain
 from stripcheck.errors import InputError
+from stripcheck.flaps import (
+    Flap,
+    PositionError,
+    check_book_flaps,
+    flap_setting,
+    read_flaps,
+    read_position_error,
+    usual_flaps_in_order,
+)
+from stripcheck.manual import carry_tables, read_manual
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.steps import POWERS, PROPELLERS, build_chain
 from stripcheck.toml_fields import Section, read_toml, shipped_or_own
-from stripcheck.units import to_si
 
 # typical values that stand in for entries a manual seldom prints: (part, entry) -> value as typed
 TYPICAL = {
@@ -31,18 +41,11 @@ TYPICAL = {
     ("landing", "steepest_approach"): "8 %",
     ("landing", "time_before_braking"): "2 s",
 }
+# Margins over the stall below which a card says so. It is not refused: manuals of short-field aeroplanes state such
+# lift-offs, and their rolls belong to them. Common practice, no source.
+LEAST_USUAL = {"lift_off": 1.05, "approach": 1.2}
+ROUNDED = 1.001  # masses over a limit by no more than this were rounded on the way from pounds
 KNOWN_HEIGHT = 0.15  # wing above ground as a share of the span, where none is given; common practice, no source
-
-
-@dataclass(frozen=True)
-class Flap:
-    """A flap setting: deflection [rad], stall speed [m/s EAS] at the card's stall mass, drag added [-], uses."""
-
-    name: str
-    deflection: float
-    stall_speed: float
-    drag: float
-    uses: tuple[str, ...]
 
 
 @dataclass(frozen=True)
@@ -61,11 +64,14 @@ class Card:
     takeoff: BookPoints
     landing: BookPoints
     fit: Fit
+    position_error: PositionError  # tells a speed to fly as the indicated one
+    tables: Mapping[str, BookTables]  # of the manual, by side: takeoff, landing, climb
+    corrections: frozenset[str]  # sides for which the manual has corrections of its own
 
     @property
     def chain(self) -> Chain:
-        """The chain for this kind of engine and propeller."""
-        return build_chain(self.propeller, self.power)
+        """The chain for this kind of engine and propeller, and for the tables and corrections that the card holds."""
+        return build_chain(self.propeller, self.power, frozenset(self.tables), self.corrections)
 
 
 def load_card(name: str) -> Card:
@@ -84,24 +90,32 @@ def load_card(name: str) -> Card:
     kind = propeller.text("kind", choices=PROPELLERS)
     engine = top.section("engine", required=True)
     power = engine.text("kind", POWERS[0], choices=POWERS)
-    flaps = _flaps(top)
     values = {
         **_masses(top),
         **_airframe(top, assumed),
         **_engine(engine, propeller, kind, power),
-        **_flap_values(top, flaps),
         **_speed_factors(top, assumed),
         **_limits(top),
     }
+    stall_mass, position_error = _stall_mass(top), read_position_error(top)
+    flaps = read_flaps(top, position_error, stall_mass, values["wing_area"], assumed)
+    values |= _flap_values(top, flaps, stall_mass, values["wing_area"])
     values |= _chosen(top, flaps, values)
+    assumed += usual_flaps_in_order(flaps, values["takeoff_flap"], values["landing_flap"], f"{path.name} [usual]")
     book = top.section("book", required=True)
-    takeoff = _book_points(book, "takeoff", "to_50ft", values, flaps)
-    landing = _book_points(book, "landing", "from_50ft", values, flaps)
+    manual = read_manual(book, values, flaps, path.parent)
+    assumed += check_book_flaps(flaps, manual.takeoff.flap, manual.landing.flap, book.where)
+    assumed += manual.remarks
     name, note = aeroplane.text("name"), aeroplane.text("note", "")
     top.refuse_unknown()
-    fit = calibrate(build_chain(kind, power), values, takeoff, landing, path.name)
-    return Card(name, note, path.name, kind, power, flaps, _stall_mass(top.section("mass")), {**values, **fit.values}, assumed,
-                takeoff, landing, fit)  # fmt: skip
+    values |= manual.values
+    fit = calibrate(build_chain(kind, power), values, manual.takeoff, manual.landing, path.name)
+    values |= fit.values
+    tables = carry_tables(manual, kind, power, values, flaps, book.where)
+    for found in tables.values():
+        values |= found.values(flaps)
+    return Card(name, note, path.name, kind, power, flaps, stall_mass, values, assumed, manual.takeoff, manual.landing, fit,
+                position_error, tables, manual.corrections)  # fmt: skip
 
 
 def shipped_cards() -> list[str]:
@@ -127,8 +141,10 @@ def _masses(top: Section) -> dict[str, float]:
     empty = mass.number("empty", "mass", low=50.0, high=20000.0)
     takeoff = mass.number("max_takeoff", "mass", low=100.0, high=20000.0)
     landing = mass.number("max_landing", "mass", takeoff, low=100.0, high=20000.0)
-    if not empty < landing <= takeoff:
-        raise InputError(f"{mass.where}: empty mass below landing mass, and that not above take-off mass, is expected")
+    if landing > takeoff:
+        raise InputError(f"{mass.where}: max_landing = {landing:g} kg must not be above max_takeoff = {takeoff:g} kg")
+    if empty >= landing:
+        raise InputError(f"{mass.where}: empty = {empty:g} kg must be below max_landing = {landing:g} kg")
     return {"max_takeoff_mass": takeoff, "max_landing_mass": landing}
 
 
@@ -163,36 +179,8 @@ def _engine(engine: Section, propeller: Section, kind: str, power: str) -> dict[
     return {"rated_power": rated, "propeller_diameter": diameter, **limit}
 
 
-def _flaps(top: Section) -> tuple[Flap, ...]:
-    rows = []
-    for part in top.sections("flap"):
-        rows.append(
-            Flap(
-                part.text("setting"),
-                part.number("deflection", "angle", low=0.0, high=to_si(60.0, "°")),
-                part.number("stall_speed", "speed", low=10.0, high=100.0),
-                part.number("drag", "number", 0.0, 0.0, 0.3),
-                part.texts("uses", ("take-off", "landing")),
-            )
-        )
-    if len(rows) < 2:
-        raise InputError(f"{top.where}: two [[flap]] parts or more are expected, with flaps up and down")
-    for less, more in itertools.pairwise(rows):
-        if more.deflection <= less.deflection:
-            raise InputError(f"{top.where}: flap settings must be listed from up to down, by deflection")
-        if more.stall_speed > less.stall_speed:
-            raise InputError(
-                f"{top.where}: the stall speed with flap {more.name} is above the one with flap {less.name}; "
-                "more flap never raises it"
-            )
-    return tuple(rows)
-
-
-def _flap_values(top: Section, flaps: tuple[Flap, ...]) -> dict[str, Any]:
-    mass = top.section("mass")
-    wing = top.section("wing")
-    stall_mass = _stall_mass(mass)
-    lift = [greatest_lift_coefficient(f.stall_speed, stall_mass, wing.number("area", "area")) for f in flaps]
+def _flap_values(top: Section, flaps: tuple[Flap, ...], stall_mass: float, wing_area: float) -> dict[str, Any]:
+    lift = [greatest_lift_coefficient(flap.stall_speed, stall_mass, wing_area) for flap in flaps]
     if not 0.8 <= min(lift) <= max(lift) <= 4.5:
         raise InputError(
             f"{top.where}: the stall speeds mean lift coefficients of {min(lift):.2f} to {max(lift):.2f}, which is not "
@@ -207,17 +195,30 @@ def _flap_values(top: Section, flaps: tuple[Flap, ...]) -> dict[str, Any]:
     }
 
 
-def _stall_mass(mass: Section) -> float:
+def _stall_mass(top: Section) -> float:
     """Mass at which the stall speeds are stated: the greatest take-off mass unless the card says otherwise."""
-    return mass.number("stall_speeds_at", "mass", mass.number("max_takeoff", "mass"), 100.0, 20000.0)
+    mass = top.section("mass")
+    empty, takeoff = mass.number("empty", "mass"), mass.number("max_takeoff", "mass")
+    stated = mass.number("stall_speeds_at", "mass", takeoff, 100.0, 20000.0)
+    if not empty < stated <= takeoff * ROUNDED:
+        raise InputError(
+            f"{mass.where}: stall_speeds_at = {stated:g} kg is expected above the empty mass, {empty:g} kg, and up to "
+            f"max_takeoff, {takeoff:g} kg; a wrong one makes every stall speed wrong"
+        )
+    return stated
 
 
 def _speed_factors(top: Section, assumed: list[str]) -> dict[str, float]:
     speeds, landing = top.section("speeds"), top.section("landing")
     factors = {name: _typical(speeds, "speeds", name, "number", 1.0, 2.0, assumed)
                for name in ("lift_off", "screen", "approach", "touchdown")}  # fmt: skip
-    if factors["screen"] < factors["lift_off"] or factors["approach"] < factors["touchdown"]:
-        raise InputError(f"{speeds.where}: screen must not be below lift_off, nor approach below touchdown")
+    for later, sooner in (("screen", "lift_off"), ("approach", "touchdown")):
+        if factors[later] < factors[sooner]:
+            raise InputError(f"{speeds.where}: {later} = {factors[later]:g} must not be below {sooner} = {factors[sooner]:g}")
+    for name, least in LEAST_USUAL.items():
+        if factors[name] < least:
+            assumed.append(f"{speeds.where}: {name} = {factors[name]:g} is less than {least:g} times the stall speed, which "
+                           "leaves little for gusts; taken as meant")  # fmt: skip
     shallow = _typical(landing, "landing", "shallowest_approach", "slope", 0.02, 0.2, assumed)
     steep = _typical(landing, "landing", "steepest_approach", "slope", shallow, 0.25, assumed)
     return {
@@ -241,40 +242,19 @@ def _chosen(top: Section, flaps: tuple[Flap, ...], values: dict[str, Any]) -> di
     usual = top.section("usual", required=True)
     takeoff, landing = values["max_takeoff_mass"], values["max_landing_mass"]
     return {
-        "mass_takeoff": usual.number("takeoff_mass", "mass", takeoff, 100.0, takeoff),
-        "mass_landing": usual.number("landing_mass", "mass", landing, 100.0, landing),
+        "mass_takeoff": _usual_mass(top, "takeoff_mass", "max_takeoff", takeoff),
+        "mass_landing": _usual_mass(top, "landing_mass", "max_landing", landing),
         "takeoff_flap": flap_setting(usual.text("takeoff_flap"), flaps, "take-off", usual.where),
         "landing_flap": flap_setting(usual.text("landing_flap"), flaps, "landing", usual.where),
     }
 
 
-def flap_setting(name: str, flaps: tuple[Flap, ...], use: str, where: str) -> float:
-    """Deflection [rad] of a setting by its name. Raises InputError for one that the card lacks or does not allow."""
-    for flap in flaps:
-        if flap.name == name:
-            if use not in flap.uses:
-                raise InputError(f'{where}: flap "{name}" is not allowed for {use} by the card')
-            return flap.deflection
-    raise InputError(f'{where}: there is no flap setting "{name}"; the card has: {", ".join(f.name for f in flaps)}')
-
-
-def _book_points(book: Section, side: str, whole: str, values: dict[str, Any], flaps: tuple[Flap, ...]) -> BookPoints:
-    rows = []
-    use, mass = ("take-off", "takeoff") if side == "takeoff" else ("landing", "landing")
-    for part in book.sections(side):
-        roll = part.number("roll", "length", low=20.0, high=3000.0)
-        distance = part.number(whole, "length", np.nan, 20.0, 5000.0) if part.has(whole) else np.nan
-        part.asked.add(whole)
-        if distance <= roll:
-            raise InputError(f"{part.where}: {whole} must be longer than roll")
-        rows.append((
-            part.number("pressure_altitude", "altitude", low=-300.0, high=5000.0),
-            part.number("temperature", "temperature", low=223.15, high=328.15),
-            part.number("mass", "mass", values[f"max_{mass}_mass"], 100.0, values["max_takeoff_mass"] * 1.001),
-            flap_setting(part.text("flap"), flaps, use, part.where),
-            roll,
-            distance,
-        ))  # fmt: skip
-    if not rows:
-        raise InputError(f"{book.where}: one [[book.{side}]] point or more is needed to calibrate the card")
-    return BookPoints(*(np.array(column, float) for column in zip(*rows, strict=True)))
+def _usual_mass(top: Section, name: str, limit_name: str, limit: float) -> float:
+    usual, empty = top.section("usual"), top.section("mass").number("empty", "mass")
+    mass = usual.number(name, "mass", limit, 100.0, 20000.0)
+    if not empty < mass <= limit:
+        raise InputError(
+            f"{usual.where}: {name} = {mass:g} kg is expected above the empty mass, {empty:g} kg, and up to {limit_name}, "
+            f"{limit:g} kg"
+        )
+    return mass

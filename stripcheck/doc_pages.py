@@ -22,6 +22,8 @@ from stripcheck.calibrate import BRAKING, QUALITIES, TECHNIQUES
 from stripcheck.card import TYPICAL, load_card, shipped_cards
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
+from stripcheck.flap_lift import FLAP_KINDS, FULL_CHORD, WING_SHARE
+from stripcheck.flaps import LIFT_CREDIT, TYPICAL_FLAPS
 from stripcheck.inputs import CARD, CONSTANT_SPEED, DAY, FIXED_PITCH, POWER_LIMIT, RULES, STRIP
 from stripcheck.register import surface_words
 from stripcheck.register.columns import COLUMNS, Column
@@ -301,12 +303,21 @@ def card_page() -> str:
         "## Entries",
         prose.CARD_ENTRIES_INTRO,
         _entries_table(prose.CARD_ENTRIES, (*CARD, *CONSTANT_SPEED), usual),
+        "## Flaps",
+        prose.FLAPS.format(figure(LIFT_CREDIT, "%"), WING_SHARE, figure(FULL_CHORD, "%"), TYPICAL_FLAPS),
+        _flap_kinds(),
         "## Calibration",
         folded(prose.CALIBRATION.format(TECHNIQUES, QUALITIES, BRAKING)),
         *parts,
         "## How far to trust it",
         prose.TRUST,
     )
+
+
+def _flap_kinds() -> str:
+    rows = [(name, f"{kind.lift:g}" + (" times the extended chord" if name == "Fowler" else ""),
+             figure(kind.landing_deflection, "°"), f"{kind.drag:g}") for name, kind in FLAP_KINDS.items()]  # fmt: skip
+    return table(("Kind", "Lift of the section", "At", "Drag factor"), rows)
 
 
 def _calibration(name: str) -> list[str]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import NamedTuple
 
+from stripcheck.flap_lift import FLAP_KINDS
 from stripcheck.steps import POWERS
 
 
@@ -72,9 +73,20 @@ CARD_ENTRIES = (
     Entry("drag", "lift_in_the_run", "ground_lift"),
     Entry("[flap]", "setting", "", "text", "", "Name of the setting, as the manual calls it"),
     Entry("[flap]", "deflection", "", "°", "", "From up to down; two settings or more"),
-    Entry("[flap]", "stall_speed", "", "kt", "", "Calibrated airspeed, wings level, power off"),
-    Entry("[flap]", "drag", "", "number", "0", "Drag coefficient added to the one with flaps up"),
+    Entry("[flap]", "stall_speed", "", "kt", "", "Calibrated airspeed, wings level, power off. With a part `[flaps]` only "
+          "the first setting needs one"),
+    Entry("[flap]", "stall_speed_ias", "", "kt", "stall_speed", "Indicated airspeed, in place of stall_speed; needs "
+          "`[[position_error]]`"),
+    Entry("[flap]", "drag", "", "number", "estimated", "Drag coefficient added to the one with flaps up"),
     Entry("[flap]", "uses", "", "list of take-off, landing", "both", "What the manual allows the setting for"),
+    Entry("flaps", "kind", "", ", ".join(FLAP_KINDS), "needed in this part", "Kind of flap. The part is only for what is to be "
+          "estimated"),
+    Entry("flaps", "chord", "", "%", "needed in this part", "Flap chord over wing chord"),
+    Entry("flaps", "span", "", "%", "needed in this part", "Length of both flaps together over the span of the wing"),
+    Entry("flaps", "extended_chord", "", "%", "100 %", "Fowler only: wing chord with the flap right out over that with it in"),
+    Entry("[position_error]", "flap", "", "name of a setting", "every one without rows of its own", "Setting of this row"),
+    Entry("[position_error]", "ias", "", "kt", "needed in this part", "Indicated airspeed; rising from row to row"),
+    Entry("[position_error]", "cas", "", "kt", "needed in this part", "Calibrated airspeed at that indicated one"),
     Entry("speeds", "lift_off", "lift_off_factor"),
     Entry("speeds", "screen", "screen_factor"),
     Entry("speeds", "approach", "approach_factor"),
@@ -238,7 +250,7 @@ CARD_RECIPE = """
 1. Copy a shipped card with the same kind of propeller. Change name, masses, wing and power.
 2. Stall speeds: from the manual, as *calibrated* airspeed, one for each flap setting, at the mass named
    under `stall_speeds_at`. An indicated stall speed can be several knots low, and every distance goes with
-   its square.
+   its square. Where the manual prints only that, or none for a setting, see *Flaps* below.
 3. Speeds at lift-off, 50 ft, approach and touchdown: divide what the manual states by the stall speed of
    that setting. Where it states none, leave the entry out; the usual value is then listed as taken for
    granted.
@@ -252,6 +264,49 @@ CARD_RECIPE = """
 CARD_ENTRIES_INTRO = """
 Numbers carry their unit, in quotes. *Needed* entries have no usual value. A usual value of speeds, drag or landing that
 was used is listed as taken for granted. Parts in double brackets come again for each setting or point."""
+FLAPS = """
+Any number of settings, from up to down by deflection. Each stall speed is best the calibrated one of the
+manual. It is taken as the equivalent airspeed, which at sea level it is; elsewhere the difference is below
+0.1 kt at such speeds. Between two settings the greatest lift coefficient is interpolated, not the speed.
+
+*Only indicated stall speeds.* Write `stall_speed_ias`, and the manual's airspeed calibration as rows of
+`[[position_error]]`. A setting with rows of its own uses those, every other one the rows that name no flap.
+Between rows it is linear. A stall speed outside of them is refused: a calibration often ends above the
+stall, and what an airspeed system does there can't be told.
+
+```toml
+[[position_error]]
+ias = "40 kt"
+cas = "46 kt"
+
+[[position_error]]
+ias = "60 kt"
+cas = "62 kt"
+```
+
+*A setting without a stall speed.* Measure the flaps and add the part below; *span* is the length of both
+flaps together over the span of the wing, from tip to tip.
+
+```toml
+[flaps]
+kind = "slotted"
+chord = "25 %"
+span = "50 %"
+```
+
+The greatest lift coefficient then rises, from the setting before it, by {0} of what a published method
+gives (Raymer, from memory): the section's increment in the table below, times {1}, times the span; scaled
+in proportion to deflection, up to the one in the table, and to the flap's effectiveness by thin-aerofoil
+theory, up to a chord of {2}. It never goes beyond the next setting that has a speed. So the stall speed
+comes out rather too high than too low. Take-off points of the book need a true one: calibrated at a speed
+that is too high, thrust and climb would come out too strong.
+
+*A setting without drag.* With flaps of that size the drag is estimated too (Young, in McCormick's form,
+from memory): the factor in the table, times chord to the power of 1.38, times span, times the square of the
+sine of the deflection. What a flap over part of the span adds to the induced drag is not in it. Without the
+part, drag is that of {3}.
+
+Whatever is estimated is listed as taken for granted, and called *estimated* on the sheet Aircraft."""
 CALIBRATION = """
 Four things that no manual prints are fitted to the book points, one after the other: thrust on the take-off
 rolls, an airborne factor on the way from lift-off to 50 ft, a braking factor on the landing rolls, an

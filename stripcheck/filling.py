@@ -15,10 +15,11 @@ from typing import Any
 
 import numpy as np
 
-from stripcheck.card import Card, flap_setting, load_card
+from stripcheck.card import Card, load_card
 from stripcheck.caution import CAUTION
 from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
+from stripcheck.flaps import flap_setting
 from stripcheck.register import Directions, read_list
 from stripcheck.rules import load_rules
 from stripcheck.sheet import strips

@@ -128,3 +128,45 @@ RULES = (
     Input("ground_takeoff_factor", "Take-off correction", "", "rules", "Published factor for the surface", "range"),
     Input("ground_landing_factor", "Landing correction", "", "rules", "Published factor for the surface", "range"),
 )  # fmt: skip
+
+SIDE_WORDS = {"takeoff": "Take-off", "landing": "Landing", "climb": "Climb"}
+REACH = {
+    side: Input(f"{side}_reach", f"{SIDE_WORDS[side]} figures reach to a density altitude of", "ft", "card",
+                "Thinnest air of the manual's figures on this card; beyond it the verdict is at best marginal")
+    for side in ("takeoff", "landing")
+}  # fmt: skip
+
+
+def table_inputs(side: str) -> tuple[Input, ...]:
+    """The inputs of one side's tables of the manual, take-off, landing or climb, which stand on the sheet Book."""
+    word = SIDE_WORDS[side]
+    figures = {"climb": (("rate", "rate of climb"),)}.get(side, (("roll", "roll"), ("distance", "distance over 50 ft")))
+    rows = (
+        ("altitudes", "pressure altitudes"),
+        ("temperatures", "temperatures"),
+        *((f"{key}_table", label) for key, label in figures),
+        ("hottest", "hottest figure of each line"),
+        ("coldest", "coldest figure of each line"),
+        ("page_mass", "mass of each page"),
+        ("page_flap", "flap of each page"),
+        ("page_below", "mass of the page below"),
+        ("page_above", "mass of the page above"),
+        ("book_flaps", "flap of the tables used, by setting"),
+        ("least_masses", "least mass of the tables, by setting"),
+        ("most_masses", "greatest mass of the tables, by setting"),
+    )
+    speed = (Input("climb_speed", "Climb speed", "kt", "card", "Of the manual's rates of climb, CAS"),)
+    tables = tuple(Input(f"{side}_{key}", f"{word} tables: {label}", "", "card", "", "range") for key, label in rows)
+    return (*tables, *speed) if side == "climb" else tables
+
+
+def manual_inputs(side: str) -> tuple[Input, ...]:
+    """The manual's own corrections for one side, take-off or landing."""
+    word = SIDE_WORDS[side]
+    governs = "Of the manual; goes before the physics; blank: the physics"
+    return (
+        Input(f"{side}_manual_head", f"Manual, {word.lower()}: each knot of headwind takes off", "%/kt", "card", governs),
+        Input(f"{side}_manual_tail", f"Manual, {word.lower()}: each knot of tailwind adds", "%/kt", "card", governs),
+        Input(f"{side}_manual_dry", f"Manual, {word.lower()}: dry grass adds, of the roll", "%", "card", governs),
+        Input(f"{side}_manual_wet", f"Manual, {word.lower()}: wet grass adds, of the roll", "%", "card", governs),
+    )

@@ -10,7 +10,7 @@ import numpy as np
 
 from stripcheck import airborne, atmosphere, ground_run, speeds, thrust
 from stripcheck.numeric import Number
-from stripcheck.surface import CONDITIONS, GROUNDS
+from stripcheck.surface import CONDITIONS, GROUND_NAMES, GROUNDS
 
 ELEVATIONS = (-450.0, 5500.0)  # m: the lowest and the highest land with strips, with a margin
 TEMPERATURES = (213.15, 333.15)  # K: -60 to +60 degC
@@ -23,6 +23,8 @@ GROUND_UNKNOWN = len(GROUNDS) + 1  # row of the ground table for a surface or co
 # A run "barely accelerates" when its least acceleration is below this share of the first one. Falling with the square
 # of speed, that is a little before the last acceleration is a quarter of the mean one.
 BARELY = 0.2
+GRASS_DRY, GRASS_WET = (GROUND_NAMES.index(name) + 1 for name in ("grass, dry", "grass, wet"))  # rows of the ground table
+LEAST_MANUAL_SHARE = 0.5  # of a distance that a manual's headwind correction may leave, however strong the wind
 
 
 def known(value: Number, limits: tuple[float, float]) -> Number:
@@ -318,3 +320,112 @@ def sigma_at(altitude: Number, deviation: Number) -> Number:
     """Density ratio at a pressure altitude, warmer than standard by a deviation."""
     standard = atmosphere.isa_temperature(altitude)
     return atmosphere.density_ratio(atmosphere.density(atmosphere.isa_pressure(altitude), standard + deviation))
+
+
+def book_mass_of(mass: Number, flap: Number, deflections: Number, least: Number, most: Number) -> Number:
+    """Mass nearest to the one given for which the manual's tables for a flap setting have figures."""
+    return np.minimum(np.maximum(mass, np.interp(flap, deflections, least)), np.interp(flap, deflections, most))
+
+
+def held_between(value: Number, nodes: Number) -> Number:
+    """The value, held at the first and last of some rising nodes."""
+    return np.interp(value, nodes, nodes)
+
+
+def standard_air_density(altitude: Number, temperature: Number) -> Number:
+    """Density of dry air at a pressure altitude and temperature, as a manual's table means it."""
+    return atmosphere.density(atmosphere.isa_pressure(altitude), temperature)
+
+
+def still_run(start: Number, square: Number, speed: Number) -> Number:
+    return ground_run.speed_run(start, square, 0.0, speed)
+
+
+def still_least(start: Number, square: Number, speed: Number) -> Number:
+    return ground_run.least_speed_run_acceleration(start, square, 0.0, speed)
+
+
+def still_disk_run(static: Number, lost: Number, square: Number, speed_of_disk: Number, fast: Number) -> Number:
+    return ground_run.disk_run_between(static, lost, square, speed_of_disk, 0.0, 1.0, fast)
+
+
+def still_screen_distance(lift_off: Number, screen: Number, excess: Number, technique: Number) -> Number:
+    return airborne.screen_distance(lift_off, screen, excess, 0.0, 0.0, technique)
+
+
+def still_landing_air(approach: Number, touchdown: Number, path: Number, technique: Number) -> Number:
+    return airborne.landing_air_distance(approach, touchdown, path, 0.0, technique)
+
+
+def still_free_roll(touchdown: Number, seconds: Number) -> Number:
+    return airborne.free_roll(touchdown, 0.0, seconds)
+
+
+def flies_of(least: Number, excess: Number) -> Number:
+    """Whether a take-off run accelerates all along and the climb after it gains height."""
+    return (least >= ground_run.LEAST_ACCELERATION) & (excess >= LEAST_CLIMB)
+
+
+def brakes_of(least: Number, path: Number) -> Number:
+    """Whether a braked run slows down all along, after an approach that comes down."""
+    return (least >= ground_run.LEAST_ACCELERATION) & (path >= LEAST_DESCENT)
+
+
+def beyond_of(altitude: Number, temperature: Number, mass: Number) -> Number:
+    """Whether conditions lie on the hard side of the manual's figures: higher, hotter or heavier, by more than rounding."""
+    return (altitude > 0.1) | (temperature > 0.001) | (mass > 0.001)
+
+
+def beyond_reach_of(over: Number) -> Number:
+    """The same where a card has single figures only, which reach to a density altitude."""
+    return over > 0.1
+
+
+def rate_gradient(rate: Number, tas: Number) -> Number:
+    """Gradient of climb from a rate of climb and a true airspeed."""
+    return rate / tas
+
+
+def unchanged() -> Number:
+    return np.float64(1.0)
+
+
+def manual_wind_factor(wind: Number, head: Number, tail: Number) -> Number:
+    """The manual's own correction for wind: so much off for a headwind, so much added for a tailwind; 1 where it has none."""
+    against = np.where(np.isfinite(head), 1.0 - head * np.maximum(wind, 0.0), 1.0)
+    behind = np.where(np.isfinite(tail), 1.0 - tail * np.minimum(wind, 0.0), 1.0)
+    return np.maximum(against, LEAST_MANUAL_SHARE) * behind
+
+
+def wind_left_of(wind: Number, head: Number, tail: Number) -> Number:
+    """The wind that is left to the physics: none where the manual has its own correction."""
+    return np.where(wind >= 0.0, np.where(np.isfinite(head), 0.0, wind), np.where(np.isfinite(tail), 0.0, wind))
+
+
+def manual_grass_of(ground: Number, dry: Number, wet: Number) -> Number:
+    """The manual's own addition for grass, where the ground is grass and the manual has one."""
+    added = np.where(ground == GRASS_DRY, np.where(np.isfinite(dry), dry, np.nan), np.nan)
+    return np.where(ground == GRASS_WET, np.where(np.isfinite(wet), wet, np.nan), added)
+
+
+def friction_left_of(added: Number, level: Number, own: Number) -> Number:
+    """The friction that is left to the physics: that of pavement where the manual has its own addition for the ground."""
+    return np.where(np.isfinite(added), level, own)
+
+
+def manual_distance_of(roll: Number, air: Number, carry: Number, roll_carry: Number, added: Number, wind: Number) -> Number:
+    """Distance with the manual's own corrections: its addition for grass is a share of the roll, wind counts for the whole."""
+    grass = np.where(np.isfinite(added), added, 0.0)
+    return ((roll + air) * carry + grass * roll * roll_carry) * wind
+
+
+def governing_carried(physics: Number, book: Number, correction: Number, physics_counts: Number, rules_count: Number,
+                      carry: Number) -> Number:  # fmt: skip
+    """As ``governing``, carried from the manual's figure."""
+    return governing(physics, book, correction, physics_counts, rules_count) * carry
+
+
+def governing_manual(manual: Number, book: Number, correction: Number, physics_counts: Number, rules_count: Number,
+                     carry: Number, wind: Number) -> Number:  # fmt: skip
+    """As ``governing``, where the manual's own corrections stand for the physics."""
+    return governing(manual, book * carry * wind, correction, physics_counts, rules_count)

@@ -5,14 +5,19 @@ References that the steps name are those at the head of the module of each funct
 
 from __future__ import annotations
 
+from collections.abc import Callable, Collection, Mapping
+from dataclasses import replace
 from functools import cache
 
-from stripcheck import airborne, atmosphere, ground_run, inputs, links, speeds, thrust
+from stripcheck import airborne, atmosphere, book_steps, ground_run, inputs, links, speeds, thrust
 from stripcheck.chain import Chain, Step
+from stripcheck.numeric import Number
 from stripcheck.verdict import LANDING_STEPS, TAKEOFF_STEPS
 
 PROPELLERS = ("fixed pitch", "constant speed")
 POWERS = ("normally aspirated", "turbo-normalised", "flat rated")
+SIDES = ("takeoff", "landing", "climb")
+Steps = tuple[Step, ...]
 
 ISA = "ISO 2533"
 LIFT = "Lift equation"
@@ -348,19 +353,87 @@ LANDING_DISTANCE_STEPS = (
 
 
 @cache
-def build_chain(propeller: str, power: str = "normally aspirated") -> Chain:
+def build_chain(propeller: str, power: str = "normally aspirated", tables: frozenset[str] = frozenset(),
+                corrections: frozenset[str] = frozenset()) -> Chain:  # fmt: skip
     """The chain for a kind of propeller and of engine power.
 
+    ``tables``: the sides, of takeoff, landing and climb, for which the card has tables of the manual; ``corrections``:
+    those, of takeoff and landing, for which it has the manual's own corrections.
     Raises KeyError for a kind that is not in PROPELLERS or POWERS.
 
     >>> len(build_chain("fixed pitch").steps) > 80
     True
     """
     fixed = {"fixed pitch": True, "constant speed": False}[propeller]
-    engine = FIXED_PITCH_STEPS if fixed else (_POWER_STEPS[power], *CONSTANT_SPEED_STEPS)
-    engine_inputs = inputs.FIXED_PITCH if fixed else inputs.CONSTANT_SPEED
+    shaft = None if fixed else _POWER_STEPS[power]
     limited = () if fixed or power == "normally aspirated" else (inputs.POWER_LIMIT,)
-    steps = (*AIRCRAFT_STEPS, *AIR_STEPS, *TAKEOFF_KNOWN, *engine, *TAKEOFF_DISTANCE_STEPS, *TAKEOFF_STEPS,
-             *LANDING_DISTANCE_STEPS, *LANDING_STEPS)  # fmt: skip
-    given = (*inputs.STRIP, *inputs.DAY, *inputs.CARD, *engine_inputs, *limited, *inputs.RULES)
+    given = (
+        *inputs.STRIP, *inputs.DAY, *inputs.CARD, *(inputs.FIXED_PITCH if fixed else inputs.CONSTANT_SPEED), *limited,
+        *(item for side in SIDES if side in tables for item in inputs.table_inputs(side)),
+        *(inputs.REACH[side] for side in ("takeoff", "landing") if side not in tables),
+        *(item for side in SIDES if side in corrections for item in inputs.manual_inputs(side)), *inputs.RULES,
+    )  # fmt: skip
+    steps = (
+        *AIRCRAFT_STEPS, *AIR_STEPS, *_takeoff_steps(shaft, tables, "takeoff" in corrections), *TAKEOFF_STEPS,
+        *_landing_steps("landing" in tables, "landing" in corrections), *LANDING_STEPS,
+    )  # fmt: skip
     return Chain(given, steps)
+
+
+def _takeoff_steps(shaft: Step | None, tables: Collection[str], manual: bool) -> Steps:
+    """``shaft``: the step of shaft power, None for a fixed-pitch propeller."""
+    known: Steps = TAKEOFF_KNOWN
+    engine: Steps = FIXED_PITCH_STEPS if shaft is None else (shaft, *CONSTANT_SPEED_STEPS)
+    distance: Steps = TAKEOFF_DISTANCE_STEPS
+    beyond = book_steps.takeoff_table_steps(shaft) if "takeoff" in tables else _beyond_reach("takeoff", "takeoff_known")
+    if "climb" in tables:
+        distance = _with(distance, "climb_over_ground", {"climb_gradient": "carried_climb"},
+                         before=book_steps.climb_table_steps(shaft))  # fmt: skip
+    if manual:
+        known = (*known, *book_steps.manual_takeoff_left())
+        wind = {"run_wind": "takeoff_wind_left", "slow_root": "manual_root"}
+        engine = _with(engine, "reference_roll", wind, before=() if shaft is None else (book_steps.MANUAL_ROOT,))
+        distance = _with(distance, "reference_airborne", wind)
+        ratios = () if "takeoff" in tables else book_steps.no_tables("takeoff", "takeoff_known")
+        distance = _with(distance, "takeoff_distance", {"physics_takeoff": "manual_takeoff"}, links.governing_manual,
+                         ("takeoff_carry", "takeoff_wind_factor"),
+                         (*ratios, *book_steps.manual_takeoff_steps(shaft is None)))  # fmt: skip
+    elif "takeoff" in tables:
+        distance = _with(distance, "takeoff_distance", {}, links.governing_carried, ("takeoff_carry",))
+    return (*known, *engine, *beyond, *distance)
+
+
+def _landing_steps(tables: bool, manual: bool) -> Steps:
+    beyond = book_steps.landing_table_steps() if tables else _beyond_reach("landing", "landing_known")
+    steps = _with(LANDING_DISTANCE_STEPS, "landing_corrections", before=beyond)
+    if manual:
+        steps = _with(steps, "landing_air", before=book_steps.manual_landing_left())
+        for key in ("reference_air", "reference_braked_roll", "reference_landing"):
+            steps = _with(steps, key, {"landing_wind": "landing_wind_left", "free_roll": "manual_free_roll"})
+        ratios = () if tables else book_steps.no_tables("landing", "landing_known")
+        return _with(steps, "landing_distance", {"physics_landing": "manual_landing"}, links.governing_manual,
+                     ("landing_carry", "landing_wind_factor"),
+                     (*ratios, *book_steps.manual_landing_steps()))  # fmt: skip
+    return _with(steps, "landing_distance", {}, links.governing_carried, ("landing_carry",)) if tables else steps
+
+
+def _beyond_reach(side: str, guard: str) -> Steps:
+    """Whether the air is thinner than any of the card's single figures."""
+    word = inputs.SIDE_WORDS[side]
+    return (
+        Step(f"{side}_beyond_reach", "", "ft", f"{word}: density altitude beyond the book (within: negative)",
+             book_steps.EDGE, links.difference, ("density_altitude", f"{side}_reach"), guard),
+        Step(f"{side}_beyond", "", "", f"{word}: beyond the book", book_steps.EDGE, links.beyond_reach_of,
+             (f"{side}_beyond_reach",), guard, truth=True),
+    )  # fmt: skip
+
+
+def _with(steps: Steps, key: str, instead: Mapping[str, str] | None = None, function: Callable[..., Number] | None = None,
+          further: tuple[str, ...] = (), before: Steps = ()) -> Steps:  # fmt: skip
+    """The steps with one changed: other inputs ``instead`` of some, another function, ``further`` inputs; and with more
+    of them ``before`` it."""
+    place = next(i for i, step in enumerate(steps) if step.key == key)
+    step = steps[place]
+    read = (*((instead or {}).get(name, name) for name in step.inputs), *further)
+    changed = replace(step, function=function or step.function, inputs=read)
+    return (*steps[:place], *before, changed, *steps[place + 1 :])

@@ -10,7 +10,7 @@ from pathlib import Path
 from typing import Any
 
 from stripcheck.errors import InputError
-from stripcheck.units import read_quantity
+from stripcheck.units import KINDS, from_si, read_quantity, tidy
 
 REQUIRED = object()
 BARE_SHARE = 0.003  # 0.3 per cent, below which a bare figure was probably meant as a share
@@ -39,7 +39,9 @@ class Section:
         except InputError as error:
             raise InputError(f"{self.where}: {name}: {error}") from None
         if not low <= value <= high:
-            raise InputError(f"{self.where}: {name} = {self.entries[name]} can't be right for a {kind}")
+            raise InputError(
+                f"{self.where}: {name} = {self.entries[name]} can't be right for a {kind}; {_expected(low, high, kind)}"
+            )
         return value
 
     def text(self, name: str, default: Any = REQUIRED, choices: tuple[str, ...] = ()) -> str:
@@ -108,6 +110,16 @@ class Section:
         if default is REQUIRED:
             raise InputError(f"{self.where}: {name} is missing; it takes {wanted}")
         return default
+
+
+def _expected(low: float, high: float, kind: str) -> str:
+    unit = KINDS[kind][0]
+    least, most = (f"{tidy(from_si(limit, unit)):,.6g} {unit}".strip() for limit in (low, high))
+    if math.isinf(high):
+        return f"{least} or more is expected"
+    if math.isinf(low):
+        return f"{most} or less is expected"
+    return f"{least} to {most} is expected"
 
 
 def read_toml(path: Path) -> Section:

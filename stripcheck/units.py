@@ -42,6 +42,8 @@ UNITS = {
         Unit("hPa", 100.0),
         Unit("inHg", 3386.388640341),
         Unit("%", 0.01),
+        Unit("ft/min", 0.3048 / 60.0),
+        Unit("%/kt", 0.01 * 3600.0 / 1852.0),
         Unit("°", math.pi / 180.0),
         Unit("kW", 1000.0),
         Unit("m²"),
@@ -69,6 +71,7 @@ KINDS = {
     "power": ("kW", "watt"),
     "area": ("m²", "meter**2"),
     "time": ("s", "second"),
+    "climb": ("ft/min", "meter/second"),
     "number": ("", "dimensionless"),
 }
 

@@ -20,6 +20,8 @@ SUITABLE, MARGINAL, UNSUITABLE, NOT_ASSESSED = VERDICTS = ("suitable", "marginal
 FAULT = "{fault}"  # stands for the text of the row's fault where a reason is put into words
 
 HALF_AN_OBSTACLE = "obstacle without height or without distance"
+BEYOND = "beyond the book: higher, hotter or heavier than its figures go"
+NO_FIGURE = "too far beyond the book for any distance"
 NO_RULE = "the rules count neither physics nor corrections"
 
 
@@ -59,6 +61,11 @@ def _negative(value: Number) -> Number:
 
 def _above(value: Number, limit: Number) -> Number:
     return value > limit
+
+
+def _not_within(value: Number, limit: Number) -> Number:
+    """Above a limit, or no number at all."""
+    return np.logical_not(value <= limit)
 
 
 def _above_given(value: Number, limit: Number) -> Number:
@@ -152,6 +159,7 @@ TAKEOFF_FINDINGS = (
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),
     Finding(UNSUITABLE, "does not lift off", ("lifts_off",), _no),
     Finding(UNSUITABLE, "does not climb away", ("climbs",), _no),
+    Finding(UNSUITABLE, NO_FIGURE, ("takeoff_distance",), _missing),
     Finding(UNSUITABLE, "take-off distance longer than the strip", ("takeoff_distance", "tora"), _above),
     Finding(UNSUITABLE, "does not clear the obstacle on the climb-out", ("obstacle_ahead", "over_obstacle"), _below),
     Finding(MARGINAL, "take-off fits only without the safety factor", ("takeoff_margin",), _negative),
@@ -159,6 +167,7 @@ TAKEOFF_FINDINGS = (
             ("obstacle_ahead", "over_obstacle_factored", "obstacle_margin"), _below_margin),
     Finding(MARGINAL, "barely accelerates near lift-off", ("least_acceleration", "first_acceleration"),
             links.barely_of),
+    Finding(MARGINAL, BEYOND, ("takeoff_beyond",), _yes),
     Finding(MARGINAL, "steeper uphill than the rules allow for", ("takeoff_slope", "slope_limit"),
             _above_given),
     *_site_findings("takeoff_slope"),
@@ -183,8 +192,9 @@ LANDING_FINDINGS = (
     Finding(UNSUITABLE, "does not stop", ("stops",), _no),
     Finding(UNSUITABLE, "obstacle on the approach leaves too little to land on",
             ("landing_distance", "landing_available", "lda"), _obstacle_decides),
-    Finding(UNSUITABLE, "landing distance longer than the strip", ("landing_distance", "landing_available"), _above),
+    Finding(UNSUITABLE, "landing distance longer than the strip", ("landing_distance", "landing_available"), _not_within),
     Finding(MARGINAL, "landing fits only without the safety factor", ("landing_margin",), _negative),
+    Finding(MARGINAL, BEYOND, ("landing_beyond",), _yes),
     Finding(MARGINAL, "steeper downhill than the rules allow for", ("landing_slope", "slope_limit"),
             _steeper_down),
     *_site_findings("landing_slope"),

@@ -158,3 +158,24 @@ def trial_mule() -> Card:
                    ('to_50ft = "945 m"\n', ""))  # fmt: skip
     with TemporaryDirectory() as folder:
         return load_text(text, Path(folder))
+
+
+HEAVY_TABLES = """
+[[book.table]]
+gives = "take-off roll and to 50 ft"
+flap = "10"
+pressure_altitudes = [0, 6000, 12000]
+temperatures = [0, 20, 40]
+values = [
+    [235, 420, 275, 490, 320, 565],
+    [425, 790, 500, 945, "-", "-"],
+    ["-", "-", "-", "-", "-", "-"],
+]
+"""
+
+
+@cache
+def heavy_tables() -> Card:
+    """The trial card with a table of the take-off at its greatest mass, whose last line is all holes."""
+    with TemporaryDirectory() as folder:
+        return load_text(HERON + HEAVY_TABLES, Path(folder))

@@ -120,9 +120,14 @@ REFUSALS = [
     ([('"normally aspirated"', '"turbo-normalised"\ncritical_altitude = "8000 ft"')],
      "trial.toml [engine]: a turbo-normalised engine goes with a constant-speed propeller"),
     ([('empty = "665 kg"', 'empty = "1200 kg"')],
-     "trial.toml [mass]: empty mass below landing mass, and that not above take-off mass, is expected"),
+     "trial.toml [mass]: empty = 1200 kg must be below max_landing = 1110 kg"),
     ([('max_landing = "1110 kg"', 'max_landing = "1150 kg"')],
-     "trial.toml [mass]: empty mass below landing mass, and that not above take-off mass, is expected"),
+     "trial.toml [mass]: max_landing = 1150 kg must not be above max_takeoff = 1110 kg"),
+    ([('stall_speeds_at = "1110 kg"', 'stall_speeds_at = "1150 kg"')],
+     "trial.toml [mass]: stall_speeds_at = 1150 kg is expected above the empty mass, 665 kg, and up to max_takeoff, 1110 kg; "
+     "a wrong one makes every stall speed wrong"),
+    ([('stall_speeds_at = "1110 kg"', 'stall_speeds_at = "600 kg"')],
+     "trial.toml [mass]: stall_speeds_at = 600 kg is expected above the empty mass, 665 kg, and up to max_takeoff, 1110 kg"),
     ([('area = "16.3 m²"', 'area = "16.3 m"')],
      'trial.toml [wing]: area: "m" is not a unit of area; write for example "12 m²"'),
     ([('span = "11.0 m"', 'span = "110 m"')], "trial.toml [wing]: span = 110 m can't be right for a length"),
@@ -138,12 +143,16 @@ REFUSALS = [
     ([('stall_speed = "46 kt"', 'stall_speed = "46"'), ('stall_speed = "46"', 'stall_speed = "25 kt"')],
      "trial.toml: the stall speeds mean lift coefficients of 1.47 to 6.59, which is not credible (0.8 to 4.5): check "
      "the stall speeds, the mass and the wing area"),
+    ([('drag = 0.022', 'drag = 0.005')],
+     "trial.toml: the drag of flap 20 is below that of flap 10; more flap never lowers it (0.005 and 0.008)"),
+    ([('setting = "20"', 'setting = "10"')],
+     'trial.toml: there is more than one flap setting "10"; each needs a name of its own'),
     ([('uses = ["landing"]', 'uses = ["taxi"]')],
      "trial.toml [[flap]] number 4: uses must be a list out of: take-off, landing"),
     ([("lift_off = 1.08", "lift_off = 1.25")],
-     "trial.toml [speeds]: screen must not be below lift_off, nor approach below touchdown"),
+     "trial.toml [speeds]: screen = 1.2 must not be below lift_off = 1.25"),
     ([("touchdown = 1.10", "touchdown = 1.35")],
-     "trial.toml [speeds]: screen must not be below lift_off, nor approach below touchdown"),
+     "trial.toml [speeds]: approach = 1.3 must not be below touchdown = 1.35"),
     ([('steepest_approach = "8 %"', 'steepest_approach = "4 %"')],
      "trial.toml [landing]: steepest_approach = 4 % can't be right for a slope"),
     ([('takeoff_flap = "10"', 'takeoff_flap = "30"')],
@@ -151,7 +160,9 @@ REFUSALS = [
     ([('landing_flap = "30"', 'landing_flap = "45"')],
      'trial.toml [usual]: there is no flap setting "45"; the card has: up, 10, 20, 30'),
     ([('takeoff_mass = "1050 kg"', 'takeoff_mass = "1200 kg"')],
-     "trial.toml [usual]: takeoff_mass = 1200 kg can't be right for a mass"),
+     "trial.toml [usual]: takeoff_mass = 1200 kg is expected above the empty mass, 665 kg, and up to max_takeoff, 1110 kg"),
+    ([('landing_mass = "1000 kg"', 'landing_mass = "600 kg"')],
+     "trial.toml [usual]: landing_mass = 600 kg is expected above the empty mass, 665 kg, and up to max_landing, 1110 kg"),
     ([('to_50ft = "475 m"', 'to_50ft = "265 m"')],
      "trial.toml [book] [[takeoff]] number 1: to_50ft must be longer than roll"),
     ([('from_50ft = "480 m"', 'from_50ft = "225 m"')],
@@ -166,6 +177,24 @@ def test_what_can_not_be_right(tmp_path: Path, changes: list[tuple[str, str]], s
     with pytest.raises(InputError, match=f"^{re.escape(sentence)}") as refused:
         load_text(changed(HERON, *changes), tmp_path)
     assert "\n" not in str(refused.value)
+
+
+def test_thin_margins_over_the_stall_are_told(tmp_path: Path) -> None:
+    """They are not refused: manuals of short-field aeroplanes state such speeds, and their distances belong to them."""
+    text = changed(HERON, ("lift_off = 1.08", "lift_off = 1.04"), ("approach = 1.30", "approach = 1.19"))
+    assert load_text(text, tmp_path).assumed == [
+        "trial.toml [speeds]: lift_off = 1.04 is less than 1.05 times the stall speed, which leaves little for gusts; taken as "
+        "meant",
+        "trial.toml [speeds]: approach = 1.19 is less than 1.2 times the stall speed, which leaves little for gusts; taken as "
+        "meant",
+    ]
+
+
+def test_stall_mass_rounded_on_the_way_from_pounds(tmp_path: Path) -> None:
+    """2,447 lb is 1,109.95 kg; a manual may print 1,110 kg beside it."""
+    text = changed(HERON, ('max_takeoff = "1110 kg"', 'max_takeoff = "2447 lb"'), ('max_landing = "1110 kg"\n', ""),
+                   ('mass = "1110 kg"\nflap = "30"', 'mass = "1109 kg"\nflap = "30"'))  # fmt: skip
+    assert load_text(text, tmp_path).stall_mass == 1110.0
 
 
 def test_one_flap_setting_is_too_few(tmp_path: Path) -> None:

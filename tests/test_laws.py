@@ -245,6 +245,9 @@ def test_a_longer_strip_never_hurts(situation: Situation, lengths: np.ndarray) -
 
 STRIPS = 12000  # for each aeroplane, rule set and law
 SETS = ("manual-only", "part-cat-b", "uk-leaflet", "au-small")
+# Height over an obstacle [m] that may be gained by rounding; with a table of climb rates a little more, since the
+# manual is read linearly over 4,000 ft in the middle of which a flat rating ends.
+CLEARANCE = {False: 1e-6, True: 0.05}
 
 
 def many_strips(rng: np.random.Generator) -> Situation:
@@ -319,7 +322,8 @@ def better(easy: Result, hard: Result, side: str) -> np.ndarray:
     if side == "takeoff":
         # where 50 ft is not reached on the strip, the distance has decided, and the height means nothing
         fits = hard.si("takeoff_distance") <= hard.si("takeoff_margin") + hard.si("takeoff_required")
-        broken |= fits & (hard.si("over_obstacle") > easy.si("over_obstacle") + 1e-6)
+        rounding = CLEARANCE["climb_carry" in easy.chain.by_key]
+        broken |= fits & (hard.si("over_obstacle") > easy.si("over_obstacle") + rounding)
     return broken
 
 

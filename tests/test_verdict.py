@@ -17,16 +17,18 @@ from stripcheck.assessment import Result
 from stripcheck.caution import CAUTION
 from stripcheck.rules import Rules
 from stripcheck.verdict import (
+    BEYOND,
     FAULT,
     LANDING_FINDINGS,
     MARGINAL,
+    NO_FIGURE,
     NOT_ASSESSED,
     SUITABLE,
     TAKEOFF_FINDINGS,
     UNSUITABLE,
     VERDICTS,
 )
-from tests.aircraft import trial_heron, trial_mule
+from tests.aircraft import heavy_tables, trial_heron, trial_mule
 
 GOOD = {
     "tora": 1400.0, "lda": 1400.0, "width": 30.0, "elevation_field": 1000.0, "slope_given": 0.5, "surface": "grass",
@@ -95,6 +97,10 @@ TAKEOFF: dict[str, Case] = BOTH | {
     "does not climb away": {"surface": "paved", "slope_given": 8.5},
     "take-off distance longer than the strip": {"tora": 300.0},
     "does not clear the obstacle on the climb-out": {"obstacle_height": 310.0, "obstacle_distance": 100.0},
+    # single figures reach to 7,930 ft density altitude
+    BEYOND: {"elevation_field": 7000.0, "tora": 4000.0},
+    # the table, at the greatest mass, has no figure up there, and at that mass the model no longer climbs
+    NO_FIGURE: {"*card": heavy_tables, "*takeoff_mass": 750.0, "elevation_field": 11500.0, "tora": 5000.0},
     "take-off fits only without the safety factor": {"tora": 600.0, "*rules": "uk-leaflet"},
     "clears the obstacle on the climb-out by less than is asked":
         {"obstacle_height": 275.0, "obstacle_distance": 100.0, "*rules": "us-135"},
@@ -117,6 +123,7 @@ LANDING: dict[str, Case] = BOTH | {
     "obstacle on the approach leaves too little to land on":
         {"lda": 600.0, "approach_obstacle_height": 120.0, "approach_obstacle_distance": 100.0},
     "landing distance longer than the strip": {"lda": 300.0},
+    BEYOND: {"elevation_field": 7000.0},
     "landing fits only without the safety factor": {"lda": 550.0, "*rules": "uk-leaflet"},
     "steeper downhill than the rules allow for": {"slope_given": -3.0, "*rules": "part-cat-b"},
     "steeper than the site criterion": {"slope_given": -2.5, "*rules": "au-small"},

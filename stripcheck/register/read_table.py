@@ -161,6 +161,15 @@ def _read_text(path: Path) -> Table:
 
 
 def _read_workbook(path: Path, wanted: str | None) -> Table:
+    for name, rows in workbook_sheets(path, wanted):
+        table = _collect(rows, path.name, name, "")
+        if table is not None:
+            return table
+    raise InputError(_no_header(path.name if wanted is None else f'{path.name} sheet "{wanted}"'))
+
+
+def workbook_sheets(path: Path, wanted: str | None) -> Iterator[tuple[str, Sequence[Sequence[object]]]]:
+    """Name and rows of the sheets of a workbook, or of the one wanted; InputError where it can't be read."""
     from python_calamine import CalamineError, CalamineWorkbook, PasswordError
 
     try:
@@ -169,15 +178,11 @@ def _read_workbook(path: Path, wanted: str | None) -> Table:
                 names = ", ".join(book.sheet_names)
                 raise InputError(f'{path.name}: there is no sheet "{wanted}"; its sheets are {names}')
             for name in [wanted] if wanted is not None else book.sheet_names:
-                rows = book.get_sheet_by_name(name).to_python(skip_empty_area=False)
-                table = _collect(rows, path.name, name, "")
-                if table is not None:
-                    return table
+                yield name, book.get_sheet_by_name(name).to_python(skip_empty_area=False)
     except PasswordError as error:
         raise InputError(f"{path.name}: the workbook has a password; save a copy without it") from error
     except (CalamineError, OSError, ValueError) as error:
         raise InputError(f"{path.name}: the workbook can't be read ({error}); open it and save it again") from error
-    raise InputError(_no_header(path.name if wanted is None else f'{path.name} sheet "{wanted}"'))
 
 
 def _no_header(where: str) -> str:

@@ -17,7 +17,7 @@ from stripcheck.chain import Chain, Step, evaluate
 from stripcheck.day import Day
 from stripcheck.register import Directions
 from stripcheck.rules import Rules
-from stripcheck.sheet import left_out, method, pages, strips, styles, summary
+from stripcheck.sheet import left_out, manual_tables, method, pages, strips, styles, summary
 from stripcheck.sheet.formulas import write_formulas
 from stripcheck.sheet.stream import write_book
 from stripcheck.units import from_si, tidy
@@ -106,6 +106,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in _FACTS), "Rules"])
     strips.write_skeleton(made, columns, directions.n, f"{filling.card.name}: every direction")
     aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names)
+    manual_tables.write_manual(made, filling.card, filling.values)
     pages.write_day(made, filling.day)
     pages.write_rules(made, filling.rules)
     left_out.write_skeleton(made, directions)

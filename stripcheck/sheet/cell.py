@@ -280,6 +280,8 @@ def _interpolate(at: Any, nodes: Any, values: Any) -> Cell:
     """np.interp over two ranges of cells: held at the ends, straight between the nodes."""
     x, xs, ys = as_cell(at), as_cell(nodes), as_cell(values)
     held = f"MIN(MAX({x.text},MIN({xs.text})),MAX({xs.text}))"
+    if xs.text == ys.text:
+        return Cell(held, ATOM, x.depth + 2)
     left = f"MIN(MATCH({held},{xs.text},1),COUNT({xs.text})-1)"
     x0, x1 = f"INDEX({xs.text},{left})", f"INDEX({xs.text},{left}+1)"
     y0, y1 = f"INDEX({ys.text},{left})", f"INDEX({ys.text},{left}+1)"

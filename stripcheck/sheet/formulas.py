@@ -6,15 +6,16 @@ the steps that use it.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from typing import Any, NamedTuple
 
 import numpy as np
 
 from stripcheck import ground_run
 from stripcheck.chain import Chain, Input, Step
+from stripcheck.interpolation import HAIR
 from stripcheck.links import GROUND_UNKNOWN
-from stripcheck.sheet.cell import ATOM, BLANK, COMPARE, Cell, as_cell, call, formula, reference, shown, where
+from stripcheck.sheet.cell import ADD, ATOM, BLANK, COMPARE, Cell, as_cell, call, formula, reference, shown, where
 from stripcheck.verdict import FAULT
 
 # the nodes and weights of the quadrature stand once in the workbook, under these defined names
@@ -79,6 +80,9 @@ class _Writer:
         return self.guarded(item, self.expression(item, holding | self.held(item)), holding)
 
     def expression(self, step: Step, holding: frozenset[str]) -> Cell:
+        if step.lookup in _IN_TABLES:
+            function, count = _IN_TABLES[step.lookup]
+            return function(*(self.value(key, holding) for key in step.inputs[:count]))
         values = [self.value(key, holding) for key in step.inputs]
         if step.lookup == "name":
             surface, condition, day_condition = values
@@ -119,6 +123,49 @@ def _row_in_table(surface: Cell, condition: Cell, day_condition: Cell, names: Ce
 
 def _looked_up(column: Cell, row: Cell) -> Cell:
     return Cell(f"INDEX({column.text},{row.text})", ATOM, row.depth + 1)
+
+
+def _position(at: Cell, nodes: Cell) -> Cell:
+    """Place among rising nodes, from 0, held at the ends; what `stripcheck.interpolation.position` gives."""
+    held = f"MIN(MAX({at.text},MIN({nodes.text})),MAX({nodes.text}))"
+    left = f"MIN(MATCH({held},{nodes.text},1),COUNT({nodes.text})-1)"
+    node, following = f"INDEX({nodes.text},{left})", f"INDEX({nodes.text},{left}+1)"
+    return Cell(f"{left}-1+({held}-{node})/({following}-{node})", ADD, at.depth + 5)
+
+
+def _figure(table: Cell, row: Cell, column: Cell) -> Cell:
+    """Figure of the grid for today's mass and flap, linear between its four neighbours; what ``in_pages`` gives."""
+    u, v = row.within(ATOM), column.within(ATOM)
+    down, across = f"({u}-INT({u}))", f"({v}-INT({v}))"
+    lower, upper = f"INT({u})+1", f"MIN(INT({u})+2,ROWS({table.text}))"
+    left, right = f"INT({v})+1", f"MIN(INT({v})+2,COLUMNS({table.text}))"
+
+    def line(at: str) -> str:
+        one, other = f"INDEX({table.text},{at},{left})", f"INDEX({table.text},{at},{right})"
+        return f"((1-{across})*{one}+{across}*{other})"
+
+    return Cell(f"(1-{down})*{line(lower)}+{down}*{line(upper)}", ADD, max(row.depth, column.depth) + 4)
+
+
+def _edge(least: str) -> Callable[..., Cell]:
+    """The edge of the lines that count at a place down the table; what ``hot_edge`` and ``cold_edge`` give."""
+
+    def edge(lines: Cell, row: Cell) -> Cell:
+        upper = f"INDEX({lines.text},INT({row.text}+{HAIR:.6f})+1)"
+        lower = f"INDEX({lines.text},ROUNDUP(MAX({row.text}-{HAIR:.6f},0),0)+1)"
+        return Cell(f"{least}({upper},{lower})", ATOM, row.depth + 4)
+
+    return edge
+
+
+# steps that read the manual's tables: how they are written, and how many of their inputs that takes, since the grid
+# that stands on the sheet Book is made for the mass and flap of the day
+_IN_TABLES: dict[str, tuple[Callable[..., Cell], int]] = {
+    "position": (_position, 2),
+    "table": (_figure, 3),
+    "hot edge": (_edge("MIN"), 2),
+    "cold edge": (_edge("MAX"), 2),
+}
 
 
 def _in_words(step: Step, number: Cell, fault: Cell, words: Cell) -> Cell:

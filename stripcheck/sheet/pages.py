@@ -189,7 +189,8 @@ def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
         _text(sheet, f"A{at}", flap.name)
         _number(sheet, f"B{at}", deflection)
         pages.formula(sheet, f"D{at}", formula(reference(f"B{at}", "°")), flap.deflection)
-        sheet[f"E{at}"] = ", ".join(flap.uses)
+        told = f"; estimated: {' and '.join(flap.estimated)}" if flap.estimated else ""
+        sheet[f"E{at}"] = ", ".join(flap.uses) + told
         _number(sheet, f"F{at}", tidy(from_si(flap.stall_speed, "kt")))
         _number(sheet, f"G{at}", card.stall_mass)
         _number(sheet, f"H{at}", flap.drag)

@@ -19,7 +19,7 @@ from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE, UNSUITABLE
 FORMATS = {
     "m": '#,##0" m"', "ft": '#,##0" ft"', "kt": '0.0" kt"', "%": '0.0" %"', "°": '0"°"', "°C": '0.0" °C"',
     "hPa": '0.0" hPa"', "K": '0.0" K"', "m/s²": "0.000", "kg/m³": "0.0000", "N": '#,##0" N"', "kW": '#,##0" kW"',
-    "kg": '#,##0" kg"', "s": '0.0" s"', "m²": '0.00" m²"', "": "0.0000",
+    "kg": '#,##0" kg"', "ft/min": '#,##0" ft/min"', "%/kt": '0.00" %/kt"', "s": '0.0" s"', "m²": '0.00" m²"', "": "0.0000",
 }  # fmt: skip
 
 _GREY_LINE = Side(style="thin", color="BFBFBF")

@@ -1,0 +1,210 @@
+"""The Manual sheet: the flight manual's own tables, to be typed over, and the tables for the mass and flap of the day.
+
+Formulas elsewhere read the tables of the day by name. Each of their cells is linear between the pages below for the mass
+of the day; a hole of the manual's is carried by the model, and the edges beside each line tell where that begins.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+import numpy as np
+from openpyxl.utils import column_index_from_string, get_column_letter
+from openpyxl.worksheet.worksheet import Worksheet
+
+from stripcheck import interpolation
+from stripcheck.book_tables import BookTables
+from stripcheck.card import Card
+from stripcheck.caution import CAUTION
+from stripcheck.inputs import SIDE_WORDS
+from stripcheck.interpolation import FAR, HAIR
+from stripcheck.sheet import styles
+from stripcheck.sheet.cell import Cell, formula, reference
+from stripcheck.sheet.formulas import Place
+from stripcheck.sheet.pages import Pages, write_header, write_heading
+from stripcheck.units import UNITS, from_si, tidy
+
+SHEET = "Manual"
+FIGURES = {"roll": ("Roll [m]", "m"), "distance": ("Over 50 ft [m]", "m"), "rate": ("Rate of climb [ft/min]", "ft/min")}
+FIRST = 3  # column of the first temperature: the altitude and its SI value stand before it
+LEGEND = (
+    "Yellow cells are the manual's; type over them as they are printed, and leave a hole blank. Grey cells are not the "
+    "manual's: the model carries the nearest figure on, and what needs them is beyond the book, at best marginal."
+)
+
+
+def write_manual(pages: Pages, card: Card, values: Mapping[str, Any]) -> Worksheet | None:
+    """The sheet, or None for a card without tables. ``values`` are the steps that are the same for all strips, SI."""
+    if not card.tables:
+        return None
+    sheet: Worksheet = pages.book.create_sheet(SHEET)
+    sheet.sheet_view.showGridLines = False
+    sheet["A1"], sheet["A1"].font = f"{card.name}: the flight manual's tables", styles.TITLE
+    styles.write_caution(sheet, "A2", CAUTION)
+    sheet["A3"], sheet["A3"].font = LEGEND, styles.SMALL
+    sheet.column_dimensions["A"].width, sheet.column_dimensions["B"].width = 22, 12
+    row = 5
+    for tables in card.tables.values():
+        row = _Side(pages, sheet, card, tables, values, row).write()
+    for column in range(FIRST, sheet.max_column + 1):
+        sheet.column_dimensions[get_column_letter(column)].width = 9.5
+    sheet.freeze_panes = "B5"
+    styles.set_print(sheet, portrait=False)
+    return sheet
+
+
+class _Side:
+    """The tables of one side on the sheet, from a row on; all its blocks use the same columns."""
+
+    def __init__(self, pages: Pages, sheet: Worksheet, card: Card, tables: BookTables, values: Mapping[str, Any],
+                 row: int) -> None:  # fmt: skip
+        self.pages, self.sheet, self.card, self.tables, self.row = pages, sheet, card, tables, row
+        self.mass, self.flap = (float(np.ravel(values[f"{tables.side}_book_{key}"])[0]) for key in ("mass", "flap"))
+        wide = len(tables.temperatures)
+        self.columns = {figure: FIRST + i * (wide + 1) for i, figure in enumerate(tables.filled)}
+        self.edges = [get_column_letter(FIRST + len(tables.filled) * (wide + 1) + i) for i in (0, 1)]
+        self.temperatures = [f"{self._letter(figure, j)}${row + 1}" for figure in list(tables.filled)[:1] for j in range(wide)]
+        pages_array = np.array(tables.pages)
+        self.weights = interpolation.page_weight(
+            self.mass, self.flap, pages_array[:, 1], pages_array[:, 0], tables.below(), tables.above()
+        )
+
+    def write(self) -> int:
+        """All blocks; returns the next free row."""
+        lines = len(self.tables.altitudes)
+        page_rows = [self.row + lines + 5 + i * (lines + 3) for i in range(len(self.tables.pages))]
+        for number, row in enumerate(page_rows):
+            self._page(row, number)
+        self._today(page_rows)
+        return self._settings(page_rows[-1] + lines + 4) + 2
+
+    def _letter(self, figure: str, column: int) -> str:
+        return str(get_column_letter(self.columns[figure] + column))
+
+    def _put(self, cell: str, text: str, value: Any, number_format: str) -> None:
+        self.pages.formula(self.sheet, cell, text, value)
+        self.sheet[cell].font, self.sheet[cell].number_format = styles.SMALL, number_format
+
+    def _name(self, key: str, cells: str) -> None:
+        name = f"{self.tables.side}_{key}"
+        self.pages.places[name] = Place(self.pages.name(name, self.sheet, cells))
+
+    def _headers(self, row: int, title: str) -> None:
+        """Titles of the figures in a row; below it the temperatures; below that the altitudes."""
+        for figure in self.tables.filled:
+            cell = self.sheet[f"{self._letter(figure, 0)}{row}"]
+            cell.value, cell.font = FIGURES[figure][0], styles.BOLD
+        write_header(self.sheet, row + 1, ("Pressure altitude [ft]", title))
+        for figure in self.tables.filled:
+            for j, temperature in enumerate(self.tables.temperatures):
+                cell = self.sheet[f"{self._letter(figure, j)}{row + 1}"]
+                cell.value, cell.number_format = tidy(round(from_si(temperature, "°C"), 6)), '0.##" °C"'
+                cell.font, cell.fill, cell.alignment = styles.HEADER, styles.HEADER_FILL, styles.CENTRE
+        for edge, letter in zip(("Hottest [K]", "Coldest [K]"), self.edges, strict=True):
+            write_header(self.sheet, row + 1, (edge,), column_index_from_string(letter))
+        for i, altitude in enumerate(self.tables.altitudes, row + 2):
+            cell = self.sheet[f"A{i}"]
+            cell.value, cell.font, cell.number_format = tidy(round(from_si(altitude, "ft"), 6)), styles.BODY, "#,##0"
+
+    def _page(self, row: int, number: int) -> None:
+        """One page of the manual, with its weight for the mass and flap of the day."""
+        tables, sheet = self.tables, self.sheet
+        deflection, mass = tables.pages[number]
+        name = next(flap.name for flap in self.card.flaps if flap.deflection == deflection)
+        sheet[f"A{row}"], sheet[f"A{row}"].font = f"Page: flap {name}, {mass:,.0f} kg", styles.BOLD
+        self._headers(row, "Weight now")
+        weight = interpolation.page_weight(
+            Cell(f"{tables.side}_book_mass"), Cell(f"{tables.side}_book_flap"), mass, deflection,
+            float(tables.below()[number]), float(tables.above()[number]),
+        )  # fmt: skip
+        self._put(f"B{row + 2}", formula(weight), self.weights[number], "0.000")
+        for i in range(len(tables.altitudes)):
+            for figure in tables.filled:
+                for j in range(len(tables.temperatures)):
+                    self._figure(f"{self._letter(figure, j)}{row + 2 + i}", figure, (number, i, j))
+            self._page_edges(row + 2 + i, number, i)
+
+    def _figure(self, cell: str, figure: str, place: tuple[int, int, int]) -> None:
+        """A figure to type over: the manual's on yellow; blank on grey where the manual has none."""
+        value = self.tables.printed[figure][place] if figure in self.tables.printed else np.nan
+        target = self.sheet[cell]
+        target.value = tidy(round(from_si(value, FIGURES[figure][1]), 6)) if np.isfinite(value) else None
+        target.fill = styles.INPUT_FILL if np.isfinite(value) else styles.BAND_FILL
+        target.border, target.protection, target.font = styles.BOX, styles.UNLOCKED, styles.BODY
+        target.number_format = "#,##0.##"
+
+    def _page_edges(self, row: int, number: int, line: int) -> None:
+        """Hottest and coldest temperature of a line at which all the figures stand; below the first where none does."""
+        there = [self._all_there(row, j) for j in range(len(self.temperatures))]
+        hot, cold = (f"{letter}{row}" for letter in self.edges)
+        first = self.temperatures[0]
+        terms = [f"IF({known},{at},{first}-1)" for known, at in zip(there, self.temperatures, strict=True)]
+        self._put(hot, f"MAX({','.join(terms)})", self.tables.edge(hot=True)[number][line], "0.00")
+        terms = [f"IF({known},{at},{FAR:.0f})" for known, at in zip(there, self.temperatures, strict=True)]
+        text = f"IF({hot}<{first},{hot},MIN({','.join(terms)}))"
+        self._put(cold, text, self.tables.edge(hot=False)[number][line], "0.00")
+
+    def _all_there(self, row: int, column: int) -> str:
+        cells = [f"ISNUMBER({self._letter(figure, column)}{row})" for figure in self.tables.printed]
+        return f"AND({','.join(cells)})"
+
+    def _today(self, page_rows: list[int]) -> None:
+        """The tables for the mass and flap of the day, which the formulas of the strips read by name."""
+        tables, first, last = self.tables, self.row + 3, self.row + 2 + len(self.tables.altitudes)
+        word = SIDE_WORDS[tables.side]
+        write_heading(self.sheet, self.row, f"{word}: for the mass and flap of the day")
+        self._headers(self.row + 1, "In SI [m]")
+        for j, temperature in enumerate(tables.temperatures):
+            letter = self._letter(next(iter(tables.filled)), j)
+            text = formula(reference(f"{letter}{self.row + 2}", "°C"))
+            self._put(f"{letter}{self.row + 1}", text, temperature, '0.00" K"')
+        for i, altitude in enumerate(tables.altitudes, first):
+            self._put(f"B{i}", formula(reference(f"A{i}", "ft")), altitude, "0.0")
+        for figure, grid in tables.filled.items():
+            now = np.tensordot(self.weights, grid, 1)
+            for i in range(len(tables.altitudes)):
+                for j in range(len(tables.temperatures)):
+                    cell = f"{self._letter(figure, j)}{first + i}"
+                    self._put(cell, self._now(figure, i, j, page_rows), now[i, j], "#,##0.00")
+            end = self._letter(figure, len(tables.temperatures) - 1)
+            self._name(f"{figure}_table", f"{self._letter(figure, 0)}{first}:{end}{last}")
+        for key, letter, least, hot in (("hottest", self.edges[0], "MIN", True), ("coldest", self.edges[1], "MAX", False)):
+            for i in range(len(tables.altitudes)):
+                far = FAR if hot else -FAR
+                rows = [row + 2 for row in page_rows]
+                terms = [f"IF($B${row}>{HAIR:.6f},{letter}{row + i},{far:.0f})" for row in rows]
+                counting = tables.edge(hot)[:, i][self.weights > HAIR]
+                value = counting.min() if hot else counting.max()
+                self._put(f"{letter}{first + i}", f"{least}({','.join(terms)})", value, "0.00")
+            self._name(key, f"{letter}{first}:{letter}{last}")
+        self._name("altitudes", f"B{first}:B{last}")
+        row = self.row + 1
+        self._name("temperatures", f"{self.temperatures[0].replace('$', '')}:{self.temperatures[-1].split('$')[0]}{row}")
+
+    def _now(self, figure: str, line: int, column: int, page_rows: list[int]) -> str:
+        """One figure for the day: the pages by their weights, a figure that is not there as the model carried it."""
+        factor = UNITS[FIGURES[figure][1]].factor
+        terms = []
+        for number, row in enumerate(page_rows):
+            cell = f"{self._letter(figure, column)}{row + 2 + line}"
+            carried = from_si(self.tables.filled[figure][number, line, column], FIGURES[figure][1])
+            terms.append(f"$B${row + 2}*IF(ISNUMBER({cell}),{cell},{carried:.15g})")
+        whole = "+".join(terms)
+        return whole if factor == 1.0 else f"({whole})*{factor:.15g}"
+
+    def _settings(self, row: int) -> int:
+        """Which tables stand for each flap setting of the card; returns the next free row."""
+        sheet, flaps = self.sheet, self.card.flaps
+        values = self.tables.values(flaps)
+        write_header(sheet, row, ("Flap setting", "Its tables [rad]", "From [kg]", "To [kg]"))
+        first, last = row + 1, row + len(flaps)
+        for i, flap in enumerate(flaps):
+            sheet[f"A{first + i}"], sheet[f"A{first + i}"].font = flap.name, styles.BODY
+            sheet[f"A{first + i}"].number_format = "@"
+        for letter, key in (("B", "book_flaps"), ("C", "least_masses"), ("D", "most_masses")):
+            for i, value in enumerate(values[f"{self.tables.side}_{key}"]):
+                cell = sheet[f"{letter}{first + i}"]
+                cell.value, cell.font, cell.number_format = float(value), styles.SMALL, "0.0000" if letter == "B" else "#,##0"
+            self._name(key, f"{letter}{first}:{letter}{last}")
+        return last

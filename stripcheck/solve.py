@@ -1,0 +1,446 @@
+"""Inverse questions: how heavy, how hot, how much wind, and where to stop or turn away.
+
+Each question takes what ``stripcheck.assess`` takes and answers for each row, one row a direction, over arrays. The
+chain itself is asked, by bisection with a fixed count, so that an answer agrees with the verdict: at the value found the
+direction is still suitable, a hair beyond it is not. ``**loading`` is ``takeoff_mass``, ``landing_mass``,
+``takeoff_flap`` and ``landing_flap``, as for ``assess``. Inside all is SI; ``texts()`` says it in words, rounded to the
+safe side. What can't be assessed has no answer, and the words say so.
+
+Bisection is right here because more mass, heat or tailwind never betters a verdict, which tests/test_laws.py holds.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
+from math import ceil, floor
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from stripcheck import airborne, ground_run, links, speeds
+from stripcheck.assessment import Result, prepare, strip_columns
+from stripcheck.atmosphere import G0
+from stripcheck.card import Card, flap_setting
+from stripcheck.chain import evaluate
+from stripcheck.day import Day
+from stripcheck.errors import InputError
+from stripcheck.inputs import STRIP
+from stripcheck.rules import Rules
+from stripcheck.units import from_si, to_si
+from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE
+
+Array = NDArray[Any]
+Given = Mapping[str, Any]
+
+SIDES = ("takeoff", "landing")
+FOUND, NONE, OPEN = "found", "none", "open"  # besides NOT_ASSESSED; open: even the hardest value works
+HALVINGS = 36  # of 120 K leave 2e-9 K, of a tonne 2e-8 kg
+LEAST_SHARE = 0.3  # of the greatest mass: lighter than any aeroplane flies
+WINDS = (to_si(30.0, "kt"), to_si(-20.0, "kt"))  # along the strip, from the easiest headwind to the hardest tailwind
+# Seconds from the abort point until the brakes bite. Transport aeroplanes are certified with two seconds at that speed
+# (14 CFR 25.109, from memory); one more for a pilot alone. Common practice, no source.
+REACTION = 3.0
+GO_SHARE = 0.7  # of lift-off speed, to be had at half of the strip. Common practice, no source.
+FLAP_SECONDS = 5.0  # from the decision to go around until the flap is where it climbs best. Common practice, no source.
+FARTHEST = 5.0 * 1852.0  # m before the threshold: beyond this nobody is on the approach yet
+
+
+@dataclass(frozen=True)
+class Answer:
+    """Answers to one question, one for each row.
+
+    ``value`` in SI, NaN where there is none; where even the hardest value works (``state`` "open") it is that one.
+    ``state``: "found", "none", "open" or "not assessed". ``limits``: the reason that forbids more, or why there is none.
+    """
+
+    value: Array
+    unit: str
+    state: Array
+    limits: list[str]
+    say: Callable[[float], str]
+    say_open: Callable[[float], str]
+
+    def texts(self) -> list[str]:
+        """The answers in words."""
+        words = {FOUND: self.say, OPEN: self.say_open}
+        return [words[state](value) if state in words else str(state)
+                for state, value in zip(self.state.tolist(), self.value.tolist(), strict=True)]  # fmt: skip
+
+
+def most_takeoff_mass(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
+                      at_best: str = SUITABLE, **loading: Any) -> Answer:  # fmt: skip
+    """Greatest take-off mass [kg] at which the take-off is suitable, up to the card's greatest.
+
+    ``at_best="marginal"`` accepts marginal too. Raises InputError as ``assess`` does.
+
+    >>> most_takeoff_mass({"tora": [500.0, 900.0, 150.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
+    ...                   "ridge-runner", {"temperature": 22}, "uk-leaflet").texts()
+    ['814 kg', '1,078 kg', 'none']
+    """
+    return _most_mass(prepare(strips, card, day, rules, **loading), "takeoff", at_best)
+
+
+def most_landing_mass(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
+                      at_best: str = SUITABLE, **loading: Any) -> Answer:  # fmt: skip
+    """Greatest landing mass [kg] at which the landing is suitable, up to the card's greatest.
+
+    Arguments and errors as for ``most_takeoff_mass``.
+
+    >>> most_landing_mass({"lda": [650.0, 1200.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
+    ...                   "ridge-runner", {"temperature": 22}, "uk-leaflet").texts()
+    ['856 kg', '1,110 kg, the greatest allowed']
+    """
+    return _most_mass(prepare(strips, card, day, rules, **loading), "landing", at_best)
+
+
+def hottest(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", side: str = "takeoff",
+            *, at_best: str = SUITABLE, **loading: Any) -> Answer:  # fmt: skip
+    """Hottest air at the strip [K], within -60 to 60 °C, in which a ``side``, "takeoff" or "landing", is suitable.
+
+    A relative humidity of the day holds at each temperature. Other arguments and errors as for ``most_takeoff_mass``.
+
+    >>> hottest({"tora": [700.0, 1500.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
+    ...         "ridge-runner", {"temperature": 22}, "uk-leaflet", takeoff_mass=950).texts()
+    ['22.9 °C', '35.0 °C']
+    """
+    case = prepare(strips, card, day, rules, **loading)
+    coldest, hot = (np.full(case.size, limit) for limit in links.TEMPERATURES)
+    found = _hardest(case, side, at_best, coldest, hot, lambda kelvin: {"own_temperature": kelvin})
+    return Answer(*found[:1], "°C", *found[1:], _celsius, lambda kelvin: f"no limit within {_celsius(kelvin)}")
+
+
+def least_headwind(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only",
+                   side: str = "takeoff", *, at_best: str = SUITABLE, **loading: Any) -> Answer:  # fmt: skip
+    """Least headwind [m/s] at which a ``side`` is suitable; negative: the most tailwind.
+
+    The wind blows straight along the strip, from 30 kt ahead to 20 kt behind, in place of the day's; the rule set counts
+    it as it does any. Other arguments and errors as for ``hottest``.
+
+    >>> least_headwind({"tora": [560.0, 800.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
+    ...                "ridge-runner", {"temperature": 22}, "uk-leaflet", takeoff_mass=900).texts()
+    ['needs 7.0 kt of headwind', 'up to 4.4 kt of tailwind']
+    """
+    case = prepare(strips, card, day, rules, **loading)
+    # a wind along the strip has no crosswind, so its limit has no say; the sine of half a turn is not nil to the last digit
+    calm_across = {"crosswind_limit": np.inf}
+    ahead, behind = (np.full(case.size, wind) for wind in WINDS)
+    found = _hardest(case, side, at_best, ahead, behind, lambda head: {**wind_along(head), **calm_across})
+    return Answer(*found[:1], "kt", *found[1:], _wind, lambda head: f"no limit within {_wind(head)[6:]}")
+
+
+def _most_mass(case: Result, side: str, at_best: str) -> Answer:
+    greatest = float(case.given[f"max_{side}_mass"])
+    least = float(case.given.get("empty_mass", LEAST_SHARE * greatest))
+    light, heavy = (np.full(case.size, mass) for mass in (least, greatest))
+    found = _hardest(case, side, at_best, light, heavy, lambda mass: {f"mass_{side}": mass})
+    return Answer(*found[:1], "kg", *found[1:], _kilograms, lambda mass: f"{_kilograms(mass)}, the greatest allowed")
+
+
+def _hardest(case: Result, side: str, at_best: str, easiest: Array, hardest: Array,
+             given: Callable[[Array], Given]) -> tuple[Array, Array, list[str]]:  # fmt: skip
+    """The value nearest to the hardest at which a side is still acceptable: values, states and limiting reasons."""
+    verdicts = np.array(_words(case, side))
+    accepted = np.isin(verdicts, {SUITABLE: [SUITABLE], MARGINAL: [SUITABLE, MARGINAL]}[at_best])
+
+    def finding(value: Array) -> Array:
+        return evaluate(case.chain, {**case.given, **given(value)}, (f"{side}_finding",))[f"{side}_finding"] - 1
+
+    first, last = finding(easiest), finding(hardest)
+    state = np.select([verdicts[first] == NOT_ASSESSED, ~accepted[first], accepted[last]], [NOT_ASSESSED, NONE, OPEN], FOUND)
+    good, bad = _last_that_holds(lambda value: accepted[finding(value)], easiest, hardest)
+    value = np.select([state == FOUND, state == OPEN], [good, hardest], np.nan)
+    beyond = np.where(state == FOUND, bad, easiest)
+    reasons = replace(case, given={**case.given, **given(beyond)}, found={})[f"{side}_reason"]
+    limits = ["" if one == OPEN else reason for one, reason in zip(state.tolist(), reasons, strict=True)]
+    return value, state, limits
+
+
+def _words(case: Result, side: str) -> tuple[str, ...]:
+    if side not in SIDES:
+        raise InputError(f'"{side}" is no side; it is one of: {", ".join(SIDES)}')
+    return getattr(case.chain.by_key[f"{side}_verdict"], "words", ())
+
+
+def _last_that_holds(holds: Callable[[Array], Array], good: Array, bad: Array) -> tuple[Array, Array]:
+    """Two values a hair apart, of which the one still holds and the other no more, from one of each kind."""
+    for _ in range(HALVINGS):
+        middle = 0.5 * (good + bad)
+        still = holds(middle)
+        good, bad = np.where(still, middle, good), np.where(still, bad, middle)
+    return good, bad
+
+
+def wind_along(head: Array) -> dict[str, Any]:
+    """Strip values [SI] by key for a wind straight along the strip, headwind positive [m/s], in place of any other.
+
+    >>> wind_along(np.array([5.0, -5.0]))["own_wind_speed"]
+    array([5., 5.])
+    """
+    return {"heading": 0.0, "own_wind_speed": np.abs(head), "own_wind_from": np.where(head < 0.0, np.pi, 0.0)}
+
+
+def _kilograms(mass: float) -> str:
+    return f"{floor(mass):,} kg"
+
+
+def _celsius(kelvin: float) -> str:
+    return f"{_down(from_si(kelvin, '°C')):.1f} °C"
+
+
+def _wind(head: float) -> str:
+    knots = _up(from_si(head, "kt"))
+    return f"needs {knots:.1f} kt of headwind" if knots > 0.0 else f"up to {abs(knots):.1f} kt of tailwind"
+
+
+def _down(value: float) -> float:
+    """A value to one digit behind the point, not above itself; of what is a hair below a digit, that digit."""
+    return floor(10.0 * value + 1e-6) / 10.0
+
+
+def _up(value: float) -> float:
+    return -_down(-value)
+
+
+# --- the abort point --------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class AbortPoint:
+    """The last place from which a take-off given up still stops on the strip, for each row, and the 70 % check.
+
+    ``distance`` [m] from the start of the run and true and equivalent airspeed [m/s] there; where the aeroplane can stop
+    even from lift-off ("open") these are lift-off's. ``usable`` [m]: the lesser of the lengths usable for take-off and
+    for landing. ``half_share`` [-]: airspeed at half of it over lift-off speed, at most 1; ``seventy_at`` [m]: where
+    70 % of lift-off speed is reached, NaN where never.
+    """
+
+    distance: Array
+    tas: Array
+    eas: Array
+    state: Array
+    usable: Array
+    half_share: Array
+    seventy_at: Array
+
+    @property
+    def reaches_seventy(self) -> Array:
+        """Whether 70 % of lift-off speed is reached by half of the usable length."""
+        return self.half_share >= GO_SHARE
+
+    def texts(self) -> list[str]:
+        """The abort points in words."""
+        words = {
+            FOUND: "{place} m along, at {eas} kt EAS ({tas} kt TAS)",
+            OPEN: "can stop even from lift-off, {place} m along, at {eas} kt EAS ({tas} kt TAS)",
+        }
+        rows = zip(self.state.tolist(), self.distance, from_si(self.eas, "kt"), from_si(self.tas, "kt"), strict=True)
+        return [words[state].format(place=floor(place), eas=floor(eas), tas=floor(tas)) if state in words else state
+                for state, place, eas, tas in rows]  # fmt: skip
+
+    def check_texts(self) -> list[str]:
+        """The 70 % check in words."""
+        return [_check_in_words(*row) for row in zip(self.half_share.tolist(), self.seventy_at.tolist(), strict=True)]
+
+
+def abort_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
+                reaction: float = REACTION, **loading: Any) -> AbortPoint:  # fmt: skip
+    """The farthest place along the strip from which a rejected take-off still stops on it, and the speed there.
+
+    The run accelerates as in the take-off; then the ground speed stays for ``reaction`` [s]; then the aeroplane brakes,
+    thrust nil, at take-off mass and flap on the ground in question, and stops within the lesser of the lengths usable
+    for take-off and for landing. Wind as the rule set counts it; no safety factor; where the card's tables carry the
+    manual's rolls, both parts are carried likewise. A slope that is only assumed is taken uphill for the run and downhill
+    for the stop. Other arguments and errors as for ``assess``. Source: the ground runs of the chain.
+
+    >>> point = abort_point({"tora": 500.0, "lda": 500.0, "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
+    ...                     "ridge-runner", {"temperature": 22})
+    >>> point.texts(), point.check_texts()
+    (['158 m along, at 38 kt EAS (40 kt TAS)'], ['87 % of lift-off speed at half, 70 % at 155 m: go'])
+    """
+    if not reaction >= 0.0:
+        raise InputError(f"a time to react of {reaction} s can't be right; 0 s or more is expected")
+    case = prepare(strips, card, day, rules, **loading)
+    values = _values(case, "run_wind", "lift_off_tas", "sigma", *_RUN_KEYS, *_STOP_KEYS)
+    accelerated, quickens = _accelerating(values)
+    stopped, slows = _stopping(values)
+    usable = np.broadcast_to(np.minimum(case.given["tora"], case.given["lda"]), case.size)
+    wind, lift_off = values["run_wind"], values["lift_off_tas"]
+
+    def stops(speed: Array) -> Array:
+        needed = accelerated(speed) + (speed - wind) * reaction + stopped(speed)
+        return quickens(speed) & slows(speed) & (needed <= usable)
+
+    def within_half(speed: Array) -> Array:
+        return quickens(speed) & (accelerated(speed) <= 0.5 * usable)
+
+    with np.errstate(all="ignore"):
+        known = np.isfinite(accelerated(wind) + stopped(wind) + usable) & (usable >= links.LENGTHS[0])
+        state = np.select([~known, ~stops(wind), stops(lift_off)], [NOT_ASSESSED, NONE, OPEN], FOUND)
+        last, _ = _last_that_holds(stops, wind, lift_off)
+        tas = np.select([state == FOUND, state == OPEN], [last, lift_off], np.nan)
+        at_half = np.where(within_half(lift_off), lift_off, _last_that_holds(within_half, wind, lift_off)[0])
+        seventy = GO_SHARE * lift_off
+        seventy_at = np.where(known & quickens(seventy), accelerated(seventy), np.nan)
+        half_share = np.where(known & quickens(wind), at_half / lift_off, np.nan)
+        return AbortPoint(accelerated(tas), tas, speeds.equivalent_airspeed(tas, values["sigma"]), state, usable, half_share,
+                          seventy_at)  # fmt: skip
+
+
+_RUN_KEYS = ("start", "square", "thrust_acceleration", "lost", "disk_speed", "slow_root", "takeoff_roll_carry")
+_STOP_KEYS = ("density", "rolling_drag", "braking", "landing_slope", "landing_roll_carry")
+
+
+def _values(case: Result, *keys: str) -> dict[str, Array]:
+    """Those of the steps that this chain has, and all that was given, SI, one value for each row."""
+    present = [key for key in keys if key in case.chain.by_key]
+    found = {**case.given, **evaluate(case.chain, case.given, present)}
+    return {key: np.broadcast_to(value, case.size) if np.ndim(value) == 0 else value for key, value in found.items()}
+
+
+def _accelerating(values: Mapping[str, Array]) -> tuple[Callable[[Array], Array], Callable[[Array], Array]]:
+    """Length [m] of the take-off run to an airspeed [m/s], by the chain's own law, and whether it accelerates so far."""
+    wind, carry = values["run_wind"], values.get("takeoff_roll_carry", 1.0)
+    if "start" in values:  # a fixed-pitch propeller
+        law = (values["start"], values["square"], wind)
+        return (lambda speed: ground_run.speed_run(*law, speed) * carry,
+                lambda speed: ground_run.least_speed_run_acceleration(*law, speed) >= ground_run.LEAST_ACCELERATION)  # fmt: skip
+    disk, slow = tuple(values[key] for key in ("thrust_acceleration", "lost", "square", "disk_speed")), values["slow_root"]
+
+    def root(speed: Array) -> Array:
+        return np.asarray(links.disk_root_of(speed, values["disk_speed"]))
+
+    return (lambda speed: ground_run.disk_run_between(*disk, wind, slow, root(speed)) * carry,
+            lambda speed: ground_run.least_disk_acceleration(*disk, slow, root(speed)) >= ground_run.LEAST_ACCELERATION)  # fmt: skip
+
+
+def _stopping(values: Mapping[str, Array]) -> tuple[Callable[[Array], Array], Callable[[Array], Array]]:
+    """Length [m] of a braked roll from an airspeed [m/s] at take-off mass and flap, and whether it slows down all along."""
+    braking, quality = values["braking"], values["braking_quality"]
+    start = links.braked_start(braking, quality, values["landing_slope"])
+    square = links.braked_square(values["density"], values["wing_area"], values["mass_takeoff"], values["rolling_drag"],
+                                 values["ground_lift"], braking, quality)  # fmt: skip
+    law = (start, square, values["run_wind"])
+    carry = values.get("landing_roll_carry", 1.0)
+    return (lambda speed: ground_run.speed_run(*law, speed) * carry,
+            lambda speed: ground_run.least_speed_run_acceleration(*law, speed) >= ground_run.LEAST_ACCELERATION)  # fmt: skip
+
+
+def _check_in_words(share: float, seventy_at: float) -> str:
+    if np.isnan(share):
+        return NOT_ASSESSED
+    place = "never" if np.isnan(seventy_at) else f"at {ceil(seventy_at)} m"
+    advice = "go" if share >= GO_SHARE else "stop"
+    return f"{floor(100.0 * share + 1e-9)} % of lift-off speed at half, {100.0 * GO_SHARE:.0f} % {place}: {advice}"
+
+
+# --- the break-even wind of a sloping strip ---------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class BreakEven:
+    """Wind at which the two directions of a strip need the same share of their lengths, for each pair of rows.
+
+    ``wind`` [m/s] along the strip, NaN where there is none: for the landing the tailwind uphill, which is the headwind
+    downhill; for the take-off the tailwind downhill. ``uphill`` tells which row of the pair goes uphill, 0 or 1.
+    """
+
+    wind: Array
+    state: Array
+    uphill: Array
+    side: str
+    tailwind_limit: float
+    within: float
+
+    def texts(self) -> list[str]:
+        """The winds in words, with the card's tailwind limit."""
+        return [self._text(*row) for row in zip(self.wind.tolist(), self.state.tolist(), strict=True)]
+
+    def _text(self, wind: float, state: str) -> str:
+        way, other = ("uphill", "downhill") if self.side == "landing" else ("downhill", "uphill")
+        reach = f"none within {from_si(self.within, 'kt'):.0f} kt"
+        if state in ("with", "against"):
+            return f"{reach}: {way if state == 'with' else other} takes less of the strip throughout"
+        if state != FOUND:
+            return state
+        knots, limit = from_si(wind, "kt"), from_si(self.tailwind_limit, "kt")
+        if knots < 0.0:
+            return f"{way} takes less only with more than {-knots:.1f} kt of headwind"
+        over = f", but the card's tailwind limit is {limit:.0f} kt" if wind > self.tailwind_limit else ""
+        return f"{way} takes less up to {knots:.1f} kt of tailwind{over}"
+
+
+def break_even_wind(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only",
+                    side: str = "landing", *, within: float = WINDS[0], **loading: Any) -> BreakEven:  # fmt: skip
+    """The wind along a sloping strip at which going with the slope's help and going into wind become equal.
+
+    Rows 0 and 1, 2 and 3 ... of ``strips`` are the two directions of one strip; `both_directions` makes them from one.
+    For the landing: uphill with a tailwind against downhill into wind; for the take-off: downhill with a tailwind against
+    uphill into wind. Equal means the same share of the length at hand, safety factors included, the wind counted as the
+    rule set counts it; searched ``within`` [m/s] both ways. The card's tailwind limit is told, not applied. Other
+    arguments and errors as for ``assess``; an odd number of rows is an InputError.
+
+    >>> strip = both_directions({"tora": 600.0, "lda": 600.0, "elevation_field": 2300, "slope_given": 5, "surface": "grass"})
+    >>> break_even_wind(strip, "ridge-runner", {"temperature": 22}).texts()
+    ['uphill takes less up to 5.3 kt of tailwind']
+    """
+    case = prepare(strips, card, day, rules, **loading)
+    _words(case, side)
+    if case.size % 2:
+        raise InputError(f"strips: {case.size} rows; two for each strip are expected, one for each direction")
+    required, allowed = f"{side}_required", "land_here" if side == "landing" else "take_off_here"
+    length = "landing_available" if side == "landing" else "tora"
+    base = _values(case, f"{side}_known", f"{side}_slope")
+    slope = base[f"{side}_slope"].reshape(-1, 2)
+    uphill = np.argmax(slope, axis=1)
+    with_tailwind = uphill if side == "landing" else 1 - uphill
+    sign = np.where(np.arange(2) == with_tailwind[:, None], -1.0, 1.0)  # of the headwind in each direction
+
+    def shares(wind: Array) -> tuple[Array, Array]:
+        """Required over available length with the tailwind and against it; without end where it can't be done."""
+        blown = replace(case, given={**case.given, **wind_along((sign * wind[:, None]).ravel())})
+        found = _values(blown, required, length)
+        share = np.where(np.isfinite(found[required]), found[required] / found[length], np.inf).reshape(-1, 2)
+        return tuple(np.take_along_axis(share, way[:, None], 1)[:, 0] for way in (with_tailwind, 1 - with_tailwind))
+
+    def takes_less(wind: Array) -> Array:
+        one, other = shares(wind)
+        return one <= other
+
+    calmest, strongest = (np.full(len(uphill), end) for end in (-within, within))
+    wind, beyond = _last_that_holds(takes_less, calmest, strongest)
+    one, other = (np.isfinite(shares(wind)[0]), np.isfinite(shares(beyond)[1]))
+    known, both = base[f"{side}_known"].reshape(-1, 2).all(axis=1), base[allowed].reshape(-1, 2).all(axis=1)
+    state = np.select(
+        [~both, ~known, slope[:, 0] == slope[:, 1], ~takes_less(calmest), takes_less(strongest), one & other],
+        ["none: one-way strip", NOT_ASSESSED, "none: no slope", "against", "with", FOUND],
+        "none: at some wind neither direction can be used",
+    )
+    found = np.where(state == FOUND, wind, np.nan)
+    return BreakEven(found, state, uphill, side, float(case.given["tailwind_limit"]), within)
+
+
+_TURNED = {"tora": "tora", "elevation_start": "elevation_end", "obstacle_height": "approach_obstacle_height",
+           "obstacle_distance": "approach_obstacle_distance"}  # fmt: skip
+
+
+def both_directions(strip: Given) -> dict[str, Any]:
+    """Columns for ``assess`` of both directions of a strip, from those of one direction: numbers or texts, no columns.
+
+    What lies ahead in one direction lies behind in the other; the lengths are taken to be usable both ways. A direction
+    that may be used one way only must be said for each.
+
+    >>> both = both_directions({"slope_given": 5, "heading": 80, "obstacle_height": "30 m", "obstacle_distance": 400})
+    >>> both["slope_given"], both["heading"], both["approach_obstacle_distance"]
+    (array([ 5., -5.]), array([ 80., 260.]), array([ nan, 400.]))
+    """
+    columns, _, size = strip_columns(strip)
+    if size != 1:
+        raise InputError(f"one direction of one strip is expected, not {size} rows")
+    there = {item.key: from_si(columns[item.key], item.unit) if item.kind == "number" else columns[item.key]
+             for item in STRIP if item.key in strip and item.key != "fault"}  # fmt: skip
+    return {}
+
+
+# --- the commit point of a one-way strip ------------------------------------------------------------------------------
