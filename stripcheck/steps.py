@@ -386,6 +386,8 @@ def _takeoff_steps(shaft: Step | None, tables: Collection[str], manual: bool) ->
     engine: Steps = FIXED_PITCH_STEPS if shaft is None else (shaft, *CONSTANT_SPEED_STEPS)
     distance: Steps = TAKEOFF_DISTANCE_STEPS
     beyond = book_steps.takeoff_table_steps(shaft) if "takeoff" in tables else _beyond_reach("takeoff", "takeoff_known")
+    if tables:
+        known = _as_column(known, "takeoff_known")
     if "climb" in tables:
         distance = _with(distance, "climb_over_ground", {"climb_gradient": "carried_climb"},
                          before=book_steps.climb_table_steps(shaft))  # fmt: skip
@@ -406,6 +408,8 @@ def _takeoff_steps(shaft: Step | None, tables: Collection[str], manual: bool) ->
 def _landing_steps(tables: bool, manual: bool) -> Steps:
     beyond = book_steps.landing_table_steps() if tables else _beyond_reach("landing", "landing_known")
     steps = _with(LANDING_DISTANCE_STEPS, "landing_corrections", before=beyond)
+    if tables:
+        steps = _as_column(steps, "landing_known")
     if manual:
         steps = _with(steps, "landing_air", before=book_steps.manual_landing_left())
         for key in ("reference_air", "reference_braked_roll", "reference_landing"):
@@ -415,6 +419,11 @@ def _landing_steps(tables: bool, manual: bool) -> Steps:
                      ("landing_carry", "landing_wind_factor"),
                      (*ratios, *book_steps.manual_landing_steps()))  # fmt: skip
     return _with(steps, "landing_distance", {}, links.governing_carried, ("landing_carry",)) if tables else steps
+
+
+def _as_column(steps: Steps, key: str) -> Steps:
+    """The steps with one a column of long lists too: so many more formulas read it that it spares more than it takes."""
+    return tuple(replace(step, short=True) if step.key == key else step for step in steps)
 
 
 def _beyond_reach(side: str, guard: str) -> Steps:

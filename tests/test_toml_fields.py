@@ -41,7 +41,7 @@ def test_a_number_that_is_none() -> None:
 
 @pytest.mark.parametrize("typed", ["5 m", "5000 m", "", float("nan")])
 def test_a_number_beyond_its_limits(typed: object) -> None:
-    with refused(f"strip.toml: length = {typed} can't be right for a length"):
+    with refused(f"strip.toml: length = {typed} can't be right for a length; 10 m to 100 m is expected"):
         section(length=typed).number("length", "length", low=10.0, high=100.0)
 
 

@@ -127,10 +127,11 @@ def _looked_up(column: Cell, row: Cell) -> Cell:
 
 def _position(at: Cell, nodes: Cell) -> Cell:
     """Place among rising nodes, from 0, held at the ends; what `stripcheck.interpolation.position` gives."""
-    held = f"MIN(MAX({at.text},MIN({nodes.text})),MAX({nodes.text}))"
-    left = f"MIN(MATCH({held},{nodes.text},1),COUNT({nodes.text})-1)"
+    last = f"COUNT({nodes.text})-1"
+    left = f"MIN(IFERROR(MATCH({at.text},{nodes.text},1),1),{last})"
     node, following = f"INDEX({nodes.text},{left})", f"INDEX({nodes.text},{left}+1)"
-    return Cell(f"{left}-1+({held}-{node})/({following}-{node})", ADD, at.depth + 5)
+    place = f"{left}-1+({at.text}-{node})/({following}-{node})"
+    return Cell(f"MIN(MAX({place},0),{last})", ATOM, at.depth + 6)
 
 
 def _figure(table: Cell, row: Cell, column: Cell) -> Cell:
