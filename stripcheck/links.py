@@ -24,6 +24,7 @@ GROUND_UNKNOWN = len(GROUNDS) + 1  # row of the ground table for a surface or co
 # of speed, that is a little before the last acceleration is a quarter of the mean one.
 BARELY = 0.2
 GRASS_DRY, GRASS_WET = (GROUND_NAMES.index(name) + 1 for name in ("grass, dry", "grass, wet"))  # rows of the ground table
+SAME_ROLL = 0.01  # of a roll, by which it may differ from the one that a profile's slope was worked out for
 LEAST_MANUAL_SHARE = 0.5  # of a distance that a manual's headwind correction may leave, however strong the wind
 
 
@@ -52,12 +53,22 @@ def mean_slope(given: Number, start: Number, end: Number, length: Number) -> Num
     return np.where(np.isfinite(given), given, np.where(surveyed, (end - start) / length, np.nan))
 
 
-def adverse_uphill(slope: Number, assumed: Number) -> Number:
-    return np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), np.abs(assumed), np.nan))
+def adverse_uphill(slope: Number, assumed: Number, of_profile: Number) -> Number:
+    """Slope for the take-off: the one that stands for the strip's profile, else its mean, else one assumed uphill."""
+    mean = np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), np.abs(assumed), np.nan))
+    return np.where(np.isfinite(of_profile), of_profile, mean)
 
 
-def adverse_downhill(slope: Number, assumed: Number) -> Number:
-    return np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), -np.abs(assumed), np.nan))
+def adverse_downhill(slope: Number, assumed: Number, of_profile: Number) -> Number:
+    """The same for the landing, one assumed being downhill."""
+    mean = np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), -np.abs(assumed), np.nan))
+    return np.where(np.isfinite(of_profile), of_profile, mean)
+
+
+def profile_moved(of_profile: Number, roll: Number) -> Number:
+    """Whether a roll is no longer the one for which the slope that stands for the profile was worked out."""
+    there = np.isfinite(of_profile) & np.isfinite(roll)
+    return np.where(there, np.abs(roll - of_profile) > SAME_ROLL * of_profile, False)
 
 
 def air_temperature(own: Number, day: Number, day_elevation: Number, deviation: Number, elevation: Number,

@@ -22,6 +22,7 @@ FAULT = "{fault}"  # stands for the text of the row's fault where a reason is pu
 HALF_AN_OBSTACLE = "obstacle without height or without distance"
 BEYOND = "beyond the book: higher, hotter or heavier than its figures go"
 NO_FIGURE = "too far beyond the book for any distance"
+MOVED = "the slope profile was worked out for other conditions: fill the workbook again"
 NO_RULE = "the rules count neither physics nor corrections"
 
 
@@ -154,6 +155,7 @@ TAKEOFF_FINDINGS = (
     Finding(NOT_ASSESSED, NO_RULE, ("physics_counts", "corrections_count"), _neither),
     Finding(NOT_ASSESSED, HALF_AN_OBSTACLE, ("ahead_whole",), _no),
     Finding(NOT_ASSESSED, "a value needed is missing", ("takeoff_known",), _no),
+    Finding(NOT_ASSESSED, MOVED, ("profile_takeoff_roll", "takeoff_roll"), links.profile_moved),
     Finding(UNSUITABLE, "over the greatest take-off mass", ("mass_takeoff", "max_takeoff_mass"), _above),
     Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),
@@ -185,6 +187,7 @@ LANDING_FINDINGS = (
     Finding(NOT_ASSESSED, NO_RULE, ("physics_counts", "corrections_count"), _neither),
     Finding(NOT_ASSESSED, HALF_AN_OBSTACLE, ("behind_whole",), _no),
     Finding(NOT_ASSESSED, "a value needed is missing", ("landing_known",), _no),
+    Finding(NOT_ASSESSED, MOVED, ("profile_landing_roll", "braked_roll"), links.profile_moved),
     Finding(UNSUITABLE, "over the greatest landing mass", ("mass_landing", "max_landing_mass"), _above),
     Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),

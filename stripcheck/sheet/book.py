@@ -12,9 +12,11 @@ import numpy as np
 from openpyxl import Workbook
 from openpyxl.utils import get_column_letter
 
+from stripcheck.book_tables import BookTables
 from stripcheck.card import Card
 from stripcheck.chain import Chain, Step, evaluate
 from stripcheck.day import Day
+from stripcheck.inputs import SIDE_WORDS
 from stripcheck.register import Directions
 from stripcheck.rules import Rules
 from stripcheck.sheet import left_out, manual_tables, method, pages, strips, styles, summary
@@ -137,7 +139,7 @@ def taken_for_granted(filling: Filling) -> list[str]:
     lines = [*filling.day.defaults, *filling.card.assumed, *filling.card.fit.remarks]
     kinds = Counter(item.what for item in filling.directions.doubts)
     lines += [f"{what}: {_runways(number)}, listed on the sheet Left out" for what, number in kinds.most_common()]
-    lines.append(_book_range(filling.card))
+    lines += _book_reach(filling.card)
     slope = filling.day.values["assumed_slope"]
     if np.isfinite(slope):
         lines.append(f"Slope of {slope:.1%} against you, both ways, where none is known")
@@ -150,13 +152,37 @@ def _runways(number: int) -> str:
     return f"{number:,} runway" if number == 1 else f"{number:,} runways"
 
 
-def _book_range(card: Card) -> str:
-    """How far the book points of the card reach: beyond them nothing of the manual's stands behind the model."""
-    altitudes = [from_si(point, "ft") for points in (card.takeoff, card.landing) for point in points.pressure_altitude]
-    heats = [from_si(point, "°C") for points in (card.takeoff, card.landing) for point in points.temperature]
+def _book_reach(card: Card) -> list[str]:
+    """How far the manual's figures on the card reach, side by side; beyond them a verdict is at best marginal."""
+    lines = []
+    for side, points in (("takeoff", card.takeoff), ("landing", card.landing)):
+        word = SIDE_WORDS[side]
+        if side in card.tables:
+            lines.append(f"{word}: {_extent(card, card.tables[side])}; higher, hotter or heavier is beyond the book")
+        else:
+            reach = from_si(card.values[f"{side}_reach"], "ft")
+            lines.append(
+                f"{word}: calibrated on {_points(len(points.roll))} of the manual, which reach to a density altitude of "
+                f"{reach:,.0f} ft; thinner air is beyond the book"
+            )
+    if "climb" in card.tables:
+        lines.append(f"Climb: {_extent(card, card.tables['climb'])}")
+    return lines
+
+
+def _points(number: int) -> str:
+    return "1 figure" if number == 1 else f"{number} figures"
+
+
+def _extent(card: Card, tables: BookTables) -> str:
+    names = [flap.name for flap in card.flaps if any(flap.deflection == one for one, _ in tables.pages)]
+    masses = sorted({mass for _, mass in tables.pages})
+    kilograms = f"{masses[0]:,.0f} kg" if len(masses) == 1 else f"{masses[0]:,.0f} to {masses[-1]:,.0f} kg"
+    feet = [from_si(tables.altitudes[i], "ft") for i in (0, -1)]
+    heat = [from_si(tables.temperatures[i], "°C") for i in (0, -1)]
     return (
-        f"The card's book points lie between {min(altitudes):,.0f} and {max(altitudes):,.0f} ft pressure altitude and "
-        f"{min(heats):.0f} and {max(heats):.0f} °C; beyond them the model is carried on without the manual"
+        f"the manual's tables for flap {' and '.join(names)}, {kilograms}, {feet[0]:,.0f} to {feet[1]:,.0f} ft pressure "
+        f"altitude, {heat[0]:.0f} to {heat[1]:.0f} °C, less their holes"
     )
 
 

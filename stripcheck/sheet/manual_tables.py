@@ -90,10 +90,10 @@ class _Side:
         name = f"{self.tables.side}_{key}"
         self.pages.places[name] = Place(self.pages.name(name, self.sheet, cells))
 
-    def _headers(self, row: int, title: str) -> None:
-        """Titles of the figures in a row; below it the temperatures; below that the altitudes."""
+    def _headers(self, row: int, title: str, title_row: int) -> None:
+        """Titles of the figures in a row; temperatures below ``row``, and altitudes below them."""
         for figure in self.tables.filled:
-            cell = self.sheet[f"{self._letter(figure, 0)}{row}"]
+            cell = self.sheet[f"{self._letter(figure, 0)}{title_row}"]
             cell.value, cell.font = FIGURES[figure][0], styles.BOLD
         write_header(self.sheet, row + 1, ("Pressure altitude [ft]", title))
         for figure in self.tables.filled:
@@ -113,7 +113,7 @@ class _Side:
         deflection, mass = tables.pages[number]
         name = next(flap.name for flap in self.card.flaps if flap.deflection == deflection)
         sheet[f"A{row}"], sheet[f"A{row}"].font = f"Page: flap {name}, {mass:,.0f} kg", styles.BOLD
-        self._headers(row, "Weight now")
+        self._headers(row, "Weight now", row)
         weight = interpolation.page_weight(
             Cell(f"{tables.side}_book_mass"), Cell(f"{tables.side}_book_flap"), mass, deflection,
             float(tables.below()[number]), float(tables.above()[number]),
@@ -154,7 +154,7 @@ class _Side:
         tables, first, last = self.tables, self.row + 3, self.row + 2 + len(self.tables.altitudes)
         word = SIDE_WORDS[tables.side]
         write_heading(self.sheet, self.row, f"{word}: for the mass and flap of the day")
-        self._headers(self.row + 1, "In SI [m]")
+        self._headers(self.row + 1, "In SI [m]", self.row)
         for j, temperature in enumerate(tables.temperatures):
             letter = self._letter(next(iter(tables.filled)), j)
             text = formula(reference(f"{letter}{self.row + 2}", "°C"))
@@ -197,7 +197,7 @@ class _Side:
         """Which tables stand for each flap setting of the card; returns the next free row."""
         sheet, flaps = self.sheet, self.card.flaps
         values = self.tables.values(flaps)
-        write_header(sheet, row, ("Flap setting", "Its tables [rad]", "From [kg]", "To [kg]"))
+        write_header(sheet, row, ("Flap setting", "Tables [rad]", "From [kg]", "To [kg]"))
         first, last = row + 1, row + len(flaps)
         for i, flap in enumerate(flaps):
             sheet[f"A{first + i}"], sheet[f"A{first + i}"].font = flap.name, styles.BODY

@@ -44,6 +44,8 @@ ABOUT = (
 # keys of the register's numbers that the chain knows under another name
 REGISTER_KEYS = {"own_temperature": "temperature", "own_qnh": "qnh", "own_wind_from": "wind_from",
                  "own_wind_speed": "wind_speed"}  # fmt: skip
+# worked out from the slope profiles once the other values are known
+PROFILE = ("profile_takeoff_slope", "profile_takeoff_roll", "profile_landing_slope", "profile_landing_roll")
 GROUPS = (
     ("Air, wind and ground", "elevation"),
     ("Take-off, step by step", "takeoff_known"),
@@ -70,7 +72,9 @@ def given_columns(directions: Directions) -> dict[str, Any]:
     """The strips' inputs by chain key in SI, from the register; numbers rounded as the sheet will show them."""
     columns: dict[str, Any] = {}
     for item in STRIP:
-        if item.kind == "number":
+        if item.key in PROFILE:
+            columns[item.key] = np.full(directions.n, np.nan)
+        elif item.kind == "number":
             values = directions.numbers[REGISTER_KEYS.get(item.key, item.key)]
             columns[item.key] = to_si(np.round(from_si(values, item.unit), 6), item.unit)
     texts = directions.texts
@@ -110,6 +114,8 @@ def layout(chain: Chain, directions: Directions, full: bool) -> list[Column]:
 
 def _has_any(item: Input, directions: Directions) -> bool:
     """Whether the list gives this input for any row; allowed directions and faults count when they say something."""
+    if item.key in PROFILE:
+        return any(profile is not None for profile in getattr(directions, "profiles", ()))
     if item.kind == "number":
         return bool(np.isfinite(directions.numbers[REGISTER_KEYS.get(item.key, item.key)]).any())
     usual = {"flag": "yes"}.get(item.kind, "")
