@@ -15,6 +15,8 @@ from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.inputs import STRIP
+from stripcheck.profile import Profile, profile_column
+from stripcheck.profile_run import profile_slopes
 from stripcheck.rules import Rules, load_rules
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import PRESSURE_INHG, UNITS, from_si, read_quantity
@@ -45,6 +47,21 @@ class Result(Mapping[str, Any]):
     given: Mapping[str, Any]
     found: dict[str, np.ndarray]
     faults: Sequence[str]
+    profiles: Sequence[Profile | None] = ()
+
+    def changed(self, given: Mapping[str, Any], profiles: Sequence[Profile | None] | None = None) -> Result:
+        """The same with other inputs [SI], nothing computed yet; what slope profiles mean is worked out anew.
+
+        >>> from stripcheck import assess
+        >>> result = assess({"tora": 700, "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"}, "ridge-runner",
+        ...                 {"temperature": 22})
+        >>> bool((result.changed({"mass_takeoff": 900.0}).si("takeoff_roll") < result.si("takeoff_roll")).all())
+        True
+        """
+        values, profiles = {**self.given, **given}, self.profiles if profiles is None else profiles
+        if profiles:
+            values |= profile_slopes(self.chain, values, profiles)
+        return Result(self.chain, self.size, values, {}, self.faults, profiles)
 
     def __getitem__(self, key: str) -> Any:
         step = self._step(key)
@@ -97,7 +114,8 @@ def assess(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
         obstacle heights [ft], slope [%], headings [deg], wind [kt]) or texts such as "2300 ft"; ``surface`` and
         ``condition`` as words of the ground table, or arrays of their places [0, 1, ...] in
         ``stripcheck.surface.SURFACES`` and ``CONDITIONS`` (-1: not known); whether a direction may be used as
-        "yes" or "no", or truths. Columns are equally long, or single values for all rows. Missing columns are
+        "yes" or "no", or truths; ``profile``: slope profiles such as "0:0, 200:3.5, 450:12", distance and height [m] from
+        the end where the direction begins. Columns are equally long, or single values for all rows. Missing columns are
         "not known". Arrays of numbers are by far the fastest.
     card, rules
         As loaded, or the name of a shipped one, or the path of a file.
@@ -141,7 +159,9 @@ def prepare(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str,
         **_flap("takeoff_flap", takeoff_flap, card, "take-off"),
         **_flap("landing_flap", landing_flap, card, "landing"),
     }
-    return Result(card.chain, size, {**card.values, **rules.values, **day.values, **columns, **loading}, {}, faults)
+    values = {**card.values, **rules.values, **day.values, **columns, **loading}
+    profiles = _profiles(strips.get("profile"), columns, size)
+    return Result(card.chain, size, values, {}, faults).changed({}, profiles)
 
 
 def strip_columns(strips: Mapping[str, Any], masses: Sequence[Any] = ()) -> tuple[dict[str, Any], Sequence[str], int]:
@@ -150,7 +170,7 @@ def strip_columns(strips: Mapping[str, Any], masses: Sequence[Any] = ()) -> tupl
     ``masses`` are columns that go beside them, and so must be equally long.
     """
     known = {item.key: item for item in STRIP}
-    unknown = [key for key in strips if key not in known]
+    unknown = [key for key in strips if key not in known and key != "profile"]
     if unknown:
         raise InputError(f'strips: "{unknown[0]}" is not a column; the columns are: {", ".join(known)}')
     lengths = {len(column) for column in (*strips.values(), *masses) if _is_column(column)}
@@ -170,6 +190,15 @@ def strip_columns(strips: Mapping[str, Any], masses: Sequence[Any] = ()) -> tupl
         else:
             columns[item.key] = _numbers(column, item.unit, item.key, size)
     return columns, faults, size
+
+
+def _profiles(column: Any, columns: Mapping[str, Any], size: int) -> list[Profile | None]:
+    """The slope profile of each row; an empty list where no row has one."""
+    if column is None:
+        return []
+    usable = np.fmax(columns["tora"], columns["lda"])
+    profiles = profile_column(column, np.broadcast_to(columns["length"], size), np.broadcast_to(usable, size))
+    return profiles if any(profile is not None for profile in profiles) else []
 
 
 def _is_column(column: Any) -> bool:

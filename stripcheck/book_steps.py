@@ -53,8 +53,10 @@ def _place_in_tables(side: str, word: str, mass: str, flap: str, guard: str, giv
              (f"{side}_hottest", row, *book), guard, lookup="hot edge"),
         Step(f"{side}_cold_edge", "", "°C", f"{word} tables: coldest figure at this height", EDGE, interpolation.cold_edge,
              (f"{side}_coldest", row, *book), guard, lookup="cold edge"),
+        Step(f"{side}_top_edge", "", "ft", f"{word} tables: highest figure", EDGE, interpolation.top_edge,
+             (f"{side}_highest", *book), given, lookup="top edge"),
         Step(f"{side}_beyond_altitude", "", "ft", f"{word}: higher than the tables (lower: negative)", EDGE,
-             links.difference, ("pressure_altitude", f"{side}_altitude_held"), "density"),
+             interpolation.outside, ("pressure_altitude", f"{side}_altitude_held", f"{side}_top_edge"), guard),
         Step(f"{side}_beyond_temperature", "", "K", f"{word}: hotter than the tables (colder: negative)", EDGE,
              interpolation.outside, ("air_temperature", f"{side}_cold_edge", f"{side}_hot_edge"), guard),
         Step(f"{side}_beyond_mass", "", "kg", f"{word}: heavier than the tables (lighter: negative)", EDGE,
@@ -160,7 +162,7 @@ _TAKEOFF_CARRY = (
          ("takeoff_book_roll", "takeoff_model_roll"), "book_flies"),
     Step("takeoff_carry", "", "", "Take-off to 50 ft, manual over model", CARRY, links.share_of,
          ("takeoff_book_distance", "takeoff_model_distance"), "book_flies", short=True),
-    Step("carried_takeoff_roll", "", "m", "Take-off roll, from the manual's", CARRY, links.product,
+    Step("carried_takeoff_roll", "", "m", "Take-off roll, from the manual's", CARRY, links.carried_from,
          ("takeoff_roll", "takeoff_roll_carry"), "lifts_off"),
 )  # fmt: skip
 
@@ -215,7 +217,7 @@ _LANDING_CARRY = (
          ("landing_book_roll", "landing_model_roll"), "book_stops"),
     Step("landing_carry", "", "", "Landing from 50 ft, manual over model", CARRY, links.share_of,
          ("landing_book_distance", "landing_model_distance"), "book_stops", short=True),
-    Step("carried_landing_roll", "", "m", "Landing roll, from the manual's", CARRY, links.product,
+    Step("carried_landing_roll", "", "m", "Landing roll, from the manual's", CARRY, links.carried_from,
          ("landing_roll", "landing_roll_carry"), "stops"),
 )  # fmt: skip
 
@@ -335,7 +337,7 @@ def manual_takeoff_steps(fixed: bool) -> tuple[Step, ...]:
     return (
         *run,
         Step("manual_air", "", "m", "Lift-off to 50 ft, wind left", AIR, airborne.screen_distance,
-             ("lift_off_tas", "screen_tas", "excess", "takeoff_slope", "takeoff_wind_left", "takeoff_technique"), "climbs"),
+             ("lift_off_tas", "screen_tas", "excess", "climb_slope", "takeoff_wind_left", "takeoff_technique"), "climbs"),
         Step("manual_takeoff", "", "m", "Take-off to 50 ft with the manual's corrections", MANUAL, links.manual_distance_of,
              ("manual_roll", "manual_air", "takeoff_carry", "takeoff_roll_carry", "takeoff_grass", "takeoff_wind_factor"),
              "climbs", short=True),

@@ -18,6 +18,7 @@ from typing import Any
 
 import numpy as np
 
+from stripcheck import links
 from stripcheck.errors import InputError
 from stripcheck.flaps import Flap
 from stripcheck.register.read_table import (
@@ -46,8 +47,9 @@ FIGURE_WORDS = {"roll": "roll", "distance": "distance over 50 ft", "rate": "rate
 HOLES = ("", "-", "\u2013", "\u2014", "--", "---", "n/a", "na", "x")
 SEA_LEVEL = ("sl", "s.l.", "sea level", "msl")
 LIMITS = {"roll": (20.0, 3000.0), "distance": (20.0, 5000.0), "rate": (-5.0, 30.0)}  # m, m, m/s
-ALTITUDES = (-300.0, 6100.0)  # m
-TEMPERATURES = (203.15, 333.15)  # K
+ALTITUDES = (-300.0, 5500.0)  # m: as high as there are strips
+TEMPERATURES = links.TEMPERATURES
+NOWHERE = 200.0  # K: colder than any air that is assessed
 STEP_ON = 1.1  # by which a figure grows from column to column where the model has none to carry it by
 ROLL_SHARE = 0.5  # of the distance over 50 ft that is roll, where neither the manual nor the model tells
 HINT = "a grid has a line of temperatures and below it a line for each pressure altitude, which stands in the first cell"
@@ -72,7 +74,8 @@ class BookTables:
     """The tables of one side on common lines and columns, SI; arrays of figures are pages x lines x columns, NaN a hole.
 
     ``pages`` are (flap deflection [rad], mass [kg]) in rising order; ``filled`` is ``printed`` with its holes carried by
-    the model, empty until that is known; ``remarks`` tells in words what was put between.
+    the model, and ``spare`` what would stand for each printed figure if it were a hole, both empty until the model is
+    known; ``remarks`` tells in words what was put between.
     """
 
     side: str
@@ -81,6 +84,7 @@ class BookTables:
     temperatures: np.ndarray
     printed: Mapping[str, np.ndarray]
     filled: Mapping[str, np.ndarray]
+    spare: Mapping[str, np.ndarray]
     remarks: tuple[str, ...]
 
     @property
@@ -99,16 +103,36 @@ class BookTables:
         return np.array([min((m for f, m in self.pages if f == flap and m > mass), default=mass + 1.0)
                          for flap, mass in self.pages])  # fmt: skip
 
+    def heavier(self, page: int) -> list[int]:
+        """Numbers of the heavier pages for the same flap."""
+        return [other for other in range(page + 1, len(self.pages)) if self.pages[other][0] == self.pages[page][0]]
+
     def edge(self, hot: bool) -> np.ndarray:
-        """Hottest (or coldest) temperature [K] with all figures, pages x lines; below the first column where there is none."""
-        none = self.temperatures[0] - 1.0
-        last: np.ndarray = np.where(self.known, self.temperatures, none).max(axis=2)
-        first: np.ndarray = np.where(self.known, self.temperatures, np.inf).min(axis=2)
-        return last if hot else np.minimum(first, last)
+        """Hottest (or coldest) temperature [K] with all figures, pages x lines; above the last line with any, that one's."""
+        reach = self.reach()
+        top = np.maximum((reach > NOWHERE).sum(axis=1, keepdims=True) - 1, 0)
+        last: np.ndarray = np.take_along_axis(reach, np.minimum(np.arange(len(self.altitudes)), top), axis=1)
+        return last if hot else np.minimum(np.where(self.known, self.temperatures, np.inf).min(axis=2), last)
+
+    def reach(self) -> np.ndarray:
+        """Hottest temperature [K] with all figures at each line or harder, pages x lines; NOWHERE where there is none.
+
+        What the manual prints for a greater height or mass holds for less of it too, so that neither ever seems to help.
+        """
+        reach: np.ndarray = np.where(self.known, self.temperatures, NOWHERE).max(axis=2)
+        for page in reversed(range(len(self.pages))):
+            for heavier in self.heavier(page):
+                reach[page] = np.maximum(reach[page], reach[heavier])
+        return np.maximum.accumulate(reach[:, ::-1], axis=1)[:, ::-1]
+
+    def highest(self) -> np.ndarray:
+        """Altitude [m] of the last line of each page with figures, there or on a heavier page."""
+        highest: np.ndarray = np.where(self.reach() > NOWHERE, self.altitudes, self.altitudes[0]).max(axis=1)
+        return highest
 
     def nearest_flap(self, deflection: float) -> float:
         """Deflection [rad] of the setting with tables that is nearest to one; of two as near, the lesser."""
-        return min(sorted({flap for flap, _ in self.pages}), key=lambda flap: abs(flap - deflection))
+        return min({flap for flap, _ in self.pages}, key=lambda flap: (round(abs(flap - deflection), 6), flap))
 
     def masses(self, flap: float) -> list[float]:
         """Masses [kg] of the pages for a flap setting that has tables."""
@@ -124,6 +148,7 @@ class BookTables:
             **{f"{figure}_table": grid for figure, grid in grids.items()},
             "hottest": self.edge(hot=True),
             "coldest": self.edge(hot=False),
+            "highest": self.highest(),
             "page_mass": np.array([mass for _, mass in self.pages]),
             "page_flap": np.array([flap for flap, _ in self.pages]),
             "page_below": self.below(),
@@ -148,16 +173,20 @@ class BookTables:
         }
 
 
-def read_grids(book: Section, flaps: Sequence[Flap], greatest: float, folder: Path) -> list[Grid]:
-    """The tables of a card's part [[book.table]]; files are looked for in ``folder``. ``greatest`` mass [kg].
+def read_grids(book: Section, flaps: Sequence[Flap], greatest: Mapping[str, float], folder: Path,
+               remarks: list[str]) -> list[Grid]:  # fmt: skip
+    """The tables of a card's part [[book.table]]; files are looked for in ``folder``.
 
+    ``greatest`` masses [kg] by side stand for a mass that is not given, which is added to ``remarks`` in words.
     Raises InputError where a table can't be right.
     """
     grids: list[Grid] = []
     for part in book.sections("table"):
         side, figures = GIVES[part.text("gives", choices=tuple(GIVES))]
         flap = _flap(part, flaps, side)
-        mass = part.number("mass", "mass", greatest, 100.0, greatest * 1.001)
+        mass = part.number("mass", "mass", greatest[side], 100.0, greatest["takeoff"] * 1.001)
+        if not part.has("mass"):
+            remarks.append(f"{part.where}: mass not given, the greatest of {mass:g} kg used")
         unit = part.text("unit", "ft/min" if side == "climb" else "m")
         altitudes, temperatures, rows, names = _cells(part, folder, len(figures))
         _check_axis(part.where, "pressure altitudes", altitudes, ALTITUDES, "ft")
@@ -165,6 +194,8 @@ def read_grids(book: Section, flaps: Sequence[Flap], greatest: float, folder: Pa
         for place, figure in enumerate(figures):
             values = np.array([[_figure(cell, figure, unit, name) for cell in row[place :: len(figures)]]
                                for row, name in zip(rows, names, strict=True)])  # fmt: skip
+            if np.isnan(values).all():
+                raise InputError(f"{part.where}: there is no figure of the {FIGURE_WORDS[figure]}; leave such a table out")
             grids.append(Grid(part.where, side, figure, flap, mass, altitudes, temperatures, values))
     for grid in grids:
         _check_rising(grid)
@@ -262,8 +293,10 @@ def parse_grid(rows: Iterable[Sequence[object]], source: str,
     for number, row in numbered[at + 1 :]:
         name = f"{source} row {number}"
         figures = [*row[1:], *[""] * (len(temperatures) * wide)]
-        if not altitudes and _words_only(row[0]):
-            continue  # a line of words below the temperatures, such as "roll" and "50 ft"
+        if not altitudes and _line_of_words(row, wide):
+            continue
+        if _blank(row[0]):
+            raise InputError(f"{name}: there is no pressure altitude in the first cell; {HINT}")
         try:
             altitudes.append(_axis_value(row[0], "altitude"))
         except InputError as error:
@@ -294,8 +327,12 @@ def _blank(cell: object) -> bool:
     return cell is None or (isinstance(cell, str) and not cell.strip())
 
 
-def _words_only(cell: object) -> bool:
-    return cell is None or (isinstance(cell, str) and cell.strip().lower() not in SEA_LEVEL and not re.search(r"\d", cell))
+def _line_of_words(row: Sequence[object], wide: int) -> bool:
+    """Whether a line is one of words below the temperatures, such as "roll" and "50 ft" again and again."""
+    if not _blank(row[0]) and (not isinstance(row[0], str) or re.search(r"\d", row[0])):
+        return False
+    words = {cell.strip() if isinstance(cell, str) else cell for cell in row[1:] if not _blank(cell)}
+    return len(words) <= wide and all(isinstance(cell, str) and re.search(r"[^\W\d]", cell) for cell in words)
 
 
 def _figure(cell: object, figure: str, unit: str, where: str) -> float:
@@ -367,7 +404,7 @@ def stack_tables(grids: Sequence[Grid], side: str) -> BookTables | None:
                 raise InputError(_pages_differ(own, figure, found))
             bridged = _bridged(found[0], remarks)
             printed[figure][number] = _on_lines(bridged, altitudes, temperatures)
-    tables = BookTables(side, pages, altitudes, temperatures, printed, {}, tuple(remarks))
+    tables = BookTables(side, pages, altitudes, temperatures, printed, {}, {}, tuple(remarks))
     _check_pages(tables, own[0].where.split(" [[")[0])
     return tables
 
@@ -383,18 +420,19 @@ def _pages_differ(own: Sequence[Grid], figure: str, found: Sequence[Grid]) -> st
 
 
 def _bridged(grid: Grid, remarks: list[str]) -> Grid:
-    """The grid with each hole that has figures on both sides in its line put between them."""
+    """The grid with each hole put between that has figures on both sides in its line, or else in its column."""
     values = grid.values.copy()
-    for line in values:
-        known = np.flatnonzero(np.isfinite(line))
-        if len(known) == 0:
-            continue
-        inner = np.arange(known[0], known[-1] + 1)
-        missing = inner[np.isnan(line[inner])]
-        line[missing] = np.interp(grid.temperatures[missing], grid.temperatures[known], line[known])
-        if len(missing):
-            remarks.append(f"{grid.where}: {len(missing)} figures missing between others were put between them")
-    return Grid(grid.where, grid.side, grid.figure, grid.flap, grid.mass, grid.altitudes, grid.temperatures, values)
+    for lines, places in ((values, grid.temperatures), (values.T, grid.altitudes)):
+        for line in lines:  # a part of ``values`` itself
+            known = np.flatnonzero(np.isfinite(line))
+            missing = np.flatnonzero(np.isnan(line))
+            missing = missing[(missing > known[0]) & (missing < known[-1])] if len(known) else missing[:0]
+            line[missing] = np.interp(places[missing], places[known], line[known]) if len(missing) else line[missing]
+    count = int(np.isfinite(values).sum() - np.isfinite(grid.values).sum())
+    if count:
+        figures = "1 figure" if count == 1 else f"{count} figures"
+        remarks.append(f"{grid.where}: {figures} of the {FIGURE_WORDS[grid.figure]} missing between others put between them")
+    return replace(grid, values=values)
 
 
 def _on_lines(grid: Grid, altitudes: np.ndarray, temperatures: np.ndarray) -> np.ndarray:
@@ -420,37 +458,88 @@ def _check_pages(tables: BookTables, where: str) -> None:
         if len(wrong):
             at = _at(tables, wrong[0])
             raise InputError(f"{where}: the distance over 50 ft must be longer than the roll; {at} it is not")
+    if not tables.known.any(axis=(1, 2)).all():
+        mass = tables.pages[int(np.argmin(tables.known.any(axis=(1, 2))))][1]
+        raise InputError(f"{where}: the tables of roll and distance over 50 ft at {mass:,.0f} kg have no place in common")
     for figure, grid in tables.printed.items():
-        better = -1.0 if figure == "rate" else 1.0
-        for one, other in pairwise(range(len(tables.pages))):
-            if tables.pages[one][0] != tables.pages[other][0]:
-                continue
-            wrong = np.argwhere(better * (grid[other] - grid[one]) < 0.0)
-            if len(wrong):
-                raise InputError(
-                    f"{where}: the {FIGURE_WORDS[figure]} is better at {tables.pages[other][1]:,.0f} kg than at "
-                    f"{tables.pages[one][1]:,.0f} kg {_at(tables, (one, *wrong[0]))}; mass never helps: check both tables"
-                )
+        for one in range(len(tables.pages)):
+            for other in tables.heavier(one):
+                wrong = np.argwhere(_worse(grid[one], grid[other], figure))
+                if len(wrong):
+                    raise InputError(
+                        f"{where}: the {FIGURE_WORDS[figure]} is better at {tables.pages[other][1]:,.0f} kg than at "
+                        f"{tables.pages[one][1]:,.0f} kg {_at(tables, (one, *wrong[0]))}; mass never helps: check both tables"
+                    )
+        wrong = np.argwhere(_worse(_easier(grid, tables, figure), grid, figure))
+        if len(wrong):
+            raise InputError(
+                f"{where}: the {FIGURE_WORDS[figure]} {_at(tables, wrong[0])} and {tables.pages[wrong[0][0]][1]:,.0f} kg is "
+                "better than one at less height, heat and mass; these never help: check the figures"
+            )
 
 
 def _at(tables: BookTables, place: Sequence[int]) -> str:
     return f"at {_place(tables.altitudes[place[1]], 0)} and {_place(tables.temperatures[place[2]], 1)}"
 
 
+def _worse(one: np.ndarray, other: np.ndarray, figure: str) -> np.ndarray:
+    """Where a figure is worse than another, by more than rounding: a longer distance or a lower rate of climb."""
+    over = one - other if figure != "rate" else other - one
+    return over > 1e-9 * np.abs(one)
+
+
+def _easier(grid: np.ndarray, tables: BookTables, figure: str) -> np.ndarray:
+    """The worst figure at no more height, heat and mass than at each place, for the same flap; NaN where there is none."""
+    return _accumulated(grid, tables, np.fmin if figure == "rate" else np.fmax)
+
+
+def _harder(grid: np.ndarray, tables: BookTables, figure: str) -> np.ndarray:
+    """The best figure at no less height, heat and mass than at each place, for the same flap; NaN where there is none."""
+    flipped = replace(tables, pages=tables.pages[::-1])
+    return _accumulated(grid[::-1, ::-1, ::-1], flipped, np.fmax if figure == "rate" else np.fmin)[::-1, ::-1, ::-1]
+
+
+def _accumulated(grid: np.ndarray, tables: BookTables, function: np.ufunc) -> np.ndarray:
+    """The function of all places before each, in pages of the same flap, lines and columns."""
+    found: np.ndarray = function.accumulate(function.accumulate(grid, axis=1), axis=2)
+    flaps = np.array([flap for flap, _ in tables.pages])
+    for flap in set(flaps):
+        found[flaps == flap] = function.accumulate(found[flaps == flap], axis=0)
+    return found
+
+
 def fill_holes(tables: BookTables, model: Mapping[str, np.ndarray]) -> BookTables:
     """The tables with their holes carried from the nearest figure by the model.
 
     ``model`` holds the model's figures at all places [pages x lines x columns], NaN where it has none: there a figure
-    grows by a tenth from column to column. A figure that the manual does not print at all is the model's, times what the
-    manual's other figure is to the model's.
+    grows by a tenth from column to column. A carried figure lies between those that are printed for less and for more
+    height, heat and mass, and more of these never makes it better. A figure that the manual does not print at all is the
+    model's, times what the manual's other figure is to the model's.
     """
-    filled = {figure: _filled(grid, model[figure], figure == "rate") for figure, grid in tables.printed.items()}
+    whole = np.all([np.isfinite(values) for values in model.values()], axis=0)
+    of_model = {figure: np.where(whole, model[figure], np.nan) for figure in tables.printed}
+    filled = {figure: _in_order(_filled(grid, of_model[figure], figure == "rate"), tables, figure)
+              for figure, grid in tables.printed.items()}  # fmt: skip
+    spare = {figure: _spare(grid, of_model[figure], tables.temperatures, figure == "rate")
+             for figure, grid in tables.printed.items()}  # fmt: skip
+    if len(filled) == 2:  # a roll is not longer than the distance over 50 ft, where one of them is carried
+        printed = np.isfinite(tables.printed["roll"])
+        filled["roll"] = np.where(printed, filled["roll"], np.minimum(filled["roll"], filled["distance"]))
+        filled["distance"] = np.maximum(filled["distance"], filled["roll"])
     if "rate" not in filled:
-        of_model = model["roll"] / model["distance"]
-        share = np.where(np.isfinite(of_model), of_model, ROLL_SHARE)
+        rolled = model["roll"] / model["distance"]
+        share = np.where(np.isfinite(rolled), rolled, ROLL_SHARE)
         filled.setdefault("roll", filled.get("distance", 0.0) * share)
         filled.setdefault("distance", filled["roll"] / share)
-    return replace(tables, filled=filled)
+    return replace(tables, filled=filled, spare=spare)
+
+
+def _in_order(filled: np.ndarray, tables: BookTables, figure: str) -> np.ndarray:
+    """Carried figures between the printed ones of easier and harder places, and never better than at an easier one."""
+    printed = tables.printed[figure]
+    better, worse = (np.fmax, np.fmin) if figure == "rate" else (np.fmin, np.fmax)
+    kept = worse(better(filled, _harder(printed, tables, figure)), _easier(printed, tables, figure))
+    return _easier(np.where(np.isfinite(printed), printed, kept), tables, figure)
 
 
 def _filled(printed: np.ndarray, model: np.ndarray, added: bool) -> np.ndarray:
@@ -469,6 +558,21 @@ def _filled(printed: np.ndarray, model: np.ndarray, added: bool) -> np.ndarray:
             if np.isnan(grid[i]).all():
                 grid[i] = [carry(grid[i + 1, j], of_model[i + 1, j], of_model[i, j], -1) for j in range(len(grid[i]))]
     return filled
+
+
+def _spare(printed: np.ndarray, model: np.ndarray, temperatures: np.ndarray, added: bool) -> np.ndarray:
+    """For each printed figure what the others of its line tell: put between them, or carried from the nearest."""
+    spare = printed.copy()
+    carry = _added if added else _scaled
+    for page, line, j in np.argwhere(np.isfinite(printed)):
+        row, of_model = printed[page, line], model[page, line]
+        known = np.flatnonzero(np.isfinite(row) & (np.arange(len(row)) != j))
+        if len(known) and known[0] < j < known[-1]:
+            spare[page, line, j] = np.interp(temperatures[j], temperatures[known], row[known])
+        elif len(known):
+            edge = known[np.argmin(abs(known - j))]
+            spare[page, line, j] = carry(row[edge], of_model[edge], of_model[j], int(j - edge))
+    return spare
 
 
 def _scaled(figure: float, model: float, model_there: float, steps: int) -> float:

@@ -131,6 +131,7 @@ COLUMN_MEANINGS = {
     "elevation": "Elevation of the strip, or of an end",
     "slope": "Mean slope; positive: rising from the end named first to the other",
     "local_slope": "Steepest part, without sign",
+    "profile": "Slope profile: distance:height points from the end named first, such as `0:0, 200:3.5, 450:12`",
     "heading": "True heading from an end to the other",
     "displaced": "Distance of the displaced threshold from its end",
     "latitude": "Latitude of an end",
@@ -161,6 +162,8 @@ CONTRADICTIONS = (
     "A displaced threshold beyond the other end of the runway.",
     "Ends that differ in elevation by more than 30 % of the length.",
     "An obstacle with a height but no distance, or the other way round. A height of 0 says that there is none.",
+    "A slope profile that can't be read, is steeper than 30 % somewhere, does not reach from end to end (within 2 % or 10 m), "
+    "or rises otherwise than the slope or the elevations of the ends say (by more than 1 % of slope).",
     "`Land on` or `Leave by` naming neither end; or `One-way` without telling which way.",
     "A row with more cells than the header, as when a comma in a note is not within quotes.",
     "Slopes in a workbook that are all below 0.3 %: they may be cells formatted as percent, a hundred times too small.",
@@ -349,7 +352,10 @@ of landing and `Leave by` that of the take-off, such as 09 and 27; the other dir
 `One-way` alone can't say which way and is a fault.
 
 Slope comes from the column, or from the elevations of both ends over the length. With neither, the strip is
-not assessed unless the day assumes a slope. The true heading comes from the column, else from the
+not assessed unless the day assumes a slope. A slope profile tells more: points `distance:height` from the
+end named first, heights above that end, parted by commas, semicolons or strokes; bare numbers are metres, a
+point may say `650 ft:11 ft`. The take-off roll and the braked roll are then computed along it, in the order
+in which each direction meets it. The true heading comes from the column, else from the
 coordinates of the ends, else from the runway's name, which is then a doubt.
 
 TORA, LDA and usable length shorten what counts; they never lengthen the runway. A displaced threshold

@@ -32,6 +32,10 @@ STRIP = (
     _strip("profile_landing_slope", "Profile, landing slope", "%",
            "Constant slope on which the braked roll is as long as along the slope profile, for the conditions as filled"),
     _strip("profile_landing_roll", "Profile, braked roll", "m", "Braked roll for which that slope was worked out"),
+    _strip("profile_climb_slope", "Profile, ground under the climb", "%",
+           "Steepest line from lift-off to the ground of the profile ahead, for the conditions as filled"),
+    _strip("profile_approach_slope", "Profile, ground under the approach", "%",
+           "Slope below which no ground of the profile falls until touchdown, for the conditions as filled"),
     _strip("local_slope", "Greatest local slope", "%", "Steepest part of the strip, without sign"),
     _strip("heading", "Heading", "°", "True heading of this direction"),
     _strip("obstacle_height", "Obstacle on climb-out, height", "ft", "Height above the far end of the strip"),
@@ -144,7 +148,7 @@ REACH = {
 
 
 def table_inputs(side: str) -> tuple[Input, ...]:
-    """The inputs of one side's tables of the manual, take-off, landing or climb, which stand on the sheet Book."""
+    """The inputs of one side's tables of the manual, take-off, landing or climb, which stand on the sheet Manual."""
     word = SIDE_WORDS[side]
     figures = {"climb": (("rate", "rate of climb"),)}.get(side, (("roll", "roll"), ("distance", "distance over 50 ft")))
     rows = (
@@ -153,6 +157,7 @@ def table_inputs(side: str) -> tuple[Input, ...]:
         *((f"{key}_table", label) for key, label in figures),
         ("hottest", "hottest figure of each line"),
         ("coldest", "coldest figure of each line"),
+        ("highest", "highest line of each page"),
         ("page_mass", "mass of each page"),
         ("page_flap", "flap of each page"),
         ("page_below", "mass of the page below"),

@@ -81,9 +81,11 @@ def in_pages(grid: Number, row: Number, column: Number, mass: Number, flap: Numb
     257.5
     """
     total: Number = 0.0
+    weights: Number = 0.0
     for page, *where in zip(grid, page_mass, page_flap, page_below, page_above, strict=True):
-        total = total + page_weight(mass, flap, *where) * in_grid(page, row, column)
-    return total
+        weight = page_weight(mass, flap, *where)
+        total, weights = total + weight * in_grid(page, row, column), weights + weight
+    return np.where(weights > 0.0, total, np.nan)  # no page is for this flap
 
 
 def hot_edge(hottest: Number, row: Number, mass: Number, flap: Number, page_mass: Number, page_flap: Number,
@@ -113,6 +115,20 @@ def cold_edge(coldest: Number, row: Number, mass: Number, flap: Number, page_mas
     [263.0, 273.0, 273.0]
     """
     return -hot_edge(-coldest, row, mass, flap, page_mass, page_flap, page_below, page_above)
+
+
+def top_edge(highest: Number, mass: Number, flap: Number, page_mass: Number, page_flap: Number, page_below: Number,
+             page_above: Number) -> Number:  # fmt: skip
+    """Greatest pressure altitude [m] for which the manual prints all figures that count; ``highest`` [m] of each page.
+
+    >>> pages = [np.array(values) for values in ([900.0, 1100.0], [0.2, 0.2], [899.0, 900.0], [1100.0, 1101.0])]
+    >>> [float(top_edge(np.array([3000.0, 2000.0]), mass, 0.2, *pages)) for mass in (900.0, 1000.0)]
+    [3000.0, 2000.0]
+    """
+    edge: Number = FAR
+    for top, *where in zip(highest, page_mass, page_flap, page_below, page_above, strict=True):
+        edge = np.minimum(edge, np.where(page_weight(mass, flap, *where) > HAIR, top, FAR))
+    return edge
 
 
 def outside(value: Number, least: Number, most: Number) -> Number:

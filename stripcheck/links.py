@@ -65,6 +65,11 @@ def adverse_downhill(slope: Number, assumed: Number, of_profile: Number) -> Numb
     return np.where(np.isfinite(of_profile), of_profile, mean)
 
 
+def first_of(of_profile: Number, otherwise: Number) -> Number:
+    """What the profile tells where there is one, else what stands without it."""
+    return np.where(np.isfinite(of_profile), of_profile, otherwise)
+
+
 def profile_moved(of_profile: Number, roll: Number) -> Number:
     """Whether a roll is no longer the one for which the slope that stands for the profile was worked out."""
     there = np.isfinite(of_profile) & np.isfinite(roll)
@@ -401,6 +406,11 @@ def unchanged() -> Number:
     return np.float64(1.0)
 
 
+def carried_from(figure: Number, carry: Number) -> Number:
+    """The model's figure times the manual's over the model's; none where the model has none at the manual's conditions."""
+    return np.where(np.isfinite(carry), figure * carry, np.nan)
+
+
 def manual_wind_factor(wind: Number, head: Number, tail: Number) -> Number:
     """The manual's own correction for wind: so much off for a headwind, so much added for a tailwind; 1 where it has none."""
     against = np.where(np.isfinite(head), 1.0 - head * np.maximum(wind, 0.0), 1.0)
@@ -427,16 +437,18 @@ def friction_left_of(added: Number, level: Number, own: Number) -> Number:
 def manual_distance_of(roll: Number, air: Number, carry: Number, roll_carry: Number, added: Number, wind: Number) -> Number:
     """Distance with the manual's own corrections: its addition for grass is a share of the roll, wind counts for the whole."""
     grass = np.where(np.isfinite(added), added, 0.0)
-    return ((roll + air) * carry + grass * roll * roll_carry) * wind
+    whole = ((roll + air) * carry + grass * roll * roll_carry) * wind
+    return np.where(np.isfinite(carry), whole, np.nan)
 
 
 def governing_carried(physics: Number, book: Number, correction: Number, physics_counts: Number, rules_count: Number,
                       carry: Number) -> Number:  # fmt: skip
     """As ``governing``, carried from the manual's figure."""
-    return governing(physics, book, correction, physics_counts, rules_count) * carry
+    return carried_from(governing(physics, book, correction, physics_counts, rules_count), carry)
 
 
 def governing_manual(manual: Number, book: Number, correction: Number, physics_counts: Number, rules_count: Number,
                      carry: Number, wind: Number) -> Number:  # fmt: skip
     """As ``governing``, where the manual's own corrections stand for the physics."""
-    return governing(manual, book * carry * wind, correction, physics_counts, rules_count)
+    governs = governing(manual, book * carry * wind, correction, physics_counts, rules_count)
+    return np.where(np.isfinite(carry), governs, np.nan)

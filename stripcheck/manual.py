@@ -19,7 +19,7 @@ from stripcheck.calibrate import BookPoints, _model
 from stripcheck.errors import InputError
 from stripcheck.flaps import Flap, flap_setting
 from stripcheck.steps import SIDES, build_chain
-from stripcheck.toml_fields import Section
+from stripcheck.toml_fields import Section, read_share
 from stripcheck.units import from_si, read_quantity
 
 MOST_CORRECTION = 1.0  # a correction of more than all of the distance is a slip
@@ -43,7 +43,9 @@ class Manual:
 
 def read_manual(book: Section, values: Mapping[str, Any], flaps: tuple[Flap, ...], folder: Path) -> Manual:
     """The part [book] of a card whose other values [SI] are read. Raises InputError for what can't be right."""
-    grids = read_grids(book, flaps, values["max_takeoff_mass"], folder)
+    takeoff, landing = values["max_takeoff_mass"], values["max_landing_mass"]
+    remarks: list[str] = []
+    grids = read_grids(book, flaps, {"takeoff": takeoff, "landing": landing, "climb": takeoff}, folder, remarks)
     tables = {side: found for side in SIDES if (found := stack_tables(grids, side))}
     own = {"takeoff": _points(book, "takeoff", "to_50ft", values, flaps),
            "landing": _points(book, "landing", "from_50ft", values, flaps)}  # fmt: skip
@@ -62,7 +64,7 @@ def read_manual(book: Section, values: Mapping[str, Any], flaps: tuple[Flap, ...
     corrections = frozenset(side for side in own if book.section("corrections").has(side))
     for side in corrections:
         more |= _corrections(book.section("corrections").section(side), side)
-    remarks = [remark for found in tables.values() for remark in found.remarks]
+    remarks += [remark for found in tables.values() for remark in found.remarks]
     return Manual(points["takeoff"], points["landing"], tables, corrections, more, remarks)
 
 
@@ -112,6 +114,13 @@ def _corrections(part: Section, side: str) -> dict[str, float]:
     }
     if all(np.isnan(value) for value in found.values()):
         raise InputError(f'{part.where}: no correction is given; write for example headwind = ["10 %", "9 kt"]')
+    if found[f"{side}_manual_tail"] < found[f"{side}_manual_head"]:
+        raise InputError(
+            f"{part.where}: a knot of tailwind adds less than a knot of headwind takes off, which no aeroplane does; check "
+            "whether the two are exchanged"
+        )
+    if found[f"{side}_manual_wet"] < found[f"{side}_manual_dry"]:
+        raise InputError(f"{part.where}: wet_grass adds less than dry_grass; wet grass is never easier: check both")
     return found
 
 
@@ -125,7 +134,7 @@ def _for_each(part: Section, name: str) -> float:
     if not isinstance(entry, list) or len(entry) != 2:
         raise InputError(wanted)
     try:
-        share, speed = read_quantity(entry[0], "slope"), read_quantity(entry[1], "speed")
+        share, speed = read_share(entry[0]), read_quantity(entry[1], "speed")
     except InputError as error:
         raise InputError(f"{wanted}: {error}") from None
     if not (0.0 < share <= MOST_CORRECTION and 0.5 <= speed <= 50.0):

@@ -6,13 +6,13 @@ direction is still suitable, a hair beyond it is not. ``**loading`` is ``takeoff
 ``takeoff_flap`` and ``landing_flap``, as for ``assess``. Inside all is SI; ``texts()`` says it in words, rounded to the
 safe side. What can't be assessed has no answer, and the words say so.
 
-Bisection is right here because more mass, heat or tailwind never betters a verdict, which tests/test_laws.py holds.
+Bisection is right because more mass, heat or tailwind never betters a verdict, which tests/test_laws.py holds.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from math import ceil, floor
 from typing import Any
 
@@ -22,17 +22,20 @@ from numpy.typing import NDArray
 from stripcheck import airborne, ground_run, links, speeds
 from stripcheck.assessment import Result, prepare, strip_columns
 from stripcheck.atmosphere import G0
-from stripcheck.card import Card, flap_setting
+from stripcheck.card import Card, load_card
 from stripcheck.chain import evaluate
 from stripcheck.day import Day
 from stripcheck.errors import InputError
+from stripcheck.flaps import flap_setting
 from stripcheck.inputs import STRIP
+from stripcheck.profile import read_profile
 from stripcheck.rules import Rules
 from stripcheck.units import from_si, to_si
 from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE
 
 Array = NDArray[Any]
 Given = Mapping[str, Any]
+OfSpeed = Callable[[Array], Array]
 
 SIDES = ("takeoff", "landing")
 FOUND, NONE, OPEN = "found", "none", "open"  # besides NOT_ASSESSED; open: even the hardest value works
@@ -56,9 +59,9 @@ class Answer:
     """
 
     value: Array
-    unit: str
     state: Array
     limits: list[str]
+    unit: str
     say: Callable[[float], str]
     say_open: Callable[[float], str]
 
@@ -75,9 +78,9 @@ def most_takeoff_mass(strips: Given, card: Card | str, day: Day | Given, rules: 
 
     ``at_best="marginal"`` accepts marginal too. Raises InputError as ``assess`` does.
 
-    >>> most_takeoff_mass({"tora": [500.0, 900.0, 150.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
+    >>> most_takeoff_mass({"tora": [500.0, 900.0, 80.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
     ...                   "ridge-runner", {"temperature": 22}, "uk-leaflet").texts()
-    ['814 kg', '1,078 kg', 'none']
+    ['838 kg', '1,060 kg', 'none']
     """
     return _most_mass(prepare(strips, card, day, rules, **loading), "takeoff", at_best)
 
@@ -90,7 +93,7 @@ def most_landing_mass(strips: Given, card: Card | str, day: Day | Given, rules: 
 
     >>> most_landing_mass({"lda": [650.0, 1200.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
     ...                   "ridge-runner", {"temperature": 22}, "uk-leaflet").texts()
-    ['856 kg', '1,110 kg, the greatest allowed']
+    ['1,091 kg', '1,110 kg, the greatest allowed']
     """
     return _most_mass(prepare(strips, card, day, rules, **loading), "landing", at_best)
 
@@ -103,12 +106,12 @@ def hottest(strips: Given, card: Card | str, day: Day | Given, rules: Rules | st
 
     >>> hottest({"tora": [700.0, 1500.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
     ...         "ridge-runner", {"temperature": 22}, "uk-leaflet", takeoff_mass=950).texts()
-    ['22.9 °C', '35.0 °C']
+    ['25.1 °C', '40.0 °C']
     """
     case = prepare(strips, card, day, rules, **loading)
     coldest, hot = (np.full(case.size, limit) for limit in links.TEMPERATURES)
     found = _hardest(case, side, at_best, coldest, hot, lambda kelvin: {"own_temperature": kelvin})
-    return Answer(*found[:1], "°C", *found[1:], _celsius, lambda kelvin: f"no limit within {_celsius(kelvin)}")
+    return Answer(*found, "°C", _celsius, lambda kelvin: f"no limit within {_celsius(kelvin)}")
 
 
 def least_headwind(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only",
@@ -120,14 +123,14 @@ def least_headwind(strips: Given, card: Card | str, day: Day | Given, rules: Rul
 
     >>> least_headwind({"tora": [560.0, 800.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
     ...                "ridge-runner", {"temperature": 22}, "uk-leaflet", takeoff_mass=900).texts()
-    ['needs 7.0 kt of headwind', 'up to 4.4 kt of tailwind']
+    ['needs 4.2 kt of headwind', 'up to 7.8 kt of tailwind']
     """
     case = prepare(strips, card, day, rules, **loading)
     # a wind along the strip has no crosswind, so its limit has no say; the sine of half a turn is not nil to the last digit
     calm_across = {"crosswind_limit": np.inf}
     ahead, behind = (np.full(case.size, wind) for wind in WINDS)
     found = _hardest(case, side, at_best, ahead, behind, lambda head: {**wind_along(head), **calm_across})
-    return Answer(*found[:1], "kt", *found[1:], _wind, lambda head: f"no limit within {_wind(head)[6:]}")
+    return Answer(*found, "kt", _wind, lambda head: f"no limit within {-from_si(head, 'kt'):.0f} kt of tailwind")
 
 
 def _most_mass(case: Result, side: str, at_best: str) -> Answer:
@@ -135,7 +138,7 @@ def _most_mass(case: Result, side: str, at_best: str) -> Answer:
     least = float(case.given.get("empty_mass", LEAST_SHARE * greatest))
     light, heavy = (np.full(case.size, mass) for mass in (least, greatest))
     found = _hardest(case, side, at_best, light, heavy, lambda mass: {f"mass_{side}": mass})
-    return Answer(*found[:1], "kg", *found[1:], _kilograms, lambda mass: f"{_kilograms(mass)}, the greatest allowed")
+    return Answer(*found, "kg", _kilograms, lambda mass: f"{_kilograms(mass)}, the greatest allowed")
 
 
 def _hardest(case: Result, side: str, at_best: str, easiest: Array, hardest: Array,
@@ -145,14 +148,14 @@ def _hardest(case: Result, side: str, at_best: str, easiest: Array, hardest: Arr
     accepted = np.isin(verdicts, {SUITABLE: [SUITABLE], MARGINAL: [SUITABLE, MARGINAL]}[at_best])
 
     def finding(value: Array) -> Array:
-        return evaluate(case.chain, {**case.given, **given(value)}, (f"{side}_finding",))[f"{side}_finding"] - 1
+        return case.changed(given(value)).si(f"{side}_finding") - 1
 
     first, last = finding(easiest), finding(hardest)
     state = np.select([verdicts[first] == NOT_ASSESSED, ~accepted[first], accepted[last]], [NOT_ASSESSED, NONE, OPEN], FOUND)
     good, bad = _last_that_holds(lambda value: accepted[finding(value)], easiest, hardest)
     value = np.select([state == FOUND, state == OPEN], [good, hardest], np.nan)
     beyond = np.where(state == FOUND, bad, easiest)
-    reasons = replace(case, given={**case.given, **given(beyond)}, found={})[f"{side}_reason"]
+    reasons = case.changed(given(beyond))[f"{side}_reason"]
     limits = ["" if one == OPEN else reason for one, reason in zip(state.tolist(), reasons, strict=True)]
     return value, state, limits
 
@@ -252,12 +255,13 @@ def abort_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules 
     thrust nil, at take-off mass and flap on the ground in question, and stops within the lesser of the lengths usable
     for take-off and for landing. Wind as the rule set counts it; no safety factor; where the card's tables carry the
     manual's rolls, both parts are carried likewise. A slope that is only assumed is taken uphill for the run and downhill
-    for the stop. Other arguments and errors as for ``assess``. Source: the ground runs of the chain.
+    for the stop. A strip with a slope profile is not assessed: its slope stands for the whole run only. Other arguments
+    and errors as for ``assess``. Source: the ground runs of the chain.
 
     >>> point = abort_point({"tora": 500.0, "lda": 500.0, "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
     ...                     "ridge-runner", {"temperature": 22})
     >>> point.texts(), point.check_texts()
-    (['158 m along, at 38 kt EAS (40 kt TAS)'], ['87 % of lift-off speed at half, 70 % at 155 m: go'])
+    (['265 m along, at 50 kt EAS (53 kt TAS)'], ['93 % of lift-off speed at half, 70 % at 129 m: go'])
     """
     if not reaction >= 0.0:
         raise InputError(f"a time to react of {reaction} s can't be right; 0 s or more is expected")
@@ -276,7 +280,7 @@ def abort_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules 
         return quickens(speed) & (accelerated(speed) <= 0.5 * usable)
 
     with np.errstate(all="ignore"):
-        known = np.isfinite(accelerated(wind) + stopped(wind) + usable) & (usable >= links.LENGTHS[0])
+        known = np.isfinite(accelerated(wind) + stopped(wind) + usable) & (usable >= links.LENGTHS[0]) & ~_has_profile(case)
         state = np.select([~known, ~stops(wind), stops(lift_off)], [NOT_ASSESSED, NONE, OPEN], FOUND)
         last, _ = _last_that_holds(stops, wind, lift_off)
         tas = np.select([state == FOUND, state == OPEN], [last, lift_off], np.nan)
@@ -288,7 +292,8 @@ def abort_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules 
                           seventy_at)  # fmt: skip
 
 
-_RUN_KEYS = ("start", "square", "thrust_acceleration", "lost", "disk_speed", "slow_root", "takeoff_roll_carry")
+_DISK = ("thrust_acceleration", "lost", "square", "disk_speed", "slow_root")
+_RUN_KEYS = ("start", *_DISK, "takeoff_roll_carry")
 _STOP_KEYS = ("density", "rolling_drag", "braking", "landing_slope", "landing_roll_carry")
 
 
@@ -299,32 +304,51 @@ def _values(case: Result, *keys: str) -> dict[str, Array]:
     return {key: np.broadcast_to(value, case.size) if np.ndim(value) == 0 else value for key, value in found.items()}
 
 
-def _accelerating(values: Mapping[str, Array]) -> tuple[Callable[[Array], Array], Callable[[Array], Array]]:
+def _has_profile(case: Result) -> Array:
+    """Rows whose slope stands for a profile, which it does at one mass on one day only."""
+    slopes = (case.given.get(f"profile_{side}_slope", np.nan) for side in SIDES)
+    return np.broadcast_to(np.logical_or(*(np.isfinite(slope) for slope in slopes)), case.size)
+
+
+def _accelerating(values: Mapping[str, Array]) -> tuple[OfSpeed, OfSpeed]:
     """Length [m] of the take-off run to an airspeed [m/s], by the chain's own law, and whether it accelerates so far."""
     wind, carry = values["run_wind"], values.get("takeoff_roll_carry", 1.0)
     if "start" in values:  # a fixed-pitch propeller
-        law = (values["start"], values["square"], wind)
-        return (lambda speed: ground_run.speed_run(*law, speed) * carry,
-                lambda speed: ground_run.least_speed_run_acceleration(*law, speed) >= ground_run.LEAST_ACCELERATION)  # fmt: skip
-    disk, slow = tuple(values[key] for key in ("thrust_acceleration", "lost", "square", "disk_speed")), values["slow_root"]
+        return _square_law(values["start"], values["square"], wind, carry)
+    thrust, lost, square, disk_speed, slow = (values[key] for key in _DISK)
 
-    def root(speed: Array) -> Array:
-        return np.asarray(links.disk_root_of(speed, values["disk_speed"]))
+    def length(speed: Array) -> Array:
+        fast = links.disk_root_of(speed, disk_speed)
+        return np.asarray(ground_run.disk_run_between(thrust, lost, square, disk_speed, wind, slow, fast) * carry)
 
-    return (lambda speed: ground_run.disk_run_between(*disk, wind, slow, root(speed)) * carry,
-            lambda speed: ground_run.least_disk_acceleration(*disk, slow, root(speed)) >= ground_run.LEAST_ACCELERATION)  # fmt: skip
+    def quickens(speed: Array) -> Array:
+        fast = links.disk_root_of(speed, disk_speed)
+        least = ground_run.least_disk_acceleration(thrust, lost, square, disk_speed, slow, fast)
+        return np.asarray(least >= ground_run.LEAST_ACCELERATION)
+
+    return length, quickens
 
 
-def _stopping(values: Mapping[str, Array]) -> tuple[Callable[[Array], Array], Callable[[Array], Array]]:
+def _stopping(values: Mapping[str, Array]) -> tuple[OfSpeed, OfSpeed]:
     """Length [m] of a braked roll from an airspeed [m/s] at take-off mass and flap, and whether it slows down all along."""
     braking, quality = values["braking"], values["braking_quality"]
     start = links.braked_start(braking, quality, values["landing_slope"])
     square = links.braked_square(values["density"], values["wing_area"], values["mass_takeoff"], values["rolling_drag"],
                                  values["ground_lift"], braking, quality)  # fmt: skip
-    law = (start, square, values["run_wind"])
-    carry = values.get("landing_roll_carry", 1.0)
-    return (lambda speed: ground_run.speed_run(*law, speed) * carry,
-            lambda speed: ground_run.least_speed_run_acceleration(*law, speed) >= ground_run.LEAST_ACCELERATION)  # fmt: skip
+    return _square_law(start, square, values["run_wind"], values.get("landing_roll_carry", 1.0))
+
+
+def _square_law(start: Array, square: Array, wind: Array, carry: Array | float) -> tuple[OfSpeed, OfSpeed]:
+    """The same for a run whose acceleration is ``start + square V^2``, either way."""
+
+    def length(speed: Array) -> Array:
+        return np.asarray(ground_run.speed_run(start, square, wind, speed) * carry)
+
+    def quickens(speed: Array) -> Array:
+        least = ground_run.least_speed_run_acceleration(start, square, wind, speed)
+        return np.asarray(least >= ground_run.LEAST_ACCELERATION)
+
+    return length, quickens
 
 
 def _check_in_words(share: float, seventy_at: float) -> str:
@@ -383,7 +407,7 @@ def break_even_wind(strips: Given, card: Card | str, day: Day | Given, rules: Ru
 
     >>> strip = both_directions({"tora": 600.0, "lda": 600.0, "elevation_field": 2300, "slope_given": 5, "surface": "grass"})
     >>> break_even_wind(strip, "ridge-runner", {"temperature": 22}).texts()
-    ['uphill takes less up to 5.3 kt of tailwind']
+    ["uphill takes less up to 14.5 kt of tailwind, but the card's tailwind limit is 10 kt"]
     """
     case = prepare(strips, card, day, rules, **loading)
     _words(case, side)
@@ -399,10 +423,10 @@ def break_even_wind(strips: Given, card: Card | str, day: Day | Given, rules: Ru
 
     def shares(wind: Array) -> tuple[Array, Array]:
         """Required over available length with the tailwind and against it; without end where it can't be done."""
-        blown = replace(case, given={**case.given, **wind_along((sign * wind[:, None]).ravel())})
-        found = _values(blown, required, length)
+        found = _values(case.changed(wind_along((sign * wind[:, None]).ravel())), required, length)
         share = np.where(np.isfinite(found[required]), found[required] / found[length], np.inf).reshape(-1, 2)
-        return tuple(np.take_along_axis(share, way[:, None], 1)[:, 0] for way in (with_tailwind, 1 - with_tailwind))
+        with_it = np.take_along_axis(share, with_tailwind[:, None], 1)[:, 0]
+        return with_it, np.take_along_axis(share, 1 - with_tailwind[:, None], 1)[:, 0]
 
     def takes_less(wind: Array) -> Array:
         one, other = shares(wind)
@@ -411,7 +435,8 @@ def break_even_wind(strips: Given, card: Card | str, day: Day | Given, rules: Ru
     calmest, strongest = (np.full(len(uphill), end) for end in (-within, within))
     wind, beyond = _last_that_holds(takes_less, calmest, strongest)
     one, other = (np.isfinite(shares(wind)[0]), np.isfinite(shares(beyond)[1]))
-    known, both = base[f"{side}_known"].reshape(-1, 2).all(axis=1), base[allowed].reshape(-1, 2).all(axis=1)
+    both = base[allowed].reshape(-1, 2).all(axis=1)
+    known = base[f"{side}_known"].reshape(-1, 2).all(axis=1)
     state = np.select(
         [~both, ~known, slope[:, 0] == slope[:, 1], ~takes_less(calmest), takes_less(strongest), one & other],
         ["none: one-way strip", NOT_ASSESSED, "none: no slope", "against", "with", FOUND],
@@ -421,26 +446,117 @@ def break_even_wind(strips: Given, card: Card | str, day: Day | Given, rules: Ru
     return BreakEven(found, state, uphill, side, float(case.given["tailwind_limit"]), within)
 
 
-_TURNED = {"tora": "tora", "elevation_start": "elevation_end", "obstacle_height": "approach_obstacle_height",
-           "obstacle_distance": "approach_obstacle_distance"}  # fmt: skip
+_AHEAD_AND_BEHIND = (("elevation_start", "elevation_end"), ("obstacle_height", "approach_obstacle_height"),
+                     ("obstacle_distance", "approach_obstacle_distance"))  # fmt: skip
 
 
 def both_directions(strip: Given) -> dict[str, Any]:
     """Columns for ``assess`` of both directions of a strip, from those of one direction: numbers or texts, no columns.
 
-    What lies ahead in one direction lies behind in the other; the lengths are taken to be usable both ways. A direction
-    that may be used one way only must be said for each.
+    What lies ahead in one direction lies behind in the other; lengths, and what is allowed, hold both ways: change the
+    columns where they don't. Raises InputError as ``assess`` does.
 
-    >>> both = both_directions({"slope_given": 5, "heading": 80, "obstacle_height": "30 m", "obstacle_distance": 400})
-    >>> both["slope_given"], both["heading"], both["approach_obstacle_distance"]
-    (array([ 5., -5.]), array([ 80., 260.]), array([ nan, 400.]))
+    >>> both = both_directions({"slope_given": 5, "heading": 80, "obstacle_height": 90, "obstacle_distance": "400 m"})
+    >>> [both[key].round(9).tolist() for key in ("slope_given", "heading", "approach_obstacle_distance")]
+    [[5.0, -5.0], [80.0, 260.0], [nan, 400.0]]
     """
-    columns, _, size = strip_columns(strip)
+    columns, faults, size = strip_columns(strip)
     if size != 1:
-        raise InputError(f"one direction of one strip is expected, not {size} rows")
-    there = {item.key: from_si(columns[item.key], item.unit) if item.kind == "number" else columns[item.key]
-             for item in STRIP if item.key in strip and item.key != "fault"}  # fmt: skip
-    return {}
+        raise InputError(f"strips: one direction of one strip is expected, not {size} rows")
+    back = {**columns, "slope_given": -columns["slope_given"], "heading": (columns["heading"] + np.pi) % (2.0 * np.pi)}
+    for ahead, behind in _AHEAD_AND_BEHIND:
+        back |= {ahead: columns[behind], behind: columns[ahead]}
+    both = {item.key: np.concatenate((columns[item.key], back[item.key])) for item in STRIP if item.kind != "fault"}
+    shown = {item.key: np.asarray(from_si(both[item.key], item.unit)) for item in STRIP if item.kind == "number"}
+    profile = read_profile(str(strip["profile"])) if strip.get("profile") else None
+    turned = {"profile": [profile, profile.reversed()]} if profile else {}
+    return {**both, **shown, "fault": [*faults, *faults], **turned}
 
 
 # --- the commit point of a one-way strip ------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class CommitPoint:
+    """The last place on the approach from which a go-around clears the ground beyond the strip, for each row.
+
+    ``distance`` [m] before the threshold and ``height`` [m] above it, on the approach path; where a go-around clears even
+    from over the threshold ("open") these are 0 and the path's height there. ``climb`` [-]: gradient over the ground of
+    the climb counted.
+    """
+
+    distance: Array
+    height: Array
+    climb: Array
+    state: Array
+
+    def texts(self) -> list[str]:
+        """The commit points in words."""
+        words = {
+            FOUND: "{place:,} m before the threshold, not below {height} ft above it",
+            OPEN: "a go-around clears even from over the threshold, not below {height} ft above it",
+            NONE: "none: no go-around from the approach clears the ground beyond",
+        }
+        rows = zip(self.state.tolist(), self.distance, from_si(self.height, "ft"), strict=True)
+        return [words[state].format(place=ceil(place), height=ceil(height - 1e-6)) if state in words else state
+                for state, place, height in rows]  # fmt: skip
+
+
+def commit_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
+                 margin: float | None = None, climb_flap: str | None = None, flap_seconds: float = FLAP_SECONDS,
+                 **loading: Any) -> CommitPoint:  # fmt: skip
+    """The last place on the approach from which a go-around clears the rising ground beyond the strip.
+
+    That ground is the row's ``obstacle_height`` above and ``obstacle_distance`` beyond the far end; it is to be cleared
+    by ``margin`` [m], the rule set's clearance over obstacles where none is given. The approach path is the chain's, 50 ft
+    over the threshold, or later where an obstacle before the threshold asks for it. The go-around: level at approach
+    speed for ``flap_seconds`` [s] while the flap goes to ``climb_flap`` (a take-off setting of the card; the take-off
+    flap where none is given), level on until the speed of the chain's climb is gained, if that is faster, which the climb
+    pays for in height, then the chain's climb at landing mass in the strip's air. Nor may it meet the strip, where that
+    rises. The wind counts as in the rule set. Only the strip and that ground are looked at: not what lies between them,
+    no turn, no gust, no sink. Other arguments and errors as for ``assess``. Source: geometry, energy method.
+
+    >>> strip = {"lda": 600.0, "elevation_field": 2300, "slope_given": 5, "surface": "grass",
+    ...          "obstacle_height": [250.0, 700.0], "obstacle_distance": [1500.0, 1500.0]}
+    >>> commit_point(strip, "ridge-runner", {"temperature": 22}).texts()[1]
+    '70 m before the threshold, not below 69 ft above it'
+    """
+    if not flap_seconds >= 0.0:
+        raise InputError(f"a time for the flap of {flap_seconds} s can't be right; 0 s or more is expected")
+    card = load_card(card) if isinstance(card, str) else card
+    case = prepare(strips, card, day, rules, **loading)
+    flap = case.given["takeoff_flap"] if climb_flap is None else flap_setting(climb_flap, card.flaps, "take-off", card.file)
+    around = {"mass_takeoff": case.given["mass_landing"], "takeoff_flap": flap, "tora": case.given["lda"]}
+    values = _values(case.changed(around), "climb_over_ground", "screen_tas", "slope", "landing_known",
+                     "approach_tas", "landing_wind", "approach_over_ground", "landing_available")  # fmt: skip
+    margin = float(case.given["obstacle_margin"]) if margin is None else margin
+    climb, length = values["climb_over_ground"], values["lda"]
+    known = values["landing_known"] & np.isfinite(climb + values["obstacle_height"] + values["obstacle_distance"])
+    slope = np.where(np.isfinite(values["slope"]), values["slope"], np.abs(values["assumed_slope"]))
+    gained = np.maximum(np.square(values["screen_tas"]) - np.square(values["approach_tas"]), 0.0) / (2.0 * G0)
+    level = (values["approach_tas"] - values["landing_wind"]) * flap_seconds
+    ground = values["obstacle_height"] + slope * length + margin
+
+    def height_of_path(before: Array) -> Array:
+        return np.asarray(airborne.SCREEN + values["approach_over_ground"] * (before + length - values["landing_available"]))
+
+    def clears(near: Array) -> Array:
+        """Whether a go-around from as much nearer [m] than the farthest place clears the strip and the ground beyond."""
+        before = FARTHEST - near
+        height = height_of_path(before)
+        level_ends = level + gained / climb - before  # behind the threshold
+
+        def at(behind: Array) -> Array:
+            return np.asarray(height + climb * np.maximum(behind - level_ends, 0.0))
+
+        rise = np.maximum(slope, 0.0)
+        over_strip = (height >= rise * np.clip(level_ends, 0.0, length)) & (at(length) >= rise * length)
+        return np.asarray(over_strip & (at(length + values["obstacle_distance"]) >= ground))
+
+    with np.errstate(all="ignore"):
+        out, over = np.zeros(case.size), np.full(case.size, FARTHEST)
+        climbs = climb > 0.0
+        state = np.select([~known, ~climbs | ~clears(out), clears(over)], [NOT_ASSESSED, NONE, OPEN], FOUND)
+        last, _ = _last_that_holds(clears, out, over)
+        distance = FARTHEST - np.select([state == FOUND, state == OPEN], [last, over], np.nan)
+        return CommitPoint(distance, height_of_path(distance), np.where(known, climb, np.nan), state)

@@ -33,9 +33,8 @@ class Section:
         if name not in self.entries:
             return float(self._default(name, default, f"a {kind}"))
         try:
-            value = read_quantity(self.entries[name], kind)
-            if kind == "slope" and isinstance(self.entries[name], int | float) and 0.0 < abs(value) < BARE_SHARE:
-                raise InputError("a bare figure below 0.3 could be a share or a percentage; write it with its sign, as 5 %")
+            entry = self.entries[name]
+            value = read_share(entry) if kind == "slope" else read_quantity(entry, kind)
         except InputError as error:
             raise InputError(f"{self.where}: {name}: {error}") from None
         if not low <= value <= high:
@@ -120,6 +119,18 @@ def _expected(low: float, high: float, kind: str) -> str:
     if math.isinf(low):
         return f"{most} or less is expected"
     return f"{least} to {most} is expected"
+
+
+def read_share(entry: object) -> float:
+    """A share, typed as a percentage. Raises InputError where a bare figure could be either.
+
+    >>> read_share("10 %")
+    0.1
+    """
+    value = read_quantity(entry, "slope")
+    if isinstance(entry, int | float) and 0.0 < abs(value) < BARE_SHARE:
+        raise InputError("a bare figure below 0.3 could be a share or a percentage; write it with its sign, as 5 %")
+    return value
 
 
 def read_toml(path: Path) -> Section:

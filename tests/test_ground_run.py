@@ -56,6 +56,26 @@ def test_speed_run_by_the_closed_form(square: float, wind: float) -> None:
     assert ground_run.speed_run(1.8, square, wind, 30.0) == pytest.approx(truth, rel=1e-7)
 
 
+@pytest.mark.parametrize("wind", [-7.0, 0.0, 4.0, 15.0])
+def test_parts_of_a_run_make_the_whole(wind: float) -> None:
+    """Two parts of a run are as long as the whole, by the closed form; 1e-7 as above, and no part is no way."""
+    parts = [(wind, 18.0), (18.0, 30.0)]
+    runs = [ground_run.speed_run_between(1.8, -5e-4, wind, slow, fast) for slow, fast in parts]
+    truths = [closed_form(1.8, -5e-4, slow, fast, wind) for slow, fast in parts]
+    assert runs == pytest.approx(truths, rel=1e-7)
+    assert sum(runs) == pytest.approx(ground_run.speed_run(1.8, -5e-4, wind, 30.0), rel=1e-7)
+    assert ground_run.speed_run_between(1.8, -5e-4, wind, 20.0, 20.0) == 0.0
+    assert ground_run.speed_run_between(1.8, -5e-4, wind, wind, 30.0) == ground_run.speed_run(1.8, -5e-4, wind, 30.0)
+
+
+def test_time_of_a_run() -> None:
+    """Speed gained over acceleration, and an area tangent where it falls with the square of speed (table of integrals)."""
+    assert ground_run.run_time(2.0, 0.0, -6.0, 30.0) == pytest.approx(18.0, rel=1e-14)
+    rate = math.sqrt(5e-4 / 1.8)
+    truth = (math.atanh(rate * 30.0) - math.atanh(rate * 10.0)) / (1.8 * rate)
+    assert ground_run.run_time(1.8, -5e-4, 10.0, 30.0) == pytest.approx(truth, rel=1e-9)
+
+
 def test_least_acceleration_of_a_speed_run() -> None:
     least = ground_run.least_speed_run_acceleration
     assert least(2.0, -0.001, 0.0, 30.0) == pytest.approx(2.0 - 0.9)  # falls to the fast end

@@ -6,11 +6,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from stripcheck.errors import InputError
+from stripcheck.profile import Profile, check_length
 from stripcheck.register.runway_ends import which_end
 from stripcheck.register.runways import Runways
 from stripcheck.register.values import Fault, read_yes
 
 GREATEST_END_TO_END = 0.30  # [fraction of the length] difference in elevation between the ends
+SAME_SLOPE = 0.01  # [fraction] within which a profile agrees with a slope or with elevations; common practice, no source
 
 
 def check_all(runways: Runways) -> None:
@@ -18,6 +20,7 @@ def check_all(runways: Runways) -> None:
     _check_thresholds(runways)
     _check_end_elevations(runways)
     _check_obstacles(runways)
+    _check_profiles(runways)
 
 
 def allowed_directions(runways: Runways, key: str) -> list[tuple[bool, bool]]:
@@ -73,6 +76,34 @@ def _check_obstacles(runways: Runways) -> None:
         _add(runways, no_distance, "obstacle_height", "an obstacle needs a distance from the end too; add it", end)
         no_height = np.flatnonzero(np.isnan(height) & ~np.isnan(distance))
         _add(runways, no_height, "obstacle_distance", "an obstacle needs a height too; add it", end)
+
+
+def _check_profiles(runways: Runways) -> None:
+    """A profile reaches from end to end, and rises as much as the slope and the elevations of the ends say.
+
+    One that was measured from the other end is found by this. One that can't be used is dropped.
+    """
+    length, usable = runways.number("length"), np.full(runways.count, np.nan)
+    for key, end in (("usable", 0), ("tora", 1), ("tora", 2), ("lda", 1), ("lda", 2)):
+        usable = np.fmax(usable, runways.at_end(key, end) if end else runways.number(key))
+    between_ends = (runways.number("elevation", 2) - runways.number("elevation", 1)) / np.where(length > 0.0, length, usable)
+    for index, profile in enumerate(runways.profiles):
+        if profile is not None:
+            try:
+                check_length(profile, float(length[index]), float(usable[index]))
+                _check_rise(profile, runways.number("slope")[index], "the slope")
+                _check_rise(profile, between_ends[index], "the elevations of the ends")
+            except InputError as error:
+                runways.profiles[index] = None
+                runways.faults.append(Fault(index, runways.header("profile"), str(error)))
+
+
+def _check_rise(profile: Profile, slope: float, what: str) -> None:
+    if abs(slope - profile.mean_slope) > SAME_SLOPE:
+        raise InputError(
+            f"the profile rises by {profile.mean_slope:.1%} from end to end, but {what} by {slope:.1%}; check both, and that "
+            "the profile begins at the end named first"
+        )
 
 
 def _add(runways: Runways, indexes: NDArray[np.intp], key: str, message: str, end: int = 0) -> None:

@@ -84,6 +84,9 @@ COLUMNS = (
     _column("local_slope", "slope", "strip",
             "local slope, greatest local slope, greatest slope, maximum slope, max slope, steepest slope, "
             "max local slope, maximum local slope"),
+    _column("profile", "text", "strip",
+            "profile, slope profile, strip profile, runway profile, height profile, longitudinal profile, profil, "
+            "langsprofil, laengsprofil, perfil"),
     _column("heading", "angle", "both",
             "heading, true heading, heading true, runway heading, bearing, true bearing, direction true, "
             "kurs, rumbo"),
@@ -176,13 +179,13 @@ def near_misses(headers: Sequence[str]) -> list[str]:
     """Headers that hold a word of the vocabulary and are not understood all the same.
 
     They are carried like any other, but the user should hear of them: a displaced threshold that nobody reads
-    makes a runway look longer.
+    makes a runway look longer, and a profile that nobody reads may hide a steep end.
 
     >>> near_misses(["Strip", "Displaced threshold of 09", "Owner"])
     ['Displaced threshold of 09']
     """
     signs = {word for column in COLUMNS if column.kind in KINDS or column.key == "closed" for word in column.words}
-    signs = {word for word in signs if " " not in word} | {"threshold"}
+    signs = {word for word in signs if " " not in word} | {"threshold", "profile"}
     unknown = (header for header in headers if match_header(header) is None)
     return [header for header in unknown if signs.intersection(_tidy(header).split())]
 

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections import Counter
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
+
+from stripcheck.profile import Profile
 
 NUMBER_KEYS = (
     "source_row", "length", "tora", "lda", "width", "elevation_start", "elevation_end", "elevation_field",
@@ -62,7 +64,8 @@ class Directions:
     ``carried``: columns that are not understood, header -> n values as read. ``left_out``: runways that are
     not strips for aeroplanes, each once. ``doubts``: what is missing or worked out in the runways that are
     kept. ``source``: name of the file. ``rows_read``: runways in the list; always ``rows_read ==
-    len(left_out) + n / 2``.
+    len(left_out) + n / 2``. ``profiles``: slope profile of each direction, from the end where it begins, None where the
+    list has none or none that can be used.
     """
 
     n: int
@@ -73,6 +76,7 @@ class Directions:
     doubts: list[LeftOut]
     source: str
     rows_read: int
+    profiles: list[Profile | None] = field(default_factory=list)
 
 
 def unknown_surfaces(directions: Directions) -> list[tuple[str, int]]:

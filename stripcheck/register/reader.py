@@ -5,7 +5,7 @@ that is called 09), ``Leave by`` the direction of the take-off. The other direct
 ``One-way`` alone can't say which way, and is a fault.
 
 Slope: a column for the whole runway; positive = rising from the end that is named first to the other. A slope
-is never worked out here from the elevations of the ends.
+is never worked out here from the elevations of the ends. A slope profile begins at the end that is named first.
 
 Ends: what a column tells about end 1 holds for the end that is named first; TORA and LDA of end 1 are those
 of the direction that begins there. A threshold displacement or an obstacle told for the whole runway holds
@@ -83,6 +83,9 @@ def read_list(
         doubts=_doubts_about_headers(runways) + _list_doubts(runways, texts, doubts, kept),
         source=table.source,
         rows_read=runways.count,
+        profiles=_interleave(
+            runways.profiles, [profile and profile.reversed() for profile in runways.profiles], kept
+        ),
     )
 
 
@@ -183,6 +186,9 @@ def _doubts_about_headers(runways: Runways) -> list[LeftOut]:
         if not item.unit and item.column.kind in KINDS and item.column.kind not in ("pressure", "angle"):
             reason = f'the column "{item.header}" has no unit: bare numbers are in {KINDS[item.column.kind][0]}'
             doubts.append(LeftOut(row, "", "", "unit not named", reason))
+    if any(text and not any(map(str.isalpha, text)) for text in runways.texts("profile")):
+        reason = f'the column "{runways.header("profile")}" has points without units: heights too are in m'
+        doubts.append(LeftOut(row, "", "", "unit not named", reason))
     return doubts
 
 

@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from stripcheck.errors import InputError
+from stripcheck.profile import Profile, read_profile
 from stripcheck.register.columns import Found, find_columns
 from stripcheck.register.limits import LIMITS, outside
 from stripcheck.register.read_table import Table
@@ -29,7 +30,7 @@ class Runways:
     ``found``: the columns, ``carried``: positions of those not understood. ``numbers``: {(key, end): array},
     SI. ``unreadable``: {(key, end): indexes} of cells that are no good. ``first``, ``second``: names of the
     ends; ``named``: whether the list names them. ``sizes``: length and width [m] as read, mistakes and all.
-    ``faults``: all mistakes, in the order found.
+    ``profiles``: slope profiles, from end 1. ``faults``: all mistakes, in the order found.
     """
 
     table: Table
@@ -42,6 +43,7 @@ class Runways:
     first: list[str] = field(default_factory=list)
     second: list[str] = field(default_factory=list)
     named: list[bool] = field(default_factory=list)
+    profiles: list[Profile | None] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
 
     def cells(self, key: str, end: int = 0) -> list[object] | None:
@@ -110,7 +112,13 @@ def runways_of(table: Table) -> Runways:
     runways.sizes = {key: np.full(runways.count, np.nan) for key in ("length", "width")}
     _read_all_numbers(runways)
     _name_ends(runways)
+    runways.profiles = runways.read_each("profile", _profile_in, None)
     return runways
+
+
+def _profile_in(cell: object) -> Profile | None:
+    text = as_text(cell)
+    return read_profile(text) if text else None
 
 
 def closed_cells(runways: Runways) -> list[bool | None]:

@@ -76,7 +76,10 @@ def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Map
     """
     given = strips.given_columns(directions)
     keys = _short_keys(card.chain) if short else None
-    values = evaluate(card.chain, {**card.values, **rules.values, **day.values, **given, **chosen}, keys)
+    inputs = {**card.values, **rules.values, **day.values, **given, **chosen}
+    if any(profile is not None for profile in directions.profiles):
+        given |= strips.profile_columns(card.chain, inputs, directions)
+    values = evaluate(card.chain, {**inputs, **given}, keys)
     values = {key: np.broadcast_to(value, directions.n) if key in _SUMMARISED else value for key, value in values.items()}
     words = {step.key: step.words for step in card.chain.steps}
     return Filling(directions, card, day, rules, chosen, flap_names, given, values, summary.summarise(values, words))

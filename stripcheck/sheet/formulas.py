@@ -160,12 +160,13 @@ def _edge(least: str) -> Callable[..., Cell]:
 
 
 # steps that read the manual's tables: how they are written, and how many of their inputs that takes, since the grid
-# that stands on the sheet Book is made for the mass and flap of the day
+# that stands on the sheet Manual is made for the mass and flap of the day
 _IN_TABLES: dict[str, tuple[Callable[..., Cell], int]] = {
     "position": (_position, 2),
     "table": (_figure, 3),
     "hot edge": (_edge("MIN"), 2),
     "cold edge": (_edge("MAX"), 2),
+    "top edge": (lambda top: Cell(top.text), 1),
 }
 
 

@@ -14,7 +14,7 @@ from openpyxl.utils import column_index_from_string, get_column_letter
 from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck import interpolation
-from stripcheck.book_tables import BookTables
+from stripcheck.book_tables import NOWHERE, BookTables
 from stripcheck.card import Card
 from stripcheck.caution import CAUTION
 from stripcheck.inputs import SIDE_WORDS
@@ -23,7 +23,7 @@ from stripcheck.sheet import styles
 from stripcheck.sheet.cell import Cell, formula, reference
 from stripcheck.sheet.formulas import Place
 from stripcheck.sheet.pages import Pages, write_header, write_heading
-from stripcheck.units import UNITS, from_si, tidy
+from stripcheck.units import UNITS, from_si, tidy, to_si
 
 SHEET = "Manual"
 FIGURES = {"roll": ("Roll [m]", "m"), "distance": ("Over 50 ft [m]", "m"), "rate": ("Rate of climb [ft/min]", "ft/min")}
@@ -54,6 +54,12 @@ def write_manual(pages: Pages, card: Card, values: Mapping[str, Any]) -> Workshe
     return sheet
 
 
+def _as_typed(value: float, unit: str) -> float:
+    """The number that a cell shows for a value [SI]: without the noise of a conversion, unless it is none."""
+    plain = tidy(from_si(value, unit))
+    return plain if abs(to_si(plain, unit) - value) <= 1e-14 * abs(value) else float(from_si(value, unit))
+
+
 class _Side:
     """The tables of one side on the sheet, from a row on; all its blocks use the same columns."""
 
@@ -63,7 +69,7 @@ class _Side:
         self.mass, self.flap = (float(np.ravel(values[f"{tables.side}_book_{key}"])[0]) for key in ("mass", "flap"))
         wide = len(tables.temperatures)
         self.columns = {figure: FIRST + i * (wide + 1) for i, figure in enumerate(tables.filled)}
-        self.edges = [get_column_letter(FIRST + len(tables.filled) * (wide + 1) + i) for i in (0, 1)]
+        self.edges = [get_column_letter(FIRST + len(tables.filled) * (wide + 1) + i) for i in range(3)]
         self.temperatures = [f"{self._letter(figure, j)}${row + 1}" for figure in list(tables.filled)[:1] for j in range(wide)]
         pages_array = np.array(tables.pages)
         self.weights = interpolation.page_weight(
@@ -90,8 +96,8 @@ class _Side:
         name = f"{self.tables.side}_{key}"
         self.pages.places[name] = Place(self.pages.name(name, self.sheet, cells))
 
-    def _headers(self, row: int, title: str, title_row: int) -> None:
-        """Titles of the figures in a row; temperatures below ``row``, and altitudes below them."""
+    def _headers(self, row: int, title: str, title_row: int, last: str) -> None:
+        """Titles of the figures in a row; temperatures below ``row``, and altitudes below them; ``last`` column's title."""
         for figure in self.tables.filled:
             cell = self.sheet[f"{self._letter(figure, 0)}{title_row}"]
             cell.value, cell.font = FIGURES[figure][0], styles.BOLD
@@ -101,11 +107,11 @@ class _Side:
                 cell = self.sheet[f"{self._letter(figure, j)}{row + 1}"]
                 cell.value, cell.number_format = tidy(round(from_si(temperature, "°C"), 6)), '0.##" °C"'
                 cell.font, cell.fill, cell.alignment = styles.HEADER, styles.HEADER_FILL, styles.CENTRE
-        for edge, letter in zip(("Hottest [K]", "Coldest [K]"), self.edges, strict=True):
+        for edge, letter in zip(("Hottest [K]", "Coldest [K]", last), self.edges, strict=True):
             write_header(self.sheet, row + 1, (edge,), column_index_from_string(letter))
         for i, altitude in enumerate(self.tables.altitudes, row + 2):
             cell = self.sheet[f"A{i}"]
-            cell.value, cell.font, cell.number_format = tidy(round(from_si(altitude, "ft"), 6)), styles.BODY, "#,##0"
+            cell.value, cell.font, cell.number_format = _as_typed(altitude, "ft"), styles.BODY, "#,##0"
 
     def _page(self, row: int, number: int) -> None:
         """One page of the manual, with its weight for the mass and flap of the day."""
@@ -113,7 +119,7 @@ class _Side:
         deflection, mass = tables.pages[number]
         name = next(flap.name for flap in self.card.flaps if flap.deflection == deflection)
         sheet[f"A{row}"], sheet[f"A{row}"].font = f"Page: flap {name}, {mass:,.0f} kg", styles.BOLD
-        self._headers(row, "Weight now", row)
+        self._headers(row, "Weight now", row, "To [K]")
         weight = interpolation.page_weight(
             Cell(f"{tables.side}_book_mass"), Cell(f"{tables.side}_book_flap"), mass, deflection,
             float(tables.below()[number]), float(tables.above()[number]),
@@ -129,21 +135,27 @@ class _Side:
         """A figure to type over: the manual's on yellow; blank on grey where the manual has none."""
         value = self.tables.printed[figure][place] if figure in self.tables.printed else np.nan
         target = self.sheet[cell]
-        target.value = tidy(round(from_si(value, FIGURES[figure][1]), 6)) if np.isfinite(value) else None
+        target.value = _as_typed(value, FIGURES[figure][1]) if np.isfinite(value) else None
         target.fill = styles.INPUT_FILL if np.isfinite(value) else styles.BAND_FILL
         target.border, target.protection, target.font = styles.BOX, styles.UNLOCKED, styles.BODY
         target.number_format = "#,##0.##"
 
     def _page_edges(self, row: int, number: int, line: int) -> None:
-        """Hottest and coldest temperature of a line at which all the figures stand; below the first where none does."""
+        """Hottest and coldest temperature of a line at which all the figures stand, there or harder: higher or heavier.
+
+        The third column reaches as far as the figures themselves; above the last line with any, that line's edge holds.
+        """
         there = [self._all_there(row, j) for j in range(len(self.temperatures))]
-        hot, cold = (f"{letter}{row}" for letter in self.edges)
-        first = self.temperatures[0]
-        terms = [f"IF({known},{at},{first}-1)" for known, at in zip(there, self.temperatures, strict=True)]
-        self._put(hot, f"MAX({','.join(terms)})", self.tables.edge(hot=True)[number][line], "0.00")
+        hot, cold, reach = (f"{letter}{row}" for letter in self.edges)
+        lines = len(self.tables.altitudes)
+        terms = [f"IF({known},{at},{NOWHERE:g})" for known, at in zip(there, self.temperatures, strict=True)]
+        terms += [f"{self.edges[2]}{row + 1}"] if line + 1 < lines else []
+        terms += [f"{self.edges[2]}{row + (other - number) * (lines + 3)}" for other in self.tables.heavier(number)[:1]]
+        self._put(reach, f"MAX({','.join(terms)})", self.tables.reach()[number][line], "0.00")
+        before = f"IF({reach}>{NOWHERE:g},{reach},{self.edges[0]}{row - 1})" if line else reach
+        self._put(hot, before, self.tables.edge(hot=True)[number][line], "0.00")
         terms = [f"IF({known},{at},{FAR:.0f})" for known, at in zip(there, self.temperatures, strict=True)]
-        text = f"IF({hot}<{first},{hot},MIN({','.join(terms)}))"
-        self._put(cold, text, self.tables.edge(hot=False)[number][line], "0.00")
+        self._put(cold, f"MIN({','.join(terms)},{hot})", self.tables.edge(hot=False)[number][line], "0.00")
 
     def _all_there(self, row: int, column: int) -> str:
         cells = [f"ISNUMBER({self._letter(figure, column)}{row})" for figure in self.tables.printed]
@@ -154,7 +166,7 @@ class _Side:
         tables, first, last = self.tables, self.row + 3, self.row + 2 + len(self.tables.altitudes)
         word = SIDE_WORDS[tables.side]
         write_heading(self.sheet, self.row, f"{word}: for the mass and flap of the day")
-        self._headers(self.row + 1, "In SI [m]", self.row)
+        self._headers(self.row + 1, "In SI [m]", self.row, "Highest [m]")
         for j, temperature in enumerate(tables.temperatures):
             letter = self._letter(next(iter(tables.filled)), j)
             text = formula(reference(f"{letter}{self.row + 2}", "°C"))
@@ -178,17 +190,32 @@ class _Side:
                 value = counting.min() if hot else counting.max()
                 self._put(f"{letter}{first + i}", f"{least}({','.join(terms)})", value, "0.00")
             self._name(key, f"{letter}{first}:{letter}{last}")
+        self._highest(first, page_rows)
         self._name("altitudes", f"B{first}:B{last}")
         row = self.row + 1
         self._name("temperatures", f"{self.temperatures[0].replace('$', '')}:{self.temperatures[-1].split('$')[0]}{row}")
 
+    def _highest(self, first: int, page_rows: list[int]) -> None:
+        """The highest line of the pages that count: of each page the last one to which its figures reach."""
+        letter, tops = self.edges[2], []
+        lines = range(len(self.tables.altitudes))
+        for row in page_rows:
+            terms = [f"IF({letter}{row + 2 + i}>{NOWHERE:g},$B${first + i},$B${first})" for i in lines]
+            tops.append(f"IF($B${row + 2}>{HAIR:.6f},MAX({','.join(terms)}),{FAR:.0f})")
+        value = self.tables.highest()[self.weights > HAIR].min()
+        self._put(f"{letter}{first}", f"MIN({','.join(tops)})", value, "0.0")
+        self._name("highest", f"{letter}{first}")
+
     def _now(self, figure: str, line: int, column: int, page_rows: list[int]) -> str:
-        """One figure for the day: the pages by their weights, a figure that is not there as the model carried it."""
+        """One figure for the day: the pages by their weights, a figure that is not there as its neighbours tell."""
         factor = UNITS[FIGURES[figure][1]].factor
+        absent = self.tables.filled[figure]
+        if figure in self.tables.printed:
+            absent = np.where(np.isfinite(self.tables.printed[figure]), self.tables.spare[figure], absent)
         terms = []
         for number, row in enumerate(page_rows):
             cell = f"{self._letter(figure, column)}{row + 2 + line}"
-            carried = from_si(self.tables.filled[figure][number, line, column], FIGURES[figure][1])
+            carried = from_si(absent[number, line, column], FIGURES[figure][1])
             terms.append(f"$B${row + 2}*IF(ISNUMBER({cell}),{cell},{carried:.15g})")
         whole = "+".join(terms)
         return whole if factor == 1.0 else f"({whole})*{factor:.15g}"

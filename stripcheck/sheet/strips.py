@@ -13,6 +13,8 @@ from openpyxl.worksheet.worksheet import Worksheet
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.inputs import STRIP
+from stripcheck.profile_run import KEYS as PROFILE
+from stripcheck.profile_run import profile_slopes
 from stripcheck.register import Directions
 from stripcheck.sheet import styles
 from stripcheck.sheet.formulas import NOWHERE, Place
@@ -44,8 +46,6 @@ ABOUT = (
 # keys of the register's numbers that the chain knows under another name
 REGISTER_KEYS = {"own_temperature": "temperature", "own_qnh": "qnh", "own_wind_from": "wind_from",
                  "own_wind_speed": "wind_speed"}  # fmt: skip
-# worked out from the slope profiles once the other values are known
-PROFILE = ("profile_takeoff_slope", "profile_takeoff_roll", "profile_landing_slope", "profile_landing_roll")
 GROUPS = (
     ("Air, wind and ground", "elevation"),
     ("Take-off, step by step", "takeoff_known"),
@@ -86,6 +86,13 @@ def given_columns(directions: Directions) -> dict[str, Any]:
     return columns
 
 
+def profile_columns(chain: Chain, values: Mapping[str, Any], directions: Directions) -> dict[str, Any]:
+    """What the slope profiles mean on the day, as the sheet will show it: by chain key in SI."""
+    units = {item.key: item.unit for item in STRIP}
+    found = profile_slopes(chain, values, directions.profiles)
+    return {key: to_si(np.round(from_si(column, units[key]), 6), units[key]) for key, column in found.items()}
+
+
 def _codes(words: Sequence[str], table: tuple[str, ...], blank: int = -1, strange: int = -1) -> np.ndarray:
     code = {"": blank, **{word: number for number, word in enumerate(table)}}
     return np.array([code.get(word, strange) for word in words], dtype=np.int64)
@@ -115,7 +122,7 @@ def layout(chain: Chain, directions: Directions, full: bool) -> list[Column]:
 def _has_any(item: Input, directions: Directions) -> bool:
     """Whether the list gives this input for any row; allowed directions and faults count when they say something."""
     if item.key in PROFILE:
-        return any(profile is not None for profile in getattr(directions, "profiles", ()))
+        return any(profile is not None for profile in directions.profiles)
     if item.kind == "number":
         return bool(np.isfinite(directions.numbers[REGISTER_KEYS.get(item.key, item.key)]).any())
     usual = {"flag": "yes"}.get(item.kind, "")

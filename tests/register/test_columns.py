@@ -39,6 +39,8 @@ from stripcheck.units import KINDS
         ("Heading (true)", "heading", 0, ""),
         ("ONE_WAY", "one_way", 0, ""),
         ("Elevation (AMSL)", "elevation", 0, ""),
+        ("Slope profile", "profile", 0, ""),
+        ("Längsprofil", "profile", 0, ""),
     ],
 )
 def test_headers_that_are_known(header: str, key: str, end: int, unit: str) -> None:
@@ -93,6 +95,6 @@ def test_a_code_names_the_strip_only_where_nothing_better_does() -> None:
 
 
 def test_near_misses_are_told_and_other_headers_are_not() -> None:
-    headers = ["Strip", "Length [m]", "Displaced threshold of 09", "Owner", "Slope towards 27", "Fuel"]
-    assert near_misses(headers) == ["Displaced threshold of 09", "Slope towards 27"]
+    headers = ["Strip", "Length [m]", "Displaced threshold of 09", "Owner", "Slope towards 27", "Fuel", "Profile [m]"]
+    assert near_misses(headers) == ["Displaced threshold of 09", "Slope towards 27", "Profile [m]"]
     assert known_headers(["My strips", "", 3.0, "Length"]) == 1
