@@ -10,7 +10,7 @@ from pathlib import Path
 
 PICTURES = Path(__file__).parent / "pictures"
 # page of the printed workbook -> name of the picture
-PAGES = {"Summary": "summary", "Strips": "strips", "Aircraft": "aircraft", "Day": "day", "Rules": "rules",
+PAGES = {"Summary": "summary", "Strips": "strips", "Aircraft": "aircraft", "Manual": "manual", "Day": "day", "Rules": "rules",
          "Left out": "left-out", "Method": "method"}  # fmt: skip
 DPI = 110
 

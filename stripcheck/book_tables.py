@@ -263,6 +263,8 @@ def _raw_rows(path: Path, sheet: str | None) -> list[Sequence[object]]:
     check_file(path)
     kind = path.suffix.lower()
     if kind in TEXT_KINDS:
+        if sheet is not None:
+            raise InputError(f'{path.name}: a text file has no sheets; leave the sheet "{sheet}" out')
         encoding = find_encoding(path)
         return list(text_rows(path, encoding, find_delimiter(path, encoding)))
     if kind in WORKBOOK_KINDS:
@@ -286,7 +288,8 @@ def parse_grid(rows: Iterable[Sequence[object]], source: str,
     at, temperatures = next(((i, found) for i, (_, row) in enumerate(numbered) if len(found := _temperatures(row, wide)) > 1),
                             (-1, []))  # fmt: skip
     if at < 0:
-        raise InputError(f"{source}: no line of temperatures was found; {HINT}")
+        each = "" if wide == 1 else "; each temperature stands over two columns, roll and distance"
+        raise InputError(f"{source}: no line of temperatures was found; {HINT}{each}")
     altitudes: list[float] = []
     cells: list[list[object]] = []
     names: list[str] = []
@@ -316,11 +319,13 @@ def _temperatures(row: Sequence[object], wide: int) -> list[float]:
     while cells and _blank(cells[-1]):
         cells.pop()
     try:
-        found = [read_quantity(cell, "temperature") for cell in cells[::wide]]
+        read = [read_quantity(cell, "temperature") for cell in cells]
     except InputError:
         return []
+    found = read[::wide]
     credible = all(TEMPERATURES[0] <= value <= TEMPERATURES[1] for value in found)
-    return found if credible and all(a < b for a, b in pairwise(found)) else []
+    over_both = all(np.isnan(value) or value == found[i // wide] for i, value in enumerate(read))
+    return found if credible and over_both and all(a < b for a, b in pairwise(found)) else []
 
 
 def _blank(cell: object) -> bool:
@@ -350,8 +355,12 @@ def _figure(cell: object, figure: str, unit: str, where: str) -> float:
 
 
 def _check_axis(where: str, name: str, values: np.ndarray, limits: tuple[float, float], unit: str) -> None:
+    if np.isnan(values).any():
+        raise InputError(f"{where}: one of the {name} is blank")
     if len(values) < 2:
-        raise InputError(f"{where}: {name} must be two or more; type a single figure as a [[book.takeoff]] point instead")
+        raise InputError(
+            f"{where}: {name} must be two or more; type single figures of a roll as [[book.takeoff]] or [[book.landing]] points"
+        )
     if not (np.diff(values) > 0.0).all():
         raise InputError(f"{where}: {name} must rise from one to the next")
     if not limits[0] <= values[0] <= values[-1] <= limits[1]:
@@ -401,7 +410,7 @@ def stack_tables(grids: Sequence[Grid], side: str) -> BookTables | None:
         for number, page in enumerate(pages):
             found = [grid for grid in own if grid.figure == figure and (grid.flap, grid.mass) == page]
             if len(found) != 1:
-                raise InputError(_pages_differ(own, figure, found))
+                raise InputError(_pages_differ(own, figure, page, found))
             bridged = _bridged(found[0], remarks)
             printed[figure][number] = _on_lines(bridged, altitudes, temperatures)
     tables = BookTables(side, pages, altitudes, temperatures, printed, {}, {}, tuple(remarks))
@@ -409,10 +418,10 @@ def stack_tables(grids: Sequence[Grid], side: str) -> BookTables | None:
     return tables
 
 
-def _pages_differ(own: Sequence[Grid], figure: str, found: Sequence[Grid]) -> str:
+def _pages_differ(own: Sequence[Grid], figure: str, page: tuple[float, float], found: Sequence[Grid]) -> str:
     if found:
         return f"{found[1].where}: there are two tables of the {FIGURE_WORDS[figure]} for the same flap and mass; keep one"
-    lone = next(grid for grid in own if grid.figure != figure)
+    lone = next(grid for grid in own if (grid.flap, grid.mass) == page)
     return (
         f"{lone.where}: there is no table of the {FIGURE_WORDS[figure]} for this flap and mass, but there is one for "
         "another; give both figures for each flap and mass, or one of them throughout"
@@ -485,7 +494,8 @@ def _at(tables: BookTables, place: Sequence[int]) -> str:
 def _worse(one: np.ndarray, other: np.ndarray, figure: str) -> np.ndarray:
     """Where a figure is worse than another, by more than rounding: a longer distance or a lower rate of climb."""
     over = one - other if figure != "rate" else other - one
-    return over > 1e-9 * np.abs(one)
+    worse: np.ndarray = over > 1e-9 * np.abs(one)
+    return worse
 
 
 def _easier(grid: np.ndarray, tables: BookTables, figure: str) -> np.ndarray:

@@ -1,4 +1,4 @@
-"""The command line: ``stripcheck fill``, ``stripcheck demo``, ``stripcheck list``.
+"""The command line: ``stripcheck fill``, ``stripcheck strip``, ``stripcheck demo``, ``stripcheck list``.
 
 Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
 130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.
@@ -49,6 +49,7 @@ def _parser() -> argparse.ArgumentParser:
     parser.add_argument("--version", action="version", version=f"stripcheck {__version__}")
     commands = parser.add_subparsers(title="commands", required=True, metavar="COMMAND")
     _add_fill(commands)
+    _add_strip(commands)
     _add_demo(commands)
     listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
     listing.set_defaults(run=_run_list)
@@ -77,6 +78,33 @@ def _add_fill(commands: Any) -> None:
     _add_day(fill)
     fill.add_argument("--quiet", action="store_true", help="no progress bar, no summary line")
     fill.set_defaults(run=_run_fill)
+
+
+def _add_strip(commands: Any) -> None:
+    strip = commands.add_parser(
+        "strip",
+        help="one strip on one page: both ways, what limits it, how far it could go, flaps compared",
+        description="One strip on one page. Slope, heading and obstacles are those of one direction; the other follows.",
+        epilog="Numbers are read in the unit named, or carry their own: --elev '700 m', --obstacle '20 m/400 m'. " + EPILOG,
+    )
+    strip.add_argument("--card", required=True, help="aircraft card: a .toml file, or the name of a shipped one")
+    strip.add_argument("--rules", required=True, help="rule set: a .toml file, or the name of a shipped one")
+    group = strip.add_argument_group("strip")
+    group.add_argument("--length", metavar="M", help="length, usable both ways unless --tora or --lda says otherwise")
+    group.add_argument("--tora", metavar="M", help="length usable for take-off")
+    group.add_argument("--lda", metavar="M", help="length usable for landing")
+    group.add_argument("--width", metavar="M", help="width, where the rule set asks for one")
+    group.add_argument("--elev", required=True, metavar="FT", dest="elevation_field", help="elevation of its highest point")
+    group.add_argument("--surface", required=True, help="surface, such as grass, gravel, 'wet grass'")
+    group.add_argument("--slope", metavar="PCT", dest="slope_given", help="mean slope in the direction given, uphill positive")
+    group.add_argument("--profile", metavar="POINTS", help="heights along it, such as '0:0, 200:3.5, 450:12' (m)")
+    group.add_argument("--heading", metavar="DEG", help="true heading of the direction given; needed in any wind")
+    group.add_argument("--obstacle", metavar="FT/M", help="height above and distance beyond the far end")
+    group.add_argument("--obstacle-behind", metavar="FT/M", help="height above and distance before the near end")
+    group.add_argument("--one-way", action="store_true", help="land in the direction given only, take off in the other only")
+    _add_loading(strip)
+    _add_day(strip)
+    strip.set_defaults(run=_run_strip)
 
 
 def _add_loading(parser: argparse.ArgumentParser) -> None:
@@ -133,9 +161,7 @@ def _run_list(_: argparse.Namespace) -> int:
 def _run_fill(options: argparse.Namespace) -> int:
     from stripcheck.filling import Request, fill_list
 
-    names = ("temperature", "temperature_elevation", "isa_deviation", "qnh", "humidity", "dew_point", "day_condition",
-             "assumed_slope")  # fmt: skip
-    day = {name: getattr(options, name) for name in names} | _wind(options.wind)
+    day = _day(options)
     request = Request(
         Path(options.list), Path(options.output), options.card, options.rules, day,
         takeoff_mass=options.takeoff_mass, landing_mass=options.landing_mass, takeoff_flap=options.takeoff_flap,
@@ -143,6 +169,25 @@ def _run_fill(options: argparse.Namespace) -> int:
         detail=options.detail, force=options.force, quiet=options.quiet,
     )  # fmt: skip
     return _say(fill_list(request), options.quiet)
+
+
+def _run_strip(options: argparse.Namespace) -> int:
+    from stripcheck.card import load_card
+    from stripcheck.day import read_day
+    from stripcheck.one_strip import one_strip, typed_strip
+    from stripcheck.rules import load_rules
+
+    names = ("length", "tora", "lda", "width", "elevation_field", "surface", "slope_given", "profile", "heading", "obstacle",
+             "obstacle_behind")  # fmt: skip
+    loading = {name: getattr(options, name) for name in ("takeoff_mass", "landing_mass", "takeoff_flap", "landing_flap")}
+    strip = typed_strip({name: getattr(options, name) for name in names})
+    day = _day(options)
+    if day["temperature"] is None and day["isa_deviation"] is None:
+        raise InputError("no temperature: add --temp or --isa-dev")
+    lines = one_strip(strip, load_card(options.card), read_day(day), load_rules(options.rules), one_way=options.one_way,
+                      **loading)  # fmt: skip
+    print("\n".join(lines))
+    return 0
 
 
 def _run_demo(options: argparse.Namespace) -> int:
@@ -157,7 +202,14 @@ def _say(lines: list[str], quiet: bool) -> int:
     return 0
 
 
-def _wind(text: str | None) -> dict[str, str]:
+def _day(options: argparse.Namespace) -> dict[str, str | None]:
+    """The day as typed, by key of ``inputs.DAY``."""
+    names = ("temperature", "temperature_elevation", "isa_deviation", "qnh", "humidity", "dew_point", "day_condition",
+             "assumed_slope")  # fmt: skip
+    return {name: getattr(options, name) for name in names} | _wind(options.wind)
+
+
+def _wind(text: str | None) -> dict[str, str | None]:
     """Direction and speed of a wind such as "270/10"."""
     if text is None:
         return {}

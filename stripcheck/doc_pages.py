@@ -7,11 +7,14 @@ cards, the surface table and the columns of the register, so that no page can te
 
 from __future__ import annotations
 
+import csv
 import math
+import re
 import sys
 import tempfile
 import textwrap
 from collections.abc import Callable, Iterable, Sequence
+from importlib.resources import files
 from pathlib import Path
 
 import numpy as np
@@ -19,12 +22,24 @@ import numpy as np
 from stripcheck import doc_words as prose
 from stripcheck import verdict
 from stripcheck.calibrate import BRAKING, QUALITIES, TECHNIQUES
-from stripcheck.card import TYPICAL, load_card, shipped_cards
+from stripcheck.card import TYPICAL, Card, load_card, shipped_cards
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.flap_lift import FLAP_KINDS, FULL_CHORD, WING_SHARE
 from stripcheck.flaps import LIFT_CREDIT, TYPICAL_FLAPS
-from stripcheck.inputs import CARD, CONSTANT_SPEED, DAY, FIXED_PITCH, POWER_LIMIT, RULES, STRIP
+from stripcheck.inputs import (
+    CARD,
+    CONSTANT_SPEED,
+    DAY,
+    FIXED_PITCH,
+    POWER_LIMIT,
+    REACH,
+    RULES,
+    SIDE_WORDS,
+    STRIP,
+    manual_inputs,
+    table_inputs,
+)
 from stripcheck.register import surface_words
 from stripcheck.register.columns import COLUMNS, Column
 from stripcheck.register.limits import LIMITS
@@ -39,6 +54,8 @@ from stripcheck.steps import (
     FIXED_PITCH_STEPS,
     LANDING_DISTANCE_STEPS,
     POWERS,
+    PROPELLERS,
+    SIDES,
     TAKEOFF_DISTANCE_STEPS,
     TAKEOFF_KNOWN,
     build_chain,
@@ -49,6 +66,7 @@ from stripcheck.units import KINDS, from_si, tidy
 MADE = "*This page is made by `python -m stripcheck.doc_pages docs`; change the program, not the page.*"
 WIDTH = 110  # characters of a line of prose
 MANY = 15  # inputs above which a step's list of them says nothing to a reader
+PAGES_READ = "mass and flap of the tables' pages"  # four inputs of many steps, in one word
 STATUS_WORDS = {
     "read": "figures taken from the text",
     "memory": "figures from memory: compare with the text before use",
@@ -109,6 +127,12 @@ def method_page() -> str:
         "## Step by step",
         prose.STEPS_INTRO,
         *_step_tables(),
+        "## With tables of the manual",
+        folded(prose.WITH_TABLES),
+        *_further_tables("tables", [(side, frozenset({side}), frozenset()) for side in SIDES]),
+        "## With the manual's own corrections",
+        folded(prose.WITH_CORRECTIONS),
+        *_further_tables("corrections", [(side, frozenset(), frozenset({side})) for side in REACH]),
         "## Findings and verdicts",
         prose.FINDINGS_INTRO,
         "### Take-off",
@@ -124,15 +148,36 @@ def method_page() -> str:
 
 def _given_tables() -> list[str]:
     parts: list[str] = []
-    card = (*CARD, *FIXED_PITCH, *CONSTANT_SPEED, POWER_LIMIT)
-    for heading, items in (("The strip", STRIP), ("The day", DAY), ("The aeroplane", card), ("The rules", RULES)):
+    card = (*CARD, *FIXED_PITCH, *CONSTANT_SPEED, POWER_LIMIT, *REACH.values())
+    own = [item for side in REACH for item in manual_inputs(side)]
+    groups: tuple[tuple[str, str, Sequence[Input]], ...] = (
+        ("The strip", "", STRIP),
+        ("The day", "", DAY),
+        ("The aeroplane", "", card),
+        ("The manual's tables", folded(prose.TABLES_GIVEN), [item for item in table_inputs("climb") if item.kind == "number"]),
+        ("The manual's own corrections", "", own),
+        ("The rules", "", RULES),
+    )
+    for heading, words, items in groups:
         rows = [(item.label, item.unit, item.help, code(item.key)) for item in items]
-        parts += [f"### {heading}", table(("Value", "Unit", "Meaning", "Key"), rows)]
+        parts += [f"### {heading}", words, table(("Value", "Unit", "Meaning", "Key"), rows)]
+        if words:
+            parts.append(_table_ranges())
     return parts
 
 
+def _table_ranges() -> str:
+    """What a chain reads of the manual's tables, in one row for take-off, landing and climb."""
+    keys: dict[str, list[str]] = {}
+    for side in SIDES:
+        for item in table_inputs(side):
+            if item.kind == "range":
+                keys.setdefault(item.label.partition(": ")[2], []).append(item.key)
+    return table(("Of the tables", "Keys"), [(label, _listed(names)) for label, names in keys.items()])
+
+
 def _step_tables() -> list[str]:
-    fixed, constant = build_chain("fixed pitch"), build_chain("constant speed")
+    fixed, constant = (build_chain(kind) for kind in PROPELLERS)
     powers = [build_chain("constant speed", power).by_key["power"] for power in POWERS]
     power_steps = [step for step in powers if isinstance(step, Step)]
     limited = build_chain("constant speed", POWERS[-1])
@@ -147,16 +192,47 @@ def _step_tables() -> list[str]:
         ("Take-off: verdict", verdict.TAKEOFF_STEPS, fixed),
         ("Landing", LANDING_DISTANCE_STEPS, fixed),
         ("Landing: verdict", verdict.LANDING_STEPS, fixed),
+        ("How far the manual's figures reach, without tables", _reach_steps(fixed), fixed),
     )
+    return [part for heading, steps, chain in groups for part in _step_table(heading, steps, chain)]
+
+
+def _step_table(heading: str, steps: Sequence[Step], chain: Chain) -> list[str]:
     headers = ("Step", "Sign", "Unit", "From", "Only where", "Source", "Key")
+    return [f"### {heading}", table(headers, [_step_row(step, chain) for step in steps])] if steps else []
+
+
+def _reach_steps(chain: Chain) -> list[Step]:
+    found = [chain.by_key[f"{side}_{key}"] for side in REACH for key in ("beyond_reach", "beyond")]
+    return [step for step in found if isinstance(step, Step)]
+
+
+def _further_tables(what: str, cases: Iterable[tuple[str, frozenset[str], frozenset[str]]]) -> list[str]:
+    """The steps that tables or corrections of the manual add or change, side by side: of either propeller, then of each."""
     parts: list[str] = []
-    for heading, steps, chain in groups:
-        parts += [f"### {heading}", table(headers, [_step_row(step, chain) for step in steps])]
+    for side, tables, corrections in cases:
+        chains = [build_chain(kind, POWERS[0], tables, corrections) for kind in PROPELLERS]
+        fixed, constant = (_unlike(chain, build_chain(kind)) for kind, chain in zip(PROPELLERS, chains, strict=True))
+        either = {_work(step) for step in fixed} & {_work(step) for step in constant}
+        heading = f"{SIDE_WORDS[side]}, {what}"
+        parts += _step_table(heading, [step for step in fixed if _work(step) in either], chains[0])
+        for kind, steps, chain in zip(PROPELLERS, (fixed, constant), chains, strict=True):
+            parts += _step_table(f"{heading}, {kind} propeller", [step for step in steps if _work(step) not in either], chain)
     return parts
 
 
+def _unlike(chain: Chain, other: Chain) -> list[Step]:
+    """Steps of a chain that another one does not have, or has from other values."""
+    known = {_work(step) for step in other.steps}
+    return [step for step in chain.steps if _work(step) not in known]
+
+
+def _work(step: Step) -> tuple[object, ...]:
+    return step.key, step.function, step.inputs
+
+
 def _step_row(step: Step, chain: Chain) -> tuple[str, ...]:
-    labels = [chain.by_key[key].label for key in dict.fromkeys(step.inputs)]
+    labels = list(dict.fromkeys(PAGES_READ if "_page_" in key else chain.by_key[key].label for key in step.inputs))
     from_what = "; ".join(labels) if len(labels) <= MANY else "what the findings below read"
     unit = "yes or no" if step.truth else "words" if step.words else step.unit
     guard = chain.by_key[step.guard].label if step.guard else ""
@@ -292,26 +368,93 @@ def card_page() -> str:
     """docs/aircraft-card.md: the entries of a card, how to make one, and how far to trust it."""
     usual = {entry.key: TYPICAL[entry.part, entry.name] for entry in prose.CARD_ENTRIES
              if (entry.part, entry.name) in TYPICAL}  # fmt: skip
-    parts = [part for name in shipped_cards() for part in _calibration(name)]
     return _joined(
         "# The aircraft card",
         f"> {CAUTION}",
         MADE,
         folded(prose.CARD_INTRO.format(_listed(shipped_cards()))),
-        "## Making a card from a flight manual",
-        prose.CARD_RECIPE,
-        "## Entries",
-        prose.CARD_ENTRIES_INTRO,
-        _entries_table(prose.CARD_ENTRIES, (*CARD, *CONSTANT_SPEED), usual),
+        "## A card from a manual in fifteen minutes",
+        *_walk(),
+        "## What matters",
+        prose.CARD_ADVICE,
+        "## Book first",
+        prose.BOOK_FIRST,
+        folded(prose.BOOK_FIRST_MORE.format(verdict.BEYOND, verdict.NO_FIGURE, _beyond_column())),
+        "## The manual's own corrections",
+        prose.CORRECTIONS,
+        "## Tables in files",
+        *_grid_files(),
         "## Flaps",
         prose.FLAPS.format(figure(LIFT_CREDIT, "%"), WING_SHARE, figure(FULL_CHORD, "%"), TYPICAL_FLAPS),
         _flap_kinds(),
         "## Calibration",
         folded(prose.CALIBRATION.format(TECHNIQUES, QUALITIES, BRAKING)),
-        *parts,
+        *(part for name in shipped_cards() for part in _calibration(load_card(name))),
         "## How far to trust it",
         prose.TRUST,
+        "## All entries",
+        prose.CARD_ENTRIES_INTRO,
+        _entries_table(prose.CARD_ENTRIES, (*CARD, *CONSTANT_SPEED), usual),
     )
+
+
+def _walk() -> list[str]:
+    """The walk from an invented manual to a filled workbook; what the program says is what it says now."""
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / "my-card.toml"
+        path.write_text(prose.EXAMPLE_CARD.lstrip(), encoding="utf-8")
+        card = load_card(str(path))
+    takeoff, landing = (card.tables[side].printed["distance"][0] for side in ("takeoff", "landing"))
+    return [
+        folded(prose.WALK_INTRO.format(card.name)),
+        prose.WALK_PAGES,
+        prose.WALK_TAKEOFF,
+        _manual_page(card, "takeoff"),
+        prose.WALK_LANDING,
+        _manual_page(card, "landing"),
+        prose.WALK_TYPE,
+        block("toml", prose.EXAMPLE_CARD),
+        prose.WALK_FILL,
+        block("csv", prose.EXAMPLE_LIST),
+        block("sh", prose.EXAMPLE_COMMAND),
+        folded(prose.WALK_PROOF.format(takeoff=takeoff[0, 1], landing=landing[0, 1])),
+    ]
+
+
+def block(kind: str, text: str) -> str:
+    """A text as a block of code.
+
+    >>> print(block("sh", "ls"))
+    ```sh
+    ls
+    ```
+    """
+    return f"```{kind}\n{text.strip()}\n```"
+
+
+def _manual_page(card: Card, side: str) -> str:
+    """The first page of a side as a manual prints it."""
+    tables = card.tables[side]
+    pairs = zip(tables.printed["roll"][0], tables.printed["distance"][0], tables.altitudes, strict=True)
+    rows = [(figure(altitude, "ft"), *(f"{roll:.0f} / {whole:.0f}" if np.isfinite(roll + whole) else "-"
+                                       for roll, whole in zip(rolls, wholes, strict=True)))
+            for rolls, wholes, altitude in pairs]  # fmt: skip
+    return table(("Pressure altitude", *(figure(value, "°C") for value in tables.temperatures)), rows)
+
+
+def _grid_files() -> list[str]:
+    """How the two shapes of a grid look in a file: the beginnings of two that are shipped."""
+    parts: list[str] = []
+    for words, name in ((prose.GRID_FILES, "high-mule-climb.csv"), (prose.GRID_PAIRS, "high-mule-takeoff-2800.csv")):
+        with (files("stripcheck") / "cards" / name).open(encoding="utf-8") as file:
+            rows = list(csv.reader(file))
+        piece = "\n".join(",".join(f'"{cell}"' if "," in cell else cell for cell in row[:5]) for row in rows[:5])
+        parts += [folded(words.format(f"the corner of {code(name)}")), block("csv", piece)]
+    return parts
+
+
+def _beyond_column() -> str:
+    return build_chain(PROPELLERS[0], tables=frozenset({"takeoff"})).by_key["takeoff_beyond_temperature"].label
 
 
 def _flap_kinds() -> str:
@@ -320,18 +463,20 @@ def _flap_kinds() -> str:
     return table(("Kind", "Lift of the section", "At", "Drag factor"), rows)
 
 
-def _calibration(name: str) -> list[str]:
-    card = load_card(name)
+def _calibration(card: Card) -> list[str]:
     labels = {item.key: item for item in (*CARD, *FIXED_PITCH, *CONSTANT_SPEED)}
     fitted = [(labels[key].label, f"{from_si(value, labels[key].unit):,.4g} {labels[key].unit}".strip())
               for key, value in card.fit.values.items()]  # fmt: skip
-    rows = [(label, f"{book:.0f}", f"{model:.1f}", _per_cent(model / book - 1.0))
-            for label, book, model in card.fit.residuals]  # fmt: skip
+    kinds: dict[str, list[float]] = {}
+    for label, book, model in card.fit.residuals:
+        kinds.setdefault(re.sub(r" \d+:", ":", label), []).append(model / book - 1.0)
+    rows = [(kind, str(len(off)), _per_cent(np.sqrt(np.mean(np.square(off)))).lstrip("+"), _per_cent(max(off, key=abs)))
+            for kind, off in kinds.items()]  # fmt: skip
     return [
         f"### {card.name}",
         card.note,
         table(("Fitted", "Value"), fitted),
-        table(("Book point", "Book [m]", "Card [m]", "Difference"), rows),
+        table(("The card against the manual", "Figures", "Typical difference (rms)", "Greatest"), rows),
     ]
 
 

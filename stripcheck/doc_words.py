@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import NamedTuple
 
+from stripcheck.book_tables import GIVES
 from stripcheck.flap_lift import FLAP_KINDS
 from stripcheck.steps import POWERS
 
@@ -100,13 +101,35 @@ CARD_ENTRIES = (
     Entry("usual", "landing_mass", "mass_landing", usual="max_landing"),
     Entry("usual", "takeoff_flap", "", "name of a setting", "", "Setting used unless told otherwise"),
     Entry("usual", "landing_flap", "", "name of a setting", "", "Setting used unless told otherwise"),
-    Entry("[book.takeoff]", "pressure_altitude", "", "ft", "", "Of this point of the manual's table"),
+    Entry("book", "climb_speed", "", "kt", "needed with rates of climb", "Calibrated airspeed of the manual's rates of climb"),
+    Entry("[book.table]", "gives", "", "; ".join(GIVES), "", "What its figures are; level dry pavement, still air. Two figures "
+          "stand in pairs under each temperature"),
+    Entry("[book.table]", "flap", "", "name of a setting", "", "Of this table"),
+    Entry("[book.table]", "mass", "", "kg", "the greatest for that use", "Of this table"),
+    Entry("[book.table]", "unit", "", "m, ft or ft/min", "m; ft/min for climb", "Of its figures"),
+    Entry("[book.table]", "pressure_altitudes", "", "list of ft", "needed, or `file`", "Of its lines; rising"),
+    Entry("[book.table]", "temperatures", "", "list of °C", "needed, or `file`", "Of its columns; rising"),
+    Entry("[book.table]", "values", "", "list of lists", "needed, or `file`", "The figures of each pressure altitude; "
+          '`"-"` for a hole'),
+    Entry("[book.table]", "file", "", "name of a file", "typed", "The same grid as .csv, .xlsx, .xls or .ods, beside the card"),
+    Entry("[book.table]", "sheet", "", "name of a sheet", "the first", "Of that file, if it is a workbook"),
+    *(
+        Entry(part, name, "", takes, "physics", f"{side}: {words}")
+        for side, part in (("Take-off", "book.corrections.takeoff"), ("Landing", "book.corrections.landing"))
+        for name, takes, words in (
+            ("headwind", '`["10 %", "9 kt"]`', "so much off the distance for each so much headwind"),
+            ("tailwind", '`["10 %", "2 kt"]`', "so much added for each so much tailwind"),
+            ("dry_grass", "%", "share of the roll that dry grass adds to the distance"),
+            ("wet_grass", "%", "share of the roll that wet grass adds"),
+        )
+    ),
+    Entry("[book.takeoff]", "pressure_altitude", "", "ft", "", "Of a single figure of the manual"),
     Entry("[book.takeoff]", "temperature", "", "°C", "", "Of this point"),
     Entry("[book.takeoff]", "mass", "", "kg", "max_takeoff", "Of this point"),
     Entry("[book.takeoff]", "flap", "", "name of a setting", "", "Of this point"),
     Entry("[book.takeoff]", "roll", "", "m", "", "Take-off roll on level dry pavement in still air"),
     Entry("[book.takeoff]", "to_50ft", "", "m", "may be left out", "Distance to 50 ft, roll included"),
-    Entry("[book.landing]", "pressure_altitude", "", "ft", "", "Of this point of the manual's table"),
+    Entry("[book.landing]", "pressure_altitude", "", "ft", "", "Of a single figure of the manual"),
     Entry("[book.landing]", "temperature", "", "°C", "", "Of this point"),
     Entry("[book.landing]", "mass", "", "kg", "max_landing", "Of this point"),
     Entry("[book.landing]", "flap", "", "name of a setting", "", "Of this point"),
@@ -181,11 +204,23 @@ ask for `--detail full`.) This page lists the same steps from the same tables.""
 GIVEN_INTRO = """
 What you type, and the unit of a plain number. *Key* is the name by which Python functions know it. A blank
 means "not known": nothing is filled in silently, and what stands in for it is listed on the sheet Method."""
+TABLES_GIVEN = """
+A card with tables of the manual brings these, from its part `[[book.table]]`. All tables of a side have common
+lines and columns; a page is a table for one flap setting and one mass."""
 STEPS_INTRO = """
 *Only where* names what must hold, or be known, before a step has a value; without it the cell stays empty
 and the verdict says why. Lengths are in metres, speeds in knots: inside, all is computed in SI units.
 *Level dry pavement* is the same run or flight as a flight manual's table means it; the published
 corrections are put on that one."""
+WITH_TABLES = """
+The manual's figure is used as it stands at the manual's own conditions, and the model carries it from there
+to the strip: answer = manual x model(strip) / model(manual's conditions). These steps are added where the
+card has tables for that side; a step that stands above too is then made from these values. A rate of climb
+is carried by the difference, not the ratio: it may be near nil."""
+WITH_CORRECTIONS = """
+Where the card holds the manual's own correction for wind or for grass, it goes before the physics, which is
+left with what the manual does not tell: slope, other ground, and no wind. The distance by physics stays as
+a step beside it. The rule set's published corrections still count, and the longer governs."""
 FINDINGS_INTRO = """
 Take-off and landing are judged apart, for each direction. The findings are gone through from the top; the
 first that holds decides, and its words are the limiting reason. A suitable strip is one for which none of
@@ -249,24 +284,424 @@ CARD_INTRO = """
 A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `--card FILE.toml` takes your
 own, `--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own
 manual's figures in their place."""
-CARD_RECIPE = """
-1. Copy a shipped card with the same kind of propeller. Change name, masses, wing and power.
-2. Stall speeds: from the manual, as *calibrated* airspeed, one for each flap setting, at the mass named
-   under `stall_speeds_at`. An indicated stall speed can be several knots low, and every distance goes with
-   its square. Where the manual prints only that, or none for a setting, see *Flaps* below.
-3. Speeds at lift-off, 50 ft, approach and touchdown: divide what the manual states by the stall speed of
-   that setting. Where it states none, leave the entry out; the usual value is then listed as taken for
-   granted.
-4. Book points: from the manual's distance tables, on level dry pavement in still air, at the flap setting
-   and technique that the table states. Take two take-off points far apart, such as sea level on a standard
-   day and a high, hot one; then both the thrust at rest and its loss with speed can be told. Two landing
-   points likewise.
-5. Load the card and look at the residuals (sheet Aircraft of a filled workbook). A point that is out by
-   more than a few per cent, or a factor far from 1, says that something on the card does not belong
-   together."""
+WALK_INTRO = """
+The {0} is invented, and so is its manual: its figures come from this program's model, rounded to 5 m, so that
+they belong together. With your own manual the steps are the same."""
+WALK_PAGES = """
+**1. Find these pages.**
+
+- Data: empty mass 480 kg, greatest mass 750 kg. Wing 15.2 m², span 10.4 m. Engine 86 kW, fixed-pitch
+  propeller of 1.85 m.
+- Limits: crosswind 12 kt, tailwind 5 kt.
+- Stall speeds at 750 kg, power off, calibrated: flaps up 44 kt, 15° 41 kt, 35° 38 kt.
+- The two tables below, with their notes."""
+WALK_TAKEOFF = """
+*Take-off* [m], roll / to 50 ft: 750 kg, flaps 15°, level dry pavement, no wind. Lift off at 45 kt, 50 kt at
+50 ft, calibrated. Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind. On dry grass
+add 15 % of the roll."""
+WALK_LANDING = """
+*Landing* [m], roll / from 50 ft: 750 kg, flaps 35°, level dry pavement, no wind. 50 kt at 50 ft, calibrated.
+Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind."""
+WALK_TYPE = """
+**2. Type them into a text file**, here `my-card.toml`. A speed is divided by the stall speed of its flap
+setting: 45 / 41 = 1.10. A figure that the manual leaves out is `"-"`. What no page tells is left out too:
+the program then takes a usual value and says so."""
+EXAMPLE_CARD = """
+[aeroplane]
+name = "Tarn Wader 115"
+note = "Invented two-seater, fixed-pitch propeller."
+
+[mass]
+empty = "480 kg"
+max_takeoff = "750 kg"
+
+[wing]
+area = "15.2 m²"
+span = "10.4 m"
+
+[engine]
+rated_power = "86 kW"
+
+[propeller]
+kind = "fixed pitch"
+diameter = "1.85 m"
+
+[[flap]]
+setting = "up"
+deflection = "0°"
+stall_speed = "44 kt"
+
+[[flap]]
+setting = "15"
+deflection = "15°"
+stall_speed = "41 kt"
+
+[[flap]]
+setting = "35"
+deflection = "35°"
+stall_speed = "38 kt"
+uses = ["landing"]
+
+[speeds]
+lift_off = 1.10
+screen = 1.22
+approach = 1.32
+
+[limits]
+crosswind = "12 kt"
+tailwind = "5 kt"
+
+[usual]
+takeoff_flap = "15"
+landing_flap = "35"
+
+[[book.table]]
+gives = "take-off roll and to 50 ft"
+flap = "15"
+mass = "750 kg"
+pressure_altitudes = [0, 2000, 4000, 6000]
+temperatures = [0, 15, 30]
+values = [
+    [120, 275, 135, 310, 155, 360],
+    [145, 330, 165, 380, 185, 440],
+    [175, 405, 200, 475, 225, 555],
+    [210, 505, 240, 605, "-", "-"],
+]
+
+[[book.table]]
+gives = "landing roll and from 50 ft"
+flap = "35"
+mass = "750 kg"
+pressure_altitudes = [0, 3000, 6000]
+temperatures = [0, 15, 30]
+values = [
+    [115, 320, 120, 325, 125, 330],
+    [130, 330, 135, 335, 140, 345],
+    [140, 345, 145, 350, 155, 360],
+]
+
+[book.corrections.takeoff]
+headwind = ["10 %", "9 kt"]
+tailwind = ["10 %", "2 kt"]
+dry_grass = "15 %"
+
+[book.corrections.landing]
+headwind = ["10 %", "9 kt"]
+tailwind = ["10 %", "2 kt"]
+"""
+WALK_FILL = """
+**5. Fill a workbook.** A list of two strips, `my-strips.csv`, the first of which is the manual's own page:"""
+EXAMPLE_LIST = """
+Strip,Runway,Length [m],Elevation [ft],Slope [%],Heading,Surface
+Proof,09/27,800,0,0,90,paved
+Home,09/27,620,900,1,90,grass
+"""
+EXAMPLE_COMMAND = """
+stripcheck fill my-strips.csv --card my-card.toml --rules manual-only --temp 15 -o my-strips.xlsx
+"""
+WALK_PROOF = """
+On the sheet Strips the distances required of *Proof* are {takeoff:.0f} m and {landing:.0f} m, those of the
+manual at sea level and 15 °C. If yours are not the manual's, a figure was mistyped. Those of *Home* are what
+the manual does not print. Then take your rule set in place of `manual-only`, and your own list.
+(`stripcheck demo` fills a workbook for a shipped aeroplane, if you want to see one first.)"""
+CARD_ADVICE = """
+- *Stall speeds* are best the calibrated ones, at the mass named under `stall_speeds_at`. An indicated one
+  can be several knots low, and every distance goes with its square. Where the manual prints only that, or
+  none for a setting, see *Flaps* below.
+- *Conditions* of a table are level dry pavement in still air. A table for grass, or with a factor in it, is
+  none; leave it out.
+- *A chart in place of a table:* read figures off it where the lines of the paper cross, and type them as a
+  table. *A few figures only:* type each as `[[book.takeoff]]` or `[[book.landing]]`, far apart, such as sea
+  level on a cold day and a high, hot one, heavy and light.
+- *Feet:* `unit = "ft"` in a table, `"1050 ft"` in a single figure."""
 CARD_ENTRIES_INTRO = """
 Numbers carry their unit, in quotes. *Needed* entries have no usual value. A usual value of speeds, drag or landing that
-was used is listed as taken for granted. Parts in double brackets come again for each setting or point."""
+was used is listed as taken for granted. Parts in double brackets come again for each setting, table or point."""
+GRID_FILES = """
+A table may stand in a file beside the card, as the manual prints it: a line of temperatures, below it a line
+for each pressure altitude, which stands in the first cell. Title lines above are passed over. Bare numbers
+are ft and °C. One figure for each temperature, here {0}:"""
+GRID_PAIRS = """
+With two figures, each temperature has two columns and stands above the first; a line of words may follow,
+here {0}:"""
+BOOK_FIRST = """
+A manual's table holds for level dry pavement in still air. The strip is none of that. So the manual's figure
+is taken as it is, and physics only carries it on:
+
+```text
+distance = manual's figure x model(strip) / model(manual's conditions)
+```
+"""
+BOOK_FIRST_MORE = """
+The manual's conditions are the strip's pressure altitude and temperature and your mass, as far as the tables
+go, and the nearest flap setting that has tables. On level dry pavement in still air the model cancels out,
+and the manual's figure comes out to the metre. A flap setting without tables is carried by the model, and no
+verdict marks it.
+
+*Between its figures* a table is read linearly in pressure altitude, temperature and mass, as manuals ask for
+(multilinear interpolation). That is exact at each figure and never goes past its neighbours, as a curve
+could; and since distances grow faster and faster with height, heat and mass, a straight line between two
+figures lies on the long side.
+
+*Holes.* One between other figures is put between them, and said so. One at an edge stays a hole: there the
+conditions are beyond the book, and the model carries the nearest figure on.
+
+*Beyond the book.* Higher, hotter or heavier than the figures go, the nearest figure is carried on by the
+model, and the verdict is at best *marginal* ("{0}"). Where the model itself has no distance at the edge of
+the table, it is *unsuitable* ("{1}"). Lower, colder or lighter than the tables is carried in the same way and
+not marked: it is easier than what the manual prints, and if it cost a verdict, more heat could better one.
+How far beyond shows in three columns for each side on the sheet Strips, such as "{2}"; negative is the easy
+side. A card of single figures only is beyond the book where the air is thinner (by density altitude) than at
+any of them.
+
+*Only rolls, or only distances over 50 ft:* the other one follows in the model's proportion; a card needs at
+least one roll for each side. *Rates of climb* correct the gradient with which the aeroplane climbs away and
+clears obstacles; conditions beyond those tables show in the columns and cost no verdict."""
+CORRECTIONS = """
+Where the card holds the manual's own correction for wind or for grass, it goes before the physics, which is
+left with what the manual does not tell: slope, other ground, and no wind. The distance by physics stays as
+a step beside it. The rule set's published corrections still count, and the longer governs."""
+FINDINGS_INTRO = """
+Take-off and landing are judged apart, for each direction. The findings are gone through from the top; the
+first that holds decides, and its words are the limiting reason. A suitable strip is one for which none of
+the others holds."""
+BOTH_INTRO = """
+The summary takes the better direction in and the better direction out: first by verdict (*suitable*, then
+*marginal*, then *not assessed*, then *unsuitable*), then by margin. Together they read: {}. As soon as one
+side is not assessed, so is the pair."""
+RULES_INTRO = """
+A rule set says how much of a wind counts, which published corrections are put on a distance, by what factor
+it is then multiplied, and what a site must offer. `--rules NAME` takes a shipped set, `--rules FILE.toml`
+your own. The set's values stand on the sheet Rules of a filled workbook, where each can be changed.
+
+Two distances are compared, and the longer governs: the one that physics gives for the slope and the
+surface, and the one on level dry pavement times the published corrections. The published corrections give
+nothing back for a slope that helps, and so a downhill take-off or an uphill landing counts as a level one
+under the sets that use them. *Physics counts* and *Published corrections count* switch either off.
+
+Rules change and differ from country to country. The shipped figures are only as good as their status says;
+the current local text governs."""
+GROUND_INTRO = """
+Friction coefficients of free and of braked wheels, the same for every set. *None*: a strip with that ground
+is not assessed. Braking is multiplied by the factor that the aircraft card was calibrated to.
+
+[1] W. H. Mason, notes to a take-off program, Virginia Tech. [2] D. P. Raymer, Aircraft Design, and J. D.
+Anderson, Aircraft Performance and Design (from memory). [3] Common practice, no source: between its
+neighbours, on the careful side."""
+OWN_RULES = """
+Write a text file whose name ends in `.toml`, and name it with `--rules`. A misspelt entry is refused, and
+so is a figure that can't be right. Write each figure with its unit, in quotes: `"5 %"`, never 0.05, which
+would be read as 0.05 %. A small one, for an invented operator:
+
+```toml
+title = "Our operations manual"
+issue = "Revision 3"
+citation = "Operations manual, part B, chapter 4"
+status = "own"
+
+[wind]
+headwind_credit = "50 %"
+tailwind_count = "150 %"
+
+[takeoff]
+safety_factor = 1.33
+
+[landing]
+safety_factor = 1.43
+
+[takeoff_surface.grass]
+dry = 1.20
+wet = 1.30
+```
+
+All entries; *needed* ones have no usual value."""
+SURFACE_FACTORS = """
+Published surface corrections go into `[takeoff_surface.WORD]` and `[landing_surface.WORD]`, with the
+entries {0}, each a factor of 1 or more. WORD is one of {1} (in quotes where it has a space:
+`[takeoff_surface."long grass"]`), or `every` for all that have no figure of their own. What is left out is
+1: then the physics of that surface governs."""
+CARD_INTRO = """
+A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `--card FILE.toml` takes your
+own, `--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own
+manual's figures in their place."""
+WALK_INTRO = """
+The {0} is invented, and so is its manual: its figures come from this program's model, rounded to 5 m, so that
+they belong together. With your own manual the steps are the same."""
+WALK_PAGES = """
+**1. Find these pages.**
+
+- Data: empty mass 480 kg, greatest mass 750 kg. Wing 15.2 m², span 10.4 m. Engine 86 kW, fixed-pitch
+  propeller of 1.85 m.
+- Limits: crosswind 12 kt, tailwind 5 kt.
+- Stall speeds at 750 kg, power off, calibrated: flaps up 44 kt, 15° 41 kt, 35° 38 kt.
+- The two tables below, with their notes."""
+WALK_TAKEOFF = """
+*Take-off* [m], roll / to 50 ft: 750 kg, flaps 15°, level dry pavement, no wind. Lift off at 45 kt, 50 kt at
+50 ft, calibrated. Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind. On dry grass
+add 15 % of the roll."""
+WALK_LANDING = """
+*Landing* [m], roll / from 50 ft: 750 kg, flaps 35°, level dry pavement, no wind. 50 kt at 50 ft, calibrated.
+Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind."""
+WALK_TYPE = """
+**2. Type them into a text file**, here `my-card.toml`. A speed is divided by the stall speed of its flap
+setting: 45 / 41 = 1.10. A figure that the manual leaves out is `"-"`. What no page tells is left out too:
+the program then takes a usual value and says so."""
+EXAMPLE_CARD = """
+[aeroplane]
+name = "Tarn Wader 115"
+note = "Invented two-seater, fixed-pitch propeller."
+
+[mass]
+empty = "480 kg"
+max_takeoff = "750 kg"
+
+[wing]
+area = "15.2 m²"
+span = "10.4 m"
+
+[engine]
+rated_power = "86 kW"
+
+[propeller]
+kind = "fixed pitch"
+diameter = "1.85 m"
+
+[[flap]]
+setting = "up"
+deflection = "0°"
+stall_speed = "44 kt"
+
+[[flap]]
+setting = "15"
+deflection = "15°"
+stall_speed = "41 kt"
+
+[[flap]]
+setting = "35"
+deflection = "35°"
+stall_speed = "38 kt"
+uses = ["landing"]
+
+[speeds]
+lift_off = 1.10
+screen = 1.22
+approach = 1.32
+
+[limits]
+crosswind = "12 kt"
+tailwind = "5 kt"
+
+[usual]
+takeoff_flap = "15"
+landing_flap = "35"
+
+[[book.table]]
+gives = "take-off roll and to 50 ft"
+flap = "15"
+mass = "750 kg"
+pressure_altitudes = [0, 2000, 4000, 6000]
+temperatures = [0, 15, 30]
+values = [
+    [120, 275, 135, 310, 155, 360],
+    [145, 330, 165, 380, 185, 440],
+    [175, 405, 200, 475, 225, 555],
+    [210, 505, 240, 605, "-", "-"],
+]
+
+[[book.table]]
+gives = "landing roll and from 50 ft"
+flap = "35"
+mass = "750 kg"
+pressure_altitudes = [0, 3000, 6000]
+temperatures = [0, 15, 30]
+values = [
+    [115, 320, 120, 325, 125, 330],
+    [130, 330, 135, 335, 140, 345],
+    [140, 345, 145, 350, 155, 360],
+]
+
+[book.corrections.takeoff]
+headwind = ["10 %", "9 kt"]
+tailwind = ["10 %", "2 kt"]
+dry_grass = "15 %"
+
+[book.corrections.landing]
+headwind = ["10 %", "9 kt"]
+tailwind = ["10 %", "2 kt"]
+"""
+WALK_FILL = """
+**5. Fill a workbook.** A list of two strips, `my-strips.csv`, the first of which is the manual's own page:"""
+EXAMPLE_LIST = """
+Strip,Runway,Length [m],Elevation [ft],Slope [%],Heading,Surface
+Proof,09/27,800,0,0,90,paved
+Home,09/27,620,900,1,90,grass
+"""
+EXAMPLE_COMMAND = """
+stripcheck fill my-strips.csv --card my-card.toml --rules manual-only --temp 15 -o my-strips.xlsx
+"""
+WALK_PROOF = """
+On the sheet Strips the distances required of *Proof* are {takeoff:.0f} m and {landing:.0f} m, those of the
+manual at sea level and 15 °C. If yours are not the manual's, a figure was mistyped. Those of *Home* are what
+the manual does not print. Then take your rule set in place of `manual-only`, and your own list.
+(`stripcheck demo` fills a workbook for a shipped aeroplane, if you want to see one first.)"""
+CARD_ADVICE = """
+- *Stall speeds* are best the calibrated ones, at the mass named under `stall_speeds_at`. An indicated one
+  can be several knots low, and every distance goes with its square. Where the manual prints only that, or
+  none for a setting, see *Flaps* below.
+- *Conditions* of a table are level dry pavement in still air. A table for grass, or with a factor in it, is
+  none; leave it out.
+- *A chart in place of a table:* read figures off it where the lines of the paper cross, and type them as a
+  table. *A few figures only:* type each as `[[book.takeoff]]` or `[[book.landing]]`, far apart, such as sea
+  level on a cold day and a high, hot one, heavy and light.
+- *Feet:* `unit = "ft"` in a table, `"1050 ft"` in a single figure."""
+CARD_ENTRIES_INTRO = """
+Numbers carry their unit, in quotes. *Needed* entries have no usual value. A usual value of speeds, drag or landing that
+was used is listed as taken for granted. Parts in double brackets come again for each setting, table or point."""
+GRID_FILES = """
+A table may stand in a file beside the card, as the manual prints it: a line of temperatures, below it a line
+for each pressure altitude, which stands in the first cell. Title lines above are passed over. Bare numbers
+are ft and °C. One figure for each temperature, here {0}:"""
+GRID_PAIRS = """
+With two figures, each temperature has two columns and stands above the first; a line of words may follow,
+here {0}:"""
+BOOK_FIRST = """
+A manual's table holds for level dry pavement in still air. The strip is none of that. So the manual's figure
+is taken as it is, and physics only carries it on:
+
+```text
+distance = manual's figure x model(strip) / model(manual's conditions)
+```
+
+The manual's conditions are the strip's pressure altitude and temperature and your mass, as far as the tables
+go, and the nearest flap setting that has tables. On level dry pavement in still air the model cancels out,
+and the manual's figure comes out to the metre. A flap setting without tables is carried by the model, and no
+verdict marks it.
+
+*Between its figures* a table is read linearly in pressure altitude, temperature and mass, as manuals ask for
+(multilinear interpolation). That is exact at each figure and never goes past its neighbours, as a curve
+could; and since distances grow faster and faster with height, heat and mass, a straight line between two
+figures lies on the long side.
+
+*Holes.* One between other figures is put between them, and said so. One at an edge stays a hole: there the
+conditions are beyond the book, and the model carries the nearest figure on.
+
+*Beyond the book.* Higher, hotter or heavier than the figures go, the nearest figure is carried on by the
+model, and the verdict is at best *marginal*: *{0}*. Where the model itself has no distance at the table's
+edge it is *unsuitable*: *{1}*. Lower, colder or lighter than the tables is carried in the same way and not
+marked: it is easier than what the manual prints, and if it cost a verdict, more heat could better one. How
+far beyond shows in three columns for each side on the sheet Strips, such as *{2}*; negative is the easy
+side. A card of single figures only is beyond the book where the air is thinner (by density altitude) than
+at any of them.
+
+*Only rolls, or only distances over 50 ft:* the other one follows in the model's proportion; a card needs
+at least one roll for each side. *Rates of climb* correct the gradient with which the aeroplane climbs away
+and clears obstacles; conditions beyond those tables show in the columns and cost no verdict."""
+CORRECTIONS = """
+What the manual says about wind and grass can be entered, and then governs in place of the physics: the
+physics is left with slope, other ground and, for what is not entered, wind or grass. A share for grass is
+one of the roll. The distance by physics stands beside it on the sheet Strips. The rule set still decides
+how much of a wind counts, and its published corrections count too: the longer governs. However strong a
+headwind, no more than half of the distance is taken off."""
 FLAPS = """
 Any number of settings, from up to down by deflection. Each stall speed is best the calibrated one of the
 manual. It is taken as the equivalent airspeed, which at sea level it is; elsewhere the difference is below
@@ -322,9 +757,9 @@ What the fit leaves over is printed with the card. For the shipped ones:"""
 TRUST = """
 - The card is as good as the manual's table, flown by the manual's technique, in an aeroplane in that
   condition. A tired engine or a dented propeller is not on it.
-- Between and a little around the book points it is a calibrated model; far outside of them (much hotter,
-  higher or heavier) it is an estimate, and no verdict tells you so. Choose book points that span what you
-  fly.
+- Within its tables the card is the manual. Beyond them, at other flaps, and on cards with a few single
+  figures it is a calibrated model, and the further from the figures, the more of an estimate. Beyond the
+  book costs the *suitable*; another flap setting or a mass between single figures does not.
 - Slope, surface, wind and soft ground are physics with the coefficients of the ground table. The scatter of
   real ground is wider than that of any aeroplane: walk the strip.
 - Ground effect, flap drag and lift in the run are single figures. They matter most where the aeroplane

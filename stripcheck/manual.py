@@ -61,9 +61,11 @@ def read_manual(book: Section, values: Mapping[str, Any], flaps: tuple[Flap, ...
                 f"rolls, or one [[book.{side}]] point or more, is needed"
             )
         more[f"{side}_reach"] = _reach(figures)
-    corrections = frozenset(side for side in own if book.section("corrections").has(side))
+    part = book.section("corrections")
+    part.asked |= set(own)
+    corrections = frozenset(side for side in own if part.has(side))
     for side in corrections:
-        more |= _corrections(book.section("corrections").section(side), side)
+        more |= _corrections(part.section(side), side)
     remarks += [remark for found in tables.values() for remark in found.remarks]
     return Manual(points["takeoff"], points["landing"], tables, corrections, more, remarks)
 

@@ -14,9 +14,12 @@ from math import isfinite, isnan
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from stripcheck.errors import InputError
 from stripcheck.units import read_quantity
+
+Floats = Sequence[float] | NDArray[np.float64]
 
 MOST_POINTS = 30
 STEEPEST = 0.30  # fraction: beyond any strip in use
@@ -150,7 +153,7 @@ def check_length(profile: Profile, length: float, usable: float) -> None:
         )
 
 
-def profile_column(column: Any, lengths: Sequence[float], usable: Sequence[float]) -> list[Profile | None]:
+def profile_column(column: Any, lengths: Floats, usable: Floats) -> list[Profile | None]:
     """The profiles of a column, None where there is none; each from the end where its row's direction begins.
 
     ``column``: texts, profiles or blanks, one for each row, or one of them for all rows; ``lengths`` and ``usable`` [m]

@@ -31,6 +31,7 @@ SAME_LENGTH = 1e-9  # of a part's length, or metres: what the speed at its end m
 SAME_ROLL = 1e-10  # of a roll: what the roll on the equivalent slope may be off by
 NEWTON_STEPS = 20  # for the speed at the end of a part; 12 were enough in 60,000 random runs
 SECANT_STEPS = 16  # for the equivalent slope; 8 were enough in them
+STEEP = 0.9  # sine: steeper than any part of a profile
 NEAR = 1e-6  # m: a point nearer than this tells no slope
 
 
@@ -134,7 +135,9 @@ def roll_along(law: Law, tracks: Tracks, begin: Array, first: Array, last: Array
     """Length [m] of a run along profiles, from a place [m] and an airspeed [m/s] to another airspeed.
 
     A take-off run goes from the wind to lift-off speed, a braked roll from touchdown speed to the wind. NaN where the
-    acceleration, or deceleration, falls below ``ground_run.LEAST_ACCELERATION`` on the way.
+    acceleration, or deceleration, falls below ``ground_run.LEAST_ACCELERATION`` on the way. That is on the safe side: who
+    comes to a short steep part with speed may lose some and lift off beyond it all the same, and one who comes to it
+    slower may gain all along.
 
     >>> law = SquareLaw(np.array([2.0]), np.array([-0.0005]), np.array([0.0]), 1.0)
     >>> level = tracks_of([Profile((0.0, 600.0), (0.0, 0.0))])
@@ -205,7 +208,7 @@ def equivalent_slope(law: Law, tracks: Tracks, roll: Array, one: Array, other: A
     slow, fast = np.minimum(one, other), np.maximum(one, other)
     against = law.harder * tracks.slopes
     spare = (law.least(np.zeros_like(roll), slow, fast) - ground_run.LEAST_ACCELERATION) / G0
-    spare = np.clip(spare, -_STEEP, _STEEP)  # sine of the slope that leaves just the least acceleration
+    spare = np.clip(spare, -STEEP, STEEP)  # sine of the slope that leaves just the least acceleration
     steep = np.minimum(against.max(axis=1), spare / np.sqrt(1.0 - np.square(spare)))
     gentle = np.minimum(against.min(axis=1), steep)
 
@@ -217,9 +220,6 @@ def equivalent_slope(law: Law, tracks: Tracks, roll: Array, one: Array, other: A
     slope = law.harder * found
     fits = np.abs(law.length(ground_run.slope_sine(slope), slow, fast) - roll) <= SAME_ROLL * roll
     return np.where(fits, slope, np.nan)
-
-
-_STEEP = 0.9  # sine: steeper than any slope of a profile
 
 
 def _crossing(function: Callable[[Array], Array], one: Array, other: Array) -> Array:
@@ -319,10 +319,10 @@ class _Given:
         steps = evaluate(self.chain, {**self.values, **dict.fromkeys(KEYS, np.nan), "slope_given": slope}, keys)
         return [np.array(np.broadcast_to(steps[key], self.size), dtype=float) for key in keys]
 
-    def starts(self, tracks: Tracks, usable: str) -> tuple[Array, Array]:
-        """Places [m] at which a usable length may begin: the first end, and the last one from which it fits."""
-        left = tracks.lengths - np.broadcast_to(self.values[usable], self.size)
-        return np.zeros(self.size), np.maximum(left, 0.0)
+    def starts(self, tracks: Tracks, usable: str) -> list[Array]:
+        """Places [m] at which a usable length may begin: the first end and, where any differs, the last that it fits to."""
+        left = np.maximum(tracks.lengths - np.broadcast_to(self.values[usable], self.size), 0.0)
+        return [np.zeros(self.size), left] if left.any() else [left]
 
 
 def _values_of_rows(chain: Chain, values: Mapping[str, Number], rows: NDArray[np.intp], size: int) -> dict[str, Number]:
@@ -333,15 +333,16 @@ def _values_of_rows(chain: Chain, values: Mapping[str, Number], rows: NDArray[np
 
 def _takeoff(given: _Given, tracks: Tracks) -> dict[str, Array]:
     law, lift_off = _takeoff_law(given)
-    rolls = [roll_along(law, tracks, begin, law.wind, lift_off) for begin in given.starts(tracks, "tora")]
-    climbs = [steepest_climb(tracks, begin + roll) for begin, roll in zip(given.starts(tracks, "tora"), rolls, strict=True)]
-    roll = np.maximum(*rolls)
+    starts = given.starts(tracks, "tora")
+    rolls = [roll_along(law, tracks, begin, law.wind, lift_off) for begin in starts]
+    climbs = [steepest_climb(tracks, begin + roll) for begin, roll in zip(starts, rolls, strict=True)]
+    roll = np.max(rolls, axis=0)
     slope = equivalent_slope(law, tracks, roll, law.wind, lift_off)
     hardest, known = tracks.slopes.max(axis=1), np.isfinite(slope)
     return {
         "profile_takeoff_slope": np.where(known, slope, hardest),
         "profile_takeoff_roll": np.where(known, roll, 0.0),
-        "profile_climb_slope": np.where(known, np.maximum(*climbs), hardest),
+        "profile_climb_slope": np.where(known, np.max(climbs, axis=0), hardest),
     }
 
 
@@ -365,13 +366,13 @@ def _landing(given: _Given, tracks: Tracks) -> dict[str, Array]:
     flown = [_approach(given, tracks, begin + lost) for begin in given.starts(tracks, "lda")]
     rolls = [roll_along(law, tracks, begin, touchdown, wind) for begin, _ in flown]
     falls = [fall for _, fall in flown]
-    roll = np.maximum(*rolls)
+    roll = np.max(rolls, axis=0)
     slope = equivalent_slope(law, tracks, roll, touchdown, wind)
     hardest, known = tracks.slopes.min(axis=1), np.isfinite(slope)
     return {
         "profile_landing_slope": np.where(known, slope, hardest),
         "profile_landing_roll": np.where(known, roll, 0.0),
-        "profile_approach_slope": np.where(known, np.minimum(*falls), hardest),
+        "profile_approach_slope": np.where(known, np.min(falls, axis=0), hardest),
     }
 
 

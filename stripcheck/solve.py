@@ -144,7 +144,7 @@ def _most_mass(case: Result, side: str, at_best: str) -> Answer:
 def _hardest(case: Result, side: str, at_best: str, easiest: Array, hardest: Array,
              given: Callable[[Array], Given]) -> tuple[Array, Array, list[str]]:  # fmt: skip
     """The value nearest to the hardest at which a side is still acceptable: values, states and limiting reasons."""
-    verdicts = np.array(_words(case, side))
+    verdicts = np.array(verdict_words(case, side))
     accepted = np.isin(verdicts, {SUITABLE: [SUITABLE], MARGINAL: [SUITABLE, MARGINAL]}[at_best])
 
     def finding(value: Array) -> Array:
@@ -160,10 +160,16 @@ def _hardest(case: Result, side: str, at_best: str, easiest: Array, hardest: Arr
     return value, state, limits
 
 
-def _words(case: Result, side: str) -> tuple[str, ...]:
+def verdict_words(case: Result, side: str) -> tuple[str, ...]:
+    """The verdict of each finding of a side, in order. Raises InputError for a side that is none.
+
+    >>> verdict_words(prepare({}, "ridge-runner", {"temperature": 22}), "landing")[-1]
+    'suitable'
+    """
     if side not in SIDES:
         raise InputError(f'"{side}" is no side; it is one of: {", ".join(SIDES)}')
-    return getattr(case.chain.by_key[f"{side}_verdict"], "words", ())
+    words: tuple[str, ...] = getattr(case.chain.by_key[f"{side}_verdict"], "words", ())
+    return words
 
 
 def _last_that_holds(holds: Callable[[Array], Array], good: Array, bad: Array) -> tuple[Array, Array]:
@@ -235,12 +241,13 @@ class AbortPoint:
     def texts(self) -> list[str]:
         """The abort points in words."""
         words = {
+            NONE: "none: once rolling it would not stop, or it does not get going",
             FOUND: "{place} m along, at {eas} kt EAS ({tas} kt TAS)",
             OPEN: "can stop even from lift-off, {place} m along, at {eas} kt EAS ({tas} kt TAS)",
         }
-        rows = zip(self.state.tolist(), self.distance, from_si(self.eas, "kt"), from_si(self.tas, "kt"), strict=True)
+        numbers = (np.nan_to_num(one).tolist() for one in (self.distance, from_si(self.eas, "kt"), from_si(self.tas, "kt")))
         return [words[state].format(place=floor(place), eas=floor(eas), tas=floor(tas)) if state in words else state
-                for state, place, eas, tas in rows]  # fmt: skip
+                for state, place, eas, tas in zip(self.state.tolist(), *numbers, strict=True)]  # fmt: skip
 
     def check_texts(self) -> list[str]:
         """The 70 % check in words."""
@@ -263,7 +270,7 @@ def abort_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules 
     >>> point.texts(), point.check_texts()
     (['265 m along, at 50 kt EAS (53 kt TAS)'], ['93 % of lift-off speed at half, 70 % at 129 m: go'])
     """
-    if not reaction >= 0.0:
+    if not 0.0 <= reaction < np.inf:
         raise InputError(f"a time to react of {reaction} s can't be right; 0 s or more is expected")
     case = prepare(strips, card, day, rules, **loading)
     values = _values(case, "run_wind", "lift_off_tas", "sigma", *_RUN_KEYS, *_STOP_KEYS)
@@ -299,7 +306,7 @@ _STOP_KEYS = ("density", "rolling_drag", "braking", "landing_slope", "landing_ro
 
 def _values(case: Result, *keys: str) -> dict[str, Array]:
     """Those of the steps that this chain has, and all that was given, SI, one value for each row."""
-    present = [key for key in keys if key in case.chain.by_key]
+    present = [key for key in keys if key in case.chain.by_key and key not in case.given]
     found = {**case.given, **evaluate(case.chain, case.given, present)}
     return {key: np.broadcast_to(value, case.size) if np.ndim(value) == 0 else value for key, value in found.items()}
 
@@ -356,7 +363,8 @@ def _check_in_words(share: float, seventy_at: float) -> str:
         return NOT_ASSESSED
     place = "never" if np.isnan(seventy_at) else f"at {ceil(seventy_at)} m"
     advice = "go" if share >= GO_SHARE else "stop"
-    return f"{floor(100.0 * share + 1e-9)} % of lift-off speed at half, {100.0 * GO_SHARE:.0f} % {place}: {advice}"
+    at_half = "lifts off before half" if share == 1.0 else f"{floor(100.0 * share + 1e-9)} % of lift-off speed at half"
+    return f"{at_half}, {100.0 * GO_SHARE:.0f} % {place}: {advice}"
 
 
 # --- the break-even wind of a sloping strip ---------------------------------------------------------------------------
@@ -410,7 +418,7 @@ def break_even_wind(strips: Given, card: Card | str, day: Day | Given, rules: Ru
     ["uphill takes less up to 14.5 kt of tailwind, but the card's tailwind limit is 10 kt"]
     """
     case = prepare(strips, card, day, rules, **loading)
-    _words(case, side)
+    verdict_words(case, side)  # refuses a side that is none
     if case.size % 2:
         raise InputError(f"strips: {case.size} rows; two for each strip are expected, one for each direction")
     required, allowed = f"{side}_required", "land_here" if side == "landing" else "take_off_here"
@@ -466,8 +474,9 @@ def both_directions(strip: Given) -> dict[str, Any]:
     back = {**columns, "slope_given": -columns["slope_given"], "heading": (columns["heading"] + np.pi) % (2.0 * np.pi)}
     for ahead, behind in _AHEAD_AND_BEHIND:
         back |= {ahead: columns[behind], behind: columns[ahead]}
-    both = {item.key: np.concatenate((columns[item.key], back[item.key])) for item in STRIP if item.kind != "fault"}
-    shown = {item.key: np.asarray(from_si(both[item.key], item.unit)) for item in STRIP if item.kind == "number"}
+    turning = [item for item in STRIP if item.kind != "fault" and not item.key.startswith("profile_")]
+    both = {item.key: np.concatenate((columns[item.key], back[item.key])) for item in turning}
+    shown = {item.key: np.asarray(from_si(both[item.key], item.unit)) for item in turning if item.kind == "number"}
     profile = read_profile(str(strip["profile"])) if strip.get("profile") else None
     turned = {"profile": [profile, profile.reversed()]} if profile else {}
     return {**both, **shown, "fault": [*faults, *faults], **turned}
@@ -497,9 +506,9 @@ class CommitPoint:
             OPEN: "a go-around clears even from over the threshold, not below {height} ft above it",
             NONE: "none: no go-around from the approach clears the ground beyond",
         }
-        rows = zip(self.state.tolist(), self.distance, from_si(self.height, "ft"), strict=True)
+        numbers = (np.nan_to_num(one).tolist() for one in (self.distance, from_si(self.height, "ft")))
         return [words[state].format(place=ceil(place), height=ceil(height - 1e-6)) if state in words else state
-                for state, place, height in rows]  # fmt: skip
+                for state, place, height in zip(self.state.tolist(), *numbers, strict=True)]  # fmt: skip
 
 
 def commit_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
@@ -521,7 +530,7 @@ def commit_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules
     >>> commit_point(strip, "ridge-runner", {"temperature": 22}).texts()[1]
     '70 m before the threshold, not below 69 ft above it'
     """
-    if not flap_seconds >= 0.0:
+    if not 0.0 <= flap_seconds < np.inf:
         raise InputError(f"a time for the flap of {flap_seconds} s can't be right; 0 s or more is expected")
     card = load_card(card) if isinstance(card, str) else card
     case = prepare(strips, card, day, rules, **loading)

@@ -10,7 +10,11 @@ from collections.abc import Mapping
 from typing import Any
 
 import numpy as np
+from openpyxl.formatting.rule import Rule
+from openpyxl.styles import PatternFill
+from openpyxl.styles.differential import DifferentialStyle
 from openpyxl.utils import column_index_from_string, get_column_letter
+from openpyxl.worksheet.pagebreak import Break
 from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck import interpolation
@@ -20,17 +24,20 @@ from stripcheck.caution import CAUTION
 from stripcheck.inputs import SIDE_WORDS
 from stripcheck.interpolation import FAR, HAIR
 from stripcheck.sheet import styles
-from stripcheck.sheet.cell import Cell, formula, reference
+from stripcheck.sheet.cell import Cell, formula, reference, where
 from stripcheck.sheet.formulas import Place
 from stripcheck.sheet.pages import Pages, write_header, write_heading
 from stripcheck.units import UNITS, from_si, tidy, to_si
 
 SHEET = "Manual"
-FIGURES = {"roll": ("Roll [m]", "m"), "distance": ("Over 50 ft [m]", "m"), "rate": ("Rate of climb [ft/min]", "ft/min")}
+FIGURES = {"roll": ("Roll", "m"), "distance": ("Over 50 ft", "m"), "rate": ("Rate of climb", "ft/min")}
+IN_SI = {"m": "m", "ft/min": "m/s"}  # the tables as loaded are in SI
 FIRST = 3  # column of the first temperature: the altitude and its SI value stand before it
-LEGEND = (
+LEGENDS = (
     "Yellow cells are the manual's; type over them as they are printed, and leave a hole blank. Grey cells are not the "
-    "manual's: the model carries the nearest figure on, and what needs them is beyond the book, at best marginal."
+    "manual's: the model carries the nearest figure on, and what needs them is beyond the book, at best marginal.",
+    "As loaded: for the mass and flap on the sheet Aircraft, linear between the pages below. The formulas of the strips read "
+    "these by name; those on grey are not the manual's.",
 )
 
 
@@ -42,13 +49,16 @@ def write_manual(pages: Pages, card: Card, values: Mapping[str, Any]) -> Workshe
     sheet.sheet_view.showGridLines = False
     sheet["A1"], sheet["A1"].font = f"{card.name}: the flight manual's tables", styles.TITLE
     styles.write_caution(sheet, "A2", CAUTION)
-    sheet["A3"], sheet["A3"].font = LEGEND, styles.SMALL
-    sheet.column_dimensions["A"].width, sheet.column_dimensions["B"].width = 22, 12
-    row = 5
-    for tables in card.tables.values():
+    for line, legend in enumerate(LEGENDS, 3):
+        sheet[f"A{line}"], sheet[f"A{line}"].font = legend, styles.SMALL
+    sheet.column_dimensions["A"].width, sheet.column_dimensions["B"].width = 24, 13
+    row = 6
+    for number, tables in enumerate(card.tables.values()):
+        if number:
+            sheet.row_breaks.append(Break(id=row - 1))  # each side begins a page of the print
         row = _Side(pages, sheet, card, tables, values, row).write()
     for column in range(FIRST, sheet.max_column + 1):
-        sheet.column_dimensions[get_column_letter(column)].width = 9.5
+        sheet.column_dimensions[get_column_letter(column)].width = 10.5
     sheet.freeze_panes = "B5"
     styles.set_print(sheet, portrait=False)
     return sheet
@@ -97,10 +107,12 @@ class _Side:
         self.pages.places[name] = Place(self.pages.name(name, self.sheet, cells))
 
     def _headers(self, row: int, title: str, title_row: int, last: str) -> None:
-        """Titles of the figures in a row; temperatures below ``row``, and altitudes below them; ``last`` column's title."""
+        """Titles of the figures in a row, in SI where that is not ``row``; temperatures below ``row``, and altitudes below
+        them; ``last`` column's title."""
         for figure in self.tables.filled:
             cell = self.sheet[f"{self._letter(figure, 0)}{title_row}"]
-            cell.value, cell.font = FIGURES[figure][0], styles.BOLD
+            words, unit = FIGURES[figure]
+            cell.value, cell.font = f"{words} [{unit if title_row == row else IN_SI[unit]}]", styles.BOLD
         write_header(self.sheet, row + 1, ("Pressure altitude [ft]", title))
         for figure in self.tables.filled:
             for j, temperature in enumerate(self.tables.temperatures):
@@ -120,11 +132,13 @@ class _Side:
         name = next(flap.name for flap in self.card.flaps if flap.deflection == deflection)
         sheet[f"A{row}"], sheet[f"A{row}"].font = f"Page: flap {name}, {mass:,.0f} kg", styles.BOLD
         self._headers(row, "Weight now", row, "To [K]")
+        loaded = Cell(f"{tables.side}_book_mass")
         weight = interpolation.page_weight(
-            Cell(f"{tables.side}_book_mass"), Cell(f"{tables.side}_book_flap"), mass, deflection,
-            float(tables.below()[number]), float(tables.above()[number]),
+            loaded, Cell(f"{tables.side}_book_flap"), mass, deflection, float(tables.below()[number]),
+            float(tables.above()[number]),
         )  # fmt: skip
-        self._put(f"B{row + 2}", formula(weight), self.weights[number], "0.000")
+        known = where(np.isfinite(loaded), weight, 0.0)  # without a mass and flap nothing reads the tables
+        self._put(f"B{row + 2}", formula(known), self.weights[number], "0.000")
         for i in range(len(tables.altitudes)):
             for figure in tables.filled:
                 for j in range(len(tables.temperatures)):
@@ -165,8 +179,8 @@ class _Side:
         """The tables for the mass and flap of the day, which the formulas of the strips read by name."""
         tables, first, last = self.tables, self.row + 3, self.row + 2 + len(self.tables.altitudes)
         word = SIDE_WORDS[tables.side]
-        write_heading(self.sheet, self.row, f"{word}: for the mass and flap of the day")
-        self._headers(self.row + 1, "In SI [m]", self.row, "Highest [m]")
+        write_heading(self.sheet, self.row, f"{word}, as loaded")
+        self._headers(self.row + 1, "In SI [m]", self.row, "Top [m]")
         for j, temperature in enumerate(tables.temperatures):
             letter = self._letter(next(iter(tables.filled)), j)
             text = formula(reference(f"{letter}{self.row + 2}", "°C"))
@@ -179,8 +193,9 @@ class _Side:
                 for j in range(len(tables.temperatures)):
                     cell = f"{self._letter(figure, j)}{first + i}"
                     self._put(cell, self._now(figure, i, j, page_rows), now[i, j], "#,##0.00")
-            end = self._letter(figure, len(tables.temperatures) - 1)
-            self._name(f"{figure}_table", f"{self._letter(figure, 0)}{first}:{end}{last}")
+            start, end = (f"{self._letter(figure, j)}" for j in (0, len(tables.temperatures) - 1))
+            self._name(f"{figure}_table", f"{start}{first}:{end}{last}")
+            self._grey_beyond(f"{start}{first}:{end}{last}", f"{start}${self.row + 2}", first)
         for key, letter, least, hot in (("hottest", self.edges[0], "MIN", True), ("coldest", self.edges[1], "MAX", False)):
             for i in range(len(tables.altitudes)):
                 far = FAR if hot else -FAR
@@ -194,6 +209,14 @@ class _Side:
         self._name("altitudes", f"B{first}:B{last}")
         row = self.row + 1
         self._name("temperatures", f"{self.temperatures[0].replace('$', '')}:{self.temperatures[-1].split('$')[0]}{row}")
+
+    def _grey_beyond(self, cells: str, temperature: str, first: int) -> None:
+        """Grey for the figures, as loaded, that the manual does not print: hotter or colder than the edges of their line."""
+        hot, cold = (f"${letter}{first}" for letter in self.edges[:2])
+        at = f"{temperature}+{to_si(0.0, '°C'):g}"
+        grey = DifferentialStyle(fill=PatternFill("solid", bgColor=styles.BAND_FILL.fgColor))
+        rule = Rule(type="expression", dxf=grey, formula=[f"OR({at}>{hot}+0.01,{at}<{cold}-0.01)"])
+        self.sheet.conditional_formatting.add(cells, rule)
 
     def _highest(self, first: int, page_rows: list[int]) -> None:
         """The highest line of the pages that count: of each page the last one to which its figures reach."""

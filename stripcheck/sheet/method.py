@@ -24,7 +24,10 @@ METHOD = (
     "Speeds: stall speeds of the card, carried to mass and flap through the lift coefficient. Lift-off, screen, approach and "
     "touchdown speeds are multiples of them.",
     "Thrust: a fixed-pitch propeller by its linearised polar, a constant-speed one as an actuator disk; both calibrated on "
-    "the book points of the card.",
+    "the manual's figures on the card.",
+    "Book first: where the card holds the manual's tables, their figure counts as printed, linear between figures; the model "
+    "only carries it on: manual x model(strip) / model(manual's conditions). The manual's own corrections go before physics.",
+    "Beyond the book: higher, hotter or heavier than the manual's figures go, a verdict is at best marginal.",
     "Ground roll: ground speed over acceleration, summed along the run with thrust, drag, lift, rolling friction, slope and "
     "wind. A run whose acceleration falls below 2 % of g counts as no lift-off, a landing roll likewise as no stop.",
     "50 ft: after lift-off by the energy method; before touchdown a straight path and a round flare. Ground that rises under "
@@ -34,7 +37,7 @@ METHOD = (
     "Obstacles: ahead, the height over them with and without the factor; behind, the 50 ft point moves up the strip until the "
     "approach path clears them by 50 ft. No obstacle in the list means none is assessed.",
     "Soft ground never shortens a landing here: its drag is not credited, and its braking is that of the wet surface or less.",
-    "Elevation is the highest of those known. One mean slope is used for the whole strip.",
+    "Elevation is the highest of those known. One mean slope stands for the whole strip, unless its slope profile is given.",
 )
 SOURCES = (
     "ISO 2533:1975, Standard Atmosphere; U.S. Standard Atmosphere, 1976.",
@@ -43,6 +46,7 @@ SOURCES = (
     "J. T. Lowry, Performance of Light Aircraft: linearised propeller polar.",
     "Actuator-disk momentum theory; R. F. Gagg and E. V. Farrar, SAE Transactions 29, 1934: power lapse.",
     "W. H. Mason, notes to a take-off program, Virginia Tech; D. P. Raymer, Aircraft Design: friction coefficients.",
+    "Flaps: D. P. Raymer; H. Glauert, thin-aerofoil theory; A. D. Young, R&M 2622, in the form of B. W. McCormick.",
 )
 
 

@@ -26,6 +26,7 @@ from stripcheck.rules import Rules
 from stripcheck.sheet import styles
 from stripcheck.sheet.cell import Cell, formula, reference, where
 from stripcheck.sheet.formulas import GROUND_NAMES, WORDS, Place
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.surface import CONDITIONS, GROUNDS, REFERENCE_GROUND
 from stripcheck.units import UNITS, from_si, tidy
@@ -162,6 +163,9 @@ def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any], flap_nam
     row += 3
     write_header(sheet, row, ("The aeroplane", "Value", "Unit", "In SI", "Meaning"))
     row += 1
+    for label, kind in ((PROPELLER, card.propeller), (ENGINE, card.power)):
+        _fact(sheet, row, label, kind)
+        row += 1
     for key, item in rows.items():
         if key in ("takeoff_flap", "landing_flap", "flap_least", "flap_most"):
             continue
@@ -175,11 +179,17 @@ def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any], flap_nam
     return sheet
 
 
+def _fact(sheet: Worksheet, row: int, label: str, text: str) -> None:
+    """What decides how the card is computed, and can't be typed over."""
+    sheet[f"{LABEL}{row}"], sheet[f"{VALUE}{row}"] = label, text
+    sheet[f"{LABEL}{row}"].font = sheet[f"{VALUE}{row}"].font = styles.BODY
+    sheet[f"{LABEL}{row}"].border = styles.LINE
+
+
 def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
     """Flap settings: stall speed in, greatest lift coefficient by formula; returns the next free row."""
     write_heading(sheet, row, "Flap settings (stall speeds at the mass beside them, calibrated airspeed)")
-    write_header(sheet, row + 1, ("Setting", "Deflection [°]", "", "Deflection, SI", "Uses"))
-    write_header(sheet, row + 1, ("Stall speed [kt]", "At mass [kg]", "Drag added", "Greatest lift coefficient"), 6)
+    write_header(sheet, row + 1, FLAP_HEADER)
     sheet.row_dimensions[row + 1].height = 30
     first, last = row + 2, row + 1 + len(card.flaps)
     area = Cell(pages.places["wing_area"].reference)
@@ -328,8 +338,7 @@ def write_rules(pages: Pages, rules: Rules) -> Worksheet:
 def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> None:
     """Coefficients and published corrections by ground; a word where there is no figure keeps the strip unassessed."""
     write_heading(sheet, row, f'Ground table ("{NO_FIGURE}": a strip with this ground is not assessed)')
-    write_header(sheet, row + 1, ("Ground", "Rolling", "Braking", "Take-off corr.", "Source of the coefficients",
-                                  "Landing corr."))  # fmt: skip
+    write_header(sheet, row + 1, GROUND_HEADER)
     first = row + 2
     columns = {"ground_rolling": "B", "ground_braking": "C", "ground_takeoff_factor": "D", "ground_landing_factor": "F"}
     names = [*(ground.name for ground in GROUNDS), UNKNOWN_GROUND]

@@ -1,0 +1,255 @@
+"""The aircraft and rules arguments of the spreadsheet functions: a card's or set's name, or a range of a filled workbook.
+
+A range of an Aircraft or Rules sheet has labels in its first column, values in the second, units in the third and the
+values in SI in the fourth; the flap table and the ground table stand below. Labels are those of ``stripcheck.inputs``,
+from which the sheets are made too.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from functools import lru_cache
+from typing import Any
+
+import numpy as np
+
+from stripcheck.card import load_card
+from stripcheck.chain import Chain, Input, Step, evaluate
+from stripcheck.day import read_day
+from stripcheck.errors import InputError
+from stripcheck.flaps import flap_setting
+from stripcheck.inputs import CARD, CONSTANT_SPEED, FIXED_PITCH, POWER_LIMIT, REACH, STRIP
+from stripcheck.inputs import RULES as RULE_INPUTS
+from stripcheck.rules import load_rules
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
+from stripcheck.speeds import load_factor
+from stripcheck.steps import build_chain
+from stripcheck.surface import GROUND_NAMES
+from stripcheck.units import to_si
+
+LONG = 5000.0  # m: a length that decides nothing, where a function has none
+NO_WORDS = "there is no result for these values"
+
+
+@dataclass(frozen=True)
+class Setting:
+    """A flap setting of a range: name, deflection [rad], uses."""
+
+    name: str
+    deflection: float
+    uses: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Aeroplane:
+    """An aeroplane as the functions use it: its chain, its values by chain key in SI, its flap settings."""
+
+    where: str
+    chain: Chain
+    values: Mapping[str, Any]
+    flaps: Sequence[Any]
+
+    def deflection(self, cell: Any, use: str | None) -> float:
+        """Deflection [rad] of a setting by its name; a whole number is the name that it reads as."""
+        name = str(int(cell)) if isinstance(cell, float) and cell.is_integer() else str(cell)
+        uses = next((flap.uses for flap in self.flaps if flap.name == name), ("",))
+        return flap_setting(name, tuple(self.flaps), use or uses[0], self.where)
+
+    def ask(self, step: str, values: Mapping[str, np.ndarray], rules: Mapping[str, Any] | None,
+            size: int) -> tuple[Any, dict[int, str]]:  # fmt: skip
+        """A step of the chain for arguments in SI: values or texts, and sentences for the places without one."""
+        inputs = {**self.values, **_no_day(), **_no_strip(), **(rules or rules_of("manual-only")), **_strip(values)}
+        key = next((key for key in CARRIED.get(step, ()) if key in self.chain.by_key), step)
+        item = self.chain.by_key[key]
+        if not isinstance(item, Step):
+            raise TypeError(f"{key} is not a step")
+        side = "landing" if _is_landing(step) else "takeoff"
+        found = evaluate(self.chain, inputs, (key, f"{side}_reason"))
+        result, reasons = (np.broadcast_to(found[one], size) for one in (key, f"{side}_reason"))
+        if item.words:
+            return [item.words[number - 1] for number in result.tolist()], {}
+        words = self.chain.by_key[f"{side}_reason"]
+        texts = words.words if isinstance(words, Step) else ()
+        lost = np.flatnonzero(~np.isfinite(result)).tolist()
+        return result, {place: texts[int(reasons[place]) - 1] or NO_WORDS for place in lost}
+
+
+# where a card has tables of the manual, the step that starts from them stands for the model's own
+CARRIED = {
+    "takeoff_roll": ("carried_takeoff_roll",),
+    "landing_roll": ("carried_landing_roll",),
+    "climb_gradient": ("carried_climb",),
+}
+
+
+def _is_landing(step: str) -> bool:
+    return step.startswith(("landing", "approach"))
+
+
+def _strip(values: Mapping[str, np.ndarray]) -> dict[str, Any]:
+    """Arguments of a function as inputs of the chain."""
+    found: dict[str, Any] = {}
+    names = {"elevation": "elevation_field", "qnh": "own_qnh", "temperature": "own_temperature", "slope": "slope_given",
+             "height": "obstacle_height", "beyond": "obstacle_distance"}  # fmt: skip
+    found |= {names[key]: value for key, value in values.items() if key in names}
+    if "mass" in values:
+        mass = values["mass"] * load_factor(values.get("bank", np.zeros(1)))
+        found |= {"mass_takeoff": mass, "mass_landing": mass}
+    if "flap" in values:
+        found |= {"takeoff_flap": values["flap"], "landing_flap": values["flap"]}
+    if "length" in values:
+        found |= {"tora": values["length"], "lda": values["length"]}
+    for key in ("surface", "condition"):
+        if key in values:
+            found[key] = np.nan_to_num(values[key], nan=-1).astype(np.int64)
+    if "headwind" in values:
+        head = values["headwind"]
+        found |= {"own_wind_speed": np.abs(head), "own_wind_from": np.where(head < 0.0, np.pi, 0.0)}
+    return found
+
+
+@lru_cache(maxsize=1)
+def _no_day() -> dict[str, Any]:
+    return dict(read_day({}).values)
+
+
+@lru_cache(maxsize=1)
+def _no_strip() -> dict[str, Any]:
+    """A level, paved, dry strip of great length in a calm, without anything else known."""
+    usual = {"fault": False, "land_here": True, "take_off_here": True, "surface": 0, "condition": 0, "tora": LONG,
+             "lda": LONG, "slope_given": 0.0, "heading": 0.0, "own_wind_speed": 0.0}  # fmt: skip
+    return {item.key: usual.get(item.key, np.nan) for item in STRIP}
+
+
+def aeroplane_of(argument: Any) -> Aeroplane:
+    """The aeroplane of a card's name or path, or of a range. Raises InputError where there is none.
+
+    >>> aeroplane_of("ridge-runner").chain.by_key["takeoff_roll"].unit
+    'm'
+    """
+    if isinstance(argument, str):
+        return _of_card(argument)
+    if isinstance(argument, list):
+        return _of_range(argument)
+    raise InputError("Aircraft: the name of a card, or a range with the rows of an Aircraft sheet, is expected")
+
+
+@lru_cache(maxsize=64)
+def _of_card(name: str) -> Aeroplane:
+    card = load_card(name)
+    return Aeroplane(card.file, card.chain, card.values, card.flaps)
+
+
+def _of_range(rows: list[list[Any]]) -> Aeroplane:
+    labels = _labels(rows)
+    kinds = {}
+    for label in (PROPELLER, ENGINE):
+        if label not in labels:
+            raise InputError(f'Aircraft: the range has no row "{label}"; give the whole Aircraft sheet, columns A to I')
+        kinds[label] = str(labels[label][1])
+    try:
+        chain = build_chain(kinds[PROPELLER], kinds[ENGINE])
+    except KeyError as error:
+        raise InputError(f"Aircraft: {error} is no kind of propeller or engine") from None
+    flaps, table = _flap_table(rows)
+    values: dict[str, Any] = dict(table)
+    inputs = (*CARD, *FIXED_PITCH, *CONSTANT_SPEED, POWER_LIMIT, *REACH.values())
+    wanted = {item.key: item for item in inputs if item.key in chain.by_key and item.key not in table}
+    for key, item in wanted.items():
+        if key in ("takeoff_flap", "landing_flap"):
+            values[key] = math.nan
+        elif key in {reach.key for reach in REACH.values()}:
+            values[key] = _number(labels.get(item.label), item) if item.label in labels else math.nan
+        elif item.label not in labels:
+            raise InputError(f'Aircraft: the range has no row "{item.label}"; give the whole Aircraft sheet, columns A to I')
+        else:
+            values[key] = _number(labels[item.label], item)
+    return Aeroplane("Aircraft range", chain, values, flaps)
+
+
+def _labels(rows: list[list[Any]]) -> dict[str, list[Any]]:
+    """First row of each label; four columns or more each."""
+    found: dict[str, list[Any]] = {}
+    for row in rows:
+        if isinstance(row[0], str) and row[0].strip():
+            found.setdefault(row[0].strip(), [*row, "", "", "", ""])
+    return found
+
+
+def _number(row: list[Any] | None, item: Input) -> float:
+    """A value in SI: column four where there is a number, else column two in the label's unit."""
+    if row is None:
+        return math.nan
+    for cell, unit in ((row[3], ""), (row[1], item.unit)):
+        if isinstance(cell, float | int) and not isinstance(cell, bool):
+            return float(to_si(float(cell), unit))
+    return math.nan
+
+
+def _flap_table(rows: list[list[Any]]) -> tuple[list[Setting], dict[str, Any]]:
+    start = next((i for i, row in enumerate(rows) if row[0] == FLAP_HEADER[0] and len(row) >= 9), None)
+    if start is None:
+        raise InputError("Aircraft: the range has no flap table; give the whole Aircraft sheet, columns A to I")
+    flaps, deflections, drag, lift = [], [], [], []
+    for row in rows[start + 1 :]:
+        if not isinstance(row[3], float | int) or not isinstance(row[8], float | int):
+            break
+        name = str(int(row[0])) if isinstance(row[0], float) and row[0].is_integer() else str(row[0])
+        uses = tuple(use.split(";")[0].strip() for use in str(row[4]).split(","))
+        flaps.append(Setting(name, float(row[3]), uses))
+        deflections.append(float(row[3]))
+        drag.append(float(row[7] or 0.0))
+        lift.append(float(row[8]))
+    if len(flaps) < 2:
+        raise InputError("Aircraft: the flap table of the range has fewer than two settings with numbers")
+    table = {"flap_deflection": np.array(deflections), "flap_drag": np.array(drag), "flap_lift": np.array(lift),
+             "flap_least": min(deflections), "flap_most": max(deflections)}  # fmt: skip
+    return flaps, table
+
+
+def rules_of(argument: Any) -> dict[str, Any]:
+    """The values of a rule set's name or path, or of a range. Raises InputError where there is none.
+
+    >>> float(rules_of("part-cat-b")["takeoff_factor"])
+    1.25
+    """
+    if isinstance(argument, str):
+        return _named_rules(argument)
+    if isinstance(argument, list):
+        return _rules_of_range(argument)
+    raise InputError("Rules: the name of a rule set, or a range with the rows of a Rules sheet, is expected")
+
+
+@lru_cache(maxsize=64)
+def _named_rules(name: str) -> dict[str, Any]:
+    return dict(load_rules(name).values)
+
+
+def _rules_of_range(rows: list[list[Any]]) -> dict[str, Any]:
+    labels = _labels(rows)
+    values: dict[str, Any] = {}
+    for item in RULE_INPUTS:
+        if item.kind == "range" or item.key.startswith("reference_"):
+            continue
+        if item.label not in labels:
+            raise InputError(f'Rules: the range has no row "{item.label}"; give the whole Rules sheet, columns A to F')
+        row = labels[item.label]
+        values[item.key] = (row[1] != "no") if item.kind == "flag" else _number(row, item)
+    return values | _ground_table(rows)
+
+
+def _ground_table(rows: list[list[Any]]) -> dict[str, Any]:
+    start = next((i for i, row in enumerate(rows) if row[0] == GROUND_HEADER[0] and len(row) >= 6), None)
+    if start is None:
+        raise InputError("Rules: the range has no ground table; give the whole Rules sheet, columns A to F")
+    columns = {"ground_rolling": 1, "ground_braking": 2, "ground_takeoff_factor": 3, "ground_landing_factor": 5}
+    table = rows[start + 1 : start + 1 + len(GROUND_NAMES)]
+    if [row[0] for row in table] != list(GROUND_NAMES):
+        raise InputError("Rules: the ground table of the range is not complete; give the whole Rules sheet, columns A to F")
+    found: dict[str, Any] = {
+        key: np.array([*(float(row[at]) if isinstance(row[at], float | int) else math.nan for row in table), math.nan])
+        for key, at in columns.items()
+    }
+    return found | {"reference_rolling": found["ground_rolling"][0], "reference_braking": found["ground_braking"][0]}

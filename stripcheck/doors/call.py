@@ -1,0 +1,204 @@
+"""Calling a function of the registry with what a spreadsheet hands over: cells and ranges in, cells and ranges out.
+
+A range is a list of rows; all ranges have the shape of the result, or one row, or one column, or are single cells. What
+is wrong with a cell comes back as a plain sentence in its place. Nothing here needs more than NumPy, except units that
+only pint knows.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from typing import Any
+
+import numpy as np
+
+from stripcheck.doors.aircraft import Aeroplane, aeroplane_of, rules_of
+from stripcheck.doors.functions import Argument, Function
+from stripcheck.errors import InputError
+from stripcheck.surface import CONDITIONS, SURFACES
+from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG, UNITS, from_si, read_quantity, to_si, unit_scale
+
+Cells = Any  # a cell, or a list of rows of cells
+WORDS = {"surface": SURFACES, "condition": CONDITIONS}
+MISSING = (None, "")
+
+
+def call(function: Function, *given: Cells) -> Cells:
+    """The function's result for arguments as a spreadsheet hands them over: a number or text, or a list of rows.
+
+    Never raises for bad input: a sentence stands where the result would.
+
+    >>> from stripcheck.doors.functions import BY_NAME
+    >>> round(call(BY_NAME["DENSITY_ALT"], 2400, 1008, 31), 1)
+    4827.7
+    >>> call(BY_NAME["SLOPE"], [[2380.0], [2380.0]], [[2410.0], ["x"]], 620.0)[1][0]
+    'Elevation at end: "x" is not a number; write for example "2300 ft"'
+    """
+    try:
+        return _Call(function, given).result()
+    except InputError as error:
+        return _sentence(error)
+
+
+def _sentence(error: Exception) -> str:
+    return str(error)
+
+
+class _Call:
+    """One call: arguments spread over the shape of the result, sentences for the cells that can't be used."""
+
+    def __init__(self, function: Function, given: Sequence[Cells]) -> None:
+        arguments = function.all_arguments
+        if len(given) > len(arguments):
+            raise InputError(f"{function.full_name} takes {len(arguments)} values at the most; {len(given)} are given")
+        self.function = function
+        whole = (*given, *[None] * (len(arguments) - len(given)))
+        self.typed = {argument.key: _or_default(argument, cells) for argument, cells in zip(arguments, whole, strict=True)}
+        self.spread = [a for a in function.arguments if a.kind not in ("aircraft", "rules")]
+        self.shape = _common_shape([self.typed[argument.key] for argument in self.spread])
+        self.size = int(np.prod(self.shape)) if self.shape else 1
+        self.wrong: dict[int, str] = {}
+
+    def result(self) -> Cells:
+        """The result in its unit, in the shape of the arguments."""
+        unit = self._unit()
+        aeroplane = aeroplane_of(self.typed["aircraft"]) if "aircraft" in self.typed else None
+        rules = rules_of(self.typed["rules"]) if "rules" in self.typed else None
+        values = {argument.key: self._values(argument, aeroplane) for argument in self.spread}
+        found, words = self._compute(values, aeroplane, rules)
+        if isinstance(found, np.ndarray) and unit is not None:
+            factor, offset = unit
+            found = (found - offset) / factor
+        cells = np.broadcast_to(np.asarray(found), self.size).tolist()
+        for place, text in {**words, **self.wrong}.items():
+            cells[place] = text
+        if not self.shape:
+            return cells[0]
+        rows, columns = self.shape
+        return [cells[row * columns : (row + 1) * columns] for row in range(rows)]
+
+    def _unit(self) -> tuple[float, float] | None:
+        """Factor and offset of the unit asked for."""
+        shown = self.function.unit
+        if not shown:
+            return None
+        typed = self.typed["unit"]
+        if typed in MISSING:
+            return UNITS[shown].factor, UNITS[shown].offset
+        if not isinstance(typed, str):
+            raise InputError(f'Unit: a text such as "{shown}" is expected')
+        kind = next(kind for kind, (default, _) in KINDS.items() if default == shown)
+        return unit_scale(typed, kind)
+
+    def _values(self, argument: Argument, aeroplane: Aeroplane | None) -> np.ndarray:
+        """The argument's values in SI, one for each cell of the result."""
+        cells = self.typed[argument.key]
+        flat = _flat(cells)
+        if argument.kind in WORDS:
+            found = self._each(argument, flat, cells, lambda cell: _word(cell, argument))
+        elif argument.kind == "flap":
+            side = "landing" if self.function.step.startswith(("landing", "approach")) else "take-off"
+            use = None if self.function.name == "STALL_SPEED" else side
+            found = self._each(argument, flat, cells, lambda cell: _aeroplane(aeroplane).deflection(cell, use))
+        else:
+            found = self._numbers(argument, flat, cells)
+        return self._over_shape(found, cells)
+
+    def _numbers(self, argument: Argument, flat: Sequence[Any], cells: Cells) -> np.ndarray:
+        if all(type(cell) in (float, int) for cell in flat):
+            numbers = np.array(flat, dtype=float)
+            if argument.kind != "pressure":
+                return np.asarray(to_si(numbers, KINDS[argument.kind][0]))
+            inches = (numbers >= PRESSURE_INHG[0]) & (numbers <= PRESSURE_INHG[1])
+            if (inches | ((numbers >= PRESSURE_HPA[0]) & (numbers <= PRESSURE_HPA[1]))).all():
+                return np.where(inches, to_si(numbers, "inHg"), to_si(numbers, "hPa"))
+        return self._each(argument, flat, cells, lambda cell: read_quantity(_plain(cell), argument.kind))
+
+    def _each(self, argument: Argument, flat: Sequence[Any], cells: Cells, read: Callable[[Any], float]) -> np.ndarray:
+        """The cells read one by one; a cell that can't be read makes a sentence wherever it counts."""
+        found = np.full(len(flat), np.nan)
+        for place, cell in enumerate(flat):
+            try:
+                if cell in MISSING:
+                    raise InputError("missing")
+                found[place] = read(cell)
+            except InputError as error:
+                alone = np.zeros(len(flat), bool)
+                alone[place] = True
+                sentence = f"{argument.name}: {error}"
+                for where in np.flatnonzero(self._over_shape(alone, cells)).tolist():
+                    self.wrong.setdefault(where, sentence)
+        return found
+
+    def _over_shape(self, values: np.ndarray, cells: Cells) -> np.ndarray:
+        if not self.shape or not isinstance(cells, list):
+            return np.broadcast_to(values, self.size)
+        return np.broadcast_to(values.reshape(len(cells), -1), self.shape).ravel()
+
+    def _compute(self, values: dict[str, np.ndarray], aeroplane: Aeroplane | None,
+                 rules: dict[str, Any] | None) -> tuple[Any, dict[int, str]]:  # fmt: skip
+        """The result in SI, or texts; and sentences for the places where there is none."""
+        if self.function.compute is None:
+            return _aeroplane(aeroplane).ask(self.function.step, values, rules, self.size)
+        more = [rules] if rules is not None else []
+        with np.errstate(all="ignore"):
+            found = np.asarray(self.function.compute(*values.values(), *more), dtype=float)
+        lost = np.flatnonzero(~np.isfinite(np.broadcast_to(found, self.size))).tolist()
+        return found, {place: "there is no result for these values" for place in lost}
+
+
+def _aeroplane(aeroplane: Aeroplane | None) -> Aeroplane:
+    if aeroplane is None:  # a registry in which an argument needs an aircraft that the function does not take
+        raise TypeError("this function has no aircraft argument")
+    return aeroplane
+
+
+def _or_default(argument: Argument, cells: Cells) -> Cells:
+    cells = _as_lists(cells)
+    if isinstance(cells, list) or cells not in MISSING:
+        return cells
+    if argument.required:
+        raise InputError(f"{argument.name} is missing: {argument.help}")
+    return argument.default
+
+
+def _as_lists(cells: Cells) -> Cells:
+    """Rows of tuples, as some programs hand them over, as lists; a range of one cell as that cell."""
+    if isinstance(cells, np.ndarray):
+        cells = cells.tolist()
+    if not isinstance(cells, list | tuple):
+        return cells
+    rows = [list(row) if isinstance(row, list | tuple) else [row] for row in cells]
+    return rows[0][0] if len(rows) == 1 and len(rows[0]) == 1 else rows
+
+
+def _common_shape(arguments: Sequence[Cells]) -> tuple[int, int] | None:
+    shapes = [(len(cells), len(cells[0])) for cells in arguments if isinstance(cells, list)]
+    if not shapes:
+        return None
+    try:
+        rows, columns = np.broadcast_shapes(*shapes)
+    except ValueError:
+        found = " and ".join(f"{rows} x {columns}" for rows, columns in dict.fromkeys(shapes))
+        raise InputError(f"the ranges have different shapes: {found} cells; give ranges of one shape") from None
+    return rows, columns
+
+
+def _flat(cells: Cells) -> list[Any]:
+    return [cell for row in cells for cell in row] if isinstance(cells, list) else [cells]
+
+
+def _plain(cell: Any) -> Any:
+    return cell.item() if isinstance(cell, np.generic) else cell
+
+
+def _word(cell: Any, argument: Argument) -> float:
+    table = WORDS[argument.kind]
+    if cell not in table:
+        raise InputError(f'"{cell}" is none of: {", ".join(table)}')
+    return float(table.index(cell))
+
+
+def shown(function: Function, value: float) -> float:
+    """A result in SI in the function's usual unit, for examples."""
+    return float(from_si(value, function.unit or ""))

@@ -1,0 +1,208 @@
+"""The registry of the spreadsheet functions: names, arguments, units, help, examples, and what each one calls.
+
+Every door is made from this list: wizard texts, the code that a spreadsheet program calls, the LAMBDA names, the page
+docs/functions.md and the tests. A function's name follows the prefix STRIP in every program.
+
+``compute`` gets the arguments in SI, as numbers or arrays of one dimension, and gives the result in SI; a choice comes as
+its number in the table [0, 1, ...], an aeroplane and a rule set as they were read. Functions of a chain step instead name
+the step; their arguments are inputs of the chain.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from stripcheck import atmosphere, links, speeds
+from stripcheck.numeric import Number
+from stripcheck.surface import CONDITIONS, SURFACES
+
+PREFIX = "STRIP"
+REQUIRED = object()
+BLANK = None  # default of an argument that may be left out and has no usual value
+AIR, SITE, SPEEDS, DISTANCES, VERDICTS, LIMITS, CLIMB, TABLES = (
+    "Air", "Wind and slope", "Speeds", "Distances", "Verdicts", "How far it goes", "Climb", "Tables and units",
+)  # fmt: skip
+
+
+@dataclass(frozen=True)
+class Argument:
+    """One argument: key, trade name, kind, help, and the value that stands for it where it is left out.
+
+    ``kind`` is one of ``stripcheck.units.KINDS`` (a number in that kind's usual unit, or a text with its own), or
+    aircraft, rules, flap, surface, condition, or text.
+    """
+
+    key: str
+    name: str
+    kind: str
+    help: str
+    default: Any = REQUIRED
+
+    @property
+    def required(self) -> bool:
+        return self.default is REQUIRED
+
+
+@dataclass(frozen=True)
+class Function:
+    """One function. ``unit`` is that of the result where nothing else is asked for; "" for a plain number, None for a text.
+
+    ``step`` is the chain's step that gives the result, or ``compute`` the function; ``example`` are arguments as a user
+    types them.
+    """
+
+    name: str
+    category: str
+    help: str
+    arguments: tuple[Argument, ...]
+    unit: str | None
+    example: tuple[Any, ...]
+    compute: Callable[..., Any] | None = None
+    step: str = ""
+
+    @property
+    def full_name(self) -> str:
+        """Name in Excel and of the LAMBDA.
+
+        >>> FUNCTIONS[0].full_name
+        'STRIP_PRESSURE_ALT'
+        """
+        return f"{PREFIX}_{self.name}"
+
+    @property
+    def all_arguments(self) -> tuple[Argument, ...]:
+        """The arguments, and at the end the unit of the result where it has one."""
+        return (*self.arguments, UNIT) if self.unit else self.arguments
+
+
+UNIT = Argument("unit", "Unit", "text", 'Unit of the result, such as "m" or "lb"; left out: the usual one', BLANK)
+ELEVATION = Argument("elevation", "Elevation", "altitude", "Elevation of the strip [ft]")
+QNH = Argument("qnh", "QNH", "pressure", "Altimeter setting [hPa, or inHg]")
+TEMPERATURE = Argument("temperature", "Temperature", "temperature", "Outside air temperature [°C]")
+HUMIDITY = Argument("humidity", "Humidity", "humidity", "Relative humidity [%]; left out: dry air", 0.0)
+WIND_FROM = Argument("wind_from", "Wind from", "angle", "True direction that the wind comes from [°]")
+WIND_SPEED = Argument("wind_speed", "Wind", "speed", "Wind speed [kt]")
+HEADING = Argument("heading", "Heading", "angle", "True heading of the direction of movement [°]")
+AIRCRAFT = Argument("aircraft", "Aircraft", "aircraft", "Name or file of an aircraft card, or a range with an Aircraft sheet's rows")
+RULES = Argument("rules", "Rules", "rules", "Name or file of a rule set, or a range with a Rules sheet's rows")
+MASS = Argument("mass", "Mass", "mass", "Mass [kg]")
+FLAP = Argument("flap", "Flap", "flap", "Name of a flap setting of the card")
+BANK = Argument("bank", "Bank", "angle", "Angle of bank [°]; left out: wings level", 0.0)
+LENGTH = Argument("length", "Length", "length", "Usable length of the strip [m]")
+SLOPE = Argument("slope", "Slope", "slope", "Mean slope in the direction of movement, uphill positive [%]")
+SURFACE = Argument("surface", "Surface", "surface", f"One of: {', '.join(SURFACES)}")
+CONDITION = Argument("condition", "Condition", "condition", f"One of: {', '.join(CONDITIONS)}; left out: dry", "dry")
+HEAD = Argument("headwind", "Headwind", "speed", "Headwind component [kt], a tailwind negative; left out: calm", 0.0)
+DISTANCE = Argument("distance", "Distance", "length", "Distance over 50 ft, without factor [m]")
+HEIGHT = Argument("height", "Height", "altitude", "Height of the obstacle above the far end of the strip [ft]")
+BEYOND = Argument("beyond", "Beyond", "length", "Distance of the obstacle beyond the far end of the strip [m]")
+
+_AIR = (ELEVATION, QNH, TEMPERATURE)
+_LOADED = (AIRCRAFT, MASS, FLAP)
+_GROUND = (SLOPE, SURFACE)
+_RUN = (*_LOADED, *_AIR, *_GROUND, CONDITION, HEAD)
+_FITS = (*_LOADED, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
+_LIMIT = (AIRCRAFT, FLAP, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
+
+_EXAMPLE_RUN = ("ridge-runner", 1000, "10", 2400, 1008, 31, 1.5, "grass")
+_EXAMPLE_LAND = ("ridge-runner", 1000, "30", 2400, 1008, 31, 1.5, "grass")
+_EXAMPLE_FITS = ("ridge-runner", 1000, "10", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+_EXAMPLE_FITS_LAND = ("ridge-runner", 1000, "30", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+
+
+def _pressure_altitude(elevation: Number, qnh: Number) -> Number:
+    return atmosphere.pressure_altitude(atmosphere.station_pressure(qnh, elevation))
+
+
+def _density(elevation: Number, qnh: Number, temperature: Number, humidity: Number) -> Number:
+    pressure = atmosphere.station_pressure(qnh, elevation)
+    vapour = atmosphere.vapour_pressure(temperature, humidity)
+    return atmosphere.density(pressure, atmosphere.virtual_temperature(temperature, pressure, vapour))
+
+
+def _density_altitude(elevation: Number, qnh: Number, temperature: Number, humidity: Number) -> Number:
+    return atmosphere.density_altitude(_density(elevation, qnh, temperature, humidity))
+
+
+def _density_ratio(elevation: Number, qnh: Number, temperature: Number, humidity: Number) -> Number:
+    return atmosphere.density_ratio(_density(elevation, qnh, temperature, humidity))
+
+
+def _slope(start: Number, end: Number, length: Number) -> Number:
+    return (end - start) / length
+
+
+def _headwind(wind_from: Number, speed: Number, heading: Number) -> Number:
+    return speeds.headwind(speed, wind_from, heading)
+
+
+def _crosswind(wind_from: Number, speed: Number, heading: Number) -> Number:
+    return speeds.crosswind(speed, wind_from, heading)
+
+
+def _factored(side: str) -> Callable[..., Number]:
+    def factored(distance: Number, rules: Any) -> Number:
+        parts = ("factor", "factor_to", "factor_long", "factor_from")
+        return links.factored(distance, *(rules[f"{side}_{part}"] for part in parts))
+
+    return factored
+
+
+FUNCTIONS = (
+    Function("PRESSURE_ALT", AIR, "Pressure altitude at an elevation under an altimeter setting.", (ELEVATION, QNH), "ft",
+             (2400, 1008), _pressure_altitude),
+    Function("DENSITY_ALT", AIR, "Density altitude, of dry air or with a humidity.", (*_AIR, HUMIDITY), "ft",
+             (2400, 1008, 31), _density_altitude),
+    Function("DENSITY_RATIO", AIR, "Air density over that of the standard atmosphere at sea level.", (*_AIR, HUMIDITY), "",
+             (2400, 1008, 31), _density_ratio),
+    Function("SLOPE", SITE, "Mean slope from the elevations of both ends and the length, uphill positive.",
+             (Argument("start", "Elevation at start", "altitude", "Elevation of the end where the movement starts [ft]"),
+              Argument("end", "Elevation at end", "altitude", "Elevation of the far end [ft]"),
+              Argument("length", "Length", "length", "Length of the strip between its ends [m]")), "%",
+             (2380, 2410, 620), _slope),
+    Function("HEADWIND", SITE, "Headwind component; a tailwind is negative.", (WIND_FROM, WIND_SPEED, HEADING), "kt",
+             (310, 12, 270), _headwind),
+    Function("CROSSWIND", SITE, "Crosswind component, without its side.", (WIND_FROM, WIND_SPEED, HEADING), "kt",
+             (310, 12, 270), _crosswind),
+    Function("STALL_SPEED", SPEEDS, "Stall speed at a mass, flap setting and bank, equivalent airspeed.", (*_LOADED, BANK),
+             "kt", ("ridge-runner", 1000, "10", 30), step="stall_takeoff"),
+    Function("LIFT_OFF_SPEED", SPEEDS, "Lift-off speed at a mass and flap setting, equivalent airspeed.", _LOADED, "kt",
+             ("ridge-runner", 1000, "10"), step="lift_off_eas"),
+    Function("APPROACH_SPEED", SPEEDS, "Approach speed at 50 ft at a mass and flap setting, equivalent airspeed.", _LOADED,
+             "kt", ("ridge-runner", 1000, "30"), step="approach_eas"),
+    Function("TAKEOFF_ROLL", DISTANCES, "Take-off ground roll, without factor.", _RUN, "m", _EXAMPLE_RUN,
+             step="takeoff_roll"),
+    Function("TAKEOFF_DIST", DISTANCES, "Take-off distance to 50 ft, without factor.", _RUN, "m", _EXAMPLE_RUN,
+             step="takeoff_distance"),
+    Function("LANDING_ROLL", DISTANCES, "Landing ground roll, without factor.", _RUN, "m", _EXAMPLE_LAND,
+             step="landing_roll"),
+    Function("LANDING_DIST", DISTANCES, "Landing distance from 50 ft, without factor.", _RUN, "m", _EXAMPLE_LAND,
+             step="landing_distance"),
+    Function("TAKEOFF_FACTORED", DISTANCES, "A take-off distance with the safety factor of a rule set.", (DISTANCE, RULES),
+             "m", (620, "part-cat-b"), _factored("takeoff")),
+    Function("LANDING_FACTORED", DISTANCES, "A landing distance with the safety factor of a rule set.", (DISTANCE, RULES),
+             "m", (420, "part-cat-b"), _factored("landing")),
+    Function("TAKEOFF_MARGIN", VERDICTS, "What a rule set leaves of the length for the take-off; negative: too short.",
+             _FITS, "m", _EXAMPLE_FITS, step="takeoff_margin"),
+    Function("LANDING_MARGIN", VERDICTS, "What a rule set leaves of the length for the landing; negative: too short.",
+             _FITS, "m", _EXAMPLE_FITS_LAND, step="landing_margin"),
+    Function("TAKEOFF_VERDICT", VERDICTS, "Verdict on the take-off: suitable, marginal, unsuitable or not assessed.",
+             _FITS, None, _EXAMPLE_FITS, step="takeoff_verdict"),
+    Function("TAKEOFF_REASON", VERDICTS, "What limits the take-off, in words.", _FITS, None, _EXAMPLE_FITS,
+             step="takeoff_reason"),
+    Function("LANDING_VERDICT", VERDICTS, "Verdict on the landing: suitable, marginal, unsuitable or not assessed.",
+             _FITS, None, _EXAMPLE_FITS_LAND, step="landing_verdict"),
+    Function("LANDING_REASON", VERDICTS, "What limits the landing, in words.", _FITS, None, _EXAMPLE_FITS_LAND,
+             step="landing_reason"),
+    Function("CLIMB_GRADIENT", CLIMB, "Climb gradient in still air after take-off, at the speed of the 50 ft point.",
+             (*_LOADED, *_AIR), "%", ("ridge-runner", 1000, "10", 2400, 1008, 31), step="climb_gradient"),
+    Function("OVER_OBSTACLE", CLIMB, "Height over an obstacle on the climb-out, without factor; negative: into it.",
+             (*_LOADED, LENGTH, *_AIR, *_GROUND, HEIGHT, BEYOND, CONDITION, HEAD), "ft",
+             ("ridge-runner", 1000, "10", 800, 2400, 1008, 31, 1.5, "grass", 60, 400), step="over_obstacle"),
+)  # fmt: skip
+
+BY_NAME = {function.name: function for function in FUNCTIONS}

@@ -1,0 +1,8 @@
+"""Labels of the workbook's pages that are not those of an input: what writes a page and what reads one share them."""
+
+from __future__ import annotations
+
+PROPELLER, ENGINE = "Propeller", "Engine"
+FLAP_HEADER = ("Setting", "Deflection [°]", "", "Deflection, SI", "Uses", "Stall speed [kt]", "At mass [kg]", "Drag added",
+               "Greatest lift coefficient")  # fmt: skip
+GROUND_HEADER = ("Ground", "Rolling", "Braking", "Take-off corr.", "Source of the coefficients", "Landing corr.")
