@@ -13,7 +13,7 @@ import re
 import sys
 import tempfile
 import textwrap
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Collection, Iterable, Sequence
 from importlib.resources import files
 from pathlib import Path
 
@@ -66,6 +66,7 @@ from stripcheck.units import KINDS, from_si, tidy
 MADE = "*This page is made by `python -m stripcheck.doc_pages docs`; change the program, not the page.*"
 WIDTH = 110  # characters of a line of prose
 MANY = 15  # inputs above which a step's list of them says nothing to a reader
+Row = tuple[str, ...]
 PAGES_READ = "mass and flap of the tables' pages"  # four inputs of many steps, in one word
 STATUS_WORDS = {
     "read": "figures taken from the text",
@@ -129,10 +130,10 @@ def method_page() -> str:
         *_step_tables(),
         "## With tables of the manual",
         folded(prose.WITH_TABLES),
-        *_further_tables("tables", [(side, frozenset({side}), frozenset()) for side in SIDES]),
+        *_further_tables("from tables", [(side, frozenset({side}), frozenset()) for side in SIDES]),
         "## With the manual's own corrections",
         folded(prose.WITH_CORRECTIONS),
-        *_further_tables("corrections", [(side, frozenset(), frozenset({side})) for side in REACH]),
+        *_further_tables("with corrections", [(side, frozenset(), frozenset({side})) for side in REACH]),
         "## Findings and verdicts",
         prose.FINDINGS_INTRO,
         "### Take-off",
@@ -198,8 +199,12 @@ def _step_tables() -> list[str]:
 
 
 def _step_table(heading: str, steps: Sequence[Step], chain: Chain) -> list[str]:
+    return _rows_table(heading, [_step_row(step, chain) for step in steps])
+
+
+def _rows_table(heading: str, rows: Collection[Row]) -> list[str]:
     headers = ("Step", "Sign", "Unit", "From", "Only where", "Source", "Key")
-    return [f"### {heading}", table(headers, [_step_row(step, chain) for step in steps])] if steps else []
+    return [f"### {heading}", table(headers, rows)] if rows else []
 
 
 def _reach_steps(chain: Chain) -> list[Step]:
@@ -211,27 +216,31 @@ def _further_tables(what: str, cases: Iterable[tuple[str, frozenset[str], frozen
     """The steps that tables or corrections of the manual add or change, side by side: of either propeller, then of each."""
     parts: list[str] = []
     for side, tables, corrections in cases:
-        chains = [build_chain(kind, POWERS[0], tables, corrections) for kind in PROPELLERS]
-        fixed, constant = (_unlike(chain, build_chain(kind)) for kind, chain in zip(PROPELLERS, chains, strict=True))
-        either = {_work(step) for step in fixed} & {_work(step) for step in constant}
-        heading = f"{SIDE_WORDS[side]}, {what}"
-        parts += _step_table(heading, [step for step in fixed if _work(step) in either], chains[0])
-        for kind, steps, chain in zip(PROPELLERS, (fixed, constant), chains, strict=True):
-            parts += _step_table(f"{heading}, {kind} propeller", [step for step in steps if _work(step) not in either], chain)
+        fixed = _added([("fixed pitch", POWERS[0])], tables, corrections)
+        constant = _added([("constant speed", power) for power in POWERS], tables, corrections)
+        either = {work: row for work, row in fixed.items() if work in constant}
+        heading = f"{SIDE_WORDS[side]} {what}"
+        parts += _rows_table(heading, either.values())
+        for kind, rows in zip(PROPELLERS, (fixed, constant), strict=True):
+            parts += _rows_table(f"{heading}, {kind.replace(' ', '-')} propeller", [row for work, row in rows.items() if work not in either])
     return parts
 
 
-def _unlike(chain: Chain, other: Chain) -> list[Step]:
-    """Steps of a chain that another one does not have, or has from other values."""
-    known = {_work(step) for step in other.steps}
-    return [step for step in chain.steps if _work(step) not in known]
+def _added(kinds: Iterable[tuple[str, str]], tables: frozenset[str], corrections: frozenset[str]) -> dict[object, Row]:
+    """Rows of the steps that chains have by tables or corrections and lack without, or then have from other values."""
+    rows: dict[object, Row] = {}
+    for kind in kinds:
+        chain = build_chain(*kind, tables, corrections)
+        known = {_work(step) for step in build_chain(*kind).steps}
+        rows |= {_work(step): _step_row(step, chain) for step in chain.steps if _work(step) not in known}
+    return rows
 
 
 def _work(step: Step) -> tuple[object, ...]:
     return step.key, step.function, step.inputs
 
 
-def _step_row(step: Step, chain: Chain) -> tuple[str, ...]:
+def _step_row(step: Step, chain: Chain) -> Row:
     labels = list(dict.fromkeys(PAGES_READ if "_page_" in key else chain.by_key[key].label for key in step.inputs))
     from_what = "; ".join(labels) if len(labels) <= MANY else "what the findings below read"
     unit = "yes or no" if step.truth else "words" if step.words else step.unit

@@ -212,7 +212,7 @@ def _commits(asked: Asked, names: tuple[str, str], used: Mapping[str, Array], lo
     if not rows:
         return []
     texts = solve.commit_point(*asked, **loading).texts()
-    margin = from_si(float(result.given["obstacle_margin"]), "ft")
+    margin = from_si(solve.go_around_margin(result), "ft")
     lines = [f"  {names[i]:3} {texts[i]}" for i in rows]
     return ["", f"LAST PLACE TO GO AROUND AND CLEAR THE GROUND BEYOND BY {margin:.0f} FT "
             f"({solve.FLAP_SECONDS:.0f} s level, take-off flap)", *lines]  # fmt: skip

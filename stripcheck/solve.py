@@ -82,7 +82,7 @@ def most_takeoff_mass(strips: Given, card: Card | str, day: Day | Given, rules: 
     ...                   "ridge-runner", {"temperature": 22}, "uk-leaflet").texts()
     ['838 kg', '1,060 kg', 'none']
     """
-    return _most_mass(prepare(strips, card, day, rules, **loading), "takeoff", at_best)
+    return most_mass(prepare(strips, card, day, rules, **loading), "takeoff", at_best)
 
 
 def most_landing_mass(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
@@ -95,7 +95,7 @@ def most_landing_mass(strips: Given, card: Card | str, day: Day | Given, rules: 
     ...                   "ridge-runner", {"temperature": 22}, "uk-leaflet").texts()
     ['1,091 kg', '1,110 kg, the greatest allowed']
     """
-    return _most_mass(prepare(strips, card, day, rules, **loading), "landing", at_best)
+    return most_mass(prepare(strips, card, day, rules, **loading), "landing", at_best)
 
 
 def hottest(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", side: str = "takeoff",
@@ -108,7 +108,11 @@ def hottest(strips: Given, card: Card | str, day: Day | Given, rules: Rules | st
     ...         "ridge-runner", {"temperature": 22}, "uk-leaflet", takeoff_mass=950).texts()
     ['25.1 °C', '40.0 °C']
     """
-    case = prepare(strips, card, day, rules, **loading)
+    return hottest_air(prepare(strips, card, day, rules, **loading), side, at_best)
+
+
+def hottest_air(case: Result, side: str, at_best: str = SUITABLE) -> Answer:
+    """The hottest air [K] of a side, for what `prepare` gives."""
     coldest, hot = (np.full(case.size, limit) for limit in links.TEMPERATURES)
     found = _hardest(case, side, at_best, coldest, hot, lambda kelvin: {"own_temperature": kelvin})
     return Answer(*found, "°C", _celsius, lambda kelvin: f"no limit within {_celsius(kelvin)}")
@@ -133,7 +137,8 @@ def least_headwind(strips: Given, card: Card | str, day: Day | Given, rules: Rul
     return Answer(*found, "kt", _wind, lambda head: f"no limit within {-from_si(head, 'kt'):.0f} kt of tailwind")
 
 
-def _most_mass(case: Result, side: str, at_best: str) -> Answer:
+def most_mass(case: Result, side: str, at_best: str = SUITABLE) -> Answer:
+    """The greatest mass [kg] of a side, for what `prepare` gives."""
     greatest = float(case.given[f"max_{side}_mass"])
     least = float(case.given.get("empty_mass", LEAST_SHARE * greatest))
     light, heavy = (np.full(case.size, mass) for mass in (least, greatest))
@@ -270,9 +275,13 @@ def abort_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules 
     >>> point.texts(), point.check_texts()
     (['265 m along, at 50 kt EAS (53 kt TAS)'], ['93 % of lift-off speed at half, 70 % at 129 m: go'])
     """
+    return abort_point_of(prepare(strips, card, day, rules, **loading), reaction)
+
+
+def abort_point_of(case: Result, reaction: float = REACTION) -> AbortPoint:
+    """The abort point for what `prepare` gives, after a ``reaction`` [s]. Raises InputError for one that can't be right."""
     if not 0.0 <= reaction < np.inf:
         raise InputError(f"a time to react of {reaction} s can't be right; 0 s or more is expected")
-    case = prepare(strips, card, day, rules, **loading)
     values = _values(case, "run_wind", "lift_off_tas", "sigma", *_RUN_KEYS, *_STOP_KEYS)
     accelerated, quickens = _accelerating(values)
     stopped, slows = _stopping(values)
@@ -511,13 +520,22 @@ class CommitPoint:
                 for state, place, height in zip(self.state.tolist(), *numbers, strict=True)]  # fmt: skip
 
 
+def go_around_margin(case: Result) -> float:
+    """Height [m] by which a go-around has to clear the ground: the rule set's over obstacles, 50 ft at least.
+
+    >>> go_around_margin(prepare({}, "ridge-runner", {"temperature": 22}))
+    15.24
+    """
+    return max(float(case.given["obstacle_margin"]), airborne.SCREEN)
+
+
 def commit_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules | str = "manual-only", *,
                  margin: float | None = None, climb_flap: str | None = None, flap_seconds: float = FLAP_SECONDS,
                  **loading: Any) -> CommitPoint:  # fmt: skip
     """The last place on the approach from which a go-around clears the rising ground beyond the strip.
 
     That ground is the row's ``obstacle_height`` above and ``obstacle_distance`` beyond the far end; it is to be cleared
-    by ``margin`` [m], the rule set's clearance over obstacles where none is given. The approach path is the chain's, 50 ft
+    by ``margin`` [m], `go_around_margin` where none is given. The approach path is the chain's, 50 ft
     over the threshold, or later where an obstacle before the threshold asks for it. The go-around: level at approach
     speed for ``flap_seconds`` [s] while the flap goes to ``climb_flap`` (a take-off setting of the card; the take-off
     flap where none is given), level on until the speed of the chain's climb is gained, if that is faster, which the climb
@@ -538,7 +556,7 @@ def commit_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules
     around = {"mass_takeoff": case.given["mass_landing"], "takeoff_flap": flap, "tora": case.given["lda"]}
     values = _values(case.changed(around), "climb_over_ground", "screen_tas", "slope", "landing_known",
                      "approach_tas", "landing_wind", "approach_over_ground", "landing_available")  # fmt: skip
-    margin = float(case.given["obstacle_margin"]) if margin is None else margin
+    margin = go_around_margin(case) if margin is None else margin
     climb, length = values["climb_over_ground"], values["lda"]
     known = values["landing_known"] & np.isfinite(climb + values["obstacle_height"] + values["obstacle_distance"])
     slope = np.where(np.isfinite(values["slope"]), values["slope"], np.abs(values["assumed_slope"]))

@@ -159,6 +159,34 @@ def unit_scale(spelling: str, kind: str) -> tuple[float, float]:
     return _clean(one - zero), _clean(zero)
 
 
+@dataclass(frozen=True)
+class BaseUnit:
+    """A unit against the SI unit of its kind: ``SI = number * factor + offset``; ``kind`` tells which quantities match."""
+
+    kind: str
+    factor: float
+    offset: float
+
+
+@cache
+def base_unit(spelling: str) -> BaseUnit:
+    """Any unit that pint or this project knows. Raises InputError for one that neither does.
+
+    >>> base_unit("ft").factor
+    0.3048
+    """
+    name = _SPELLINGS.get(spelling.strip().lower(), spelling.strip())
+    if not isinstance(spelling, str) or (name == spelling.strip() and not _UNIT_WORDS.fullmatch(name)):
+        raise InputError(f'"{spelling}" is not a unit; write for example "ft" or "kg"')
+    registry = _registry()
+    try:
+        zero = registry.Quantity(0.0, name).to_base_units()
+        one = registry.Quantity(1.0, name).to_base_units()
+    except Exception as error:  # pint raises many kinds of error for a unit that it cannot use
+        raise InputError(f'"{spelling}" is not a unit; write for example "ft" or "kg"') from error
+    return BaseUnit(str(one.dimensionality), _clean(one.magnitude - zero.magnitude), _clean(zero.magnitude))
+
+
 def read_quantity(value: object, kind: str, unit: str = "") -> float:
     """Read a number or a text such as ``"2300 ft"`` as a quantity of ``kind`` in SI.
 

@@ -23,6 +23,7 @@ POINTS = re.compile(r"\[\[book\.(?:takeoff|landing)\]\]\n(?:(?!\[).*\n)*")
 BARE = POINTS.sub("", HERON)  # the trial card without figures of a manual
 TAKEOFF_POINTS, LANDING_POINTS = ("".join(POINTS.findall(HERON)[part]) for part in (slice(0, 2), slice(2, 4)))
 MULE = BARE.replace('kind = "fixed pitch"', 'kind = "constant speed"')
+MULE_POINTS = re.sub(r"to_50ft = .*\n", "", TAKEOFF_POINTS) + LANDING_POINTS  # whose rest of the way is its own
 STILL = {"surface": "paved", "condition": "dry", "slope_given": 0.0, "heading": 0.0, "own_wind_speed": 0.0, "tora": 9000.0,
          "lda": 9000.0, "own_qnh": 1013.25}  # fmt: skip
 LEAST_CLIMB = 0.012  # gradient below which the manual prints no take-off

@@ -36,6 +36,7 @@ from tests.manual_cards import (
     CORRECTIONS,
     LANDING_POINTS,
     MULE,
+    MULE_POINTS,
     STILL,
     TAKEOFF_POINTS,
     everything,
@@ -59,7 +60,7 @@ POINTS = TAKEOFF_POINTS + LANDING_POINTS
 @cache
 def corrected(fixed: bool, tables: bool) -> Card:
     """A card with the manual's corrections, with tables or with single figures."""
-    return everything(fixed) if tables else load((BARE if fixed else MULE) + POINTS + CORRECTIONS)
+    return everything(fixed) if tables else load((BARE + POINTS if fixed else MULE + MULE_POINTS) + CORRECTIONS)
 
 
 def model_of(card: Card) -> Card:
@@ -423,7 +424,7 @@ def at_climb_speed(fixed: bool) -> Card:
     stall = 53.0
     text = changed(BARE if fixed else MULE, ("screen = 1.20", f"screen = {72.0 / stall!r}"),
                    ('takeoff_flap = "10"', 'takeoff_flap = "up"'))  # fmt: skip
-    return load(text + CLIMB + POINTS)
+    return load(text + CLIMB + (POINTS if fixed else MULE_POINTS))
 
 
 @pytest.mark.parametrize("fixed", [True, False], ids=["fixed pitch", "constant speed"])

@@ -15,6 +15,7 @@ from typing import Any
 
 import numpy as np
 
+from stripcheck.assessment import Result
 from stripcheck.card import load_card
 from stripcheck.chain import Chain, Input, Step, evaluate
 from stripcheck.day import read_day
@@ -57,10 +58,15 @@ class Aeroplane:
         uses = next((flap.uses for flap in self.flaps if flap.name == name), ("",))
         return flap_setting(name, tuple(self.flaps), use or uses[0], self.where)
 
+    def case(self, values: Mapping[str, np.ndarray], rules: Mapping[str, Any] | None, size: int) -> Result:
+        """The assessment that a function's arguments stand for, SI; nothing is computed yet."""
+        inputs = {**self.values, **_no_day(), **_no_strip(), **(rules or rules_of("manual-only")), **_strip(values)}
+        return Result(self.chain, size, inputs, {}, [""] * size)
+
     def ask(self, step: str, values: Mapping[str, np.ndarray], rules: Mapping[str, Any] | None,
             size: int) -> tuple[Any, dict[int, str]]:  # fmt: skip
         """A step of the chain for arguments in SI: values or texts, and sentences for the places without one."""
-        inputs = {**self.values, **_no_day(), **_no_strip(), **(rules or rules_of("manual-only")), **_strip(values)}
+        inputs = self.case(values, rules, size).given
         key = next((key for key in CARRIED.get(step, ()) if key in self.chain.by_key), step)
         item = self.chain.by_key[key]
         if not isinstance(item, Step):

@@ -12,11 +12,11 @@ from typing import Any
 
 import numpy as np
 
-from stripcheck.doors.aircraft import Aeroplane, aeroplane_of, rules_of
+from stripcheck.doors.aircraft import NO_WORDS, Aeroplane, aeroplane_of, rules_of
 from stripcheck.doors.functions import Argument, Function
 from stripcheck.errors import InputError
 from stripcheck.surface import CONDITIONS, SURFACES
-from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG, UNITS, from_si, read_quantity, to_si, unit_scale
+from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG, UNITS, read_quantity, to_si, unit_scale
 
 Cells = Any  # a cell, or a list of rows of cells
 WORDS = {"surface": SURFACES, "condition": CONDITIONS}
@@ -30,7 +30,7 @@ def call(function: Function, *given: Cells) -> Cells:
 
     >>> from stripcheck.doors.functions import BY_NAME
     >>> round(call(BY_NAME["DENSITY_ALT"], 2400, 1008, 31), 1)
-    4827.7
+    4930.4
     >>> call(BY_NAME["SLOPE"], [[2380.0], [2380.0]], [[2410.0], ["x"]], 620.0)[1][0]
     'Elevation at end: "x" is not a number; write for example "2300 ft"'
     """
@@ -54,7 +54,7 @@ class _Call:
         self.function = function
         whole = (*given, *[None] * (len(arguments) - len(given)))
         self.typed = {argument.key: _or_default(argument, cells) for argument, cells in zip(arguments, whole, strict=True)}
-        self.spread = [a for a in function.arguments if a.kind not in ("aircraft", "rules")]
+        self.spread = [a for a in function.arguments if a.kind not in ("aircraft", "rules", "text")]
         self.shape = _common_shape([self.typed[argument.key] for argument in self.spread])
         self.size = int(np.prod(self.shape)) if self.shape else 1
         self.wrong: dict[int, str] = {}
@@ -97,7 +97,7 @@ class _Call:
         if argument.kind in WORDS:
             found = self._each(argument, flat, cells, lambda cell: _word(cell, argument))
         elif argument.kind == "flap":
-            side = "landing" if self.function.step.startswith(("landing", "approach")) else "take-off"
+            side = "landing" if "LANDING" in self.function.name or "APPROACH" in self.function.name else "take-off"
             use = None if self.function.name == "STALL_SPEED" else side
             found = self._each(argument, flat, cells, lambda cell: _aeroplane(aeroplane).deflection(cell, use))
         else:
@@ -138,13 +138,16 @@ class _Call:
     def _compute(self, values: dict[str, np.ndarray], aeroplane: Aeroplane | None,
                  rules: dict[str, Any] | None) -> tuple[Any, dict[int, str]]:  # fmt: skip
         """The result in SI, or texts; and sentences for the places where there is none."""
+        if self.function.ask is not None:
+            return self.function.ask(_aeroplane(aeroplane), values, rules, self.size)
         if self.function.compute is None:
             return _aeroplane(aeroplane).ask(self.function.step, values, rules, self.size)
         more = [rules] if rules is not None else []
+        more += [self.typed[argument.key] for argument in self.function.arguments if argument.kind == "text"]
         with np.errstate(all="ignore"):
             found = np.asarray(self.function.compute(*values.values(), *more), dtype=float)
         lost = np.flatnonzero(~np.isfinite(np.broadcast_to(found, self.size))).tolist()
-        return found, {place: "there is no result for these values" for place in lost}
+        return found, dict.fromkeys(lost, NO_WORDS)
 
 
 def _aeroplane(aeroplane: Aeroplane | None) -> Aeroplane:
@@ -177,7 +180,7 @@ def _common_shape(arguments: Sequence[Cells]) -> tuple[int, int] | None:
     if not shapes:
         return None
     try:
-        rows, columns = np.broadcast_shapes(*shapes)
+        rows, columns = (int(side) for side in np.broadcast_shapes(*shapes))
     except ValueError:
         found = " and ".join(f"{rows} x {columns}" for rows, columns in dict.fromkeys(shapes))
         raise InputError(f"the ranges have different shapes: {found} cells; give ranges of one shape") from None
@@ -198,7 +201,3 @@ def _word(cell: Any, argument: Argument) -> float:
         raise InputError(f'"{cell}" is none of: {", ".join(table)}')
     return float(table.index(cell))
 
-
-def shown(function: Function, value: float) -> float:
-    """A result in SI in the function's usual unit, for examples."""
-    return float(from_si(value, function.unit or ""))

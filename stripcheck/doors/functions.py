@@ -17,8 +17,11 @@ from typing import Any
 import numpy as np
 
 from stripcheck import atmosphere, links, speeds
+from stripcheck.doors import limits
+from stripcheck.errors import InputError
 from stripcheck.numeric import Number
-from stripcheck.surface import CONDITIONS, SURFACES
+from stripcheck.surface import CONDITIONS, GROUNDS, SURFACES
+from stripcheck.units import base_unit
 
 PREFIX = "STRIP"
 REQUIRED = object()
@@ -63,6 +66,7 @@ class Function:
     example: tuple[Any, ...]
     compute: Callable[..., Any] | None = None
     step: str = ""
+    ask: limits.Ask | None = None
 
     @property
     def full_name(self) -> str:
@@ -87,8 +91,10 @@ HUMIDITY = Argument("humidity", "Humidity", "humidity", "Relative humidity [%]; 
 WIND_FROM = Argument("wind_from", "Wind from", "angle", "True direction that the wind comes from [°]")
 WIND_SPEED = Argument("wind_speed", "Wind", "speed", "Wind speed [kt]")
 HEADING = Argument("heading", "Heading", "angle", "True heading of the direction of movement [°]")
-AIRCRAFT = Argument("aircraft", "Aircraft", "aircraft", "Name or file of an aircraft card, or a range with an Aircraft sheet's rows")
-RULES = Argument("rules", "Rules", "rules", "Name or file of a rule set, or a range with a Rules sheet's rows")
+AIRCRAFT = Argument("aircraft", "Aircraft", "aircraft",
+                    "Name or file of an aircraft card, or a range with the rows of an Aircraft sheet")  # fmt: skip
+RULES = Argument("rules", "Rules", "rules",
+                 "Name or file of a rule set, or a range with the rows of a Rules sheet")  # fmt: skip
 MASS = Argument("mass", "Mass", "mass", "Mass [kg]")
 FLAP = Argument("flap", "Flap", "flap", "Name of a flap setting of the card")
 BANK = Argument("bank", "Bank", "angle", "Angle of bank [°]; left out: wings level", 0.0)
@@ -108,10 +114,20 @@ _RUN = (*_LOADED, *_AIR, *_GROUND, CONDITION, HEAD)
 _FITS = (*_LOADED, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
 _LIMIT = (AIRCRAFT, FLAP, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
 
+_HOTTEST = (*_LOADED, LENGTH, ELEVATION, QNH, *_GROUND, RULES, CONDITION, HEAD)
+_BEST = (AIRCRAFT, MASS, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
+_RUN_ON = (*_LOADED, LENGTH, *_AIR, *_GROUND, CONDITION, HEAD)
+
 _EXAMPLE_RUN = ("ridge-runner", 1000, "10", 2400, 1008, 31, 1.5, "grass")
 _EXAMPLE_LAND = ("ridge-runner", 1000, "30", 2400, 1008, 31, 1.5, "grass")
 _EXAMPLE_FITS = ("ridge-runner", 1000, "10", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
 _EXAMPLE_FITS_LAND = ("ridge-runner", 1000, "30", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+_EXAMPLE_LIMIT = ("ridge-runner", "10", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+_EXAMPLE_LIMIT_LAND = ("ridge-runner", "30", 600, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+_EXAMPLE_HOTTEST = ("ridge-runner", 950, "10", 750, 2400, 1008, 1.5, "grass", "part-cat-b")
+_EXAMPLE_HOTTEST_LAND = ("ridge-runner", 1000, "30", 640, 2400, 1008, 1.5, "grass", "part-cat-b")
+_EXAMPLE_BEST = ("ridge-runner", 950, 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+_EXAMPLE_RUN_ON = ("ridge-runner", 1000, "10", 600, 2400, 1008, 31, 1.5, "grass")
 
 
 def _pressure_altitude(elevation: Number, qnh: Number) -> Number:
@@ -150,6 +166,23 @@ def _factored(side: str) -> Callable[..., Number]:
         return links.factored(distance, *(rules[f"{side}_{part}"] for part in parts))
 
     return factored
+
+
+def _friction(key: str) -> Callable[..., Number]:
+    figures = np.array([getattr(ground, key) for ground in GROUNDS])
+
+    def friction(surface: Number, condition: Number) -> Number:
+        return figures[(surface * len(CONDITIONS) + condition).astype(int)]
+
+    return friction
+
+
+def _converted(value: Number, of: str, to: str) -> Number:
+    """By pint, whatever the kind of quantity. Raises InputError for units that it does not know or that don't match."""
+    one, other = base_unit(of), base_unit(to)
+    if one.kind != other.kind:
+        raise InputError(f'"{of}" and "{to}" do not measure the same thing')
+    return (value * one.factor + one.offset - other.offset) / other.factor
 
 
 FUNCTIONS = (
@@ -198,11 +231,35 @@ FUNCTIONS = (
              _FITS, None, _EXAMPLE_FITS_LAND, step="landing_verdict"),
     Function("LANDING_REASON", VERDICTS, "What limits the landing, in words.", _FITS, None, _EXAMPLE_FITS_LAND,
              step="landing_reason"),
+    Function("MOST_TAKEOFF_MASS", LIMITS, "Greatest mass at which the take-off is suitable.", _LIMIT, "kg",
+             _EXAMPLE_LIMIT, ask=limits.most_mass("takeoff")),
+    Function("MOST_LANDING_MASS", LIMITS, "Greatest mass at which the landing is suitable.", _LIMIT, "kg",
+             _EXAMPLE_LIMIT_LAND, ask=limits.most_mass("landing")),
+    Function("HOTTEST_TAKEOFF", LIMITS, "Hottest air in which the take-off is suitable.", _HOTTEST, "°C", _EXAMPLE_HOTTEST,
+             ask=limits.hottest("takeoff")),
+    Function("HOTTEST_LANDING", LIMITS, "Hottest air in which the landing is suitable.", _HOTTEST, "°C",
+             _EXAMPLE_HOTTEST_LAND, ask=limits.hottest("landing")),
+    Function("ABORT_POINT", LIMITS, "Last place along the strip from which a rejected take-off still stops on it, 3 s after "
+             "the decision.", _RUN_ON, "m", _EXAMPLE_RUN_ON, ask=limits.abort_distance),
+    Function("ABORT_SPEED", LIMITS, "Speed at the abort point, equivalent airspeed.", _RUN_ON, "kt", _EXAMPLE_RUN_ON,
+             ask=limits.abort_speed),
+    Function("BEST_TAKEOFF_FLAP", LIMITS, "Flap setting that leaves the most margin for the take-off, or none.", _BEST,
+             None, _EXAMPLE_BEST, ask=limits.best_flap("takeoff")),
+    Function("BEST_LANDING_FLAP", LIMITS, "Flap setting that leaves the most margin for the landing, or none.", _BEST,
+             None, _EXAMPLE_BEST, ask=limits.best_flap("landing")),
     Function("CLIMB_GRADIENT", CLIMB, "Climb gradient in still air after take-off, at the speed of the 50 ft point.",
              (*_LOADED, *_AIR), "%", ("ridge-runner", 1000, "10", 2400, 1008, 31), step="climb_gradient"),
     Function("OVER_OBSTACLE", CLIMB, "Height over an obstacle on the climb-out, without factor; negative: into it.",
              (*_LOADED, LENGTH, *_AIR, *_GROUND, HEIGHT, BEYOND, CONDITION, HEAD), "ft",
              ("ridge-runner", 1000, "10", 800, 2400, 1008, 31, 1.5, "grass", 60, 400), step="over_obstacle"),
+    Function("ROLLING", TABLES, "Rolling friction coefficient of a surface in a condition.", (SURFACE, CONDITION), "",
+             ("grass", "wet"), _friction("rolling")),
+    Function("BRAKING", TABLES, "Braking friction coefficient of a surface in a condition.", (SURFACE, CONDITION), "",
+             ("grass", "wet"), _friction("braking")),
+    Function("CONVERT", TABLES, "A value in another unit of the same kind.",
+             (Argument("value", "Value", "number", "A number"),
+              Argument("of", "From unit", "text", 'Unit of the value, such as "ft"'),
+              Argument("to", "To unit", "text", 'Unit of the result, such as "m"')), "", (2400, "ft", "m"), _converted),
 )  # fmt: skip
 
 BY_NAME = {function.name: function for function in FUNCTIONS}
