@@ -15,7 +15,7 @@ from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.inputs import STRIP
-from stripcheck.profile import Profile, profile_column
+from stripcheck.profile import Profile, local_slopes, profile_column
 from stripcheck.profile_run import profile_slopes
 from stripcheck.rules import Rules, load_rules
 from stripcheck.surface import CONDITIONS, SURFACES
@@ -161,6 +161,8 @@ def prepare(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str,
     }
     values = {**card.values, **rules.values, **day.values, **columns, **loading}
     profiles = _profiles(strips.get("profile"), columns, size)
+    if profiles:
+        values["local_slope"] = local_slopes(columns["local_slope"], profiles)
     return Result(card.chain, size, values, {}, faults).changed({}, profiles)
 
 

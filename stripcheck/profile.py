@@ -175,6 +175,16 @@ def profile_column(column: Any, lengths: Floats, usable: Floats) -> list[Profile
     return profiles
 
 
+def local_slopes(own: Any, profiles: Sequence[Profile | None]) -> np.ndarray:
+    """Greatest local slope [-] of each row: the one given, or the steepest part of the profile where that is more.
+
+    >>> local_slopes(np.array([np.nan, 0.01]), [None, Profile((0.0, 450.0), (0.0, 9.0))])
+    array([ nan, 0.02])
+    """
+    steepest = np.array([np.nan if profile is None else profile.steepest for profile in profiles])
+    return np.asarray(np.fmax(own, steepest))
+
+
 def _profile_of(cell: Any) -> Profile | None:
     if cell is None or isinstance(cell, Profile):
         return cell

@@ -546,7 +546,7 @@ def commit_point(strips: Given, card: Card | str, day: Day | Given, rules: Rules
     >>> strip = {"lda": 600.0, "elevation_field": 2300, "slope_given": 5, "surface": "grass",
     ...          "obstacle_height": [250.0, 700.0], "obstacle_distance": [1500.0, 1500.0]}
     >>> commit_point(strip, "ridge-runner", {"temperature": 22}).texts()[1]
-    '70 m before the threshold, not below 69 ft above it'
+    '150 m before the threshold, not below 90 ft above it'
     """
     if not 0.0 <= flap_seconds < np.inf:
         raise InputError(f"a time for the flap of {flap_seconds} s can't be right; 0 s or more is expected")

@@ -13,6 +13,7 @@ from openpyxl.worksheet.worksheet import Worksheet
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.inputs import STRIP
+from stripcheck.profile import local_slopes
 from stripcheck.profile_run import KEYS as PROFILE
 from stripcheck.profile_run import profile_slopes
 from stripcheck.register import Directions
@@ -90,6 +91,7 @@ def profile_columns(chain: Chain, values: Mapping[str, Any], directions: Directi
     """What the slope profiles mean on the day, as the sheet will show it: by chain key in SI."""
     units = {item.key: item.unit for item in STRIP}
     found = profile_slopes(chain, values, directions.profiles)
+    found["local_slope"] = local_slopes(values["local_slope"], directions.profiles)
     return {key: to_si(np.round(from_si(column, units[key]), 6), units[key]) for key, column in found.items()}
 
 
@@ -121,8 +123,9 @@ def layout(chain: Chain, directions: Directions, full: bool) -> list[Column]:
 
 def _has_any(item: Input, directions: Directions) -> bool:
     """Whether the list gives this input for any row; allowed directions and faults count when they say something."""
-    if item.key in PROFILE:
-        return any(profile is not None for profile in directions.profiles)
+    profiled = any(profile is not None for profile in directions.profiles)
+    if item.key in PROFILE or (item.key == "local_slope" and profiled):
+        return profiled
     if item.kind == "number":
         return bool(np.isfinite(directions.numbers[REGISTER_KEYS.get(item.key, item.key)]).any())
     usual = {"flag": "yes"}.get(item.kind, "")
