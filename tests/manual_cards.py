@@ -108,7 +108,9 @@ CLIMB = '\n[book]\nclimb_speed = "72 kt"\n' + "".join([
 ])  # fmt: skip
 
 
+@cache
 def load(text: str) -> Card:
+    """The card of a text."""
     with TemporaryDirectory() as folder:
         return load_text(text, Path(folder))
 

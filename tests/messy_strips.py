@@ -14,7 +14,9 @@ RANGES = {
     "heading": (0.0, 6.2832, 0.1), "obstacle_height": (0.0, 80.0, 0.5), "obstacle_distance": (0.0, 2000.0, 0.5),
     "approach_obstacle_height": (0.0, 80.0, 0.5), "approach_obstacle_distance": (0.0, 2000.0, 0.5),
     "own_temperature": (250.0, 340.0, 0.6), "own_qnh": (84000.0, 109000.0, 0.8), "own_wind_from": (0.0, 6.2832, 0.5),
-    "own_wind_speed": (0.0, 20.0, 0.5),
+    "own_wind_speed": (0.0, 20.0, 0.5), "profile_takeoff_slope": (-0.1, 0.1, 0.9), "profile_takeoff_roll": (100.0, 900.0, 0.5),
+    "profile_landing_slope": (-0.1, 0.1, 0.9), "profile_landing_roll": (100.0, 500.0, 0.5),
+    "profile_climb_slope": (-0.1, 0.1, 0.9), "profile_approach_slope": (-0.1, 0.1, 0.9),
 }  # fmt: skip
 
 

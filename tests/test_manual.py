@@ -20,16 +20,15 @@ from scipy.interpolate import RegularGridInterpolator
 
 from stripcheck import assess, load_card, load_rules
 from stripcheck import chain as chains
-from stripcheck.assessment import Result
+from stripcheck.assessment import Result, prepare
 from stripcheck.book_tables import BookTables
 from stripcheck.card import Card, shipped_cards
 from stripcheck.chain import evaluate
 from stripcheck.day import read_day
 from stripcheck.errors import InputError
 from stripcheck.links import LEAST_MANUAL_SHARE
-from stripcheck.surface import ground
 from stripcheck.verdict import BEYOND, MARGINAL, SUITABLE
-from tests.aircraft import HERON, changed
+from tests.aircraft import HERON, changed, trial_heron, trial_mule
 from tests.manual_cards import (
     BARE,
     CLIMB,
@@ -41,7 +40,9 @@ from tests.manual_cards import (
     TAKEOFF_POINTS,
     everything,
     everything_text,
+    figures,
     load,
+    printed,
     table,
 )
 from tests.messy_strips import messy_columns
@@ -161,14 +162,11 @@ def test_between_the_figures_it_is_linear_in_mass_height_and_heat(name: str, sid
 
 def test_lines_and_columns_of_another_flap_s_table_change_nothing() -> None:
     """One table alone, and beside one of another flap setting on axes of its own that are finer and reach farther."""
-    one = table("take-off roll and to 50 ft", (0, 4000, 8000), (0, 20, 40),
-                [[220, 260, 310], [330, 400, 480], [520, 630, 780]], [[420, 490, 580], [640, 780, 960], [1100, 1400, 1900]],
-                flap="10", mass="1110 kg")  # fmt: skip
-    other = table("take-off roll and to 50 ft", (-500, 1000, 3000, 9000), (-20, 5, 15, 50),
-                  np.linspace(200, 900, 16).reshape(4, 4), np.linspace(450, 2100, 16).reshape(4, 4), flap="20",
-                  mass="1110 kg")  # fmt: skip
+    axes = ((0, 3000, 6000), (0, 15, 25)), ((-500, 1000, 4000, 6500), (-20, 5, 10, 20, 26))
+    one, other = (table("take-off roll and to 50 ft", *own, *printed(trial_heron(), "takeoff", flap, mass, *own), flap=flap,
+                        mass=f"{mass} kg") for own, flap, mass in zip(axes, ("10", "20"), (1110.0, 900.0), strict=True))
     rng = np.random.default_rng(1)
-    height, heat = rng.uniform(0.0, 8000.0, 500), rng.uniform(0.0, 40.0, 500)
+    height, heat = rng.uniform(0.0, 6000.0, 500), rng.uniform(0.0, 25.0, 500)
     alone, beside = (assessed(load(BARE + text + LANDING_POINTS), "takeoff", "10", 1110.0, height, heat)
                      for text in (one, one + other))  # fmt: skip
     for key in ("takeoff_distance", "carried_takeoff_roll", "takeoff_beyond"):
@@ -293,13 +291,13 @@ def test_beyond_the_table_the_model_goes_on_from_its_edge() -> None:
 
 # key -> strip columns, and the mass and flap if others than the page's
 STRANGE: dict[str, dict[str, Any]] = {
-    "uphill": {"slope_given": 4.0},
+    "uphill": {"slope_given": 2.0},
     "downhill": {"slope_given": -3.0},
     "headwind": {"own_wind_speed": 14.0, "own_wind_from": 20.0},
     "tailwind": {"own_wind_speed": 5.0, "own_wind_from": 170.0},
     "grass": {"surface": "grass"},
     "wet grass": {"surface": "grass", "condition": "wet"},
-    "all": {"slope_given": 1.5, "own_wind_speed": 9.0, "own_wind_from": 60.0, "surface": "gravel", "condition": "soft"},
+    "all": {"slope_given": 0.5, "own_wind_speed": 9.0, "own_wind_from": 60.0, "surface": "gravel", "condition": "wet"},
     "no standard pressure": {"own_qnh": 987.0},
 }
 
@@ -324,6 +322,7 @@ def test_carried_to_the_strip_by_what_the_model_makes_of_it(name: str, side: str
         book = assessed(card, *moved).si(f"{side}_distance")[0]
         model = assessed(model_of(card), *moved).si(f"physics_{side}")[0]
     assert here.si(f"{side}_distance")[0] == pytest.approx(book * model_here / model, rel=1e-10)
+    assert np.isfinite(model_here)
     assert abs(model_here / model - 1.0) > 0.001 or what == "no standard pressure"
     own = [here.si(key)[0] for key in (f"{side}_book_distance", f"physics_{side}", f"{side}_model_distance")]
     assert here.si(f"{side}_distance")[0] == pytest.approx(own[0] * own[1] / own[2], rel=1e-12)
@@ -355,7 +354,7 @@ def test_another_flap_is_carried_from_the_nearest_with_tables(name: str, side: s
     other, book = (assessed(card, side, setting, mass, *where).si(f"{side}_distance")[0] for setting in (flap, book_flap))
     models = [assessed(model_of(card), side, setting, mass, *where).si(f"physics_{side}")[0] for setting in (flap, book_flap)]
     assert other == pytest.approx(book * models[0] / models[1], rel=1e-10)
-    assert other != pytest.approx(book, rel=0.01)
+    assert other != pytest.approx(book, rel=0.005)
 
 
 @pytest.mark.parametrize(("name", "side"), [("ridge-runner", "takeoff"), ("ridge-runner", "landing"), ("high-mule", "landing")])
@@ -371,21 +370,23 @@ def test_a_mass_outside_the_pages_is_carried_from_the_nearest(name: str, side: s
 
 # -- tables of one figure ----------------------------------------------------------------------------------------------
 
-ROLLS = [[220, 260, 310], [330, 400, 480], [520, 630, 780]]
-WHOLES = [[420, 490, 580], [640, 780, 960], [1100, 1400, 1900]]
-AXES = ((0, 4000, 8000), (0, 20, 40))
+AXES = ((0, 3000, 6000), (0, 15, 25))
+ROLLS, WHOLES = printed(trial_heron(), "takeoff", "10", 1110.0, *AXES)
 
 
-@pytest.mark.parametrize("text", [BARE, MULE], ids=["fixed pitch", "constant speed"])
-def test_a_table_of_rolls_alone(text: str) -> None:
+@pytest.mark.parametrize("fixed", [True, False], ids=["fixed pitch", "constant speed"])
+def test_a_table_of_rolls_alone(fixed: bool) -> None:
     """The roll comes out at each node; the rest of the way is the model's share of it."""
-    card = load(text + table("take-off roll", *AXES, ROLLS, flap="10", mass="1110 kg") + LANDING_POINTS)
+    rolls = printed(trial_heron() if fixed else trial_mule(), "takeoff", "10", 1110.0, *AXES)[0]
+    card = load((BARE if fixed else MULE) + table("take-off roll", *AXES, rolls, flap="10", mass="1110 kg") + LANDING_POINTS)
     height, heat = (axis.ravel() for axis in np.meshgrid(*AXES, indexing="ij"))
+    known = np.isfinite(rolls.ravel())
+    height, heat, rolls = height[known], heat[known], rolls.ravel()[known]
     result = assessed(card, "takeoff", "10", 1110.0, height, heat)
-    np.testing.assert_allclose(result.si("carried_takeoff_roll"), np.ravel(ROLLS), atol=EXACT)
+    np.testing.assert_allclose(result.si("carried_takeoff_roll"), rolls, atol=EXACT)
     model = assessed(model_of(card), "takeoff", "10", 1110.0, height, heat)
     share = model.si("physics_takeoff") / model.si("takeoff_roll")
-    np.testing.assert_allclose(result.si("takeoff_distance"), np.ravel(ROLLS) * share, rtol=1e-10)
+    np.testing.assert_allclose(result.si("takeoff_distance"), rolls * share, rtol=1e-10)
     assert "no takeoff distance over 50 ft in the book: the airborne part is the model's own" in card.fit.remarks
 
 
@@ -424,7 +425,7 @@ def at_climb_speed(fixed: bool) -> Card:
     stall = 53.0
     text = changed(BARE if fixed else MULE, ("screen = 1.20", f"screen = {72.0 / stall!r}"),
                    ('takeoff_flap = "10"', 'takeoff_flap = "up"'))  # fmt: skip
-    return load(text + CLIMB + (POINTS if fixed else MULE_POINTS))
+    return load(text + CLIMB + MULE_POINTS)  # at that speed the trial card's 50 ft distances make no sense
 
 
 @pytest.mark.parametrize("fixed", [True, False], ids=["fixed pitch", "constant speed"])
@@ -475,7 +476,8 @@ def test_the_climb_counts_where_an_obstacle_stands() -> None:
 
 def test_a_climb_that_the_manual_says_is_none_is_none() -> None:
     """A rate below nothing is taken as it is, and the aeroplane does not climb away."""
-    falling = changed(CLIMB, ("[200.0, 70.0", "[-200.0, -300.0"), ("[460.0, 340.0, 220.0, 110.0]", "[-50.0, -90.0, -120.0, -150.0]"),
+    falling = changed(CLIMB, ("[200.0, 70.0", "[-200.0, -300.0"),
+                      ("[460.0, 340.0, 220.0, 110.0]", "[-50.0, -90.0, -120.0, -150.0]"),
                       ("[720.0, 590.0, 470.0, 360.0]", "[720.0, 590.0, -70.0, -100.0]"))  # fmt: skip
     card = load(BARE + falling + POINTS)
     result = assessed(card, "takeoff", "up", 1110.0, 4000.0, 20.0)
@@ -514,7 +516,8 @@ def printed_there(fixed: bool, tables: bool, side: str) -> tuple[float, float]:
 @WITH
 @pytest.mark.parametrize("side", BOTH)
 def test_without_wind_on_pavement_the_manual_s_figure_stands(fixed: bool, tables: bool, side: str) -> None:
-    assert node(fixed, tables, side).si(f"{side}_distance")[0] == pytest.approx(printed_there(fixed, tables, side)[1], abs=EXACT)
+    distance = printed_there(fixed, tables, side)[1]
+    assert node(fixed, tables, side).si(f"{side}_distance")[0] == pytest.approx(distance, abs=EXACT)
 
 
 @KINDS
@@ -558,7 +561,7 @@ def test_the_physics_stands_beside(fixed: bool, tables: bool, side: str) -> None
     place = (side, *NODES[side], 3000.0, 25.0)
     found, alone = (assessed(one, *place, **strip).si(f"physics_{side}")[0] for one in (card, model_of(card)))
     assert found == alone
-    assert assessed(card, *place, **strip).si(f"{side}_distance")[0] != pytest.approx(found, rel=0.02)
+    assert assessed(card, *place, **strip).si(f"{side}_distance")[0] != pytest.approx(found, rel=0.004)
 
 
 @KINDS
@@ -568,14 +571,13 @@ def test_what_the_manual_does_not_correct_is_left_to_physics(fixed: bool, tables
     """Slope, gravel and soft grass: with the manual's corrections and without, the same. With grass and a slope the physics
     takes the slope on pavement, in still air, and the manual the rest."""
     card, other = corrected(fixed, tables), replace(corrected(fixed, tables), corrections=frozenset())
-    place = (side, *NODES[side], 3000.0, 25.0)
-    for strip in ({"slope_given": 2.0}, {"surface": "gravel"}, {"surface": "grass", "condition": "soft"},
-                  {"surface": "long grass", "slope_given": -1.0}):  # fmt: skip
-        with_them, without = (assessed(one, *place, **strip).si(f"{side}_distance")[0] for one in (card, other))
-        assert with_them == pytest.approx(without, rel=1e-12)
-    sloping, level = (assessed(other, *place, slope_given=slope) for slope in (2.0, 0.0))
+    place = (side, *NODES[side], 1000.0, 15.0)
+    for strip in ({"slope_given": 1.0}, {"surface": "gravel"}, {"surface": "long grass", "slope_given": -2.0}):
+        with_them, without_them = (assessed(one, *place, **strip).si(f"{side}_distance")[0] for one in (card, other))
+        assert with_them == pytest.approx(without_them, rel=1e-12) and np.isfinite(with_them)
+    sloping, level = (assessed(other, *place, slope_given=slope) for slope in (1.0, 0.0))
     roll_carry = level.si(f"carried_{side}_roll")[0] / level.si(f"{side}_roll")[0] if tables else 1.0
-    both = assessed(card, *place, slope_given=2.0, surface="grass", own_wind_speed=9.0, own_wind_from=0.0)
+    both = assessed(card, *place, slope_given=1.0, surface="grass", own_wind_speed=9.0, own_wind_from=0.0)
     by_hand = 0.9 * (sloping.si(f"{side}_distance")[0] + GRASS[side, "dry"] * sloping.si(f"{side}_roll")[0] * roll_carry)
     assert both.si(f"{side}_distance")[0] == pytest.approx(by_hand, rel=1e-10)
 
@@ -636,8 +638,6 @@ def test_the_published_corrections_still_count_where_they_are_longer(fixed: bool
     card, strip = corrected(fixed, tables), {**STILL, "elevation_field": 0.0, "own_temperature": 20.0, "surface": "grass",
                                              "condition": "wet"}  # fmt: skip
     rules = load_rules("uk-leaflet")
-    row = [f"{one}, {other}" for one, other in (("grass", "wet"),)]
-    assert ground("grass", "wet") is not None and row
     for side in BOTH:
         loading = {f"{side}_mass": 1110.0, f"{side}_flap": NODES[side][0]}
         result, plain = (assess({**strip, **more}, card, {}, rules, **loading) for more in ({}, {"surface": "paved",
@@ -688,11 +688,12 @@ def test_corrections_that_are_refused(entries: str, sentence: str) -> None:
 @pytest.mark.parametrize(
     ("text", "sentence"),
     [
-        ('[book.corrections.take-off]\ndry_grass = "15 %"\n', 'trial.toml [book] [corrections]: "take-off" is not an entry here; the '
-         "entries are: landing, takeoff"),
-        ('[book.corrections.climb]\nheadwind = ["10 %", "9 kt"]\n', 'trial.toml [book] [corrections]: "climb" is not an entry here; '
-         "the entries are: landing, takeoff"),
-        ("[book.corrections]\ntakeoff = 3\n", "trial.toml [book] [corrections]: [takeoff] must be a part of the file, not a value"),
+        ('[book.corrections.take-off]\ndry_grass = "15 %"\n',
+         'trial.toml [book] [corrections]: "take-off" is not an entry here; the entries are: landing, takeoff'),
+        ('[book.corrections.climb]\nheadwind = ["10 %", "9 kt"]\n',
+         'trial.toml [book] [corrections]: "climb" is not an entry here; the entries are: landing, takeoff'),
+        ("[book.corrections]\ntakeoff = 3\n",
+         "trial.toml [book] [corrections]: [takeoff] must be a part of the file, not a value"),
         (table("rate of climb", (0, 4000), (0, 20), [[700, 600], [400, 300]], flap="up"),
          "trial.toml [book]: climb_speed is missing; it takes a speed"),
     ],
@@ -702,27 +703,30 @@ def test_parts_that_are_refused(text: str, sentence: str) -> None:
         load(f"{HERON}\n{text}")
 
 
-def growing(first: float, lines: int = 3) -> np.ndarray:
+HIGH_AXES = ((0, 4000, 8000), (0, 20, 40))
+
+
+def growing(first: float) -> np.ndarray:
     """Figures of an imagined aeroplane that hardly minds height and heat."""
-    height, heat = np.meshgrid(np.arange(lines) * 4000.0, [0.0, 20.0, 40.0], indexing="ij")
+    height, heat = np.meshgrid(*HIGH_AXES, indexing="ij")
     return np.round(first * np.exp(height / 9000.0 + heat / 80.0))
 
 
 @pytest.mark.parametrize(
     ("text", "sentence"),
     [
-        (BARE.replace("parasite = 0.036", "parasite = 0.14") + table("take-off roll", *AXES, growing(260.0), flap="10")
+        (BARE.replace("parasite = 0.036", "parasite = 0.14") + table("take-off roll", *HIGH_AXES, growing(260.0), flap="10")
          + LANDING_POINTS,
-         "trial.toml [book]: the card gives no take-off distance at 4,000 ft and 20 °C, where the manual's table has one: check "
-         "power, drag and stall speeds of the card, and that figure"),
-        (BARE + table("take-off roll and to 50 ft", *AXES, growing(26.0), growing(48.0), flap="10") + LANDING_POINTS,
+         "trial.toml [book]: the card gives no take-off distance at 4,000 ft and 20 °C, where the manual's table has one: "
+         "check power, drag and stall speeds of the card, and that figure"),
+        (BARE + table("take-off roll and to 50 ft", *HIGH_AXES, growing(26.0), growing(48.0), flap="10") + LANDING_POINTS,
          "trial.toml: the take-off rolls of the book need a static thrust of "),
-        (BARE + table("take-off to 50 ft", *AXES, growing(480.0), flap="10") + LANDING_POINTS,
-         "trial.toml [book]: nothing to calibrate the take-off on: a [[book.table]] with its rolls, or one [[book.takeoff]] point or "
-         "more, is needed"),
-        (BARE + TAKEOFF_POINTS + table("landing from 50 ft", *AXES, growing(480.0), flap="30"),
-         "trial.toml [book]: nothing to calibrate the landing on: a [[book.table]] with its rolls, or one [[book.landing]] point or "
-         "more, is needed"),
+        (BARE + table("take-off to 50 ft", *HIGH_AXES, growing(480.0), flap="10") + LANDING_POINTS,
+         "trial.toml [book]: nothing to calibrate the take-off on: a [[book.table]] with its rolls, or one [[book.takeoff]] "
+         "point or more, is needed"),
+        (BARE + TAKEOFF_POINTS + table("landing from 50 ft", *HIGH_AXES, growing(480.0), flap="30"),
+         "trial.toml [book]: nothing to calibrate the landing on: a [[book.table]] with its rolls, or one [[book.landing]] "
+         "point or more, is needed"),
     ],
 )  # fmt: skip
 def test_cards_that_do_not_go_with_their_tables(text: str, sentence: str) -> None:
@@ -831,23 +835,22 @@ def check_same(found: Mapping[str, np.ndarray], expected: Mapping[str, np.ndarra
             np.testing.assert_array_equal(found[key], values, err_msg=key)
 
 
-@settings(max_examples=12)
-@given(st.integers(0, 10**6), st.booleans())
-def test_a_loaded_card_with_random_tables_gives_them_back(seed: int, fixed: bool) -> None:
-    """Through the card's file and its calibration: random axes, masses and holes around the trial card's own figures."""
+@pytest.mark.parametrize("seed", range(4))
+def test_a_loaded_card_with_random_tables_gives_them_back(seed: int) -> None:
+    """Through the card's file and its calibration: random axes, masses and holes, the trial card's figures scattered."""
     rng = np.random.default_rng(seed)
-    altitudes = [0.0, *np.round(np.cumsum(rng.uniform(800.0, 2500.0, 3)))]
+    altitudes = [0.0, *np.round(np.cumsum(rng.uniform(800.0, 2500.0, 3))).tolist()]
     temperatures = np.round(np.cumsum(rng.uniform(5.0, 14.0, 4)) - 15.0).tolist()
-    text, given_ = BARE if fixed else MULE, []
-    height, heat = np.meshgrid(altitudes, temperatures, indexing="ij")
-    for mass in sorted(rng.choice([850.0, 920.0, 1000.0, 1080.0, 1110.0], 2, replace=False)):
-        growth = np.exp(height / rng.uniform(8500.0, 9500.0) + (heat - 15.0) / rng.uniform(75.0, 90.0)) * (mass / 1110.0) ** 2.2
-        grids = [np.round(first * growth, 1) for first in (265.0, 475.0)]
-        holes = (height / 9000.0 + heat / 45.0 > rng.uniform(1.1, 1.6)) & (rng.random(height.shape) < 0.9)
-        grids = [np.where(holes, np.nan, grid) for grid in grids]
+    text, given_ = BARE, []
+    for mass in sorted(rng.choice([850.0, 920.0, 1000.0, 1080.0], 2, replace=False)):
+        grids = figures(trial_heron(), "takeoff", "10", mass, altitudes, temperatures)
+        holes = rng.random(grids[0].shape) < 0.1
+        scatter = 1.0 + rng.uniform(0.0, 0.004, holes.shape)
+        grids = [np.where(holes, np.nan, np.round(scatter * grid, 1)) for grid in grids]
         given_.append((mass, *grids))
         text += table("take-off roll and to 50 ft", altitudes, temperatures, *grids, flap="10", mass=f"{mass:g} kg")
     card = load(text + LANDING_POINTS)
+    height, heat = np.meshgrid(altitudes, temperatures, indexing="ij")
     for mass, roll, distance in given_:
         known = np.isfinite(roll)
         result = assessed(card, "takeoff", "10", mass, height[known], heat[known])
@@ -859,12 +862,11 @@ def test_a_loaded_card_with_random_tables_gives_them_back(seed: int, fixed: bool
 def test_a_flap_between_two_with_tables_has_no_distance(fixed: bool) -> None:
     """Which only the chain can be asked for; nought would be the shortest distance of all."""
     card = everything(fixed)
-    values = {**card.values, **load_rules("manual-only").values, **read_day({"temperature": 15}).values, **messy_columns(200, 3)}
-    values |= {"takeoff_flap": np.radians(15.0), "landing_flap": np.radians(25.0)}
-    found = evaluate(card.chain, values)
+    given_ = prepare({**STILL, "elevation_field": 1000.0, "own_temperature": 15.0}, card, {}).given
+    found = evaluate(card.chain, {**given_, "takeoff_flap": np.radians(15.0), "landing_flap": np.radians(25.0)})
     for side in BOTH:
         assert np.isnan(found[f"{side}_distance"]).all()
-        assert np.isfinite(found[f"physics_{side}"]).any()
+        assert np.isfinite(found[f"physics_{side}"]).all()
 
 
 def test_the_card_with_everything_says_what_it_took_for_granted() -> None:

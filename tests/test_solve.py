@@ -47,7 +47,8 @@ def asked(situation: Situation, rules: Any = None, **changed: Any) -> tuple[tupl
     it = {**situation, **changed}
     head, cross = it["head"], it["cross"]
     strip = {key: value for key, value in {**it["strip"], **changed}.items() if value is not None and key in it["strip"]}
-    strip |= {"heading": 0.0, "own_wind_speed": np.hypot(head, cross), "own_wind_from": np.degrees(np.arctan2(cross, head)) % 360.0}
+    strip |= {"heading": 0.0, "own_wind_speed": np.hypot(head, cross),
+              "own_wind_from": np.degrees(np.arctan2(cross, head)) % 360.0}  # fmt: skip
     card = CARDS[it["card"]]
     masses = {f"{side}_mass": np.multiply(it["share"], card.values[f"max_{side}_mass"]) for side in SIDES}
     masses = {key: mass.tolist() for key, mass in masses.items()}
@@ -150,7 +151,7 @@ CHANGED_BY = {"mass": "mass", "heat": "heat", "tailwind": "wind"}  # what a law 
 SETS = {"ridge-runner": "uk-leaflet", "high-mule": "part-cat-b"}
 
 
-@pytest.mark.parametrize(("law", "name"), zip(LAWS, sorted(SETS) * 3, strict=True))
+@pytest.mark.parametrize(("law", "name"), list(zip(LAWS, sorted(SETS) * 3, strict=True)))
 def test_laws_over_many_strips(law: str, name: str) -> None:
     """What makes a strip harder never raises what is asked of it: mass, heat, tailwind; for either side, where it counts."""
     rng = np.random.default_rng(13)

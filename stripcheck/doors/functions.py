@@ -35,6 +35,8 @@ AIR, SITE, SPEEDS, DISTANCES, VERDICTS, LIMITS, CLIMB, TABLES = (
 class Argument:
     """One argument: key, trade name, kind, help, and the value that stands for it where it is left out.
 
+    ``key`` is its name in code too, so it is no word of VBA, Python or UNO (``stripcheck.doors.lint``).
+
     ``kind`` is one of ``stripcheck.units.KINDS`` (a number in that kind's usual unit, or a text with its own), or
     aircraft, rules, flap, surface, condition, or text.
     """
@@ -172,7 +174,8 @@ def _friction(key: str) -> Callable[..., Number]:
     figures = np.array([getattr(ground, key) for ground in GROUNDS])
 
     def friction(surface: Number, condition: Number) -> Number:
-        return figures[(surface * len(CONDITIONS) + condition).astype(int)]
+        row = surface * len(CONDITIONS) + condition
+        return np.where(np.isfinite(row), figures[np.nan_to_num(row).astype(int)], np.nan)
 
     return friction
 
@@ -193,8 +196,8 @@ FUNCTIONS = (
     Function("DENSITY_RATIO", AIR, "Air density over that of the standard atmosphere at sea level.", (*_AIR, HUMIDITY), "",
              (2400, 1008, 31), _density_ratio),
     Function("SLOPE", SITE, "Mean slope from the elevations of both ends and the length, uphill positive.",
-             (Argument("start", "Elevation at start", "altitude", "Elevation of the end where the movement starts [ft]"),
-              Argument("end", "Elevation at end", "altitude", "Elevation of the far end [ft]"),
+             (Argument("start_elevation", "Elevation at start", "altitude", "Elevation of the end where the movement starts [ft]"),
+              Argument("end_elevation", "Elevation at end", "altitude", "Elevation of the far end [ft]"),
               Argument("length", "Length", "length", "Length of the strip between its ends [m]")), "%",
              (2380, 2410, 620), _slope),
     Function("HEADWIND", SITE, "Headwind component; a tailwind is negative.", (WIND_FROM, WIND_SPEED, HEADING), "kt",
@@ -258,8 +261,8 @@ FUNCTIONS = (
              ("grass", "wet"), _friction("braking")),
     Function("CONVERT", TABLES, "A value in another unit of the same kind.",
              (Argument("value", "Value", "number", "A number"),
-              Argument("of", "From unit", "text", 'Unit of the value, such as "ft"'),
-              Argument("to", "To unit", "text", 'Unit of the result, such as "m"')), "", (2400, "ft", "m"), _converted),
+              Argument("from_unit", "From unit", "text", 'Unit of the value, such as "ft"'),
+              Argument("to_unit", "To unit", "text", 'Unit of the result, such as "m"')), "", (2400, "ft", "m"), _converted),
 )  # fmt: skip
 
 BY_NAME = {function.name: function for function in FUNCTIONS}
