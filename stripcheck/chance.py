@@ -98,9 +98,13 @@ def chance(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     >>> chance(strip, "ridge-runner", {"temperature": 22}, takeoff_mass=950).texts("takeoff")
     ['about 5 in 10', 'about 2 in 10', 'under 1 in 1,000']
     """
+    return chance_of(prepare(strips, card, day, rules, **loading), errors, points)
+
+
+def chance_of(case: Result, errors: Errors | None = None, points: int = POINTS) -> Chance:
+    """The chance for what `prepare` gives. Raises InputError for a sample without points."""
     if points < 1:
         raise InputError(f"a sample of {points} points can't be right; 1 or more is expected")
-    case = prepare(strips, card, day, rules, **loading)
     known = {side: case.si(f"{side}_known") & (_verdicts(case, side) != NOT_ASSESSED) for side in SIDES}
     deviates, spread = _deviates(points), errors or Errors()
     shares = {side: np.full(case.size, np.nan) for side in known}

@@ -74,6 +74,8 @@ def _add_fill(commands: Any) -> None:
     fill.add_argument("--strict", action="store_true", help="stop at the first row with a fault")
     fill.add_argument("--detail", choices=("full", "short"),
                       help="full: each step a column (usual up to 2,000 directions); short: the key columns")  # fmt: skip
+    fill.add_argument("--chance", action="store_true",
+                      help="beside each margin the chance of needing more than there is (slow on long lists)")  # fmt: skip
     _add_loading(fill)
     _add_day(fill)
     fill.add_argument("--quiet", action="store_true", help="no progress bar, no summary line")
@@ -166,7 +168,7 @@ def _run_fill(options: argparse.Namespace) -> int:
         Path(options.list), Path(options.output), options.card, options.rules, day,
         takeoff_mass=options.takeoff_mass, landing_mass=options.landing_mass, takeoff_flap=options.takeoff_flap,
         landing_flap=options.landing_flap, airports=options.airports, sheet=options.sheet, strict=options.strict,
-        detail=options.detail, force=options.force, quiet=options.quiet,
+        detail=options.detail, chance=options.chance, force=options.force, quiet=options.quiet,
     )  # fmt: skip
     return _say(fill_list(request), options.quiet)
 

@@ -222,7 +222,8 @@ def _further_tables(what: str, cases: Iterable[tuple[str, frozenset[str], frozen
         heading = f"{SIDE_WORDS[side]} {what}"
         parts += _rows_table(heading, either.values())
         for kind, rows in zip(PROPELLERS, (fixed, constant), strict=True):
-            parts += _rows_table(f"{heading}, {kind.replace(' ', '-')} propeller", [row for work, row in rows.items() if work not in either])
+            own = [row for work, row in rows.items() if work not in either]
+            parts += _rows_table(f"{heading}, {kind.replace(' ', '-')} propeller", own)
     return parts
 
 

@@ -219,8 +219,8 @@ card has tables for that side; a step that stands above too is then made from th
 is carried by the difference, not the ratio: it may be near nil."""
 WITH_CORRECTIONS = """
 Where the card holds the manual's own correction for wind or for grass, it goes before the physics, which is
-left with what the manual does not tell: slope, other ground, and no wind. The distance by physics stays as
-a step beside it. The rule set's published corrections still count, and the longer governs."""
+left with what the manual does not tell: slope, other ground, and a wind for which it has no correction. The
+distance by physics stays as a step beside it. The rule set's published corrections still count, and the longer governs."""
 FINDINGS_INTRO = """
 Take-off and landing are judged apart, for each direction. The findings are gone through from the top; the
 first that holds decides, and its words are the limiting reason. A suitable strip is one for which none of
@@ -285,7 +285,7 @@ A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `-
 own, `--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own
 manual's figures in their place."""
 WALK_INTRO = """
-The {0} is invented, and so is its manual: its figures come from this program's model, rounded to 5 m, so that
+The {0} is invented, and so is its manual: its figures come from this program's model, rounded as a manual rounds, so that
 they belong together. With your own manual the steps are the same."""
 WALK_PAGES = """
 **1. Find these pages.**
@@ -297,11 +297,11 @@ WALK_PAGES = """
 - The two tables below, with their notes."""
 WALK_TAKEOFF = """
 *Take-off* [m], roll / to 50 ft: 750 kg, flaps 15°, level dry pavement, no wind. Lift off at 45 kt, 50 kt at
-50 ft, calibrated. Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind. On dry grass
+50 ft, calibrated. Subtract 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind. On dry grass
 add 15 % of the roll."""
 WALK_LANDING = """
 *Landing* [m], roll / from 50 ft: 750 kg, flaps 35°, level dry pavement, no wind. 50 kt at 50 ft, calibrated.
-Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind."""
+Subtract 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind."""
 WALK_TYPE = """
 **2. Type them into a text file**, here `my-card.toml`. A speed is divided by the stall speed of its flap
 setting: 45 / 41 = 1.10. A figure that the manual leaves out is `"-"`. What no page tells is left out too:
@@ -457,245 +457,6 @@ any of them.
 *Only rolls, or only distances over 50 ft:* the other one follows in the model's proportion; a card needs at
 least one roll for each side. *Rates of climb* correct the gradient with which the aeroplane climbs away and
 clears obstacles; conditions beyond those tables show in the columns and cost no verdict."""
-CORRECTIONS = """
-Where the card holds the manual's own correction for wind or for grass, it goes before the physics, which is
-left with what the manual does not tell: slope, other ground, and no wind. The distance by physics stays as
-a step beside it. The rule set's published corrections still count, and the longer governs."""
-FINDINGS_INTRO = """
-Take-off and landing are judged apart, for each direction. The findings are gone through from the top; the
-first that holds decides, and its words are the limiting reason. A suitable strip is one for which none of
-the others holds."""
-BOTH_INTRO = """
-The summary takes the better direction in and the better direction out: first by verdict (*suitable*, then
-*marginal*, then *not assessed*, then *unsuitable*), then by margin. Together they read: {}. As soon as one
-side is not assessed, so is the pair."""
-RULES_INTRO = """
-A rule set says how much of a wind counts, which published corrections are put on a distance, by what factor
-it is then multiplied, and what a site must offer. `--rules NAME` takes a shipped set, `--rules FILE.toml`
-your own. The set's values stand on the sheet Rules of a filled workbook, where each can be changed.
-
-Two distances are compared, and the longer governs: the one that physics gives for the slope and the
-surface, and the one on level dry pavement times the published corrections. The published corrections give
-nothing back for a slope that helps, and so a downhill take-off or an uphill landing counts as a level one
-under the sets that use them. *Physics counts* and *Published corrections count* switch either off.
-
-Rules change and differ from country to country. The shipped figures are only as good as their status says;
-the current local text governs."""
-GROUND_INTRO = """
-Friction coefficients of free and of braked wheels, the same for every set. *None*: a strip with that ground
-is not assessed. Braking is multiplied by the factor that the aircraft card was calibrated to.
-
-[1] W. H. Mason, notes to a take-off program, Virginia Tech. [2] D. P. Raymer, Aircraft Design, and J. D.
-Anderson, Aircraft Performance and Design (from memory). [3] Common practice, no source: between its
-neighbours, on the careful side."""
-OWN_RULES = """
-Write a text file whose name ends in `.toml`, and name it with `--rules`. A misspelt entry is refused, and
-so is a figure that can't be right. Write each figure with its unit, in quotes: `"5 %"`, never 0.05, which
-would be read as 0.05 %. A small one, for an invented operator:
-
-```toml
-title = "Our operations manual"
-issue = "Revision 3"
-citation = "Operations manual, part B, chapter 4"
-status = "own"
-
-[wind]
-headwind_credit = "50 %"
-tailwind_count = "150 %"
-
-[takeoff]
-safety_factor = 1.33
-
-[landing]
-safety_factor = 1.43
-
-[takeoff_surface.grass]
-dry = 1.20
-wet = 1.30
-```
-
-All entries; *needed* ones have no usual value."""
-SURFACE_FACTORS = """
-Published surface corrections go into `[takeoff_surface.WORD]` and `[landing_surface.WORD]`, with the
-entries {0}, each a factor of 1 or more. WORD is one of {1} (in quotes where it has a space:
-`[takeoff_surface."long grass"]`), or `every` for all that have no figure of their own. What is left out is
-1: then the physics of that surface governs."""
-CARD_INTRO = """
-A card is a text file, ending in `.toml`, that holds one aeroplane's figures. `--card FILE.toml` takes your
-own, `--card NAME` a shipped one: {0}. The shipped aeroplanes are invented; copy one and put your own
-manual's figures in their place."""
-WALK_INTRO = """
-The {0} is invented, and so is its manual: its figures come from this program's model, rounded to 5 m, so that
-they belong together. With your own manual the steps are the same."""
-WALK_PAGES = """
-**1. Find these pages.**
-
-- Data: empty mass 480 kg, greatest mass 750 kg. Wing 15.2 m², span 10.4 m. Engine 86 kW, fixed-pitch
-  propeller of 1.85 m.
-- Limits: crosswind 12 kt, tailwind 5 kt.
-- Stall speeds at 750 kg, power off, calibrated: flaps up 44 kt, 15° 41 kt, 35° 38 kt.
-- The two tables below, with their notes."""
-WALK_TAKEOFF = """
-*Take-off* [m], roll / to 50 ft: 750 kg, flaps 15°, level dry pavement, no wind. Lift off at 45 kt, 50 kt at
-50 ft, calibrated. Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind. On dry grass
-add 15 % of the roll."""
-WALK_LANDING = """
-*Landing* [m], roll / from 50 ft: 750 kg, flaps 35°, level dry pavement, no wind. 50 kt at 50 ft, calibrated.
-Take off 10 % for each 9 kt of headwind; add 10 % for each 2 kt of tailwind."""
-WALK_TYPE = """
-**2. Type them into a text file**, here `my-card.toml`. A speed is divided by the stall speed of its flap
-setting: 45 / 41 = 1.10. A figure that the manual leaves out is `"-"`. What no page tells is left out too:
-the program then takes a usual value and says so."""
-EXAMPLE_CARD = """
-[aeroplane]
-name = "Tarn Wader 115"
-note = "Invented two-seater, fixed-pitch propeller."
-
-[mass]
-empty = "480 kg"
-max_takeoff = "750 kg"
-
-[wing]
-area = "15.2 m²"
-span = "10.4 m"
-
-[engine]
-rated_power = "86 kW"
-
-[propeller]
-kind = "fixed pitch"
-diameter = "1.85 m"
-
-[[flap]]
-setting = "up"
-deflection = "0°"
-stall_speed = "44 kt"
-
-[[flap]]
-setting = "15"
-deflection = "15°"
-stall_speed = "41 kt"
-
-[[flap]]
-setting = "35"
-deflection = "35°"
-stall_speed = "38 kt"
-uses = ["landing"]
-
-[speeds]
-lift_off = 1.10
-screen = 1.22
-approach = 1.32
-
-[limits]
-crosswind = "12 kt"
-tailwind = "5 kt"
-
-[usual]
-takeoff_flap = "15"
-landing_flap = "35"
-
-[[book.table]]
-gives = "take-off roll and to 50 ft"
-flap = "15"
-mass = "750 kg"
-pressure_altitudes = [0, 2000, 4000, 6000]
-temperatures = [0, 15, 30]
-values = [
-    [120, 275, 135, 310, 155, 360],
-    [145, 330, 165, 380, 185, 440],
-    [175, 405, 200, 475, 225, 555],
-    [210, 505, 240, 605, "-", "-"],
-]
-
-[[book.table]]
-gives = "landing roll and from 50 ft"
-flap = "35"
-mass = "750 kg"
-pressure_altitudes = [0, 3000, 6000]
-temperatures = [0, 15, 30]
-values = [
-    [115, 320, 120, 325, 125, 330],
-    [130, 330, 135, 335, 140, 345],
-    [140, 345, 145, 350, 155, 360],
-]
-
-[book.corrections.takeoff]
-headwind = ["10 %", "9 kt"]
-tailwind = ["10 %", "2 kt"]
-dry_grass = "15 %"
-
-[book.corrections.landing]
-headwind = ["10 %", "9 kt"]
-tailwind = ["10 %", "2 kt"]
-"""
-WALK_FILL = """
-**5. Fill a workbook.** A list of two strips, `my-strips.csv`, the first of which is the manual's own page:"""
-EXAMPLE_LIST = """
-Strip,Runway,Length [m],Elevation [ft],Slope [%],Heading,Surface
-Proof,09/27,800,0,0,90,paved
-Home,09/27,620,900,1,90,grass
-"""
-EXAMPLE_COMMAND = """
-stripcheck fill my-strips.csv --card my-card.toml --rules manual-only --temp 15 -o my-strips.xlsx
-"""
-WALK_PROOF = """
-On the sheet Strips the distances required of *Proof* are {takeoff:.0f} m and {landing:.0f} m, those of the
-manual at sea level and 15 °C. If yours are not the manual's, a figure was mistyped. Those of *Home* are what
-the manual does not print. Then take your rule set in place of `manual-only`, and your own list.
-(`stripcheck demo` fills a workbook for a shipped aeroplane, if you want to see one first.)"""
-CARD_ADVICE = """
-- *Stall speeds* are best the calibrated ones, at the mass named under `stall_speeds_at`. An indicated one
-  can be several knots low, and every distance goes with its square. Where the manual prints only that, or
-  none for a setting, see *Flaps* below.
-- *Conditions* of a table are level dry pavement in still air. A table for grass, or with a factor in it, is
-  none; leave it out.
-- *A chart in place of a table:* read figures off it where the lines of the paper cross, and type them as a
-  table. *A few figures only:* type each as `[[book.takeoff]]` or `[[book.landing]]`, far apart, such as sea
-  level on a cold day and a high, hot one, heavy and light.
-- *Feet:* `unit = "ft"` in a table, `"1050 ft"` in a single figure."""
-CARD_ENTRIES_INTRO = """
-Numbers carry their unit, in quotes. *Needed* entries have no usual value. A usual value of speeds, drag or landing that
-was used is listed as taken for granted. Parts in double brackets come again for each setting, table or point."""
-GRID_FILES = """
-A table may stand in a file beside the card, as the manual prints it: a line of temperatures, below it a line
-for each pressure altitude, which stands in the first cell. Title lines above are passed over. Bare numbers
-are ft and °C. One figure for each temperature, here {0}:"""
-GRID_PAIRS = """
-With two figures, each temperature has two columns and stands above the first; a line of words may follow,
-here {0}:"""
-BOOK_FIRST = """
-A manual's table holds for level dry pavement in still air. The strip is none of that. So the manual's figure
-is taken as it is, and physics only carries it on:
-
-```text
-distance = manual's figure x model(strip) / model(manual's conditions)
-```
-
-The manual's conditions are the strip's pressure altitude and temperature and your mass, as far as the tables
-go, and the nearest flap setting that has tables. On level dry pavement in still air the model cancels out,
-and the manual's figure comes out to the metre. A flap setting without tables is carried by the model, and no
-verdict marks it.
-
-*Between its figures* a table is read linearly in pressure altitude, temperature and mass, as manuals ask for
-(multilinear interpolation). That is exact at each figure and never goes past its neighbours, as a curve
-could; and since distances grow faster and faster with height, heat and mass, a straight line between two
-figures lies on the long side.
-
-*Holes.* One between other figures is put between them, and said so. One at an edge stays a hole: there the
-conditions are beyond the book, and the model carries the nearest figure on.
-
-*Beyond the book.* Higher, hotter or heavier than the figures go, the nearest figure is carried on by the
-model, and the verdict is at best *marginal*: *{0}*. Where the model itself has no distance at the table's
-edge it is *unsuitable*: *{1}*. Lower, colder or lighter than the tables is carried in the same way and not
-marked: it is easier than what the manual prints, and if it cost a verdict, more heat could better one. How
-far beyond shows in three columns for each side on the sheet Strips, such as *{2}*; negative is the easy
-side. A card of single figures only is beyond the book where the air is thinner (by density altitude) than
-at any of them.
-
-*Only rolls, or only distances over 50 ft:* the other one follows in the model's proportion; a card needs
-at least one roll for each side. *Rates of climb* correct the gradient with which the aeroplane climbs away
-and clears obstacles; conditions beyond those tables show in the columns and cost no verdict."""
 CORRECTIONS = """
 What the manual says about wind and grass can be entered, and then governs in place of the physics: the
 physics is left with slope, other ground and, for what is not entered, wind or grass. A share for grass is

@@ -51,6 +51,7 @@ class Request:
     sheet: str | None = None
     strict: bool = False
     detail: str | None = None
+    chance: bool = False
     force: bool = False
     quiet: bool = False
 
@@ -71,7 +72,8 @@ def fill_list(request: Request) -> list[str]:
     _check_air(day, directions)
     is_table = request.output.suffix == ".csv"
     full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
-    filling = fill(directions, card, day, rules, chosen, flap_names, short=not (is_table or full))
+    filling = fill(directions, card, day, rules, chosen, flap_names, short=not (is_table or full),
+                   chances=request.chance)  # fmt: skip
     if is_table:
         write_csv(filling, request.output)
         cuts: list[str] = []
@@ -153,9 +155,11 @@ def write_csv(filling: Filling, path: Path) -> None:
     formula gets an apostrophe before it."""
     varying = filling.chain.depends_on_strip()
     shown = {step.key: filling.shown(step) for step in filling.chain.steps if step.key in varying}
-    layout = strips.layout(filling.chain, filling.directions, True)
+    shown |= filling.chances
+    layout = strips.layout(filling.chain, filling.directions, True, bool(filling.chances))
     table = strips.table_of(layout, filling.directions, filling.given, dict.fromkeys(shown, ""), shown)
-    kept = [(column.header, made.values) for column, made in zip(layout, table.columns, strict=True) if column.key != "key"]
+    kept = [(column.header, made.values) for column, made in zip(layout, table.columns, strict=True)
+            if column.key != "key" and column.group != strips.AS_FILLED]  # fmt: skip
     columns = [_plain(values) for _, values in kept]
     with whole_or_not_at_all(path) as file:
         text = io.TextIOWrapper(file, encoding="utf-8-sig", newline="")

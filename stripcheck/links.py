@@ -392,9 +392,14 @@ def beyond_of(altitude: Number, temperature: Number, mass: Number) -> Number:
     return (altitude > 0.1) | (temperature > 0.001) | (mass > 0.001)
 
 
+def over_reach(altitude: Number, reach: Number) -> Number:
+    """Density altitude above the one that a card's single figures reach to; none where that is not known."""
+    return np.where(np.isfinite(reach), altitude - reach, np.nan)
+
+
 def beyond_reach_of(over: Number) -> Number:
-    """The same where a card has single figures only, which reach to a density altitude."""
-    return over > 0.1
+    """Whether that is on the hard side of the figures; where it is not known how far they reach it counts as beyond."""
+    return np.logical_not(over <= 0.1)
 
 
 def rate_gradient(rate: Number, tas: Number) -> Number:

@@ -154,9 +154,11 @@ def _place(result: Result, names: tuple[str, str], one_way: bool) -> str:
     uphill = names[0] if slope > 0.0 else names[1]
     mean = "slope not known" if np.isnan(slope) else f"{abs(slope) * 100.0:.1f} % uphill on {uphill}" if slope else "level"
     profile = ", slope profile" if result.profiles else ""
+    height = float(result["elevation"][0])
+    elevation = "elevation not known" if np.isnan(height) else f"elevation {height:,.0f} ft"
     ways = f"; land on {names[0]} only, take off on {names[1]} only" if one_way else ""
     return (f"{length}, {GROUND_NAMES[ground - 1] if ground <= len(GROUND_NAMES) else 'ground not known'}, "
-            f"elevation {from_si(result.si('elevation')[0], 'ft'):,.0f} ft, {mean}{profile}{ways}")  # fmt: skip
+            f"{elevation}, {mean}{profile}{ways}")  # fmt: skip
 
 
 def _verdicts(result: Result, names: tuple[str, str], used: Mapping[str, Array], chances: Chance) -> list[str]:

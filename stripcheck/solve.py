@@ -39,7 +39,7 @@ OfSpeed = Callable[[Array], Array]
 
 SIDES = ("takeoff", "landing")
 FOUND, NONE, OPEN = "found", "none", "open"  # besides NOT_ASSESSED; open: even the hardest value works
-HALVINGS = 36  # of 120 K leave 2e-9 K, of a tonne 2e-8 kg
+HALVINGS = 26  # of 120 K leave 2e-6 K, of a tonne 2e-5 kg, of 5 nm 0.2 mm
 LEAST_SHARE = 0.3  # of the greatest mass: lighter than any aeroplane flies
 WINDS = (to_si(30.0, "kt"), to_si(-20.0, "kt"))  # along the strip, from the easiest headwind to the hardest tailwind
 # Seconds from the abort point until the brakes bite. Transport aeroplanes are certified with two seconds at that speed
@@ -210,7 +210,7 @@ def _wind(head: float) -> str:
 
 def _down(value: float) -> float:
     """A value to one digit behind the point, not above itself; of what is a hair below a digit, that digit."""
-    return floor(10.0 * value + 1e-6) / 10.0
+    return floor(10.0 * value + 1e-4) / 10.0
 
 
 def _up(value: float) -> float:

@@ -435,7 +435,7 @@ def _beyond_reach(side: str, guard: str) -> Steps:
     word = inputs.SIDE_WORDS[side]
     return (
         Step(f"{side}_beyond_reach", "", "ft", f"{word}: density altitude beyond the book (within: negative)",
-             book_steps.EDGE, links.difference, ("density_altitude", f"{side}_reach"), guard),
+             book_steps.EDGE, links.over_reach, ("density_altitude", f"{side}_reach"), guard),
         Step(f"{side}_beyond", "", "", f"{word}: beyond the book", book_steps.EDGE, links.beyond_reach_of,
              (f"{side}_beyond_reach",), guard, truth=True),
     )  # fmt: skip

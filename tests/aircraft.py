@@ -125,8 +125,8 @@ from_50ft = "480 m"
 
 
 def shipped_text(name: str) -> str:
-    """Text of a shipped card."""
-    return (FOLDER / f"{name}.toml").read_text(encoding="utf-8")
+    """Text of a shipped card, to be loaded from anywhere: the files of its tables are named with their folder."""
+    return (FOLDER / f"{name}.toml").read_text(encoding="utf-8").replace('file = "', f'file = "{FOLDER.as_posix()}/')
 
 
 def changed(text: str, *changes: tuple[str, str]) -> str:

@@ -30,7 +30,9 @@ Value = float | str | None
 
 WORKER = Path(__file__).with_name("office_worker.py")
 ANSWER_SECONDS = 300.0
-PACKAGES = ("libreoffice-calc", "python3-uno", "poppler-utils", "fonts-dejavu", "fonts-liberation")
+PACKAGES = (
+    "libreoffice-calc", "python3-uno", "python3-numpy", "python3-pint", "poppler-utils", "fonts-dejavu", "fonts-liberation",
+)  # fmt: skip
 APT_UPDATE = ("apt-get", "update")
 APT_INSTALL = ("apt-get", "install", "--yes", "--no-install-recommends", *PACKAGES)
 USUAL_FOLDERS = ("/usr/lib/libreoffice/program", "/usr/lib64/libreoffice/program", "/opt/libreoffice/program")
@@ -59,12 +61,12 @@ def find_soffice() -> Path | None:
     return None
 
 
-def find_uno_python() -> Path | None:
-    """Return a Python that can import LibreOffice's `uno` module, or None."""
+def find_uno_python(imports: str = "import uno") -> Path | None:
+    """Return a Python that can import LibreOffice's `uno` module, or what else it is asked for, or None."""
     soffice = find_soffice()
     bundled = [soffice.with_name("python")] if soffice else []
     for python in [Path("/usr/bin/python3"), *bundled]:
-        if python.is_file() and not _run_quietly([str(python), "-c", "import uno"]):
+        if python.is_file() and not _run_quietly([str(python), "-c", imports]):
             return python
     return None
 
@@ -75,6 +77,7 @@ def missing_parts() -> list[str]:
         "LibreOffice": find_soffice(),
         "a Python with LibreOffice's uno module": find_uno_python(),
         "pdftoppm": shutil.which("pdftoppm"),
+        "NumPy and pint for that Python": find_uno_python("import uno, numpy, pint"),
     }
     return [part for part, place in found.items() if place is None]
 
@@ -128,9 +131,12 @@ def _clean_environment() -> dict[str, str]:
 
 
 class Office:
-    """One running LibreOffice. Use it as a context manager: it ends, with all it started, at the end."""
+    """One running LibreOffice. Use it as a context manager: it ends, with all it started, at the end.
 
-    def __init__(self) -> None:
+    ``extensions`` is a folder with unpacked extensions, one folder for each, which it loads as if they came with it.
+    """
+
+    def __init__(self, extensions: Path | None = None) -> None:
         soffice, python = find_soffice(), find_uno_python()
         if soffice is None or python is None:
             raise OfficeError(provide_office() or "LibreOffice is not installed")
@@ -140,7 +146,7 @@ class Office:
         settings.write_text(PROFILE_SETTINGS, encoding="utf-8")
         self._log = (self._folder / "log.txt").open("wb")
         self._worker = subprocess.Popen(
-            [str(python), str(WORKER), str(soffice), str(self._folder / "profile")],
+            [str(python), str(WORKER), str(soffice), str(self._folder / "profile"), *map(str, filter(None, [extensions]))],
             stdin=subprocess.PIPE,
             stdout=subprocess.PIPE,
             stderr=self._log,
@@ -164,6 +170,13 @@ class Office:
     def open(self, path: Path | str) -> Book:
         """Open a spreadsheet file. Cached values are shown as they stand until `Book.recalculate`."""
         return Book(self, self.ask("open", path=str(Path(path).resolve())))
+
+    def wizard(self, prefix: str) -> dict[str, dict[str, Any]]:
+        """What the function wizard shows of each function whose name starts with `prefix`.
+
+        Each has a `description`, and `arguments`: rows of name, help, and whether it may be left out.
+        """
+        return self.ask("wizard", prefix=prefix)
 
     def close(self) -> None:
         """End LibreOffice and everything it started. Closing twice is harmless."""

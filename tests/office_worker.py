@@ -1,7 +1,7 @@
 """Drive one headless LibreOffice, asked in JSON lines on stdin and answering in JSON lines on stdout.
 
 Run by `tests/office.py` under the Python that has LibreOffice's `uno` module:
-`python office_worker.py SOFFICE_BIN PROFILE_FOLDER`. Each question is `{"do": name, ...}`; each answer is
+`python office_worker.py SOFFICE_BIN PROFILE_FOLDER [EXTENSIONS_FOLDER]`. Each question is `{"do": name, ...}`; each answer is
 `{"ok": result}` or `{"error": sentence}`. The end of stdin ends the office and this process.
 """
 
@@ -54,29 +54,30 @@ def url(path: str) -> str:
     return uno.systemPathToFileUrl(os.path.abspath(path))
 
 
-def start(soffice: str, profile: str) -> tuple[subprocess.Popen[bytes], Any]:
-    """Start the office on a private profile and a private pipe; return the process and its desktop."""
+def start(soffice: str, profile: str, extensions: str = "") -> tuple[subprocess.Popen[bytes], Any]:
+    """Start the office on a private profile and a private pipe; return the process and its context."""
     for _ in range(3):
         pipe = "stripcheck" + secrets.token_hex(8)
         process = subprocess.Popen(
             [
                 soffice, "--headless", "--invisible", "--norestore", "--nologo", "--nodefault",
                 f"--accept=pipe,name={pipe};urp;", f"-env:UserInstallation={url(profile)}",
+                *([f"-env:BUNDLED_EXTENSIONS={url(extensions)}"] if extensions else []),
             ],
             stdin=subprocess.DEVNULL,
             stdout=subprocess.DEVNULL,
             preexec_fn=die_with_parent,
         )
-        desktop = connect(process, pipe)
-        if desktop is not None:
-            return process, desktop
+        context = connect(process, pipe)
+        if context is not None:
+            return process, context
         if process.returncode != PROFILE_WAS_NEW:
             break
     raise WorkerError(f"LibreOffice ended at once with exit code {process.returncode}")
 
 
 def connect(process: subprocess.Popen[bytes], pipe: str) -> Any:
-    """Return the desktop as soon as the office answers, or None when its process has ended."""
+    """Return the context as soon as the office answers, or None when its process has ended."""
     local = uno.getComponentContext()
     resolver = local.ServiceManager.createInstanceWithContext("com.sun.star.bridge.UnoUrlResolver", local)
     deadline = time.monotonic() + START_SECONDS
@@ -88,14 +89,18 @@ def connect(process: subprocess.Popen[bytes], pipe: str) -> Any:
                 raise WorkerError(f"LibreOffice did not answer within {START_SECONDS} s") from None
             time.sleep(0.05)
         else:
-            return context.ServiceManager.createInstanceWithContext("com.sun.star.frame.Desktop", context)
+            return context
     return None
 
 
-def stop(process: subprocess.Popen[bytes], desktop: Any) -> None:
+def service(context: Any, name: str) -> Any:
+    return context.ServiceManager.createInstanceWithContext(name, context)
+
+
+def stop(process: subprocess.Popen[bytes], context: Any) -> None:
     """Ask the office to end; kill the process that was started when it does not."""
     with contextlib.suppress(Exception):  # the bridge falls together with the office, as was asked for
-        desktop.terminate()
+        service(context, "com.sun.star.frame.Desktop").terminate()
     try:
         process.wait(STOP_SECONDS)
     except subprocess.TimeoutExpired:
@@ -106,8 +111,9 @@ def stop(process: subprocess.Popen[bytes], desktop: Any) -> None:
 class Books:
     """The open books by number; each public method answers one kind of question."""
 
-    def __init__(self, desktop: Any) -> None:
-        self._desktop = desktop
+    def __init__(self, context: Any) -> None:
+        self._context = context
+        self._desktop = service(context, "com.sun.star.frame.Desktop")
         self._open: dict[int, Any] = {}
         self._last = 0
 
@@ -164,6 +170,17 @@ class Books:
         if not Path(path).is_file():
             raise WorkerError(f"{path}: LibreOffice wrote no file")
 
+    def wizard(self, prefix: str) -> dict[str, dict[str, Any]]:
+        """Description and arguments of each function whose name starts so, as the function wizard shows them."""
+        known = service(self._context, "com.sun.star.sheet.FunctionDescriptions")
+        found = {}
+        for number in range(known.Count):
+            told = {item.Name: item.Value for item in known.getByIndex(number)}
+            if told["Name"].startswith(prefix):
+                arguments = [[item.Name, item.Description, item.IsOptional] for item in told["Arguments"]]
+                found[told["Name"]] = {"description": told["Description"], "arguments": arguments}
+        return found
+
     def _name_errors(self, cells: Any, rows: list[list[object]]) -> None:
         """Replace each None, which is how an error comes out of an area, by the error's code."""
         count = 0
@@ -201,17 +218,17 @@ def answer(books: Books, question: dict[str, Any]) -> dict[str, object]:
 def main() -> None:
     die_with_parent()
     try:
-        process, desktop = start(sys.argv[1], sys.argv[2])
+        process, context = start(*sys.argv[1:])
     except WorkerError as error:
         print(json.dumps({"error": str(error)}), flush=True)
         return
     try:
         print(json.dumps({"ok": "ready"}), flush=True)
-        books = Books(desktop)
+        books = Books(context)
         for line in sys.stdin:
             print(json.dumps(answer(books, json.loads(line))), flush=True)
     finally:
-        stop(process, desktop)
+        stop(process, context)
 
 
 if __name__ == "__main__":

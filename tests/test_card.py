@@ -11,25 +11,31 @@ import pytest
 
 from stripcheck.card import TYPICAL, flap_setting, load_card, shipped_cards
 from stripcheck.errors import InputError
-from stripcheck.inputs import CARD, CONSTANT_SPEED, FIXED_PITCH, POWER_LIMIT
+from stripcheck.inputs import CARD, CONSTANT_SPEED, FIXED_PITCH, POWER_LIMIT, REACH, table_inputs
 from tests.aircraft import HERON, changed, load_text, shipped_text
 
 KNOT, FOOT = 1852.0 / 3600.0, 0.3048
+OF_TABLES = (*REACH.values(), *(item for side in ("takeoff", "landing", "climb") for item in table_inputs(side)))
 
 
 @pytest.mark.parametrize("name", shipped_cards())
 def test_shipped_cards(name: str) -> None:
-    """Each says that it is invented, needs no typical value, and is met by its book points within 8 %."""
+    """Each says that it is invented, needs no typical value, and its model comes to the figures of its tables within 3 % rms
+    and 10 %; near the ceiling, where the climb to 50 ft is long, it is farthest out."""
     card = load_card(name)
     assert "nvented" in card.note and card.assumed == [] and card.fit.remarks == []
-    for label, book, model in card.fit.residuals:
-        assert model == pytest.approx(book, rel=0.08), label
+    assert set(card.tables) == {"takeoff", "landing", "climb"} and card.corrections == frozenset()
+    for side in ("take-off", "landing"):
+        for figure in ("roll", "50 ft"):
+            off = [model / book - 1.0 for label, book, model in card.fit.residuals
+                   if label.startswith(side) and label.endswith(figure)]  # fmt: skip
+            assert len(off) > 20 and math.sqrt(np.mean(np.square(off))) < 0.03 and max(map(abs, off)) < 0.1, (side, figure)
 
 
 def test_a_fixed_pitch_card() -> None:
     card = load_card("ridge-runner")
     assert (card.name, card.propeller, card.power) == ("Ridge Runner 180", "fixed pitch", "normally aspirated")
-    assert set(card.values) == {item.key for item in (*CARD, *FIXED_PITCH)}
+    assert set(card.values) == {item.key for item in (*CARD, *FIXED_PITCH, *OF_TABLES)}
     assert card.values["mass_takeoff"] == 1050.0 and card.values["max_takeoff_mass"] == 1110.0
     assert card.values["crosswind_limit"] == pytest.approx(15.0 * KNOT)
     assert card.values["takeoff_flap"] == pytest.approx(math.radians(10.0))
@@ -43,7 +49,7 @@ def test_a_fixed_pitch_card() -> None:
 def test_a_flat_rated_card() -> None:
     """The rating ends at 10,000 ft in the standard atmosphere: density ratio 0.7385 (ISO 2533)."""
     card = load_card("high-mule")
-    assert set(card.values) == {item.key for item in (*CARD, *CONSTANT_SPEED, POWER_LIMIT)}
+    assert set(card.values) == {item.key for item in (*CARD, *CONSTANT_SPEED, POWER_LIMIT, *OF_TABLES)}
     assert card.values["limit_sigma"] == pytest.approx(0.7385, abs=1e-4)
     assert card.values["rated_power"] == 410e3 and card.values["propeller_diameter"] == 2.6
 
@@ -106,9 +112,11 @@ REFUSALS = [
     ([without("usual")], "trial.toml: the part [usual] is missing"),
     ([(text, "") for text in BOOK_TAKEOFF + BOOK_LANDING], "trial.toml: the part [book] is missing"),
     ([(text, "") for text in BOOK_TAKEOFF],
-     "trial.toml [book]: one [[book.takeoff]] point or more is needed to calibrate the card"),
+     "trial.toml [book]: nothing to calibrate the take-off on: a [[book.table]] with its rolls, or one [[book.takeoff]] "
+     "point or more, is needed"),
     ([(text, "") for text in BOOK_LANDING],
-     "trial.toml [book]: one [[book.landing]] point or more is needed to calibrate the card"),
+     "trial.toml [book]: nothing to calibrate the landing on: a [[book.table]] with its rolls, or one [[book.landing]] "
+     "point or more, is needed"),
     ([('name = "Trial Heron"\n', "")], "trial.toml [aeroplane]: name is missing; it takes a text"),
     ([('"fixed pitch"', '"paddle"')],
      'trial.toml [propeller]: kind = "paddle" is none of: fixed pitch, constant speed'),

@@ -33,7 +33,7 @@ def test_fill_writes_a_workbook_and_says_what_it_did(strips, tmp_path, capsys):
     assert "Landing: 1 suitable, 0 marginal, 0 unsuitable, 0 not assessed" in said
     assert CAUTION in said
     sheets = openpyxl.load_workbook(tmp_path / "out.xlsx").sheetnames
-    assert sheets == ["Summary", "Strips", "Aircraft", "Day", "Rules", "Left out", "Method"]
+    assert sheets == ["Summary", "Strips", "Aircraft", "Manual", "Day", "Rules", "Left out", "Method"]
 
 
 def test_quiet_says_nothing(strips, tmp_path, capsys):
@@ -187,6 +187,47 @@ def test_demo_fills_the_invented_scenario_and_says_where(tmp_path, capsys, monke
     assert main(["demo"]) == 0
     assert "stripcheck-demo.xlsx: 33 runways, 3 of 36 left out" in capsys.readouterr().out
     assert (tmp_path / "stripcheck-demo.xlsx").stat().st_size > 50_000
+
+
+STRIP = ["strip", "--card", "ridge-runner", "--rules", "uk-leaflet", "--length", "700", "--elev", "2300", "--surface", "grass",
+         "--slope", "-2.5", "--heading", "262", "--temp", "22"]  # fmt: skip
+
+
+def test_strip_prints_one_page(capsys):
+    assert main([*STRIP, "--wind", "240/8", "--takeoff-mass", "900 kg", "--takeoff-flap", "20", "--obstacle", "30 m/500"]) == 0
+    said = capsys.readouterr().out
+    assert said.startswith("Strip 26/08: 700 m, grass, dry, elevation 2,300 ft, 2.5 % uphill on 08\n")
+    assert "take-off 900 kg, flap 20; landing 1,000 kg, flap 30" in said
+    assert "headwind 7 kt on 26, tailwind 7 kt on 08" in " ".join(said.split())
+    assert "LAST PLACE TO GO AROUND" in said and CAUTION in " ".join(said.split())
+    assert max(map(len, said.splitlines())) <= 100
+
+
+@pytest.mark.parametrize(
+    ("options", "says"),
+    [
+        (["--length", "700 bananas"], "is not a unit of length"),
+        (["--surface", "porridge"], "is not one that stripcheck knows"),
+        (["--obstacle", "60"], "a height and a distance such as"),
+        (["--takeoff-flap", "30"], "not allowed for take-off"),
+        (["--takeoff-mass", "heavy"], "is not a number"),
+        (["--wind", "270"], "such as 270/10"),
+        (["--isa-dev", "10"], "not both"),
+        (["--card", "no-such-card"], "neither a file nor one of the shipped cards"),
+        (["--profile", "0:0, 700"], "is not a point of a profile"),
+        (["--profile", "0:0, 300:6"], "the profile ends at 300 m but the strip at 700 m"),
+    ],
+)  # fmt: skip
+def test_strip_options_that_can_t_be_right_are_refused_in_one_sentence(capsys, options, says):
+    assert main([*STRIP, *options]) == 2
+    said = capsys.readouterr()
+    assert said.out == "" and said.err.startswith("stripcheck: ") and said.err.count("\n") == 1
+    assert says in said.err
+
+
+def test_strip_needs_a_temperature(capsys):
+    assert main(STRIP[:-2]) == 2
+    assert capsys.readouterr().err == "stripcheck: no temperature: add --temp or --isa-dev\n"
 
 
 def test_list_names_what_is_shipped(capsys):

@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from stripcheck.book_tables import parse_grid
-from stripcheck.card import load_card, shipped_cards
+from stripcheck.card import Card, load_card, shipped_cards
 from stripcheck.caution import CAUTION
 from stripcheck.cli import main
 from stripcheck.doc_pages import PAGES, write_pages
@@ -25,6 +25,8 @@ from stripcheck.rules import load_rules
 from stripcheck.steps import POWERS, SIDES, build_chain
 from stripcheck.units import from_si
 from stripcheck.verdict import FAULT, LANDING_FINDINGS, SUITABLE, TAKEOFF_FINDINGS
+from tests.aircraft import trial_heron, trial_mule
+from tests.manual_cards import figures
 
 ROOT = Path(__file__).parent.parent
 CARDS = ROOT / "stripcheck" / "cards"
@@ -52,6 +54,14 @@ def test_page_is_current(pages: dict[str, str], name: str) -> None:
 @pytest.mark.parametrize("name", PAGES)
 def test_every_page_shows_the_caution(pages: dict[str, str], name: str) -> None:
     assert f"> {CAUTION}\n" in pages[name]
+
+
+@pytest.mark.parametrize("name", PAGES)
+def test_no_paragraph_comes_twice_and_none_is_half_made(pages: dict[str, str], name: str) -> None:
+    paragraphs = [part for part in pages[name].split("\n\n") if len(part) > 80 and not part.startswith("|")]
+    assert len(paragraphs) > 5
+    assert name == "rules.md" or len(set(paragraphs)) == len(paragraphs)  # rule sets may say the same of themselves
+    assert re.search(r"\{\w*(\[\d\])?\}", pages[name]) is None
 
 
 def test_method_page_has_every_step_and_every_finding(pages: dict[str, str]) -> None:
@@ -294,15 +304,28 @@ def test_corners_of_the_shipped_grids_read_as_the_cards_tables(pages: dict[str, 
     card = load_card("high-mule")
     climb, takeoff = blocks(pages["aircraft-card.md"], "csv")[1:]
     heaviest = [mass for _, mass in card.tables["takeoff"].pages].index(2800.0)
-    for piece, side, page, figures in ((climb, "climb", 0, ("rate",)), (takeoff, "takeoff", heaviest, ("roll", "distance"))):
+    for piece, side, page, names in ((climb, "climb", 0, ("rate",)), (takeoff, "takeoff", heaviest, ("roll", "distance"))):
         tables = card.tables[side]
-        altitudes, temperatures, cells, _ = parse_grid(list(csv.reader(piece.splitlines())), "piece", len(figures))
+        altitudes, temperatures, cells, _ = parse_grid(list(csv.reader(piece.splitlines())), "piece", len(names))
         np.testing.assert_allclose(altitudes, tables.altitudes[: len(altitudes)])
         np.testing.assert_allclose(temperatures, tables.temperatures[: len(temperatures)])
-        for place, figure in enumerate(figures):
-            shown = np.array([[float(cell) for cell in row[place :: len(figures)]] for row in cells])
+        for place, figure in enumerate(names):
+            shown = np.array([[float(cell) for cell in row[place :: len(names)]] for row in cells])
             held = tables.printed[figure][page][: len(altitudes), : len(temperatures)]
             np.testing.assert_allclose(shown, from_si(held, "ft/min" if figure == "rate" else "m"))
+
+
+@pytest.mark.parametrize("card", [trial_heron(), trial_mule()], ids=["fixed pitch", "constant speed"])
+@pytest.mark.parametrize(("side", "flap"), [("takeoff", "10"), ("landing", "30")])
+def test_straight_lines_between_figures_lie_on_the_long_side(card: Card, side: str, flap: str) -> None:
+    """What the page says of linear reading, on the model: the mean of eight corners is no shorter than the middle."""
+    altitudes, temperatures = np.arange(0.0, 8001.0, 1000.0), np.arange(-10.0, 31.0, 5.0)
+    light, middle, heavy = (np.stack(figures(card, side, flap, mass, altitudes, temperatures)) for mass in (850, 900, 950))
+    corners = [grid[:, i : i + 7 : 2, j : j + 7 : 2] for grid in (light, heavy) for i in (0, 2) for j in (0, 2)]
+    over = np.mean(corners, axis=0) / middle[:, 1::2, 1::2] - 1.0
+    assert over.shape == (2, 4, 4)
+    assert (over[np.isfinite(over)] > 0.0).all()
+    assert np.isfinite(over).mean() > 0.8
 
 
 def test_summary_of_a_shipped_cards_residuals_counts_all_of_them(pages: dict[str, str]) -> None:

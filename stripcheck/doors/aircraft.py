@@ -3,11 +3,16 @@
 A range of an Aircraft or Rules sheet has labels in its first column, values in the second, units in the third and the
 values in SI in the fourth; the flap table and the ground table stand below. Labels are those of ``stripcheck.inputs``,
 from which the sheets are made too.
+
+Tables of a manual stand on another sheet, so a range does not hold them: the calibrated model answers alone then, and since
+the workbook's own verdict could be worse, the one from the range is at best marginal.
 """
 
 from __future__ import annotations
 
 import math
+import os
+import time
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
@@ -21,17 +26,28 @@ from stripcheck.chain import Chain, Input, Step, evaluate
 from stripcheck.day import read_day
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
-from stripcheck.inputs import CARD, CONSTANT_SPEED, FIXED_PITCH, POWER_LIMIT, REACH, STRIP
+from stripcheck.inputs import REACH, STRIP, manual_inputs, table_inputs
 from stripcheck.inputs import RULES as RULE_INPUTS
 from stripcheck.rules import load_rules
-from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, FLAP_LEAST, FLAP_MOST, GROUND_HEADER, PROPELLER
 from stripcheck.speeds import load_factor
 from stripcheck.steps import build_chain
 from stripcheck.surface import GROUND_NAMES
 from stripcheck.units import to_si
+from stripcheck.verdict import BEYOND
 
 LONG = 5000.0  # m: a length that decides nothing, where a function has none
+MOST_BANK = math.radians(85.0)
+KEPT = 2.0  # s for which a file that was read counts as unchanged
 NO_WORDS = "there is no result for these values"
+NO_BANK = "Bank: less than 85° to either side is expected"
+NO_REACH = "the range does not tell how far the manual's figures reach: give the name of the card instead"
+CLIMB_SPEED = next(item for item in table_inputs("climb") if item.key == "climb_speed")  # told on the sheet with climb tables
+# what a range may leave blank; masses and flaps of functions are their arguments
+MAY_BE_BLANK = {"mass_takeoff", "mass_landing", "takeoff_flap", "landing_flap", "slope_limit", "least_width",
+                "least_width_light", "light_mass", "greatest_slope", "greatest_local_slope", "free_gradient",
+                "free_distance", *(item.key for item in REACH.values()),
+                *(item.key for side in REACH for item in manual_inputs(side))}  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -45,17 +61,21 @@ class Setting:
 
 @dataclass(frozen=True)
 class Aeroplane:
-    """An aeroplane as the functions use it: its chain, its values by chain key in SI, its flap settings."""
+    """An aeroplane as the functions use it: its chain, its values by chain key in SI, its flap settings.
+
+    ``without_reach`` are the sides of which it is not known how far the manual's figures reach.
+    """
 
     where: str
     chain: Chain
     values: Mapping[str, Any]
     flaps: Sequence[Any]
+    without_reach: frozenset[str] = frozenset()
 
     def deflection(self, cell: Any, use: str | None) -> float:
         """Deflection [rad] of a setting by its name; a whole number is the name that it reads as."""
         name = str(int(cell)) if isinstance(cell, float) and cell.is_integer() else str(cell)
-        uses = next((flap.uses for flap in self.flaps if flap.name == name), ("",))
+        uses = next((flap.uses for flap in self.flaps if flap.name == name and flap.uses), ("",))
         return flap_setting(name, tuple(self.flaps), use or uses[0], self.where)
 
     def case(self, values: Mapping[str, np.ndarray], rules: Mapping[str, Any] | None, size: int) -> Result:
@@ -72,14 +92,24 @@ class Aeroplane:
         if not isinstance(item, Step):
             raise TypeError(f"{key} is not a step")
         side = "landing" if _is_landing(step) else "takeoff"
-        found = evaluate(self.chain, inputs, (key, f"{side}_reason"))
-        result, reasons = (np.broadcast_to(found[one], size) for one in (key, f"{side}_reason"))
+        result = np.broadcast_to(evaluate(self.chain, inputs, (key,))[key], size)
         if item.words:
-            return [item.words[number - 1] for number in result.tolist()], {}
-        words = self.chain.by_key[f"{side}_reason"]
-        texts = words.words if isinstance(words, Step) else ()
+            return self._texts(item, side, result), {}
         lost = np.flatnonzero(~np.isfinite(result)).tolist()
-        return result, {place: texts[int(reasons[place]) - 1] or NO_WORDS for place in lost}
+        if not lost:
+            return result, {}
+        reason = self.chain.by_key[f"{side}_reason"]
+        if not isinstance(reason, Step):
+            raise TypeError(f"{reason.key} is not a step")
+        texts = self._texts(reason, side, np.broadcast_to(evaluate(self.chain, inputs, (reason.key,))[reason.key], size))
+        steep = np.abs(values.get("bank", np.zeros(size))) >= MOST_BANK
+        return result, {place: NO_BANK if steep[place] else texts[place] for place in lost}
+
+    def _texts(self, step: Step, side: str, numbers: np.ndarray) -> list[str]:
+        words = step.words
+        if side in self.without_reach:
+            words = tuple(NO_REACH if word == BEYOND else word for word in words)
+        return [words[number - 1] for number in numbers.tolist()]
 
 
 # where a card has tables of the manual, the step that starts from them stands for the model's own
@@ -101,7 +131,8 @@ def _strip(values: Mapping[str, np.ndarray]) -> dict[str, Any]:
              "height": "obstacle_height", "beyond": "obstacle_distance"}  # fmt: skip
     found |= {names[key]: value for key, value in values.items() if key in names}
     if "mass" in values:
-        mass = values["mass"] * load_factor(values.get("bank", np.zeros(1)))
+        bank = values.get("bank", np.zeros(1))
+        mass = values["mass"] * np.where(np.abs(bank) < MOST_BANK, load_factor(bank), np.nan)
         found |= {"mass_takeoff": mass, "mass_landing": mass}
     if "flap" in values:
         found |= {"takeoff_flap": values["flap"], "landing_flap": values["flap"]}
@@ -136,14 +167,19 @@ def aeroplane_of(argument: Any) -> Aeroplane:
     'm'
     """
     if isinstance(argument, str):
-        return _of_card(argument)
+        return _of_card(argument, _age(argument))
     if isinstance(argument, list):
         return _of_range(argument)
     raise InputError("Aircraft: the name of a card, or a range with the rows of an Aircraft sheet, is expected")
 
 
+def _age(name: str) -> int:
+    """A number that changes every few seconds for a user's own file, which may change; never for a shipped one."""
+    return int(time.monotonic() / KEPT) if os.path.exists(name) else 0
+
+
 @lru_cache(maxsize=64)
-def _of_card(name: str) -> Aeroplane:
+def _of_card(name: str, _: int) -> Aeroplane:
     card = load_card(name)
     return Aeroplane(card.file, card.chain, card.values, card.flaps)
 
@@ -153,26 +189,32 @@ def _of_range(rows: list[list[Any]]) -> Aeroplane:
     kinds = {}
     for label in (PROPELLER, ENGINE):
         if label not in labels:
-            raise InputError(f'Aircraft: the range has no row "{label}"; give the whole Aircraft sheet, columns A to I')
+            raise _no_row(label)
         kinds[label] = str(labels[label][1])
+    corrections = frozenset(side for side in REACH if manual_inputs(side)[0].label in labels)
     try:
-        chain = build_chain(kinds[PROPELLER], kinds[ENGINE])
+        chain = build_chain(kinds[PROPELLER], kinds[ENGINE], corrections=corrections)
     except KeyError as error:
         raise InputError(f"Aircraft: {error} is no kind of propeller or engine") from None
-    flaps, table = _flap_table(rows)
-    values: dict[str, Any] = dict(table)
-    inputs = (*CARD, *FIXED_PITCH, *CONSTANT_SPEED, POWER_LIMIT, *REACH.values())
-    wanted = {item.key: item for item in inputs if item.key in chain.by_key and item.key not in table}
-    for key, item in wanted.items():
-        if key in ("takeoff_flap", "landing_flap"):
-            values[key] = math.nan
-        elif key in {reach.key for reach in REACH.values()}:
-            values[key] = _number(labels.get(item.label), item) if item.label in labels else math.nan
-        elif item.label not in labels:
-            raise InputError(f'Aircraft: the range has no row "{item.label}"; give the whole Aircraft sheet, columns A to I')
+    flaps, values = _flap_table(rows)
+    wanted = [item for item in chain.inputs if item.where == "card" and item.key not in values]
+    for item in wanted:
+        if item.key in ("takeoff_flap", "landing_flap"):  # names of settings, chosen for the workbook's own assessment
+            values[item.key] = math.nan
+        elif item.label in labels:
+            values[item.key] = _number(labels[item.label], item, "Aircraft")
+        elif item in REACH.values():
+            values[item.key] = math.nan
         else:
-            values[key] = _number(labels[item.label], item)
-    return Aeroplane("Aircraft range", chain, values, flaps)
+            raise _no_row(item.label)
+    if CLIMB_SPEED.label in labels:
+        values[REACH["takeoff"].key] = math.nan
+    without_reach = frozenset(side for side, item in REACH.items() if math.isnan(values[item.key]))
+    return Aeroplane("Aircraft range", chain, values, flaps, without_reach)
+
+
+def _no_row(label: str) -> InputError:
+    return InputError(f'Aircraft: the range has no row "{label}"; give the whole Aircraft sheet, columns A to I')
 
 
 def _labels(rows: list[list[Any]]) -> dict[str, list[Any]]:
@@ -184,34 +226,43 @@ def _labels(rows: list[list[Any]]) -> dict[str, list[Any]]:
     return found
 
 
-def _number(row: list[Any] | None, item: Input) -> float:
-    """A value in SI: column four where there is a number, else column two in the label's unit."""
-    if row is None:
-        return math.nan
+def _is_number(cell: Any) -> bool:
+    return isinstance(cell, float | int) and not isinstance(cell, bool) and math.isfinite(cell)
+
+
+def _number(row: list[Any], item: Input, where: str) -> float:
+    """A value in SI: column four where there is a number, else column two in the label's unit.
+
+    NaN for a blank where one is allowed; raises InputError elsewhere, as no limit or factor may be lost unnoticed.
+    """
     for cell, unit in ((row[3], ""), (row[1], item.unit)):
-        if isinstance(cell, float | int) and not isinstance(cell, bool):
+        if _is_number(cell):
             return float(to_si(float(cell), unit))
-    return math.nan
+    if row[1] in (None, "") and item.key in MAY_BE_BLANK:
+        return math.nan
+    raise InputError(f'{where}: "{item.label}" has no number in the range')
 
 
 def _flap_table(rows: list[list[Any]]) -> tuple[list[Setting], dict[str, Any]]:
-    start = next((i for i, row in enumerate(rows) if row[0] == FLAP_HEADER[0] and len(row) >= 9), None)
+    start = next((i for i, row in enumerate(rows) if row[0] == FLAP_HEADER[0] and len(row) >= len(FLAP_HEADER)), None)
     if start is None:
         raise InputError("Aircraft: the range has no flap table; give the whole Aircraft sheet, columns A to I")
-    flaps, deflections, drag, lift = [], [], [], []
+    flaps, columns = [], []
     for row in rows[start + 1 :]:
-        if not isinstance(row[3], float | int) or not isinstance(row[8], float | int):
+        if row[0] in (None, "", FLAP_LEAST, FLAP_MOST):
             break
         name = str(int(row[0])) if isinstance(row[0], float) and row[0].is_integer() else str(row[0])
+        numbers = [row[at] for at in (3, 7, 8)]
+        if not all(_is_number(cell) for cell in numbers):
+            raise InputError(f"Aircraft: the flap table of the range lacks a number for setting {name}")
         uses = tuple(use.split(";")[0].strip() for use in str(row[4]).split(","))
         flaps.append(Setting(name, float(row[3]), uses))
-        deflections.append(float(row[3]))
-        drag.append(float(row[7] or 0.0))
-        lift.append(float(row[8]))
-    if len(flaps) < 2:
-        raise InputError("Aircraft: the flap table of the range has fewer than two settings with numbers")
-    table = {"flap_deflection": np.array(deflections), "flap_drag": np.array(drag), "flap_lift": np.array(lift),
-             "flap_least": min(deflections), "flap_most": max(deflections)}  # fmt: skip
+        columns.append(numbers)
+    deflections, drag, lift = np.array(columns, dtype=float).reshape(-1, 3).T
+    if len(flaps) < 2 or not (np.diff(deflections) > 0.0).all():
+        raise InputError("Aircraft: two flap settings or more are expected in the range, from up to down")
+    table = {"flap_deflection": deflections, "flap_drag": drag, "flap_lift": lift, "flap_least": float(deflections[0]),
+             "flap_most": float(deflections[-1])}  # fmt: skip
     return flaps, table
 
 
@@ -222,14 +273,14 @@ def rules_of(argument: Any) -> dict[str, Any]:
     1.25
     """
     if isinstance(argument, str):
-        return _named_rules(argument)
+        return _named_rules(argument, _age(argument))
     if isinstance(argument, list):
         return _rules_of_range(argument)
     raise InputError("Rules: the name of a rule set, or a range with the rows of a Rules sheet, is expected")
 
 
 @lru_cache(maxsize=64)
-def _named_rules(name: str) -> dict[str, Any]:
+def _named_rules(name: str, _: int) -> dict[str, Any]:
     return dict(load_rules(name).values)
 
 
@@ -242,8 +293,14 @@ def _rules_of_range(rows: list[list[Any]]) -> dict[str, Any]:
         if item.label not in labels:
             raise InputError(f'Rules: the range has no row "{item.label}"; give the whole Rules sheet, columns A to F')
         row = labels[item.label]
-        values[item.key] = (row[1] != "no") if item.kind == "flag" else _number(row, item)
+        values[item.key] = _flag(row, item) if item.kind == "flag" else _number(row, item, "Rules")
     return values | _ground_table(rows)
+
+
+def _flag(row: list[Any], item: Input) -> bool:
+    if row[1] not in ("yes", "no"):
+        raise InputError(f'Rules: "{item.label}": yes or no is expected in the range')
+    return bool(row[1] == "yes")
 
 
 def _ground_table(rows: list[list[Any]]) -> dict[str, Any]:
@@ -252,10 +309,10 @@ def _ground_table(rows: list[list[Any]]) -> dict[str, Any]:
         raise InputError("Rules: the range has no ground table; give the whole Rules sheet, columns A to F")
     columns = {"ground_rolling": 1, "ground_braking": 2, "ground_takeoff_factor": 3, "ground_landing_factor": 5}
     table = rows[start + 1 : start + 1 + len(GROUND_NAMES)]
-    if [row[0] for row in table] != list(GROUND_NAMES):
+    if [str(row[0]) for row in table] != list(GROUND_NAMES):
         raise InputError("Rules: the ground table of the range is not complete; give the whole Rules sheet, columns A to F")
     found: dict[str, Any] = {
-        key: np.array([*(float(row[at]) if isinstance(row[at], float | int) else math.nan for row in table), math.nan])
+        key: np.array([*(float(row[at]) if _is_number(row[at]) else math.nan for row in table), math.nan])
         for key, at in columns.items()
     }
     return found | {"reference_rolling": found["ground_rolling"][0], "reference_braking": found["ground_braking"][0]}

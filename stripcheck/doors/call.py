@@ -1,8 +1,9 @@
 """Calling a function of the registry with what a spreadsheet hands over: cells and ranges in, cells and ranges out.
 
 A range is a list of rows; all ranges have the shape of the result, or one row, or one column, or are single cells. What
-is wrong with a cell comes back as a plain sentence in its place. Nothing here needs more than NumPy, except units that
-only pint knows.
+is wrong with a cell comes back as a plain sentence in its place. An argument that is left out is None and takes its usual
+value; an empty cell never does, since that could as well be forgotten: alone it is "" or [[None]], in a range None or "".
+Nothing here needs more than NumPy, except units that only pint knows.
 """
 
 from __future__ import annotations
@@ -16,11 +17,12 @@ from stripcheck.doors.aircraft import NO_WORDS, Aeroplane, aeroplane_of, rules_o
 from stripcheck.doors.functions import Argument, Function
 from stripcheck.errors import InputError
 from stripcheck.surface import CONDITIONS, SURFACES
-from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG, UNITS, read_quantity, to_si, unit_scale
+from stripcheck.units import KINDS, MOST, PRESSURE_HPA, PRESSURE_INHG, UNITS, read_quantity, to_si, unit_scale
 
 Cells = Any  # a cell, or a list of rows of cells
 WORDS = {"surface": SURFACES, "condition": CONDITIONS}
 MISSING = (None, "")
+EMPTY = "the cell is empty"
 
 
 def call(function: Function, *given: Cells) -> Cells:
@@ -34,14 +36,25 @@ def call(function: Function, *given: Cells) -> Cells:
     >>> call(BY_NAME["SLOPE"], [[2380.0], [2380.0]], [[2410.0], ["x"]], 620.0)[1][0]
     'Elevation at end: "x" is not a number; write for example "2300 ft"'
     """
+    return _answer(function, given)[0]
+
+
+def sentences(function: Function, *given: Cells) -> list[str]:
+    """What is wrong with a call, in words; nothing where it has a result in every cell.
+
+    >>> from stripcheck.doors.functions import BY_NAME
+    >>> sentences(BY_NAME["SLOPE"], 2380, 2410)
+    ['Length is missing: Length of the strip between its ends [m]']
+    """
+    return _answer(function, given)[1]
+
+
+def _answer(function: Function, given: Sequence[Cells]) -> tuple[Cells, list[str]]:
     try:
-        return _Call(function, given).result()
+        one = _Call(function, given)
+        return one.result(), list(one.wrong.values())
     except InputError as error:
-        return _sentence(error)
-
-
-def _sentence(error: Exception) -> str:
-    return str(error)
+        return str(error), [str(error)]
 
 
 class _Call:
@@ -70,7 +83,8 @@ class _Call:
             factor, offset = unit
             found = (found - offset) / factor
         cells = np.broadcast_to(np.asarray(found), self.size).tolist()
-        for place, text in {**words, **self.wrong}.items():
+        self.wrong = {**words, **self.wrong}
+        for place, text in self.wrong.items():
             cells[place] = text
         if not self.shape:
             return cells[0]
@@ -105,13 +119,13 @@ class _Call:
         return self._over_shape(found, cells)
 
     def _numbers(self, argument: Argument, flat: Sequence[Any], cells: Cells) -> np.ndarray:
-        if all(type(cell) in (float, int) for cell in flat):
+        if all(type(cell) is float or (type(cell) is int and abs(cell) < MOST) for cell in flat):
             numbers = np.array(flat, dtype=float)
             if argument.kind != "pressure":
                 return np.asarray(to_si(numbers, KINDS[argument.kind][0]))
             inches = (numbers >= PRESSURE_INHG[0]) & (numbers <= PRESSURE_INHG[1])
             if (inches | ((numbers >= PRESSURE_HPA[0]) & (numbers <= PRESSURE_HPA[1]))).all():
-                return np.where(inches, to_si(numbers, "inHg"), to_si(numbers, "hPa"))
+                return np.asarray(np.where(inches, to_si(numbers, "inHg"), to_si(numbers, "hPa")))
         return self._each(argument, flat, cells, lambda cell: read_quantity(_plain(cell), argument.kind))
 
     def _each(self, argument: Argument, flat: Sequence[Any], cells: Cells, read: Callable[[Any], float]) -> np.ndarray:
@@ -119,8 +133,8 @@ class _Call:
         found = np.full(len(flat), np.nan)
         for place, cell in enumerate(flat):
             try:
-                if cell in MISSING:
-                    raise InputError("missing")
+                if cell is None or cell == "":
+                    raise InputError(EMPTY)
                 found[place] = read(cell)
             except InputError as error:
                 alone = np.zeros(len(flat), bool)
@@ -142,12 +156,19 @@ class _Call:
             return self.function.ask(_aeroplane(aeroplane), values, rules, self.size)
         if self.function.compute is None:
             return _aeroplane(aeroplane).ask(self.function.step, values, rules, self.size)
-        more = [rules] if rules is not None else []
-        more += [self.typed[argument.key] for argument in self.function.arguments if argument.kind == "text"]
+        more: list[Any] = [rules] if rules is not None else []
+        more += [self._text(argument) for argument in self.function.arguments if argument.kind == "text"]
         with np.errstate(all="ignore"):
             found = np.asarray(self.function.compute(*values.values(), *more), dtype=float)
         lost = np.flatnonzero(~np.isfinite(np.broadcast_to(found, self.size))).tolist()
         return found, dict.fromkeys(lost, NO_WORDS)
+
+
+    def _text(self, argument: Argument) -> str:
+        typed = self.typed[argument.key]
+        if not isinstance(typed, str):
+            raise InputError(f"{argument.name}: one text is expected. {argument.help}")
+        return typed
 
 
 def _aeroplane(aeroplane: Aeroplane | None) -> Aeroplane:
@@ -162,7 +183,7 @@ def _or_default(argument: Argument, cells: Cells) -> Cells:
         return cells
     if argument.required:
         raise InputError(f"{argument.name} is missing: {argument.help}")
-    return argument.default
+    return argument.default if cells is None else cells
 
 
 def _as_lists(cells: Cells) -> Cells:
@@ -172,7 +193,11 @@ def _as_lists(cells: Cells) -> Cells:
     if not isinstance(cells, list | tuple):
         return cells
     rows = [list(row) if isinstance(row, list | tuple) else [row] for row in cells]
-    return rows[0][0] if len(rows) == 1 and len(rows[0]) == 1 else rows
+    if not rows or not all(rows) or len({len(row) for row in rows}) != 1:
+        raise InputError("a range of cells in full rows is expected")
+    if len(rows) > 1 or len(rows[0]) > 1:
+        return rows
+    return "" if rows[0][0] is None else rows[0][0]
 
 
 def _common_shape(arguments: Sequence[Cells]) -> tuple[int, int] | None:

@@ -132,14 +132,24 @@ _EXAMPLE_BEST = ("ridge-runner", 950, 800, 2400, 1008, 31, 1.5, "grass", "part-c
 _EXAMPLE_RUN_ON = ("ridge-runner", 1000, "10", 600, 2400, 1008, 31, 1.5, "grass")
 
 
+def _where_known(value: Number, *known: Number) -> Number:
+    """A value where all is credible that it hangs on; the limits are those of an assessment."""
+    for one in known:
+        value = np.where(one, value, np.nan)
+    return value
+
+
 def _pressure_altitude(elevation: Number, qnh: Number) -> Number:
-    return atmosphere.pressure_altitude(atmosphere.station_pressure(qnh, elevation))
+    altitude = atmosphere.pressure_altitude(atmosphere.station_pressure(qnh, elevation))
+    return _where_known(altitude, links.place_known_of(elevation, qnh))
 
 
 def _density(elevation: Number, qnh: Number, temperature: Number, humidity: Number) -> Number:
     pressure = atmosphere.station_pressure(qnh, elevation)
     vapour = atmosphere.vapour_pressure(temperature, humidity)
-    return atmosphere.density(pressure, atmosphere.virtual_temperature(temperature, pressure, vapour))
+    density = atmosphere.density(pressure, atmosphere.virtual_temperature(temperature, pressure, vapour))
+    known = links.place_known_of(elevation, qnh), links.air_known_of(temperature), links.known(humidity, (0.0, 1.0))
+    return _where_known(density, *known)
 
 
 def _density_altitude(elevation: Number, qnh: Number, temperature: Number, humidity: Number) -> Number:
@@ -151,21 +161,23 @@ def _density_ratio(elevation: Number, qnh: Number, temperature: Number, humidity
 
 
 def _slope(start: Number, end: Number, length: Number) -> Number:
-    return (end - start) / length
+    slope = (end - start) / length
+    return _where_known(slope, links.known(length, links.LENGTHS), links.known(slope, links.SLOPES))
 
 
 def _headwind(wind_from: Number, speed: Number, heading: Number) -> Number:
-    return speeds.headwind(speed, wind_from, heading)
+    return _where_known(speeds.headwind(speed, wind_from, heading), speed >= 0.0)
 
 
 def _crosswind(wind_from: Number, speed: Number, heading: Number) -> Number:
-    return speeds.crosswind(speed, wind_from, heading)
+    return _where_known(speeds.crosswind(speed, wind_from, heading), speed >= 0.0)
 
 
 def _factored(side: str) -> Callable[..., Number]:
     def factored(distance: Number, rules: Any) -> Number:
         parts = ("factor", "factor_to", "factor_long", "factor_from")
-        return links.factored(distance, *(rules[f"{side}_{part}"] for part in parts))
+        required = links.factored(distance, *(rules[f"{side}_{part}"] for part in parts))
+        return _where_known(required, distance >= 0.0)
 
     return factored
 
@@ -196,7 +208,8 @@ FUNCTIONS = (
     Function("DENSITY_RATIO", AIR, "Air density over that of the standard atmosphere at sea level.", (*_AIR, HUMIDITY), "",
              (2400, 1008, 31), _density_ratio),
     Function("SLOPE", SITE, "Mean slope from the elevations of both ends and the length, uphill positive.",
-             (Argument("start_elevation", "Elevation at start", "altitude", "Elevation of the end where the movement starts [ft]"),
+             (Argument("start_elevation", "Elevation at start", "altitude",
+                       "Elevation of the end where the movement starts [ft]"),
               Argument("end_elevation", "Elevation at end", "altitude", "Elevation of the far end [ft]"),
               Argument("length", "Length", "length", "Length of the strip between its ends [m]")), "%",
              (2380, 2410, 620), _slope),

@@ -12,9 +12,11 @@ import numpy as np
 from openpyxl import Workbook
 from openpyxl.utils import get_column_letter
 
+from stripcheck.assessment import Result
 from stripcheck.book_tables import BookTables
 from stripcheck.card import Card
 from stripcheck.chain import Chain, Step, evaluate
+from stripcheck.chance import chance_of
 from stripcheck.day import Day
 from stripcheck.inputs import SIDE_WORDS
 from stripcheck.register import Directions
@@ -41,6 +43,7 @@ class Filling:
     given: Mapping[str, Any]
     values: Mapping[str, np.ndarray]
     best: Mapping[str, np.ndarray]
+    chances: Mapping[str, np.ndarray]
 
     @property
     def chain(self) -> Chain:
@@ -69,10 +72,11 @@ class Filling:
 
 
 def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Mapping[str, float],
-         flap_names: Mapping[str, str], short: bool = False) -> Filling:  # fmt: skip
+         flap_names: Mapping[str, str], short: bool = False, chances: bool = False) -> Filling:  # fmt: skip
     """Compute the steps of all directions, and the better direction of each strip.
 
-    ``short``: only the steps that a workbook of short detail shows, to spare memory.
+    ``short``: only the steps that a workbook of short detail shows, to spare memory. ``chances``: also the chance of
+    needing more than there is, which takes about a thousand times as long as a verdict.
     """
     given = strips.given_columns(directions)
     keys = _short_keys(card.chain) if short else None
@@ -82,7 +86,14 @@ def fill(directions: Directions, card: Card, day: Day, rules: Rules, chosen: Map
     values = evaluate(card.chain, {**inputs, **given}, keys)
     values = {key: np.broadcast_to(value, directions.n) if key in _SUMMARISED else value for key, value in values.items()}
     words = {step.key: step.words for step in card.chain.steps}
-    return Filling(directions, card, day, rules, chosen, flap_names, given, values, summary.summarise(values, words))
+    best = summary.summarise(values, words)
+    case = Result(card.chain, directions.n, {**inputs, **given}, {}, directions.texts["fault"], directions.profiles)
+    return Filling(directions, card, day, rules, chosen, flap_names, given, values, best, _chances(case) if chances else {})
+
+
+def _chances(case: Result) -> dict[str, np.ndarray]:
+    found = chance_of(case)
+    return {"takeoff_chance": found.takeoff, "landing_chance": found.landing}
 
 
 def _short_keys(chain: Chain) -> list[str]:
@@ -105,7 +116,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     book.properties.creator, book.properties.title = "stripcheck", "Airstrip suitability"
     made = pages.Pages(book)
     count = directions.n // 2
-    columns = strips.layout(chain, directions, full)
+    columns = strips.layout(chain, directions, full, bool(filling.chances))
     letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
 
     summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in _FACTS), "Rules"])
@@ -128,7 +139,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     summary.write_counts(made, summary_sheet, count, filling.counts())
 
     shown = {step.key: filling.shown(step) for step in chain.steps if step.key in letters or step.key in _SUMMARISED}
-    shown["direction"] = directions.texts["direction"]
+    shown |= {"direction": directions.texts["direction"], **filling.chances}
     tables = {
         strips.SHEET: strips.table_of(columns, directions, filling.given, formulas, shown),
         summary.SHEET: summary.table_of(directions, letters, shown, filling.best),

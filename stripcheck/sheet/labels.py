@@ -5,4 +5,5 @@ from __future__ import annotations
 PROPELLER, ENGINE = "Propeller", "Engine"
 FLAP_HEADER = ("Setting", "Deflection [°]", "", "Deflection, SI", "Uses", "Stall speed [kt]", "At mass [kg]", "Drag added",
                "Greatest lift coefficient")  # fmt: skip
+FLAP_LEAST, FLAP_MOST = "Least deflection", "Most deflection"  # the rows that close the flap table
 GROUND_HEADER = ("Ground", "Rolling", "Braking", "Take-off corr.", "Source of the coefficients", "Landing corr.")

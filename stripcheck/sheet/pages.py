@@ -26,7 +26,7 @@ from stripcheck.rules import Rules
 from stripcheck.sheet import styles
 from stripcheck.sheet.cell import Cell, formula, reference, where
 from stripcheck.sheet.formulas import GROUND_NAMES, WORDS, Place
-from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, FLAP_LEAST, FLAP_MOST, GROUND_HEADER, PROPELLER
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.surface import CONDITIONS, GROUNDS, REFERENCE_GROUND
 from stripcheck.units import UNITS, from_si, tidy
@@ -214,8 +214,8 @@ def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
     pages.name("flap_names", sheet, f"A{first}:A{last}")
     for key, column in (("flap_deflection", "D"), ("flap_drag", "H"), ("flap_lift", "I")):
         pages.places[key] = Place(pages.name(key + "s", sheet, f"{column}{first}:{column}{last}"))
-    for at, key, name in ((last + 1, "flap_least", "MIN"), (last + 2, "flap_most", "MAX")):
-        sheet[f"A{at}"], sheet[f"A{at}"].font = {"MIN": "Least deflection", "MAX": "Most deflection"}[name], styles.SMALL
+    for at, key, name, label in ((last + 1, "flap_least", "MIN", FLAP_LEAST), (last + 2, "flap_most", "MAX", FLAP_MOST)):
+        sheet[f"A{at}"], sheet[f"A{at}"].font = label, styles.SMALL
         pages.formula(sheet, f"D{at}", f"{name}(flap_deflections)", card.values[key])
         _style_si(sheet, at)
         pages.places[key] = Place(pages.name(key, sheet, f"D{at}"))

@@ -39,6 +39,12 @@ KEY_STEPS = (
     "landing_verdict", "landing_reason", "landing_margin", "landing_margin_share", "landing_required",
     "takeoff_verdict", "takeoff_reason", "takeoff_margin", "takeoff_margin_share", "takeoff_required",
 )  # fmt: skip
+# the chance of needing more than there is, beside the margin: shown as long as the margin is the one it was found for
+CHANCES = ("landing_chance", "takeoff_chance")
+NO_MARGIN = -9e9  # stands for "no margin" where the two are compared
+SAME_MARGIN = 0.5  # m
+MOVED_ON = "fill again"
+AS_FILLED = "As filled"  # the group of columns that tell what held when the workbook was filled
 ABOUT = (
     ("surface_given", "Surface in the list", 20, "Spelling in the list"),
     ("survey_date", "Survey date", 12, "From the list"),
@@ -100,12 +106,17 @@ def _codes(words: Sequence[str], table: tuple[str, ...], blank: int = -1, strang
     return np.array([code.get(word, strange) for word in words], dtype=np.int64)
 
 
-def layout(chain: Chain, directions: Directions, full: bool) -> list[Column]:
-    """The columns of the sheet, in order. A short one leaves out inputs that are blank in every row."""
+def layout(chain: Chain, directions: Directions, full: bool, chances: bool = False) -> list[Column]:
+    """The columns of the sheet, in order. A short one leaves out inputs that are blank in every row.
+
+    ``chances``: with the chance of needing more than there is beside each margin.
+    """
     varying = chain.depends_on_strip()
     steps = {step.key: step for step in chain.steps if step.key in varying and (full or step.short)}
     columns = [Column(key, header, width, comment=text, hidden=key == "key") for key, header, width, text in IDENTITY]
-    columns += [_step_column(steps.pop(key), "Verdicts") for key in KEY_STEPS if key in steps]
+    for key in KEY_STEPS:
+        columns += [_step_column(steps.pop(key), "Verdicts")] if key in steps else []
+        columns += [_chance_column(key.removesuffix("_margin"))] if chances and key.endswith("_margin") else []
     for item in STRIP:
         if full or _has_any(item, directions):
             columns.append(_input_column(item))
@@ -115,10 +126,28 @@ def layout(chain: Chain, directions: Directions, full: bool) -> list[Column]:
         columns.append(_step_column(step, group, hidden=full))
     columns += [Column(key, header, width, comment=text, group="From the list") for key, header, width, text in ABOUT]
     columns.append(Column("source_row", "Row in the list", 9, comment="Row in the list", group="From the list"))
+    if chances:
+        for key in CHANCES:
+            word = "take-off" if "takeoff" in key else "landing"
+            columns += [
+                Column(f"{key}_filled", f"Chance as filled, {word} [%]", 11, "%", "Worked out when the workbook was filled",
+                       AS_FILLED, hidden=True),
+                Column(f"{key}_margin", f"Margin as filled, {word} [m]", 11, "m", "For which that chance was worked out",
+                       AS_FILLED, hidden=True),
+            ]  # fmt: skip
     for header in directions.carried:
         columns.append(Column(header, header, 14, comment="Carried from the list as it is", group="Carried along",
                               carried=True))  # fmt: skip
     return columns
+
+
+def _chance_column(side: str) -> Column:
+    word = "take-off" if side == "takeoff" else "landing"
+    text = (
+        f"Chance of needing more than there is, {word}, without factors, by the usual errors of temperature, wind, slope, "
+        "mass, surface and technique. Beside the margin, never instead of it. Worked out when the workbook was filled."
+    )
+    return Column(f"{side}_chance", f"Chance of needing more, {word} [%]", 11, "%", text, "Verdicts")
 
 
 def _has_any(item: Input, directions: Directions) -> bool:
@@ -208,9 +237,11 @@ def _style_template(sheet: Worksheet, number: int, column: Column) -> None:
             cell.alignment = styles.CENTRE
         elif item.key.endswith("_reason"):
             cell.alignment = styles.INDENT_WRAP
+    elif column.unit:
+        cell.number_format = '0.0" %"' if column.unit == "%" else "0.0"
     elif not column.carried and column.key != "source_row":
         cell.number_format = "@"
-    cell.quotePrefix = column.carried or (item is None and column.key != "source_row")
+    cell.quotePrefix = column.carried or (item is None and not column.unit and column.key != "source_row")
 
 
 def _dress(sheet: Worksheet, column: Column, cells: str) -> None:
@@ -239,11 +270,30 @@ def table_of(columns: list[Column], directions: Directions, given: Mapping[str, 
             made.append(TextColumn(directions.carried[column.key]))
         elif column.key == "source_row":
             made.append(NumberColumn(directions.numbers["source_row"]))
+        elif column.key in CHANCES:
+            made.append(FormulaColumn(_chance_formula(column.key, columns), 100.0 * values[column.key]))
+        elif column.key.endswith(("_chance_filled", "_chance_margin")):
+            made.append(NumberColumn(_as_filled(column.key, values)))
         elif column.key == "key":
             made.append(TextColumn(direction_keys(directions)))
         else:
             made.append(TextColumn(directions.texts[column.key]))
     return Table(FIRST_ROW, made, styles.heights_for(directions.texts["fault"], REASON_WIDTH + 8))
+
+
+def _chance_formula(key: str, columns: list[Column]) -> str:
+    """The chance as long as the margin is the one that it was worked out for."""
+    places = {column.key: f"${get_column_letter(number)}{ROW}" for number, column in enumerate(columns, 1)}
+    margin, filled, found = places[key.replace("chance", "margin")], places[f"{key}_margin"], places[f"{key}_filled"]
+    same = f"ABS(IF(ISNUMBER({margin}),{margin},{NO_MARGIN:.0f})-{filled})<={SAME_MARGIN}"
+    return f'IF({same},IF(ISNUMBER({found}),{found},""),"{MOVED_ON}")'
+
+
+def _as_filled(key: str, values: Mapping[str, Any]) -> np.ndarray:
+    side = key.split("_")[0]
+    if key.endswith("_filled"):
+        return np.asarray(100.0 * values[f"{side}_chance"])
+    return np.nan_to_num(np.asarray(values[f"{side}_margin"], dtype=float), nan=NO_MARGIN)
 
 
 def direction_keys(directions: Directions) -> list[str]:

@@ -1,0 +1,533 @@
+"""The registry's functions as LAMBDA names: no Python, no add-in, only defined names of the workbook.
+
+A function's equation, or the steps of the chain that lead to its result, are called with cell expressions that stand for
+the parameters, as a filled workbook's formulas are made; each step is a variable of a LET. A step whose formula is long is a
+name of its own, ``STRIP_STEP_...``, which every function that needs it calls. What can't be written so is listed with its
+reason.
+
+In the file a parameter is written ``_xlpm.x``, and a function newer than the format ``_xlfn.LET``; a program shows them
+without these.
+"""
+
+from __future__ import annotations
+
+import inspect
+import re
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from functools import cache
+from typing import Any
+
+import numpy as np
+
+from stripcheck.chain import Chain, Input, Step
+from stripcheck.doors.aircraft import CLIMB_SPEED, MAY_BE_BLANK, NO_BANK, NO_REACH, NO_WORDS, Aeroplane
+from stripcheck.doors.functions import FUNCTIONS, Argument, Function
+from stripcheck.inputs import REACH, manual_inputs
+from stripcheck.sheet.cell import BLANK, MAX_DEPTH, MAX_LENGTH, Cell, as_cell, call, reference, shown, where
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
+from stripcheck.steps import POWERS, build_chain
+from stripcheck.surface import CONDITIONS, SURFACES
+from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG
+from stripcheck.verdict import BEYOND, NOT_ASSESSED
+
+STEP = "STRIP_STEP_"
+LONG_STEP = 100  # characters from which a step's formula is a name of its own
+MAX_PAIRS = 126  # names and values in one LET, an Excel limit
+MAX_COMMENT = 255  # characters of a name's comment, an Excel limit
+AIRCRAFT_SHEET, RULES_SHEET = "columns A to I of the whole Aircraft sheet", "columns A to F of the whole Rules sheet"
+KIND_NAMES = {"fixed pitch": "FIXED", "constant speed": "CONSTANT"}
+INVERSE = "it looks for its answer by trying, which a formula without a program can't"
+UNITS_BY_NAME = "it reads units by their names"
+NO_CORRECTIONS = "the corrections of the manual on this Aircraft sheet are not in this function: use the filled workbook"
+ONE_VALUE = "one value at a time: fill the formula down"
+
+
+@dataclass(frozen=True)
+class Name:
+    """A defined name: its text as the file keeps it, without equals sign, and a comment for the list of names."""
+
+    name: str
+    text: str
+    comment: str
+
+
+@dataclass(frozen=True)
+class Library:
+    """All names, and the functions that are none, each with its reason."""
+
+    names: tuple[Name, ...]
+    left_out: tuple[tuple[Function, str], ...]
+
+
+class Sure(Cell):
+    """A parameter that has been found to be a number; np.interp over a flap table is its own figure, since a setting is a node."""
+
+    __slots__ = ()
+
+    def __array_ufunc__(self, ufunc: np.ufunc, method: str, *inputs: Any, **kwargs: Any) -> Cell:
+        if ufunc in (np.isfinite, np.isnan):
+            return as_cell(ufunc is np.isfinite)
+        return super().__array_ufunc__(ufunc, method, *inputs, **kwargs)
+
+    def __array_function__(self, func: Any, types: Any, args: Any, kwargs: Any) -> Any:
+        if func is np.interp:
+            return args[2]
+        return super().__array_function__(func, types, args, kwargs)
+
+
+@cache
+def library() -> Library:
+    """Every function of the registry as names, the shared steps first.
+
+    >>> next(name.text for name in library().names if name.name == "STRIP_SLOPE")[:42]
+    '_xlfn.LAMBDA(_xlpm.start_elevation,_xlpm.e'
+    """
+    writer = _Writer()
+    left_out = []
+    for function in FUNCTIONS:
+        why = not_a_lambda(function)
+        if why:
+            left_out.append((function, why))
+        else:
+            writer.write(function)
+    return Library((*writer.steps.values(), *writer.names), tuple(left_out))
+
+
+def not_a_lambda(function: Function) -> str:
+    """Why a function can't be a LAMBDA; empty where it can."""
+    if function.ask is not None:
+        return INVERSE
+    return UNITS_BY_NAME if any(argument.kind == "text" for argument in function.arguments) else ""
+
+
+def nesting(text: str) -> int:
+    """Greatest number of brackets around any place of a formula, which is no less than that of its functions.
+
+    >>> nesting('IF(A1=")))",MAX(1,(2)),0)')
+    3
+    """
+    level = most = 0
+    for letter in re.sub('"[^"]*"', "", text):
+        level += (letter == "(") - (letter == ")")
+        most = max(most, level)
+    return most
+
+
+def parameter(key: str) -> str:
+    """A parameter or variable as the file keeps it."""
+    return f"_xlpm.{key}"
+
+
+def lambda_of(parameters: list[str], body: str) -> str:
+    return f"_xlfn.LAMBDA({','.join(map(parameter, parameters))},{body})"
+
+
+def let(pairs: list[tuple[str, str]], result: str) -> str:
+    """LET with the pairs of variable and value that the result needs, directly or through others."""
+    kept: list[tuple[str, str]] = []
+    needed = result
+    for variable, value in reversed(pairs):
+        if re.search(rf"{re.escape(variable)}(?![\w.])", needed):
+            kept.append((variable, value))
+            needed += " " + value
+    if not kept:
+        return result
+    return f"_xlfn.LET({','.join(part for pair in reversed(kept) for part in pair)},{result})"
+
+
+def _text(words: str) -> str:
+    return as_cell(words).text
+
+
+def _word_list(words: tuple[str, ...]) -> str:
+    return "{" + ",".join(_text(word) for word in words) + "}"
+
+
+class _Writer:
+    """Collects the names: those of functions, and those of steps that functions share."""
+
+    def __init__(self) -> None:
+        self.names: list[Name] = []
+        self.steps: dict[str, Name] = {}
+        for key, (parameters, body, comment) in _HELPERS.items():
+            self._step(key, list(parameters), body, comment)
+
+    def write(self, function: Function) -> None:
+        if not function.step:
+            self._add(function, self._computed(function))
+            return
+        texts = {kind: self._assessed(function, kind) for kind in KIND_NAMES}
+        if len(set(texts.values())) == 1:
+            self._add(function, texts["fixed pitch"])
+            return
+        for kind, suffix in KIND_NAMES.items():
+            self._add(function, texts[kind], suffix)
+        self._add(function, self._chosen_by_kind(function))
+
+    def _add(self, function: Function, body: str, suffix: str = "") -> None:
+        keys = [argument.key for argument in function.arguments]
+        name = f"{function.full_name}_{suffix}" if suffix else function.full_name
+        self.names.append(_name(name, lambda_of(keys, body), _comment(function, suffix)))
+
+    def _step(self, key: str, parameters: list[str], body: str, comment: str) -> str:
+        name = STEP + key.upper()
+        made = _name(name, lambda_of(parameters, body), comment)
+        if self.steps.setdefault(name, made) != made:
+            raise ValueError(f"two steps want the name {name}")
+        return name
+
+    def _chosen_by_kind(self, function: Function) -> str:
+        given = ",".join(parameter(argument.key) for argument in function.arguments)
+        kind = parameter("kind")
+        missing = _text(f'Aircraft: the range has no row "{PROPELLER}"; give {AIRCRAFT_SHEET}')
+        chosen = missing
+        for value, suffix in reversed(KIND_NAMES.items()):
+            chosen = f"IF({kind}={_text(value)},{function.full_name}_{suffix}({given}),{chosen})"
+        return let([(kind, f'IFERROR({STEP}WORD({parameter("aircraft")},{_text(PROPELLER)}),"")')], chosen)
+
+    # --- functions that are one equation
+
+    def _computed(self, function: Function) -> str:
+        if all(argument.kind in _CODES for argument in function.arguments):
+            return _figure_of_ground(function)
+        values: list[Any] = []
+        for argument in function.arguments:
+            values.append(_RuleValues() if argument.kind == "rules" else _si_of(argument))
+        assert function.compute is not None  # the other functions have a step
+        result = shown(as_cell(function.compute(*values)), function.unit or "")
+        return _checked(function, f"IFERROR({result.text},{_text(NO_WORDS)})")
+
+    # --- functions of a chain step
+
+    def _assessed(self, function: Function, kind: str) -> str:
+        chain = build_chain(kind, "flat rated" if kind == "constant speed" else POWERS[0])
+        side = "landing" if function.step.startswith(("landing", "approach")) else "takeoff"
+        trace = _Trace(self, function, chain)
+        finding = trace.value(f"{side}_finding")
+        words = trace.words(f"{side}_reason", finding)
+        if function.unit is None:
+            result = trace.words(function.step, finding)
+            lost = NOT_ASSESSED if function.step.endswith("verdict") else "a value needed is missing"
+        else:
+            value = as_cell(trace.value(function.step))
+            result = f"IF(ISNUMBER({value.text}),{shown(value, function.unit).text},{words})"
+            lost = NO_WORDS
+        if "bank" in trace.typed:
+            lost = NO_BANK
+        whole = let(trace.given, let(trace.pairs, result))
+        if "slope" in trace.typed:
+            whole = f"IF({_has_row(manual_inputs(side)[0].label)},{_text(NO_CORRECTIONS)},{whole})"
+        if "flap" in trace.typed:
+            use = "" if function.name == "STALL_SPEED" else {"landing": "landing", "takeoff": "take-off"}[side]
+            row = f"{STEP}FLAP({parameter('aircraft')},{parameter('flap')},{_text(use)})"
+            whole = let([(parameter("row"), row)], _told_else(parameter("row"), whole))
+        if "surface" in trace.typed:
+            whole = let([(parameter("ground"), _ground_row())], _told_else(parameter("ground"), whole))
+        return _checked(function, f"IFERROR({whole},{_text(lost)})")
+
+    def step_call(self, step: Step, values: list[Any], text: str) -> str:
+        """A call of the name that a long step has of its own."""
+        names = list(inspect.signature(step.function).parameters)
+        own = len(names) != len(values)  # the findings, whose function takes whatever they read
+        names = list(step.inputs) if own else names
+        cells = [Cell(parameter(name)) for name in names]
+        body = as_cell(step.function(*cells)).text
+        key = step.key if own else step.function.__name__.strip("_")
+        name = self._step(key, names, body, f"{step.label}. Source: {step.source}." if own else _first_line(step.function))
+        return f"{name}({','.join(as_cell(value).text for value in values)})"
+
+    def words_call(self, step: Step, finding: Cell) -> str:
+        name = self._step(step.key, ["number"], f"INDEX({_word_list(step.words)},{parameter('number')})",
+                          f"{step.label}: the words of a finding's number.")  # fmt: skip
+        return f"{name}({finding.text})"
+
+
+class _Trace:
+    """The steps that lead to a value, each a variable of a LET, with what is fixed worked out."""
+
+    def __init__(self, writer: _Writer, function: Function, chain: Chain) -> None:
+        self.writer, self.chain = writer, chain
+        self.typed = {argument.key for argument in function.arguments}
+        self.given: list[tuple[str, str]] = []
+        self.pairs: list[tuple[str, str]] = []
+        self.known: dict[str, Any] = {}
+        numbers = {a.key: self._given(f"{a.key}_si", _si_of(a).text) for a in function.arguments if a.kind in KINDS}
+        if "flap" in self.typed:
+            numbers["flap"] = self._given("flap_si", _at(4))
+        case = Aeroplane("", chain, {}, ()).case({"bank": np.float64(0.0), **numbers}, None, 1)
+        for key, value in case.given.items():
+            of_numbers = isinstance(value, Cell) and not isinstance(value, Sure)
+            self.known[key] = self._given(key, value.text) if of_numbers else value
+        self._look_up_card()
+        if "rules" in self.typed:
+            self._look_up_rules()
+
+    def _given(self, key: str, text: str) -> Cell:
+        self.given.append((parameter(key), text))
+        return Sure(parameter(key))
+
+    def _look_up_card(self) -> None:
+        for item in self.chain.inputs:
+            if item.where != "card" or item.key in self.known:
+                continue
+            if item.kind == "range" or item.key in ("flap_least", "flap_most"):
+                self._given(item.key, _at({"flap_drag": 8, "flap_lift": 9}.get(item.key, 4)))
+                self.known[item.key] = Sure(parameter(item.key))
+            elif item in REACH.values():
+                reach = f'IFERROR({_value("aircraft", item)},"")'
+                if item is REACH["takeoff"]:  # of a sheet beside climb tables: how far those reach stands elsewhere
+                    reach = f'IF({_has_row(CLIMB_SPEED.label)},"",{reach})'
+                self._given(item.key, reach)
+                self.known[item.key] = Cell(parameter(item.key))
+            else:
+                self._look_up(item, "aircraft")
+
+    def _look_up(self, item: Input, range_: str) -> None:
+        """A number of a range, or a blank where one is allowed; else an error, as no limit may be lost unnoticed."""
+        given = self._given(item.key, _value(range_, item))
+        self.known[item.key] = Cell(given.text) if item.key in MAY_BE_BLANK else given
+
+    def _look_up_rules(self) -> None:
+        self.given.append((parameter("head"), f"MATCH({_text(GROUND_HEADER[0])},INDEX({parameter('rules')},0,1),0)"))
+        for item in self.chain.inputs:
+            if item.where != "rules":
+                continue
+            if item.kind == "range":
+                self.known[item.key] = item  # read by row, in the step that looks it up
+            elif item.key.startswith("reference_"):
+                column = _GROUND_COLUMNS[item.key.replace("reference", "ground")]
+                self.known[item.key] = Cell(self._given(item.key, _figure("1", column)).text)
+            elif item.kind == "flag":
+                self.known[item.key] = self._given(item.key, f"{STEP}FLAG({parameter('rules')},{_text(item.label)})")
+            else:
+                self._look_up(item, "rules")
+
+    def value(self, key: str) -> Any:
+        """A step's value: a variable, or what it is for whatever arguments."""
+        for step in self.chain.leading_to([key]):
+            if step.key not in self.known:
+                self.known[step.key] = self._step(step)
+        return self.known[key]
+
+    def words(self, key: str, finding: Any) -> str:
+        """The words of a finding; beyond figures whose reach is not known another sentence."""
+        step = self.chain.by_key[key]
+        assert isinstance(step, Step)
+        if not isinstance(finding, Cell):
+            return _text(step.words[int(finding) - 1])
+        words = self.writer.words_call(step, finding)
+        side = "takeoff" if key.startswith("takeoff") else "landing"
+        if BEYOND not in step.words:
+            return words
+        unknown = f"({finding.text}={step.words.index(BEYOND) + 1})*NOT(ISNUMBER({parameter(REACH[side].key)}))"
+        return f"IF({unknown},{_text(NO_REACH)},{words})"
+
+    def _step(self, step: Step) -> Any:
+        if step.lookup == "name" and "surface" in self.typed:
+            return Sure(parameter("ground"))
+        values = [self.known[key] for key in step.inputs]
+        found: Any
+        if step.lookup.startswith("ground_") and isinstance(self.known["ground"], Cell):
+            found = self._figure_of(step, values[0])
+        elif step.key == "power":
+            found = self._power(values)
+        else:
+            with np.errstate(all="ignore"):
+                found = step.function(*values)
+            if isinstance(found, Cell) and len(found.text) >= LONG_STEP:
+                found = Cell(self.writer.step_call(step, values, found.text))
+        if step.guard:
+            guard = self.known[step.guard]
+            of_truth = getattr(self.chain.by_key[step.guard], "truth", False)
+            holds = guard if of_truth else np.isfinite(guard)
+            found = np.where(holds, found, False if step.truth else np.nan)
+        if not isinstance(found, Cell):
+            return np.asarray(found)
+        if found.text in _CONSTANT:
+            return np.asarray(_CONSTANT[found.text])
+        variable = parameter(f"{step.key}_" if step.key in self.typed else step.key)
+        self.pairs.append((variable, found.text))
+        return Cell(variable)
+
+    def _figure_of(self, step: Step, column: Any) -> Cell | Any:
+        """A figure of the ground table: of the range of the rules, or fixed where the function has no rules."""
+        if isinstance(column, Input):
+            return Cell(_figure(parameter("ground"), _GROUND_COLUMNS[column.key]))
+        figures = np.asarray(column)[:-1]  # the last is that of a ground not known
+        if (figures == figures[0]).all():
+            return figures[0]
+        name = self.writer._step(step.key, ["ground"], f"INDEX({_figures(figures)},{parameter('ground')})",
+                                 f"{step.label} of a row of the ground table.")  # fmt: skip
+        return Cell(f"{name}({parameter('ground')})")
+
+    def _power(self, values: list[Any]) -> Cell:
+        """Shaft power by the kind of engine that the range names."""
+        self.given.append((parameter("engine"), f"{STEP}WORD({parameter('aircraft')},{_text(ENGINE)})"))
+        chosen = Cell("NA()", depth=1)
+        for power in reversed(POWERS):
+            step = build_chain("constant speed", power).by_key["power"]
+            assert isinstance(step, Step)
+            chosen = where(Cell(parameter("engine")) == power, step.function(*values[: len(step.inputs)]), chosen)
+        return chosen
+
+
+_CONSTANT = {"TRUE": True, "FALSE": False, BLANK: np.nan}
+_GROUND_COLUMNS = {"ground_rolling": 2, "ground_braking": 3, "ground_takeoff_factor": 4, "ground_landing_factor": 6}
+_CODES = {"surface": SURFACES, "condition": CONDITIONS}
+
+
+class _RuleValues(Mapping[str, Cell]):
+    """The values of a rule set's range, by key."""
+
+    def __getitem__(self, key: str) -> Cell:
+        item = build_chain("fixed pitch").by_key[key]
+        assert isinstance(item, Input)
+        return Cell(_value("rules", item), depth=1)
+
+    def __iter__(self) -> Any:
+        raise TypeError("values of a range are asked for by key")
+
+    __len__ = __iter__
+
+
+def _at(column: int) -> str:
+    return f"INDEX({parameter('aircraft')},{parameter('row')},{column})"
+
+
+def _value(range_: str, item: Input) -> str:
+    helper = "OPTIONAL" if item.key in MAY_BE_BLANK else "VALUE"
+    return f"{STEP}{helper}({parameter(range_)},{_text(item.label)})"
+
+
+def _has_row(label: str) -> str:
+    return f"ISNUMBER(MATCH({_text(label)},INDEX({parameter('aircraft')},0,1),0))"
+
+
+def _figure(row: str, column: int) -> str:
+    return f"INDEX({parameter('rules')},{parameter('head')}+{row},{column})"
+
+
+def _figures(values: np.ndarray) -> str:
+    return "{" + ",".join(as_cell(value).text for value in values) + "}"
+
+
+def _ground_row() -> str:
+    return f"{STEP}GROUND({parameter('surface')},{parameter('condition')})"
+
+
+def _figure_of_ground(function: Function) -> str:
+    """A table over surface and condition, as a row of figures."""
+    assert function.compute is not None
+    surface, condition = (np.repeat(np.arange(len(SURFACES)), len(CONDITIONS)), np.tile(np.arange(len(CONDITIONS)), len(SURFACES)))
+    figures = np.asarray(function.compute(surface.astype(float), condition.astype(float)))
+    found = f"INDEX({_figures(figures)},{parameter('ground')})"
+    known = f"IF(ISNUMBER({found}),{found},{_text(NO_WORDS)})"
+    return let([(parameter("ground"), _ground_row())], _told_else(parameter("ground"), known))
+
+
+def _told_else(variable: str, then: str) -> str:
+    """What follows where a variable is a number; else the variable itself, which is a sentence."""
+    return f"IF(ISNUMBER({variable}),{then},{variable})"
+
+
+def _si_of(argument: Argument) -> Cell:
+    """A number argument in SI."""
+    text = parameter(argument.key)
+    if argument.kind == "pressure":
+        inches = f"({text}>={PRESSURE_INHG[0]:.15g})*({text}<={PRESSURE_INHG[1]:.15g})"
+        return call("IF", Cell(inches), reference(text, "inHg"), reference(text, "hPa"))
+    return reference(text, KINDS[argument.kind][0])
+
+
+def _checked(function: Function, then: str) -> str:
+    """What follows where every number argument is one number; else a sentence on the first that is none."""
+    numbers = [argument for argument in function.arguments if argument.kind in KINDS]
+    if not numbers:
+        return then
+    sentence = _text(ONE_VALUE)
+    for argument in reversed(numbers):
+        unit = KINDS[argument.kind][0]
+        wrong = _text(f"{argument.name}: a number{f' [{unit}]' if unit else ''} is needed")
+        sentence = f"IF(ISNUMBER({parameter(argument.key)}),{sentence},{wrong})"
+    tests = [f"ISNUMBER({parameter(argument.key)})" for argument in numbers]
+    tests.append(f"COUNT({','.join(parameter(argument.key) for argument in numbers)})={len(numbers)}")
+    checked = f"IF(AND({','.join(tests)}),{{}},{sentence})"
+    for argument in numbers:
+        if argument.kind == "pressure":
+            then = _pressure_checked(argument, then)
+    return checked.replace("{}", then, 1)
+
+
+def _pressure_checked(argument: Argument, then: str) -> str:
+    typed = parameter(argument.key)
+    ranges = [f"({typed}>={low:.15g})*({typed}<={high:.15g})" for low, high in (PRESSURE_INHG, PRESSURE_HPA)]
+    words = [f"{low:g} to {high:g}" for low, high in (PRESSURE_HPA, PRESSURE_INHG)]
+    sentence = f'"{argument.name}: "&{typed}&" is neither a pressure in hPa ({words[0]}) nor in inHg ({words[1]})"'
+    return f"IF({'+'.join(ranges)},{then},{sentence})"
+
+
+def _name(name: str, text: str, comment: str) -> Name:
+    """A name within Excel's limits. Raises ValueError beyond them."""
+    if len(text) + 1 > MAX_LENGTH or nesting(text) > MAX_DEPTH:
+        raise ValueError(f"{name}: {len(text)} characters and {nesting(text)} levels are more than a formula may have")
+    return Name(name, text, comment if len(comment) <= MAX_COMMENT else comment[: MAX_COMMENT - 3] + "...")
+
+
+def _comment(function: Function, suffix: str) -> str:
+    if suffix:
+        kind = next(kind for kind, name in KIND_NAMES.items() if name == suffix)
+        return f"{function.full_name} with a {kind} propeller; call that one."
+    unit = f" Result [{function.unit}]." if function.unit else ""
+    return f"{function.help}{unit}"
+
+
+def _first_line(function: Callable[..., Any]) -> str:
+    return (inspect.getdoc(function) or function.__name__.replace("_", " ")).split("\n")[0]
+
+
+def _exactly_one_of(variable: str, words: tuple[str, ...]) -> str:
+    return f"SUMPRODUCT(--EXACT({variable},{_word_list(words)}))=1"
+
+
+def _none_of(name: str, variable: str, words: tuple[str, ...]) -> str:
+    return f'"{name}: """&{variable}&""" is none of: {", ".join(words)}"'
+
+
+def _helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
+    """Names that every function leans on: key -> parameters, body, comment."""
+    p = parameter
+    line = f"MATCH({p('label')},INDEX({p('range')},0,1),0)"
+    at_line = f"INDEX({p('range')},{p('line')},{{}})"
+    number = at_line.format(4)
+    value = let([(p("line"), line)], f"IF(ISNUMBER({number}),{number},NA())")
+    blank = f'IF({number}="","",NA())'
+    optional = let([(p("line"), line)], f"IF(ISNUMBER({number}),{number},{blank})")
+    word = f"INDEX({p('range')},{line},2)"
+    flag = let([(p("word"), word)], f'IF({p("word")}="yes",TRUE,IF({p("word")}="no",FALSE,NA()))')
+    row = (f"(MATCH({p('surface')},{_word_list(SURFACES)},0)-1)*{len(CONDITIONS)}"
+           f"+MATCH({p('condition')},{_word_list(CONDITIONS)},0)")  # fmt: skip
+    ground = (f"IF({_exactly_one_of(p('surface'), SURFACES)},IF({_exactly_one_of(p('condition'), CONDITIONS)},{row},"
+              f"{_none_of('Condition', p('condition'), CONDITIONS)}),{_none_of('Surface', p('surface'), SURFACES)})")  # fmt: skip
+    at = [f"INDEX({p('aircraft')},{p('row')},{column})" for column in (1, 4, 8, 9, 5)]
+    name = f'{p("flap")}&""'
+    is_setting = (f"IFERROR(AND(COUNT({p('row')})=1,{p('row')}>{p('head')},EXACT({at[0]}&\"\",{name}),ISNUMBER({at[1]}),"
+                  f"ISNUMBER({at[2]}),ISNUMBER({at[3]})),FALSE)")  # fmt: skip
+    allowed = f"OR({p('use')}=\"\",ISNUMBER(SEARCH({p('use')},{at[4]})))"
+    refused = f'"Flap: """&{p("flap")}&""" is not allowed for "&{p("use")}&" by the card"'
+    unknown = f'"Flap: the flap table has no setting """&{p("flap")}&""""'
+    no_table = _text(f"Aircraft: the range has no flap table; give {AIRCRAFT_SHEET}")
+    flap = let([(p("head"), f"MATCH({_text(FLAP_HEADER[0])},INDEX({p('aircraft')},0,1),0)"),
+                (p("row"), f"MATCH({name},INDEX({p('aircraft')},0,1),0)")],
+               f"IF(ISNUMBER({p('head')}),IF({is_setting},IF({allowed},{p('row')},{refused}),{unknown}),{no_table})")  # fmt: skip
+    return {
+        "value": (("range", "label"), value, "Value in SI of a row of an Aircraft or Rules sheet, by its label."),
+        "optional": (("range", "label"), optional, "The same of a row that may be blank."),
+        "flag": (("range", "label"), flag, "Whether a row of a Rules sheet says yes."),
+        "word": (("range", "label"), word, "Word in a row of an Aircraft or Rules sheet."),
+        "ground": (("surface", "condition"), ground, "Row in the ground table of a surface and a condition."),
+        "flap": (("aircraft", "flap", "use"), flap, "Row in the range of an Aircraft sheet of a flap setting."),
+    }
+
+
+_HELPERS = _helpers()
