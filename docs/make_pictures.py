@@ -3,9 +3,11 @@
 Run in the project's folder, with the test extra installed: ``python docs/make_pictures.py``.
 """
 
+import re
 import subprocess
 import sys
 import tempfile
+import zipfile
 from pathlib import Path
 
 PICTURES = Path(__file__).parent / "pictures"
@@ -42,6 +44,23 @@ def main() -> None:
         missing = set(PAGES) - kept
         if missing:
             raise SystemExit(f"no page found for: {', '.join(sorted(missing))}")
+        stripcheck(["door", "lambda", "-o", str(folder / "library.xlsx")])
+        _without_formulas(folder / "library.xlsx", folder / "kept.xlsx")
+        with Office() as office:
+            book = office.open(folder / "kept.xlsx")
+            book.pdf(folder / "library.pdf")
+            book.close()
+        _picture(folder / "library.pdf", 1, PICTURES / "lambda-library.png")
+
+
+def _without_formulas(path: Path, target: Path) -> None:
+    """A copy with the values kept in the file alone: LibreOffice has no LAMBDA, and would print errors."""
+    with zipfile.ZipFile(path) as source, zipfile.ZipFile(target, "w") as copy:
+        for part in source.namelist():
+            data = source.read(part)
+            if part == "xl/worksheets/sheet1.xml":
+                data = re.sub(rb"<f[ >].*?</f>", b"", data).replace(b' cm="1"', b"")
+            copy.writestr(part, data)
 
 
 def _told(command: list[str], label: str) -> str:

@@ -307,8 +307,12 @@ def manual_takeoff_left() -> tuple[Step, ...]:
              ("run_wind", "takeoff_manual_head", "takeoff_manual_tail"), _KNOWN, short=True),
         Step("takeoff_grass", "", "%", "Manual's addition for grass, take-off", MANUAL, links.manual_grass_of,
              ("ground", "takeoff_manual_dry", "takeoff_manual_wet"), _KNOWN),
+        Step("takeoff_grass_row", "", "", "Grass that the manual's addition is for, take-off: row", MANUAL,
+             links.manual_grass_row, ("ground", "takeoff_manual_wet")),
+        Step("grass_rolling", "μr", "", "Rolling friction of that grass", "Ground table", links.from_table,
+             ("ground_rolling", "takeoff_grass_row"), lookup="ground_rolling"),
         Step("rolling_left", "", "", "Rolling friction left to the physics", MANUAL, links.friction_left_of,
-             ("takeoff_grass", "reference_rolling", "rolling"), _KNOWN, short=True),
+             ("takeoff_grass", "reference_rolling", "rolling", "grass_rolling"), _KNOWN, short=True),
     )  # fmt: skip
 
 
@@ -339,8 +343,8 @@ def manual_takeoff_steps(fixed: bool) -> tuple[Step, ...]:
         Step("manual_air", "", "m", "Lift-off to 50 ft, wind left", AIR, airborne.screen_distance,
              ("lift_off_tas", "screen_tas", "excess", "climb_slope", "takeoff_wind_left", "takeoff_technique"), "climbs"),
         Step("manual_takeoff", "", "m", "Take-off to 50 ft with the manual's corrections", MANUAL, links.manual_distance_of,
-             ("manual_roll", "manual_air", "takeoff_carry", "takeoff_roll_carry", "takeoff_grass", "takeoff_wind_factor"),
-             "climbs", short=True),
+             ("manual_roll", "manual_air", "takeoff_carry", "takeoff_roll_carry", "takeoff_grass", "takeoff_wind_factor",
+              "ground", "physics_takeoff"), "climbs", short=True),
     )  # fmt: skip
 
 
@@ -358,8 +362,12 @@ def manual_landing_left() -> tuple[Step, ...]:
              ("landing_wind", "landing_manual_head", "landing_manual_tail"), known, short=True),
         Step("landing_grass", "", "%", "Manual's addition for grass, landing", MANUAL, links.manual_grass_of,
              ("ground", "landing_manual_dry", "landing_manual_wet"), known),
+        Step("landing_grass_row", "", "", "Grass that the manual's addition is for, landing: row", MANUAL,
+             links.manual_grass_row, ("ground", "landing_manual_wet")),
+        Step("grass_braking", "μb", "", "Braking friction of that grass", "Ground table", links.from_table,
+             ("ground_braking", "landing_grass_row"), lookup="ground_braking"),
         Step("braking_left", "", "", "Braking left to the physics", MANUAL, links.friction_left_of,
-             ("landing_grass", "reference_braking", "braking"), known, short=True),
+             ("landing_grass", "reference_braking", "braking", "grass_braking"), known, short=True),
         Step("manual_free_roll", "", "m", "Roll before braking, wind left", ARITHMETIC, airborne.free_roll,
              ("touchdown_tas", "landing_wind_left", "free_roll_seconds"), known),
     )  # fmt: skip
@@ -383,5 +391,5 @@ def manual_landing_steps() -> tuple[Step, ...]:
         Step("manual_landing", "", "m", "Landing from 50 ft with the manual's corrections", MANUAL,
              links.manual_distance_of,
              ("manual_landing_roll", "manual_landing_air", "landing_carry", "landing_roll_carry", "landing_grass",
-              "landing_wind_factor"), "stops", short=True),
+              "landing_wind_factor", "ground", "physics_landing"), "stops", short=True),
     )  # fmt: skip

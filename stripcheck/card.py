@@ -145,7 +145,7 @@ def _masses(top: Section) -> dict[str, float]:
         raise InputError(f"{mass.where}: max_landing = {landing:g} kg must not be above max_takeoff = {takeoff:g} kg")
     if empty >= landing:
         raise InputError(f"{mass.where}: empty = {empty:g} kg must be below max_landing = {landing:g} kg")
-    return {"max_takeoff_mass": takeoff, "max_landing_mass": landing}
+    return {"empty_mass": empty, "max_takeoff_mass": takeoff, "max_landing_mass": landing}
 
 
 def _airframe(top: Section, assumed: list[str]) -> dict[str, float]:

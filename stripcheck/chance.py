@@ -94,9 +94,9 @@ def chance(strips: Mapping[str, Any], card: Card | str, day: Day | Mapping[str, 
     length usable for it. An assumed slope, and the one that stands for a slope profile, have the error of any slope.
     Other arguments and errors as for ``assess``.
 
-    >>> strip = {"tora": [470.0, 530.0, 800.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"}
+    >>> strip = {"tora": [150.0, 1000.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"}
     >>> chance(strip, "ridge-runner", {"temperature": 22}, takeoff_mass=950).texts("takeoff")
-    ['about 5 in 10', 'about 2 in 10', 'under 1 in 1,000']
+    ['nearly certain', 'under 1 in 1,000']
     """
     return chance_of(prepare(strips, card, day, rules, **loading), errors, points)
 

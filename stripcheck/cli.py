@@ -1,4 +1,4 @@
-"""The command line: ``stripcheck fill``, ``stripcheck strip``, ``stripcheck demo``, ``stripcheck list``.
+"""The command line: ``stripcheck fill``, ``strip``, ``demo``, ``list`` and ``door``.
 
 Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
 130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.
@@ -51,6 +51,7 @@ def _parser() -> argparse.ArgumentParser:
     _add_fill(commands)
     _add_strip(commands)
     _add_demo(commands)
+    _add_door(commands)
     listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
     listing.set_defaults(run=_run_list)
     return parser
@@ -76,6 +77,9 @@ def _add_fill(commands: Any) -> None:
                       help="full: each step a column (usual up to 2,000 directions); short: the key columns")  # fmt: skip
     fill.add_argument("--chance", action="store_true",
                       help="beside each margin the chance of needing more than there is (slow on long lists)")  # fmt: skip
+    fill.add_argument("--formulas", choices=("native", "excel", "calc", "lambda", "none"), default="native",
+                      help="native: live everywhere (usual); excel, calc, lambda: verdict, reason and margin by the functions "
+                      "of that door; none: values only")  # fmt: skip
     _add_loading(fill)
     _add_day(fill)
     fill.add_argument("--quiet", action="store_true", help="no progress bar, no summary line")
@@ -146,6 +150,50 @@ def _add_demo(commands: Any) -> None:
     demo.set_defaults(run=_run_demo)
 
 
+def _add_door(commands: Any) -> None:
+    door = commands.add_parser("door", help="formulas in your spreadsheet program", epilog=EPILOG,
+                               description="Put the functions of stripcheck into a spreadsheet program.")  # fmt: skip
+    doors = door.add_subparsers(title="programs", required=True, metavar="PROGRAM")
+    excel = doors.add_parser("excel", help="Excel on Windows, through Python", epilog=EPILOG,
+                             description="Write settings, a workbook to start from and the steps into a folder, and on "
+                             "Windows import the functions into Excel.")  # fmt: skip
+    excel.add_argument("folder", nargs="?", default="stripcheck-excel", metavar="FOLDER",
+                       help="folder for the files (usual: stripcheck-excel)")  # fmt: skip
+    excel.add_argument("--force", action="store_true", help="replace the files if they exist")
+    excel.set_defaults(run=_run_door_excel)
+    calc = doors.add_parser("calc", help="LibreOffice Calc", epilog=EPILOG,
+                            description="Make the extension for LibreOffice Calc, and install it for you.")  # fmt: skip
+    calc.add_argument("-o", "--output", default="stripcheck.oxt", metavar="OUT", help="file to write (usual: stripcheck.oxt)")
+    calc.add_argument("--install", action="store_true", help="install it too, for you alone; LibreOffice must be closed")
+    calc.add_argument("--force", action="store_true", help="replace OUT if it exists")
+    calc.set_defaults(run=_run_door_calc)
+    names = doors.add_parser("lambda", help="any Excel that knows LAMBDA: names of a workbook, no Python", epilog=EPILOG,
+                             description="Write the functions as LAMBDA names into a new workbook, or a copy of yours.")
+    names.add_argument("book", nargs="?", metavar="BOOK.xlsx", help="workbook to copy; left out: a new one with examples")
+    names.add_argument("-o", "--output", metavar="OUT.xlsx", help="workbook to write")
+    names.add_argument("--force", action="store_true", help="replace OUT if it exists")
+    names.set_defaults(run=_run_door_lambda)
+
+
+def _run_door_excel(options: argparse.Namespace) -> int:
+    from stripcheck.doors.excel_setup import install
+
+    return _say(install(Path(options.folder), options.force), False)
+
+
+def _run_door_lambda(options: argparse.Namespace) -> int:
+    from stripcheck.doors import lambda_book
+
+    book, output = (None if name is None else Path(name) for name in (options.book, options.output))
+    return _say(lambda_book.run(book, output, options.force), False)
+
+
+def _run_door_calc(options: argparse.Namespace) -> int:
+    from stripcheck.doors.calc.install import calc_door
+
+    return _say(calc_door(Path(options.output), options.install, options.force), False)
+
+
 def _run_list(_: argparse.Namespace) -> int:
     from stripcheck.card import load_card, shipped_cards
     from stripcheck.rules import load_rules, shipped_rules
@@ -168,7 +216,7 @@ def _run_fill(options: argparse.Namespace) -> int:
         Path(options.list), Path(options.output), options.card, options.rules, day,
         takeoff_mass=options.takeoff_mass, landing_mass=options.landing_mass, takeoff_flap=options.takeoff_flap,
         landing_flap=options.landing_flap, airports=options.airports, sheet=options.sheet, strict=options.strict,
-        detail=options.detail, chance=options.chance, force=options.force, quiet=options.quiet,
+        detail=options.detail, formulas=options.formulas, chance=options.chance, force=options.force, quiet=options.quiet,
     )  # fmt: skip
     return _say(fill_list(request), options.quiet)
 

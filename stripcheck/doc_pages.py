@@ -1,8 +1,9 @@
 """The reference pages of the documentation, made from the tables that the program runs on.
 
-``python -m stripcheck.doc_pages docs`` writes method.md, rules.md, lists.md and aircraft-card.md into a folder. The
-prose is written by hand in stripcheck/doc_words.py; every table comes from the chain, the inputs, the rule sets, the
-cards, the surface table and the columns of the register, so that no page can tell another story than the program.
+``python -m stripcheck.doc_pages docs`` writes method.md, rules.md, lists.md, aircraft-card.md and functions.md into a
+folder. The prose is written by hand in stripcheck/doc_words.py; every table comes from the chain, the inputs, the rule
+sets, the cards, the surface table, the columns of the register and the registry of functions, so that no page can tell
+another story than the program.
 """
 
 from __future__ import annotations
@@ -16,15 +17,20 @@ import textwrap
 from collections.abc import Callable, Collection, Iterable, Sequence
 from importlib.resources import files
 from pathlib import Path
+from typing import TypeGuard
 
 import numpy as np
 
 from stripcheck import doc_words as prose
 from stripcheck import verdict
-from stripcheck.calibrate import BRAKING, QUALITIES, TECHNIQUES
+from stripcheck.calibrate import BRAKING, MISFIT_TOLD, QUALITIES, SHORTEST, TECHNIQUES, THRUSTS
 from stripcheck.card import TYPICAL, Card, load_card, shipped_cards
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
+from stripcheck.doors.aircraft import NO_REACH
+from stripcheck.doors.call import EMPTY, call
+from stripcheck.doors.excel_setup import formula_of
+from stripcheck.doors.functions import FUNCTIONS, Argument, Function
 from stripcheck.flap_lift import FLAP_KINDS, FULL_CHORD, WING_SHARE
 from stripcheck.flaps import LIFT_CREDIT, TYPICAL_FLAPS
 from stripcheck.inputs import (
@@ -398,7 +404,9 @@ def card_page() -> str:
         prose.FLAPS.format(figure(LIFT_CREDIT, "%"), WING_SHARE, figure(FULL_CHORD, "%"), TYPICAL_FLAPS),
         _flap_kinds(),
         "## Calibration",
-        folded(prose.CALIBRATION.format(TECHNIQUES, QUALITIES, BRAKING)),
+        folded(prose.CALIBRATION.format(
+            THRUSTS, QUALITIES, TECHNIQUES, BRAKING, tell=figure(MISFIT_TOLD, "%"), refuse=figure(1.0 - SHORTEST, "%")
+        )),
         *(part for name in shipped_cards() for part in _calibration(load_card(name))),
         "## How far to trust it",
         prose.TRUST,
@@ -475,8 +483,8 @@ def _flap_kinds() -> str:
 
 def _calibration(card: Card) -> list[str]:
     labels = {item.key: item for item in (*CARD, *FIXED_PITCH, *CONSTANT_SPEED)}
-    fitted = [(labels[key].label, f"{from_si(value, labels[key].unit):,.4g} {labels[key].unit}".strip())
-              for key, value in card.fit.values.items()]  # fmt: skip
+    fitted = [(labels[key].label, f"{from_si(value, labels[key].unit):,.4g} {labels[key].unit}".strip(),
+               known if isinstance(known, str) else _known_to(known)) for key, value, known in card.fit.fitted]  # fmt: skip
     kinds: dict[str, list[float]] = {}
     for label, book, model in card.fit.residuals:
         kinds.setdefault(re.sub(r" \d+:", ":", label), []).append(model / book - 1.0)
@@ -485,9 +493,18 @@ def _calibration(card: Card) -> list[str]:
     return [
         f"### {card.name}",
         card.note,
-        table(("Fitted", "Value"), fitted),
+        table(("Coefficient", "Value", "Known to"), fitted),
         table(("The card against the manual", "Figures", "Typical difference (rms)", "Greatest"), rows),
     ]
+
+
+def _known_to(error: float) -> str:
+    """A relative standard error in words.
+
+    >>> _known_to(0.034), _known_to(0.0004)
+    ('3 %', 'under 1 %')
+    """
+    return "under 1 %" if error < 0.01 else f"{100.0 * error:.0f} %"
 
 
 def _per_cent(share: float) -> str:
@@ -550,6 +567,48 @@ def _condition_words() -> str:
     return "; ".join(f"*{condition}* for {', '.join(words)}" for condition, words in by_condition.items())
 
 
+def functions_page() -> str:
+    """docs/functions.md: every function of the spreadsheet doors, by category, each with an example and its answer."""
+    by_category: dict[str, list[Function]] = {}
+    for function in FUNCTIONS:
+        by_category.setdefault(function.category, []).append(function)
+    return _joined(
+        "# Functions for the sheet",
+        f"> {CAUTION}",
+        MADE,
+        folded(prose.FUNCTIONS_INTRO.format(EMPTY, NO_REACH)),
+        *(part for category, functions in by_category.items() for part in _functions_table(category, functions)),
+    )
+
+
+def _functions_table(category: str, functions: Sequence[Function]) -> list[str]:
+    rows = [
+        (code(function.full_name), "; ".join(map(_argument, function.arguments)),
+         "text" if function.unit is None else function.unit or "number", function.help, code(formula_of(function)),
+         _answer(function))
+        for function in functions
+    ]  # fmt: skip
+    return [f"## {category}", table(("Function", "Arguments", "Result", "Meaning", "Example", "Answer"), rows)]
+
+
+def _argument(argument: Argument) -> str:
+    """An argument with its unit, and what stands for it where it is left out."""
+    unit = KINDS[argument.kind][0] if argument.kind in KINDS else ""
+    unit = "hPa or inHg" if argument.kind == "pressure" else unit
+    name = argument.name.lower() if argument.name[1:].islower() else argument.name
+    usual = "" if argument.required else f" (*{f'{argument.default:g}' if _is_float(argument.default) else argument.default}*)"
+    return f"{name} [{unit}]{usual}" if unit else f"{name}{usual}"
+
+
+def _is_float(value: object) -> TypeGuard[float]:
+    return isinstance(value, float)
+
+
+def _answer(function: Function) -> str:
+    found = call(function, *function.example)
+    return found if isinstance(found, str) else f"{found:,.6g} {function.unit}".strip()
+
+
 def _joined(*parts: str) -> str:
     return "\n\n".join(part.strip() for part in parts if part.strip()) + "\n"
 
@@ -559,6 +618,7 @@ PAGES: dict[str, Callable[[], str]] = {
     "rules.md": rules_page,
     "lists.md": lists_page,
     "aircraft-card.md": card_page,
+    "functions.md": functions_page,
 }
 
 

@@ -114,7 +114,7 @@ CARD_ENTRIES = (
     Entry("[book.table]", "file", "", "name of a file", "typed", "The same grid as .csv, .xlsx, .xls or .ods, beside the card"),
     Entry("[book.table]", "sheet", "", "name of a sheet", "the first", "Of that file, if it is a workbook"),
     *(
-        Entry(part, name, "", takes, "physics", f"{side}: {words}")
+        Entry(part, name, "", takes, "dry_grass, and physics" if name == "wet_grass" else "physics", f"{side}: {words}")
         for side, part in (("Take-off", "book.corrections.takeoff"), ("Landing", "book.corrections.landing"))
         for name, takes, words in (
             ("headwind", '`["10 %", "9 kt"]`', "so much off the distance for each so much headwind"),
@@ -458,11 +458,12 @@ any of them.
 least one roll for each side. *Rates of climb* correct the gradient with which the aeroplane climbs away and
 clears obstacles; conditions beyond those tables show in the columns and cost no verdict."""
 CORRECTIONS = """
-What the manual says about wind and grass can be entered, and then governs in place of the physics: the
-physics is left with slope, other ground and, for what is not entered, wind or grass. A share for grass is
-one of the roll. The distance by physics stands beside it on the sheet Strips. The rule set still decides
-how much of a wind counts, and its published corrections count too: the longer governs. However strong a
-headwind, no more than half of the distance is taken off."""
+What the manual says about wind and grass can be entered, and then governs in place of the physics, which is
+left with slope, other ground and, for what is not entered, wind or grass. A share for grass is one of the
+roll. Wet grass without a share of its own, and soft grass, take the nearest one, and the physics adds what
+the ground is worse than that. The distance by physics stands beside it on the sheet Strips. The rule set
+still decides how much of a wind counts, and its published corrections count too: the longer governs. However
+strong a headwind, no more than half of the distance is taken off."""
 FLAPS = """
 Any number of settings, from up to down by deflection. Each stall speed is best the calibrated one of the
 manual. It is taken as the equivalent airspeed, which at sea level it is; elsewhere the difference is below
@@ -507,14 +508,19 @@ part, drag is that of {3}.
 
 Whatever is estimated is listed as taken for granted, and called *estimated* on the sheet Aircraft."""
 CALIBRATION = """
-Four things that no manual prints are fitted to the book points, one after the other: thrust on the take-off
-rolls, an airborne factor on the way from lift-off to 50 ft, a braking factor on the landing rolls, an
-airborne factor on the way from 50 ft to touchdown. With one take-off point, or points close together, only
-the thrust at rest of a fixed-pitch propeller can be fitted; its loss with speed is then a typical value,
-and the card says so. Factors that are not credible are refused: airborne {0[0]} to {0[1]}, useful share of
-the shaft power {1[0]} to {1[1]}, braking {2[0]} to {2[1]}.
+What no manual prints is fitted to its figures by least squares, best-known first: thrust on the take-off
+rolls; then thrust, what it loses to speed (fixed pitch) or parasite drag (constant speed), and an airborne
+factor together on all take-off figures; braking on the landing rolls; an airborne factor from 50 ft to
+touchdown. What the figures don't tell well enough is held at its usual value, and the report says so: from
+one take-off point only the thrust can be told.
 
-What the fit leaves over is printed with the card. For the shipped ones:"""
+Bounds: static thrust {0[0]} to {0[1]} of the weight, and never more than the power can give; useful share of
+the shaft power {1[0]} to {1[1]}; airborne factors {2[0]} to {2[1]}; braking {3[0]} to {3[1]} of the ground
+table's. A card that needs more is refused, and so is one whose model is more than {refuse} shorter than a
+figure of the manual. A figure that is missed by more than {tell} is told: look for a slip in it. Tables are
+used as they stand, whatever the fit; it matters for what they leave out.
+
+What the fit leaves over, for the shipped cards:"""
 TRUST = """
 - The card is as good as the manual's table, flown by the manual's technique, in an aeroplane in that
   condition. A tired engine or a dented propeller is not on it.
@@ -581,3 +587,35 @@ runway's name, headings or names of the two ends that are not opposite, a headin
 the runway's name, a usable length greater than the runway's, a surface, length, elevation or heading that
 is not known, a unit that was taken for granted, and a header that is nearly one that is understood. A doubt
 by itself does not change a verdict; what is missing does."""
+FUNCTIONS_INTRO = """
+The same functions work in Excel on Windows through Python ([excel.md](excel.md)) and in the other programs
+that have a door of stripcheck. Names and arguments are the same everywhere.
+
+**A cell or a range.** Every argument but aircraft, rules and unit takes one cell, a column, a row or a whole
+range, and the result has the same shape: one formula fills a column. Single cells count for all; a column
+and a row together make a table.
+
+**Units.** A plain number is read in the unit in square brackets; a text carries its own, such as `"2300 ft"`,
+`"86 °F"` or `"29.92 inHg"`. A plain pressure of 800 to 1100 is hPa and one of 24 to 32.5 inHg; any other is
+refused. Where the result has a unit, one more argument at the end asks for another, such as
+`"lb"`.
+
+**Left out and empty.** What may be left out has its usual value in brackets. A cell that is empty is not left
+out, since it could as well be forgotten: "{0}" stands in the result then.
+
+**What is wrong** stands in its cell as a sentence, and the rest of a range is computed. A number is never
+guessed.
+
+**Aircraft and rules** are the name of a shipped card or rule set, the path of a file of your own, which is
+read again when it has changed, or a range: the sheet Aircraft (columns A to I) or Rules (columns A to F) of a
+filled workbook as it is, such as `Aircraft!A1:I80`. A range must hold every value; blank limits and factors
+are refused. The tables of a manual stand on another sheet, so a range of the sheet Aircraft has none: the
+calibrated model answers alone, its distances can differ from the workbook's by some per cent, and the
+verdict is at best marginal, the reason being "{1}". With the name or the path of the card the tables count.
+
+**Distances without rules** count the wind as the set `manual-only` does: half of a headwind and one and a
+half times a tailwind. With rules, verdict, margin, greatest mass, hottest air and best flap follow the set.
+
+**What these functions do not see:** crosswind, the width of a strip, its steepest part, and obstacles, except
+where an argument asks for one. A verdict here is one without them; a filled workbook judges everything.
+Speeds are equivalent airspeeds."""

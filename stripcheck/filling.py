@@ -18,6 +18,7 @@ import numpy as np
 from stripcheck.card import Card, load_card
 from stripcheck.caution import CAUTION
 from stripcheck.day import Day, read_day
+from stripcheck.doors.columns import NATIVE, door_columns, told
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.register import Directions, read_list
@@ -51,6 +52,7 @@ class Request:
     sheet: str | None = None
     strict: bool = False
     detail: str | None = None
+    formulas: str = "native"
     chance: bool = False
     force: bool = False
     quiet: bool = False
@@ -72,14 +74,17 @@ def fill_list(request: Request) -> list[str]:
     _check_air(day, directions)
     is_table = request.output.suffix == ".csv"
     full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
-    filling = fill(directions, card, day, rules, chosen, flap_names, short=not (is_table or full),
+    other = not is_table and request.formulas != NATIVE
+    filling = fill(directions, card, day, rules, chosen, flap_names, short=not (is_table or full or other),
                    chances=request.chance)  # fmt: skip
+    instead = door_columns(request.formulas, filling, request.card) if other else None
     if is_table:
         write_csv(filling, request.output)
         cuts: list[str] = []
     else:
         with _progress(filling, request.quiet) as progress:
-            cuts = write_workbook(filling, request.output, full, progress)
+            cuts = write_workbook(filling, request.output, full or other, progress, instead)
+        cuts += told(instead) if instead else []
     return [*cuts, *summary_lines(filling, request.output)]
 
 

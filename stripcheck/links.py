@@ -23,7 +23,8 @@ GROUND_UNKNOWN = len(GROUNDS) + 1  # row of the ground table for a surface or co
 # A run "barely accelerates" when its least acceleration is below this share of the first one. Falling with the square
 # of speed, that is a little before the last acceleration is a quarter of the mean one.
 BARELY = 0.2
-GRASS_DRY, GRASS_WET = (GROUND_NAMES.index(name) + 1 for name in ("grass, dry", "grass, wet"))  # rows of the ground table
+# rows of the ground table
+GRASS_DRY, GRASS_WET, GRASS_SOFT = (GROUND_NAMES.index(f"grass, {condition}") + 1 for condition in CONDITIONS)
 SAME_ROLL = 0.01  # of a roll, by which it may differ from the one that a profile's slope was worked out for
 LEAST_MANUAL_SHARE = 0.5  # of a distance that a manual's headwind correction may leave, however strong the wind
 
@@ -429,21 +430,35 @@ def wind_left_of(wind: Number, head: Number, tail: Number) -> Number:
 
 
 def manual_grass_of(ground: Number, dry: Number, wet: Number) -> Number:
-    """The manual's own addition for grass, where the ground is grass and the manual has one."""
-    added = np.where(ground == GRASS_DRY, np.where(np.isfinite(dry), dry, np.nan), np.nan)
-    return np.where(ground == GRASS_WET, np.where(np.isfinite(wet), wet, np.nan), added)
+    """The manual's own addition for grass, where the ground is grass: the one for wet grass if that is wet or soft and the
+    manual has one, else the one for dry grass."""
+    for_dry = np.where(np.isfinite(dry), dry, np.nan)
+    for_wet = np.where(np.isfinite(wet), wet, for_dry)
+    added = np.where((ground == GRASS_WET) | (ground == GRASS_SOFT), for_wet, np.nan)
+    return np.where(ground == GRASS_DRY, for_dry, added)
 
 
-def friction_left_of(added: Number, level: Number, own: Number) -> Number:
-    """The friction that is left to the physics: that of pavement where the manual has its own addition for the ground."""
-    return np.where(np.isfinite(added), level, own)
+def manual_grass_row(ground: Number, wet: Number) -> Number:
+    """Row of the ground table of the grass that such an addition is for."""
+    return np.where(np.isfinite(wet), np.where(ground == GRASS_DRY, GRASS_DRY, GRASS_WET), GRASS_DRY)
 
 
-def manual_distance_of(roll: Number, air: Number, carry: Number, roll_carry: Number, added: Number, wind: Number) -> Number:
-    """Distance with the manual's own corrections: its addition for grass is a share of the roll, wind counts for the whole."""
+def friction_left_of(added: Number, level: Number, own: Number, of_addition: Number) -> Number:
+    """The friction that is left to the physics where the manual has its own addition: that of pavement, and what the ground
+    is worse than the grass that the addition is for, so that wet or soft grass is never shorter than dry."""
+    return np.where(np.isfinite(added), level + (own - of_addition), own)
+
+
+def manual_distance_of(roll: Number, air: Number, carry: Number, roll_carry: Number, added: Number, wind: Number,
+                       ground: Number, physics: Number) -> Number:  # fmt: skip
+    """Distance with the manual's own corrections: its addition for grass is a share of the roll, wind counts for the whole.
+
+    On soft grass, which manuals don't mean, it is no shorter than by physics alone.
+    """
     grass = np.where(np.isfinite(added), added, 0.0)
     whole = ((roll + air) * carry + grass * roll * roll_carry) * wind
-    return np.where(np.isfinite(carry), whole, np.nan)
+    least = np.where(ground == GRASS_SOFT, physics * carry, 0.0)
+    return np.where(np.isfinite(carry), np.maximum(whole, least), np.nan)
 
 
 def governing_carried(physics: Number, book: Number, correction: Number, physics_counts: Number, rules_count: Number,

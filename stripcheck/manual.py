@@ -121,6 +121,8 @@ def _corrections(part: Section, side: str) -> dict[str, float]:
             f"{part.where}: a knot of tailwind adds less than a knot of headwind takes off, which no aeroplane does; check "
             "whether the two are exchanged"
         )
+    if np.isnan(found[f"{side}_manual_dry"]) and np.isfinite(found[f"{side}_manual_wet"]):
+        raise InputError(f"{part.where}: wet_grass is given without dry_grass; give both, or dry_grass alone")
     if found[f"{side}_manual_wet"] < found[f"{side}_manual_dry"]:
         raise InputError(f"{part.where}: wet_grass adds less than dry_grass; wet grass is never easier: check both")
     return found

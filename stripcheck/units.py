@@ -96,6 +96,7 @@ _SPELLINGS = {
 _UNIT_WORDS = re.compile(r"[^\W\d_]+(?:[ /][^\W\d_]+)*")
 _QUANTITY = re.compile(r"\s*([-+]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][-+]?\d+)?)\s*(.*?)\s*$")
 
+WITHOUT_PINT = "without it a text may carry m, ft, km, nm, kt, km/h, kg, lb, °C, hPa, inHg, % or °"
 MOST = 10**300  # a whole number beyond this does not fit a float
 PRESSURE_HPA = (800.0, 1100.0)
 PRESSURE_INHG = (24.0, 32.5)
@@ -248,6 +249,8 @@ def _clean(number: float) -> float:
 
 @cache
 def _registry():  # type: ignore[no-untyped-def]  # pint is imported only when a unit text is met
-    import pint
-
+    try:
+        import pint
+    except ImportError:
+        raise InputError(f"this needs the Python package pint, which is not installed; {WITHOUT_PINT}") from None
     return pint.UnitRegistry()

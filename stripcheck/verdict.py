@@ -94,8 +94,13 @@ def _width_missing(width: Number, asked: Number) -> Number:
     return np.where(np.isfinite(asked), np.isnan(width), False)
 
 
+def _over(value: Number, limit: Number) -> Number:
+    """Above a limit that must be there: one that was wiped out forbids."""
+    return np.isnan(limit) | (value > limit)
+
+
 def _tailwind_above(headwind: Number, limit: Number) -> Number:
-    return -headwind > limit
+    return _over(-headwind, limit)
 
 
 def _below(given: Number, height: Number) -> Number:
@@ -156,8 +161,8 @@ TAKEOFF_FINDINGS = (
     Finding(NOT_ASSESSED, HALF_AN_OBSTACLE, ("ahead_whole",), _no),
     Finding(NOT_ASSESSED, "a value needed is missing", ("takeoff_known",), _no),
     Finding(NOT_ASSESSED, MOVED, ("profile_takeoff_roll", "takeoff_roll"), links.profile_moved),
-    Finding(UNSUITABLE, "over the greatest take-off mass", ("mass_takeoff", "max_takeoff_mass"), _above),
-    Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
+    Finding(UNSUITABLE, "over the greatest take-off mass", ("mass_takeoff", "max_takeoff_mass"), _over),
+    Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _over),
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),
     Finding(UNSUITABLE, "does not lift off", ("lifts_off",), _no),
     Finding(UNSUITABLE, "does not climb away", ("climbs",), _no),
@@ -188,8 +193,8 @@ LANDING_FINDINGS = (
     Finding(NOT_ASSESSED, HALF_AN_OBSTACLE, ("behind_whole",), _no),
     Finding(NOT_ASSESSED, "a value needed is missing", ("landing_known",), _no),
     Finding(NOT_ASSESSED, MOVED, ("profile_landing_roll", "braked_roll"), links.profile_moved),
-    Finding(UNSUITABLE, "over the greatest landing mass", ("mass_landing", "max_landing_mass"), _above),
-    Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _above),
+    Finding(UNSUITABLE, "over the greatest landing mass", ("mass_landing", "max_landing_mass"), _over),
+    Finding(UNSUITABLE, "crosswind above the limit", ("crosswind", "crosswind_limit"), _over),
     Finding(UNSUITABLE, "tailwind above the limit", ("headwind", "tailwind_limit"), _tailwind_above),
     Finding(UNSUITABLE, "ground drops away too steeply for the approach", ("path_closes",), _no),
     Finding(UNSUITABLE, "does not stop", ("stops",), _no),

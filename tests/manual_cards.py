@@ -26,7 +26,7 @@ MULE = BARE.replace('kind = "fixed pitch"', 'kind = "constant speed"')
 MULE_POINTS = re.sub(r"to_50ft = .*\n", "", TAKEOFF_POINTS) + LANDING_POINTS  # whose rest of the way is its own
 STILL = {"surface": "paved", "condition": "dry", "slope_given": 0.0, "heading": 0.0, "own_wind_speed": 0.0, "tora": 9000.0,
          "lda": 9000.0, "own_qnh": 1013.25}  # fmt: skip
-LEAST_CLIMB = 0.012  # gradient below which the manual prints no take-off
+LEAST_CLIMB = 0.03  # gradient below which the manual prints no take-off
 
 CORRECTIONS = """
 [book.corrections.takeoff]

@@ -29,6 +29,7 @@ NEVER = 0  # of MacroExecMode and of UpdateDocMode: run no macro, refresh no lin
 PROFILE_WAS_NEW = 81  # exit code of a start that only prepared a brand-new profile
 START_SECONDS = 120
 STOP_SECONDS = 15
+HIDDEN = ["--headless", "--invisible", "--norestore", "--nologo", "--nodefault"]
 FILTERS = {
     ".xlsx": "Calc MS Excel 2007 XML",
     ".ods": "calc8",
@@ -54,14 +55,13 @@ def url(path: str) -> str:
     return uno.systemPathToFileUrl(os.path.abspath(path))
 
 
-def start(soffice: str, profile: str, extensions: str = "") -> tuple[subprocess.Popen[bytes], Any]:
+def start(soffice: str, profile: str, extensions: str = "", options: list[str] = HIDDEN) -> tuple[subprocess.Popen[bytes], Any]:
     """Start the office on a private profile and a private pipe; return the process and its context."""
     for _ in range(3):
         pipe = "stripcheck" + secrets.token_hex(8)
         process = subprocess.Popen(
             [
-                soffice, "--headless", "--invisible", "--norestore", "--nologo", "--nodefault",
-                f"--accept=pipe,name={pipe};urp;", f"-env:UserInstallation={url(profile)}",
+                soffice, *options, f"--accept=pipe,name={pipe};urp;", f"-env:UserInstallation={url(profile)}",
                 *([f"-env:BUNDLED_EXTENSIONS={url(extensions)}"] if extensions else []),
             ],
             stdin=subprocess.DEVNULL,

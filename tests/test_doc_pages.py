@@ -17,6 +17,7 @@ from stripcheck.caution import CAUTION
 from stripcheck.cli import main
 from stripcheck.doc_pages import PAGES, write_pages
 from stripcheck.doc_words import CARD_ENTRIES, COLUMN_MEANINGS, LEFT_OUT, OWN_RULES, RULE_ENTRIES, Entry
+from stripcheck.doors.functions import FUNCTIONS
 from stripcheck.errors import InputError
 from stripcheck.inputs import REACH
 from stripcheck.register.columns import COLUMNS
@@ -41,8 +42,16 @@ def pages(tmp_path_factory: pytest.TempPathFactory) -> dict[str, str]:
     return {path.name: path.read_text(encoding="utf-8") for path in folder.iterdir()}
 
 
-def test_there_are_four_pages(pages: dict[str, str]) -> None:
-    assert set(pages) == set(PAGES) == {"method.md", "rules.md", "lists.md", "aircraft-card.md"}
+def test_there_are_five_pages(pages: dict[str, str]) -> None:
+    assert set(pages) == set(PAGES) == {"method.md", "rules.md", "lists.md", "aircraft-card.md", "functions.md"}
+
+
+def test_functions_page_has_every_function_with_its_answer(pages: dict[str, str]) -> None:
+    rows = [line for line in pages["functions.md"].splitlines() if line.startswith("| `STRIP_")]
+    assert sorted(row.split("`")[1] for row in rows) == sorted(function.full_name for function in FUNCTIONS)
+    by_name = {row.split("`")[1]: row for row in rows}
+    assert by_name["STRIP_SLOPE"].endswith("| `=STRIP_SLOPE(2380,2410,620)` | 1.47484 % |")
+    assert "humidity [%] (*0*)" in by_name["STRIP_DENSITY_ALT"] and "condition (*dry*)" in by_name["STRIP_ROLLING"]
 
 
 @pytest.mark.parametrize("name", PAGES)

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import math
+import subprocess
+import sys
 
 import pytest
 from hypothesis import given
@@ -159,3 +161,16 @@ def test_any_text_is_a_number_a_blank_or_one_sentence(text: str, kind: str) -> N
 
 def test_tidy() -> None:
     assert tidy(2300 * 0.3048 / 0.3048 + 1e-10) == 2300.0
+
+
+def test_without_pint_usual_units_are_read_and_for_others_it_says_what_is_missing():
+    """In a process of its own, where pint can't be imported; the spelling "feet" is one that only pint would be asked for."""
+    lines = ["import sys", "sys.modules['pint'] = None", "from stripcheck.errors import InputError",
+             "from stripcheck.units import base_unit, read_quantity", "print(read_quantity('2300 ft', 'altitude'))",
+             "for ask in (lambda: read_quantity('2300 feet', 'altitude'), lambda: base_unit('ft')):",
+             "    try: ask()", "    except InputError as error: print(error)"]  # fmt: skip
+    said = subprocess.run([sys.executable, "-c", "\n".join(lines)], capture_output=True, text=True, check=True).stdout
+    number, *sentences = said.splitlines()
+    assert float(number) == pytest.approx(2300 * 0.3048, rel=1e-15)
+    assert len(sentences) == 2
+    assert all("needs the Python package pint, which is not installed" in sentence for sentence in sentences)

@@ -37,6 +37,8 @@ from stripcheck.units import to_si
 from stripcheck.verdict import BEYOND
 
 LONG = 5000.0  # m: a length that decides nothing, where a function has none
+# where a function has no air, since its result does not hang on it
+STANDARD_AIR = {"elevation_field": 0.0, "own_qnh": 101325.0, "own_temperature": 288.15}
 MOST_BANK = math.radians(85.0)
 KEPT = 2.0  # s for which a file that was read counts as unchanged
 NO_WORDS = "there is no result for these values"
@@ -80,7 +82,8 @@ class Aeroplane:
 
     def case(self, values: Mapping[str, np.ndarray], rules: Mapping[str, Any] | None, size: int) -> Result:
         """The assessment that a function's arguments stand for, SI; nothing is computed yet."""
-        inputs = {**self.values, **_no_day(), **_no_strip(), **(rules or rules_of("manual-only")), **_strip(values)}
+        air = {} if "elevation" in values else STANDARD_AIR
+        inputs = {**self.values, **_no_day(), **_no_strip(), **air, **(rules or rules_of("manual-only")), **_strip(values)}
         return Result(self.chain, size, inputs, {}, [""] * size)
 
     def ask(self, step: str, values: Mapping[str, np.ndarray], rules: Mapping[str, Any] | None,

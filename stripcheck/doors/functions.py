@@ -80,6 +80,15 @@ class Function:
         return f"{PREFIX}_{self.name}"
 
     @property
+    def described(self) -> str:
+        """The help as a program shows it, with the unit of the result.
+
+        >>> FUNCTIONS[0].described
+        'Pressure altitude at an elevation under an altimeter setting. Result in ft, or in the unit asked for.'
+        """
+        return f"{self.help} Result in {self.unit}, or in the unit asked for." if self.unit else self.help
+
+    @property
     def all_arguments(self) -> tuple[Argument, ...]:
         """The arguments, and at the end the unit of the result where it has one."""
         return (*self.arguments, UNIT) if self.unit else self.arguments
@@ -129,7 +138,7 @@ _EXAMPLE_LIMIT_LAND = ("ridge-runner", "30", 600, 2400, 1008, 31, 1.5, "grass", 
 _EXAMPLE_HOTTEST = ("ridge-runner", 950, "10", 750, 2400, 1008, 1.5, "grass", "part-cat-b")
 _EXAMPLE_HOTTEST_LAND = ("ridge-runner", 1000, "30", 640, 2400, 1008, 1.5, "grass", "part-cat-b")
 _EXAMPLE_BEST = ("ridge-runner", 950, 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
-_EXAMPLE_RUN_ON = ("ridge-runner", 1000, "10", 600, 2400, 1008, 31, 1.5, "grass")
+_EXAMPLE_RUN_ON = ("ridge-runner", 1000, "10", 420, 2400, 1008, 31, 1.5, "grass")
 
 
 def _where_known(value: Number, *known: Number) -> Number:

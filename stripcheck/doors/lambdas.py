@@ -2,8 +2,8 @@
 
 A function's equation, or the steps of the chain that lead to its result, are called with cell expressions that stand for
 the parameters, as a filled workbook's formulas are made; each step is a variable of a LET. A step whose formula is long is a
-name of its own, ``STRIP_STEP_...``, which every function that needs it calls. What can't be written so is listed with its
-reason.
+name of its own, ``STRIP_X_...``, which every function that needs it calls: formulas stay within a program's limits. Such
+names take SI and are not meant to be typed. What can't be written so is listed with its reason.
 
 In the file a parameter is written ``_xlpm.x``, and a function newer than the format ``_xlfn.LET``; a program shows them
 without these.
@@ -13,6 +13,7 @@ from __future__ import annotations
 
 import inspect
 import re
+import string
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import cache
@@ -23,7 +24,7 @@ import numpy as np
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.doors.aircraft import CLIMB_SPEED, MAY_BE_BLANK, NO_BANK, NO_REACH, NO_WORDS, Aeroplane
 from stripcheck.doors.functions import FUNCTIONS, Argument, Function
-from stripcheck.inputs import REACH, manual_inputs
+from stripcheck.inputs import POWER_LIMIT, REACH, manual_inputs
 from stripcheck.sheet.cell import BLANK, MAX_DEPTH, MAX_LENGTH, Cell, as_cell, call, reference, shown, where
 from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
 from stripcheck.steps import POWERS, build_chain
@@ -31,15 +32,19 @@ from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG
 from stripcheck.verdict import BEYOND, NOT_ASSESSED
 
-STEP = "STRIP_STEP_"
+STEP = "STRIP_X_"
 LONG_STEP = 100  # characters from which a step's formula is a name of its own
 MAX_PAIRS = 126  # names and values in one LET, an Excel limit
 MAX_COMMENT = 255  # characters of a name's comment, an Excel limit
 AIRCRAFT_SHEET, RULES_SHEET = "columns A to I of the whole Aircraft sheet", "columns A to F of the whole Rules sheet"
+# values that hang on the air or on the loading alone, and are names of their own: a function is spared what leads to them
+PARTS = ("air_known", "density", "lift_off_eas", "screen_eas", "airborne_eas", "rolling_drag", "airborne_drag", "climb_drag",
+         "touchdown_eas", "approach_eas", "approach_path", "braked_drag", "slowest_touchdown")  # fmt: skip
 KIND_NAMES = {"fixed pitch": "FIXED", "constant speed": "CONSTANT"}
 INVERSE = "it looks for its answer by trying, which a formula without a program can't"
 UNITS_BY_NAME = "it reads units by their names"
 NO_CORRECTIONS = "the corrections of the manual on this Aircraft sheet are not in this function: use the filled workbook"
+NO_REACH_HERE = NO_REACH.split(":")[0]  # without the advice to give a card's name, which these functions can't take
 ONE_VALUE = "one value at a time: fill the formula down"
 
 
@@ -61,7 +66,8 @@ class Library:
 
 
 class Sure(Cell):
-    """A parameter that has been found to be a number; np.interp over a flap table is its own figure, since a setting is a node."""
+    """A parameter that has been found to be a number. np.interp over a flap table gives the setting's own figure, which is a
+    node of the table."""
 
     __slots__ = ()
 
@@ -81,7 +87,7 @@ def library() -> Library:
     """Every function of the registry as names, the shared steps first.
 
     >>> next(name.text for name in library().names if name.name == "STRIP_SLOPE")[:42]
-    '_xlfn.LAMBDA(_xlpm.start_elevation,_xlpm.e'
+    '_xlfn.LAMBDA(_xlpm.start_elevation_,_xlpm.'
     """
     writer = _Writer()
     left_out = []
@@ -115,12 +121,16 @@ def nesting(text: str) -> int:
 
 
 def parameter(key: str) -> str:
-    """A parameter or variable as the file keeps it."""
-    return f"_xlpm.{key}"
+    """A parameter or variable as the file keeps it; unlike any name that a filled workbook gives to its cells.
+
+    >>> parameter("qnh")
+    '_xlpm.qnh_'
+    """
+    return f"_xlpm.{key}_"
 
 
 def lambda_of(parameters: list[str], body: str) -> str:
-    return f"_xlfn.LAMBDA({','.join(map(parameter, parameters))},{body})"
+    return f"_xlfn.LAMBDA({','.join(parameters)},{body})"
 
 
 def let(pairs: list[tuple[str, str]], result: str) -> str:
@@ -128,12 +138,29 @@ def let(pairs: list[tuple[str, str]], result: str) -> str:
     kept: list[tuple[str, str]] = []
     needed = result
     for variable, value in reversed(pairs):
-        if re.search(rf"{re.escape(variable)}(?![\w.])", needed):
+        if _reads(needed, variable):
             kept.append((variable, value))
             needed += " " + value
     if not kept:
         return result
     return f"_xlfn.LET({','.join(part for pair in reversed(kept) for part in pair)},{result})"
+
+
+def _reads(text: str, variable: str) -> bool:
+    return re.search(rf"{re.escape(variable)}(?![\w.])", text) is not None
+
+
+def _short(keys: list[str], body: str) -> tuple[list[str], str]:
+    """Parameters and body with short names for all variables: a formula with hundreds of them must not get too long."""
+    letters = [letter for letter in string.ascii_lowercase if letter not in "cr"]  # those are references in some programs
+    names = (f"_xlpm.{name}" for name in [*letters, *(one + other for one in letters for other in letters)])
+    short = dict(zip(dict.fromkeys([*map(parameter, keys), *re.findall(r"_xlpm\.\w+", body)]), names, strict=False))
+    renamed = re.sub(r"_xlpm\.\w+", lambda match: short[match[0]], body)
+    return [short[parameter(key)] for key in keys], renamed
+
+
+def _chain_of(kind: str) -> Chain:
+    return build_chain(kind, "flat rated" if kind == "constant speed" else POWERS[0])
 
 
 def _text(words: str) -> str:
@@ -151,40 +178,20 @@ class _Writer:
         self.names: list[Name] = []
         self.steps: dict[str, Name] = {}
         for key, (parameters, body, comment) in _HELPERS.items():
-            self._step(key, list(parameters), body, comment)
+            self.step(key, list(parameters), body, comment)
 
     def write(self, function: Function) -> None:
-        if not function.step:
-            self._add(function, self._computed(function))
-            return
-        texts = {kind: self._assessed(function, kind) for kind in KIND_NAMES}
-        if len(set(texts.values())) == 1:
-            self._add(function, texts["fixed pitch"])
-            return
-        for kind, suffix in KIND_NAMES.items():
-            self._add(function, texts[kind], suffix)
-        self._add(function, self._chosen_by_kind(function))
-
-    def _add(self, function: Function, body: str, suffix: str = "") -> None:
+        body = self._assessed(function) if function.step else self._computed(function)
         keys = [argument.key for argument in function.arguments]
-        name = f"{function.full_name}_{suffix}" if suffix else function.full_name
-        self.names.append(_name(name, lambda_of(keys, body), _comment(function, suffix)))
+        self.names.append(_name(function.full_name, lambda_of(list(map(parameter, keys)), body), _comment(function)))
 
-    def _step(self, key: str, parameters: list[str], body: str, comment: str) -> str:
+    def step(self, key: str, parameters: list[str], body: str, comment: str) -> str:
+        """A name for what several functions share, made once."""
         name = STEP + key.upper()
-        made = _name(name, lambda_of(parameters, body), comment)
+        made = _name(name, lambda_of([p if p.startswith("_xlpm.") else parameter(p) for p in parameters], body), comment)
         if self.steps.setdefault(name, made) != made:
             raise ValueError(f"two steps want the name {name}")
         return name
-
-    def _chosen_by_kind(self, function: Function) -> str:
-        given = ",".join(parameter(argument.key) for argument in function.arguments)
-        kind = parameter("kind")
-        missing = _text(f'Aircraft: the range has no row "{PROPELLER}"; give {AIRCRAFT_SHEET}')
-        chosen = missing
-        for value, suffix in reversed(KIND_NAMES.items()):
-            chosen = f"IF({kind}={_text(value)},{function.full_name}_{suffix}({given}),{chosen})"
-        return let([(kind, f'IFERROR({STEP}WORD({parameter("aircraft")},{_text(PROPELLER)}),"")')], chosen)
 
     # --- functions that are one equation
 
@@ -196,49 +203,85 @@ class _Writer:
             values.append(_RuleValues() if argument.kind == "rules" else _si_of(argument))
         assert function.compute is not None  # the other functions have a step
         result = shown(as_cell(function.compute(*values)), function.unit or "")
-        return _checked(function, f"IFERROR({result.text},{_text(NO_WORDS)})")
+        found = parameter("found")
+        known = let([(found, result.text)], f"IF(ISNUMBER({found}),{found},{_text(NO_WORDS)})")
+        return _checked(function, f"IFERROR({known},{_text(NO_WORDS)})")
 
     # --- functions of a chain step
 
-    def _assessed(self, function: Function, kind: str) -> str:
-        chain = build_chain(kind, "flat rated" if kind == "constant speed" else POWERS[0])
+    def _assessed(self, function: Function) -> str:
+        """The arguments checked and taken to SI, and handed to the name that does the work, by kind of propeller."""
         side = "landing" if function.step.startswith(("landing", "approach")) else "takeoff"
-        trace = _Trace(self, function, chain)
-        finding = trace.value(f"{side}_finding")
-        words = trace.words(f"{side}_reason", finding)
-        if function.unit is None:
-            result = trace.words(function.step, finding)
-            lost = NOT_ASSESSED if function.step.endswith("verdict") else "a value needed is missing"
+        traces = {kind: _Trace(self, function, _chain_of(kind)) for kind in KIND_NAMES}
+        bodies = {kind: trace.result(side) for kind, trace in traces.items()}
+        keys = traces["fixed pitch"].base
+        typed = {argument.key for argument in function.arguments}
+        values = [_si_of(argument).text for argument in function.arguments if argument.kind in KINDS]
+        given = ",".join([*(parameter(key) for key in keys if not key.endswith("_si")), *values])
+        if len(set(bodies.values())) == 1:
+            name = self.step(f"{function.name}_SI", *_short(keys, bodies["fixed pitch"]), f"Called by {function.full_name}.")
+            whole = f"{name}({given})"
         else:
-            value = as_cell(trace.value(function.step))
-            result = f"IF(ISNUMBER({value.text}),{shown(value, function.unit).text},{words})"
-            lost = NO_WORDS
-        if "bank" in trace.typed:
-            lost = NO_BANK
-        whole = let(trace.given, let(trace.pairs, result))
-        if "slope" in trace.typed:
+            whole = _text(f'Aircraft: the range has no row "{PROPELLER}"; give {AIRCRAFT_SHEET}')
+            for kind, suffix in KIND_NAMES.items():
+                comment = f"Called by {function.full_name}, {kind} propeller."
+                name = self.step(f"{function.name}_{suffix}", *_short(keys, bodies[kind]), comment)
+                whole = f"IF({parameter('kind')}={_text(kind)},{name}({given}),{whole})"
+            kind = f'IFERROR({STEP}WORD({parameter("aircraft")},{_text(PROPELLER)}),"")'
+            whole = let([(parameter("kind"), kind)], whole)
+        if "slope" in typed:
             whole = f"IF({_has_row(manual_inputs(side)[0].label)},{_text(NO_CORRECTIONS)},{whole})"
-        if "flap" in trace.typed:
-            use = "" if function.name == "STALL_SPEED" else {"landing": "landing", "takeoff": "take-off"}[side]
-            row = f"{STEP}FLAP({parameter('aircraft')},{parameter('flap')},{_text(use)})"
-            whole = let([(parameter("row"), row)], _told_else(parameter("row"), whole))
-        if "surface" in trace.typed:
+        use = "" if function.name == "STALL_SPEED" else {"landing": "landing", "takeoff": "take-off"}[side]
+        whole = self._whole_ranges(typed, whole)
+        row = f"{STEP}FLAP({parameter('aircraft')},{parameter('flap')},{_text(use)})"
+        whole = let([(parameter("row"), row)], _told_else(parameter("row"), whole))
+        if "surface" in typed:
             whole = let([(parameter("ground"), _ground_row())], _told_else(parameter("ground"), whole))
+        lost = NO_BANK if "bank" in typed else NO_WORDS
+        if function.unit is None:
+            lost = NOT_ASSESSED if function.step.endswith("verdict") else "a value needed is missing"
         return _checked(function, f"IFERROR({whole},{_text(lost)})")
+
+    def _whole_ranges(self, typed: set[str], then: str) -> str:
+        """What follows where the ranges hold all that the chain reads: no limit or factor may be lost unnoticed."""
+        complete = [_complete("fixed pitch", "card"), _complete("constant speed", "card")]
+        kind = f"{STEP}WORD({parameter('aircraft')},{_text(PROPELLER)})"
+        engine = f"{STEP}WORD({parameter('aircraft')},{_text(ENGINE)})"
+        known = "+".join(f"({engine}={_text(power)})" for power in POWERS)
+        body = f"IF({kind}={_text('fixed pitch')},ISERROR({complete[0]}),IF({known}=1,ISERROR({complete[1]}),TRUE))"
+        lacks = _text(f"Aircraft: the range lacks a row or a number; give {AIRCRAFT_SHEET}")
+        name = self.step("AIRCRAFT", ["aircraft"], f"IF(IFERROR({body},TRUE),{lacks},1)",
+                         "Whether a range holds all that is read of an Aircraft sheet: 1, or a sentence.")  # fmt: skip
+        checks = [(parameter("aircraft_whole"), f"{name}({parameter('aircraft')})")]
+        if "rules" in typed:
+            heading = f"MATCH({_text(GROUND_HEADER[0])},INDEX({parameter('rules')},0,1),0)"
+            rows = [(1, '"paved"', '"dry"'), (parameter("ground"), parameter("surface"), parameter("condition"))]
+            named = [f'EXACT(INDEX({parameter("rules")},{heading}+{row},1),{surface}&", "&{condition})'
+                     for row, surface, condition in rows]  # fmt: skip
+            body = f"IF(ISERROR({_complete('fixed pitch', 'rules')}),FALSE,AND({','.join(named)}))"
+            lacks = _text(f"Rules: the range lacks a row or a number; give {RULES_SHEET}")
+            name = self.step("RULES", ["rules", "ground", "surface", "condition"], f"IF(IFERROR({body},FALSE),1,{lacks})",
+                             "Whether a range holds all that is read of a Rules sheet: 1, or a sentence.")  # fmt: skip
+            given = ",".join(parameter(key) for key in ("rules", "ground", "surface", "condition"))
+            checks.append((parameter("rules_whole"), f"{name}({given})"))
+        for variable, check in reversed(checks):
+            then = let([(variable, check)], _told_else(variable, then))
+        return then
 
     def step_call(self, step: Step, values: list[Any], text: str) -> str:
         """A call of the name that a long step has of its own."""
-        names = list(inspect.signature(step.function).parameters)
-        own = len(names) != len(values)  # the findings, whose function takes whatever they read
-        names = list(step.inputs) if own else names
+        arguments = inspect.signature(step.function).parameters.values()
+        own = any(argument.kind == argument.VAR_POSITIONAL for argument in arguments)  # the findings read whatever they need
+        names = list(step.inputs) if own else [argument.name for argument in arguments]
+        values = [*values, *(argument.default for argument in list(arguments)[len(values) :] if not own)]
         cells = [Cell(parameter(name)) for name in names]
         body = as_cell(step.function(*cells)).text
         key = step.key if own else step.function.__name__.strip("_")
-        name = self._step(key, names, body, f"{step.label}. Source: {step.source}." if own else _first_line(step.function))
+        name = self.step(key, names, body, f"{step.label}. Source: {step.source}." if own else _first_line(step.function))
         return f"{name}({','.join(as_cell(value).text for value in values)})"
 
     def words_call(self, step: Step, finding: Cell) -> str:
-        name = self._step(step.key, ["number"], f"INDEX({_word_list(step.words)},{parameter('number')})",
+        name = self.step(step.key, ["number"], f"INDEX({_word_list(step.words)},{parameter('number')})",
                           f"{step.label}: the words of a finding's number.")  # fmt: skip
         return f"{name}({finding.text})"
 
@@ -246,20 +289,21 @@ class _Writer:
 class _Trace:
     """The steps that lead to a value, each a variable of a LET, with what is fixed worked out."""
 
-    def __init__(self, writer: _Writer, function: Function, chain: Chain) -> None:
-        self.writer, self.chain = writer, chain
+    def __init__(self, writer: _Writer, function: Function, chain: Chain, parts: bool = True) -> None:
+        self.writer, self.function, self.chain, self.parts = writer, function, chain, parts
         self.typed = {argument.key for argument in function.arguments}
         self.given: list[tuple[str, str]] = []
         self.pairs: list[tuple[str, str]] = []
         self.known: dict[str, Any] = {}
-        numbers = {a.key: self._given(f"{a.key}_si", _si_of(a).text) for a in function.arguments if a.kind in KINDS}
-        if "flap" in self.typed:
-            numbers["flap"] = self._given("flap_si", _at(4))
-        case = Aeroplane("", chain, {}, ()).case({"bank": np.float64(0.0), **numbers}, None, 1)
+        numbers: dict[str, Any] = {a.key: Sure(parameter(f"{a.key}_si")) for a in function.arguments if a.kind in KINDS}
+        ranges = [key for key in ("aircraft", "rules") if key in self.typed]
+        self.base = [*ranges, *(["ground"] if "surface" in self.typed else []), "row", *(f"{key}_si" for key in numbers)]
+        numbers["flap"] = self._given("flap_si", _at(4))
+        case = Aeroplane("", chain, {}, ()).case({"bank": np.zeros(()), **numbers}, None, 1)
         for key, value in case.given.items():
             of_numbers = isinstance(value, Cell) and not isinstance(value, Sure)
             self.known[key] = self._given(key, value.text) if of_numbers else value
-        self._look_up_card()
+        self._look_up_card(numbers)
         if "rules" in self.typed:
             self._look_up_rules()
 
@@ -267,13 +311,14 @@ class _Trace:
         self.given.append((parameter(key), text))
         return Sure(parameter(key))
 
-    def _look_up_card(self) -> None:
+    def _look_up_card(self, numbers: Mapping[str, Cell]) -> None:
         for item in self.chain.inputs:
             if item.where != "card" or item.key in self.known:
                 continue
-            if item.kind == "range" or item.key in ("flap_least", "flap_most"):
-                self._given(item.key, _at({"flap_drag": 8, "flap_lift": 9}.get(item.key, 4)))
-                self.known[item.key] = Sure(parameter(item.key))
+            if item.kind == "range":
+                self.known[item.key] = self._given(item.key, _at({"flap_drag": 8, "flap_lift": 9}.get(item.key, 4)))
+            elif item.key in ("flap_least", "flap_most"):
+                self.known[item.key] = numbers["flap"]  # a setting of the table lies within it
             elif item in REACH.values():
                 reach = f'IFERROR({_value("aircraft", item)},"")'
                 if item is REACH["takeoff"]:  # of a sheet beside climb tables: how far those reach stands elsewhere
@@ -303,6 +348,17 @@ class _Trace:
             else:
                 self._look_up(item, "rules")
 
+    def result(self, side: str) -> str:
+        """The function's result; where there is no number, the limiting reason."""
+        finding = self.value(f"{side}_finding")
+        if self.function.unit is None:
+            result = self.words(self.function.step, finding)
+        else:
+            value = as_cell(self.value(self.function.step))
+            words = self.words(f"{side}_reason", finding)
+            result = f"IF(ISNUMBER({value.text}),{shown(value, self.function.unit).text},{words})"
+        return let(self.given, let(self.pairs, result))
+
     def value(self, key: str) -> Any:
         """A step's value: a variable, or what it is for whatever arguments."""
         for step in self.chain.leading_to([key]):
@@ -321,9 +377,12 @@ class _Trace:
         if BEYOND not in step.words:
             return words
         unknown = f"({finding.text}={step.words.index(BEYOND) + 1})*NOT(ISNUMBER({parameter(REACH[side].key)}))"
-        return f"IF({unknown},{_text(NO_REACH)},{words})"
+        return f"IF({unknown},{_text(NO_REACH_HERE)},{words})"
 
     def _step(self, step: Step) -> Any:
+        if self.parts and step.key in PARTS and "temperature" in self.typed:
+            self.pairs.append((parameter(step.key), self._part(step)))
+            return Cell(parameter(step.key))
         if step.lookup == "name" and "surface" in self.typed:
             return Sure(parameter("ground"))
         values = [self.known[key] for key in step.inputs]
@@ -346,9 +405,19 @@ class _Trace:
             return np.asarray(found)
         if found.text in _CONSTANT:
             return np.asarray(_CONSTANT[found.text])
+        if re.fullmatch(r"_xlpm\.\w+", found.text):
+            return found
         variable = parameter(f"{step.key}_" if step.key in self.typed else step.key)
         self.pairs.append((variable, found.text))
         return Cell(variable)
+
+    def _part(self, step: Step) -> str:
+        """A call of the name that a step has with all that leads to it."""
+        trace = _Trace(self.writer, self.function, self.chain, parts=False)
+        body = let(trace.given, let(trace.pairs, as_cell(trace.value(step.key)).text))
+        keys = [key for key in self.base if _reads(body, parameter(key))]
+        name = self.writer.step(step.key, keys, body, f"{step.label}. Source: {step.source}.")
+        return f"{name}({','.join(map(parameter, keys))})"
 
     def _figure_of(self, step: Step, column: Any) -> Cell | Any:
         """A figure of the ground table: of the range of the rules, or fixed where the function has no rules."""
@@ -357,7 +426,7 @@ class _Trace:
         figures = np.asarray(column)[:-1]  # the last is that of a ground not known
         if (figures == figures[0]).all():
             return figures[0]
-        name = self.writer._step(step.key, ["ground"], f"INDEX({_figures(figures)},{parameter('ground')})",
+        name = self.writer.step(step.key, ["ground"], f"INDEX({_figures(figures)},{parameter('ground')})",
                                  f"{step.label} of a row of the ground table.")  # fmt: skip
         return Cell(f"{name}({parameter('ground')})")
 
@@ -391,6 +460,28 @@ class _RuleValues(Mapping[str, Cell]):
     __len__ = __iter__
 
 
+def _complete(kind: str, where_: str) -> str:
+    """All that the chain reads of a range put together, which is an error where a row or number lacks."""
+    range_ = {"card": "aircraft", "rules": "rules"}[where_]
+    parts = []
+    for item in _chain_of(kind).inputs:
+        if item.where != where_ or item.kind == "range" or item.key in _NOT_LOOKED_UP or item in REACH.values():
+            continue
+        if item.kind == "flag":
+            parts.append(f"{STEP}FLAG({parameter(range_)},{_text(item.label)})")
+        elif item is POWER_LIMIT:  # not on the sheet of a normally aspirated engine
+            engine = f"{STEP}WORD({parameter(range_)},{_text(ENGINE)})"
+            parts.append(f'IF({engine}={_text(POWERS[0])},"",{_value(range_, item)})')
+        else:
+            parts.append(_value(range_, item))
+    return "&".join(parts)
+
+
+# what a function takes as arguments, or finds in the flap table and the ground table
+_NOT_LOOKED_UP = {"mass_takeoff", "mass_landing", "takeoff_flap", "landing_flap", "flap_least", "flap_most",
+                  "reference_rolling", "reference_braking"}  # fmt: skip
+
+
 def _at(column: int) -> str:
     return f"INDEX({parameter('aircraft')},{parameter('row')},{column})"
 
@@ -419,8 +510,8 @@ def _ground_row() -> str:
 def _figure_of_ground(function: Function) -> str:
     """A table over surface and condition, as a row of figures."""
     assert function.compute is not None
-    surface, condition = (np.repeat(np.arange(len(SURFACES)), len(CONDITIONS)), np.tile(np.arange(len(CONDITIONS)), len(SURFACES)))
-    figures = np.asarray(function.compute(surface.astype(float), condition.astype(float)))
+    surface, condition = np.divmod(np.arange(float(len(SURFACES) * len(CONDITIONS))), len(CONDITIONS))
+    figures = np.asarray(function.compute(surface, condition))
     found = f"INDEX({_figures(figures)},{parameter('ground')})"
     known = f"IF(ISNUMBER({found}),{found},{_text(NO_WORDS)})"
     return let([(parameter("ground"), _ground_row())], _told_else(parameter("ground"), known))
@@ -474,12 +565,8 @@ def _name(name: str, text: str, comment: str) -> Name:
     return Name(name, text, comment if len(comment) <= MAX_COMMENT else comment[: MAX_COMMENT - 3] + "...")
 
 
-def _comment(function: Function, suffix: str) -> str:
-    if suffix:
-        kind = next(kind for kind, name in KIND_NAMES.items() if name == suffix)
-        return f"{function.full_name} with a {kind} propeller; call that one."
-    unit = f" Result [{function.unit}]." if function.unit else ""
-    return f"{function.help}{unit}"
+def _comment(function: Function) -> str:
+    return f"{function.help} Result [{function.unit}]." if function.unit else function.help
 
 
 def _first_line(function: Callable[..., Any]) -> str:
@@ -507,8 +594,10 @@ def _helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
     flag = let([(p("word"), word)], f'IF({p("word")}="yes",TRUE,IF({p("word")}="no",FALSE,NA()))')
     row = (f"(MATCH({p('surface')},{_word_list(SURFACES)},0)-1)*{len(CONDITIONS)}"
            f"+MATCH({p('condition')},{_word_list(CONDITIONS)},0)")  # fmt: skip
-    ground = (f"IF({_exactly_one_of(p('surface'), SURFACES)},IF({_exactly_one_of(p('condition'), CONDITIONS)},{row},"
-              f"{_none_of('Condition', p('condition'), CONDITIONS)}),{_none_of('Surface', p('surface'), SURFACES)})")  # fmt: skip
+    by_condition = (f"IF({_exactly_one_of(p('condition'), CONDITIONS)},{row},"
+                    f"{_none_of('Condition', p('condition'), CONDITIONS)})")  # fmt: skip
+    ground = (f"IF({_exactly_one_of(p('surface'), SURFACES)},{by_condition},"
+              f"{_none_of('Surface', p('surface'), SURFACES)})")  # fmt: skip
     at = [f"INDEX({p('aircraft')},{p('row')},{column})" for column in (1, 4, 8, 9, 5)]
     name = f'{p("flap")}&""'
     is_setting = (f"IFERROR(AND(COUNT({p('row')})=1,{p('row')}>{p('head')},EXACT({at[0]}&\"\",{name}),ISNUMBER({at[1]}),"
@@ -517,9 +606,10 @@ def _helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
     refused = f'"Flap: """&{p("flap")}&""" is not allowed for "&{p("use")}&" by the card"'
     unknown = f'"Flap: the flap table has no setting """&{p("flap")}&""""'
     no_table = _text(f"Aircraft: the range has no flap table; give {AIRCRAFT_SHEET}")
-    flap = let([(p("head"), f"MATCH({_text(FLAP_HEADER[0])},INDEX({p('aircraft')},0,1),0)"),
-                (p("row"), f"MATCH({name},INDEX({p('aircraft')},0,1),0)")],
-               f"IF(ISNUMBER({p('head')}),IF({is_setting},IF({allowed},{p('row')},{refused}),{unknown}),{no_table})")  # fmt: skip
+    labels = f"INDEX({p('aircraft')},0,1)"
+    told = f"IF({is_setting},IF({allowed},{p('row')},{refused}),{unknown})"
+    flap = let([(p("head"), f"MATCH({_text(FLAP_HEADER[0])},{labels},0)"), (p("row"), f"MATCH({name},{labels},0)")],
+               f"IF(ISNUMBER({p('head')}),{told},{no_table})")  # fmt: skip
     return {
         "value": (("range", "label"), value, "Value in SI of a row of an Aircraft or Rules sheet, by its label."),
         "optional": (("range", "label"), optional, "The same of a row that may be blank."),

@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Mapping
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, Protocol
 
 import numpy as np
 from openpyxl import Workbook
 from openpyxl.utils import get_column_letter
+from openpyxl.workbook.defined_name import DefinedName
 
 from stripcheck.assessment import Result
 from stripcheck.book_tables import BookTables
@@ -23,7 +24,8 @@ from stripcheck.register import Directions
 from stripcheck.rules import Rules
 from stripcheck.sheet import left_out, manual_tables, method, pages, strips, styles, summary
 from stripcheck.sheet.formulas import write_formulas
-from stripcheck.sheet.stream import write_book
+from stripcheck.sheet.stream import Column as AnyColumn
+from stripcheck.sheet.stream import FormulaColumn, NumberColumn, Table, TextColumn, write_book
 from stripcheck.units import from_si, tidy
 from stripcheck.verdict import FAULT
 
@@ -105,10 +107,31 @@ _PARTS = ("finding", "verdict", "margin", "margin_share", "reason")
 _SUMMARISED = {f"{step}_{part}" for _, step, _ in summary.SIDES for part in _PARTS}
 
 
-def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[[int], None] | None = None) -> list[str]:
+@dataclass(frozen=True)
+class Layout:
+    """Where things stand in a workbook, for formulas: letters of the Strips sheet's columns by key, cells of typed values by
+    key, and the ranges of the Aircraft and the Rules sheet."""
+
+    letters: Mapping[str, str]
+    value_cells: Mapping[str, str]
+    ranges: Mapping[str, str]
+
+
+class Instead(Protocol):
+    """Formulas in place of the native ones of the Strips sheet: columns by key; no columns at all: values everywhere."""
+
+    @property
+    def names(self) -> Collection[tuple[str, str, str]]: ...
+
+    def columns(self, layout: Layout) -> Mapping[str, FormulaColumn]: ...
+
+
+def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[[int], None] | None = None,
+                   instead: Instead | None = None) -> list[str]:  # fmt: skip
     """Write the workbook whole or not at all; returns what had to be cut, one sentence each.
 
-    ``full``: every step a column of its own; else the short detail. Raises InputError where it can't be written.
+    ``full``: every step a column of its own; else the short detail. ``instead``: other formulas than native ones; the full
+    detail only. Raises InputError where it can't be written.
     """
     chain, directions = filling.chain, filling.directions
     book = Workbook()
@@ -145,7 +168,42 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
         summary.SHEET: summary.table_of(directions, letters, shown, filling.best),
         left_out.SHEET: left_out.table_of(directions),
     }
+    if instead is not None:
+        ranges = {"aircraft": f"Aircraft!$A$1:$I${aircraft.max_row}", "rules": f"Rules!$A$1:$F${book['Rules'].max_row}"}
+        _replace_formulas(made, columns, tables, instead, Layout(letters, made.value_cells, ranges))
     return write_book(book, tables, path, progress=progress, cached=made.cached)
+
+
+def _replace_formulas(made: pages.Pages, columns: list[strips.Column], tables: dict[str, Table], instead: Instead,
+                      layout: Layout) -> None:  # fmt: skip
+    """The Strips sheet's formulas as others or as values; without any other, the whole book's as values."""
+    others = instead.columns(layout)
+    for name, text, comment in instead.names:
+        made.book.defined_names[name] = DefinedName(name, attr_text=text, comment=comment)
+    strip_table = tables[strips.SHEET]
+    strip_table.columns = [
+        others.get(column.key) or _as_values(found) for column, found in zip(columns, strip_table.columns, strict=True)
+    ]
+    if others:
+        return
+    for name, table in tables.items():
+        table.columns = [_as_values(found) for found in tables[name].columns]
+    for sheet, cells in made.cached.items():
+        for cell, value in cells.items():
+            target = made.book[sheet][cell]
+            target.value = None if value == "" else value
+            if isinstance(value, str) and value:
+                target.data_type = "s"
+    made.cached.clear()
+
+
+def _as_values(column: AnyColumn) -> AnyColumn:
+    if not isinstance(column, FormulaColumn):
+        return column
+    values = column.values
+    if isinstance(values, np.ndarray) and values.dtype.kind == "f":
+        return NumberColumn(values)
+    return TextColumn(values.tolist() if isinstance(values, np.ndarray) else values)
 
 
 def taken_for_granted(filling: Filling) -> list[str]:

@@ -21,7 +21,7 @@ import re
 import secrets
 import shutil
 import zipfile
-from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
 from contextlib import contextmanager
 from copy import copy
@@ -79,12 +79,15 @@ class NumberColumn:
 class FormulaColumn:
     """A formula per row and the value that it has now.
 
-    formula : text without the leading "=", with `ROW` for the row number; or a list of them, one per row
+    formula : text without the leading "=", with `ROW` for the row number; or a list of them, one per row, None where
+        the value stands alone
     values : array of numbers (NaN shows as "") or True/False, shape (rows,); or a list, also of texts
+    dynamic : whether the program must take it as a formula of its newer kind, as one that calls a LAMBDA name
     """
 
-    formula: str | Sequence[str]
+    formula: str | Sequence[str | None]
     values: np.ndarray | Sequence[object]
+    dynamic: bool = False
 
 
 Column = TextColumn | NumberColumn | FormulaColumn
@@ -124,6 +127,7 @@ def write_book(
     *,
     progress: Callable[[int], None] | None = None,
     cached: Mapping[str, Mapping[str, object]] | None = None,
+    dynamic: Mapping[str, Collection[str]] | None = None,
 ) -> list[str]:
     """Write the book to ``path``, whole or not at all, and return what had to be cut, one sentence each.
 
@@ -132,6 +136,7 @@ def write_book(
     tables : name of the sheet -> its `Table`
     progress : called with the number of rows just written, again and again
     cached : name of a sheet -> cell such as "D5" -> the value beside the formula that the skeleton has there
+    dynamic : name of a sheet -> cells of those whose formula is of the newer kind, see `FormulaColumn`
 
     The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself
     get the value that ``cached`` has for them. Raises InputError when there are more rows than a sheet holds or
@@ -166,6 +171,9 @@ def write_book(
     # openpyxl settles the part names as it saves, so they are asked for only now
     streamed = {skeleton[name].path.lstrip("/"): sheet for name, sheet in sheets.items()}
     beside = {skeleton[name].path.lstrip("/"): values for name, values in (cached or {}).items()}
+    newer = {skeleton[name].path.lstrip("/"): cells for name, cells in (dynamic or {}).items()}
+    columns = (column for table in tables.values() for column in table.columns)
+    any_newer = any(newer.values()) or any(isinstance(column, FormulaColumn) and column.dynamic for column in columns)
     with (
         zipfile.ZipFile(packed) as source,
         whole_or_not_at_all(path) as file,
@@ -174,18 +182,48 @@ def write_book(
         for part in source.namelist():
             data = _with_relative_targets(part, source.read(part))
             if part in beside:
-                data = _with_values(data.decode(), beside[part]).encode()
+                data = _with_values(data.decode(), beside[part], newer.get(part, ())).encode()
+            if any_newer and part in _LISTS_OF_PARTS:
+                data = data.replace(*_LISTS_OF_PARTS[part], 1)
             if part in streamed:
                 _stream(data.decode(), streamed[part], target, part, progress)
             else:
                 target.writestr(part, data)
+        if any_newer:
+            target.writestr("xl/metadata.xml", _METADATA)
     return cuts
 
 
 _FORMULA_CELL = re.compile(r'<c r="([A-Z]+[0-9]+)"([^>]*)><f>(.*?)</f><v ?/?>(?:</v>)?</c>', re.DOTALL)
 
 
-def _with_values(xml: str, values: Mapping[str, object]) -> str:
+# What a workbook must hold for formulas of the newer kind: cells with cm="1" are of the one kind told here (the form is
+# that which such a program writes; from memory)
+_DYNAMIC = "http://schemas.microsoft.com/office/spreadsheetml/2017/dynamicarray"
+_METADATA = (
+    '<?xml version="1.0" encoding="UTF-8" standalone="yes"?>'
+    f'<metadata xmlns="http://schemas.openxmlformats.org/spreadsheetml/2006/main" xmlns:xda="{_DYNAMIC}">'
+    '<metadataTypes count="1"><metadataType name="XLDAPR" minSupportedVersion="120000" copy="1" pasteAll="1" '
+    'pasteValues="1" merge="1" splitFirst="1" rowColShift="1" clearFormats="1" clearComments="1" assign="1" coerce="1" '
+    'cellMeta="1"/></metadataTypes><futureMetadata name="XLDAPR" count="1"><bk><extLst>'
+    '<ext uri="{bdbb8cdc-fa1e-496e-a857-3c3f30c029c3}"><xda:dynamicArrayProperties fDynamic="1" fCollapsed="0"/></ext>'
+    '</extLst></bk></futureMetadata><cellMetadata count="1"><bk><rc t="1" v="0"/></bk></cellMetadata></metadata>'
+)
+_LISTS_OF_PARTS = {
+    "[Content_Types].xml": (
+        b"</Types>",
+        b'<Override PartName="/xl/metadata.xml" '
+        b'ContentType="application/vnd.openxmlformats-officedocument.spreadsheetml.sheetMetadata+xml"/></Types>',
+    ),
+    "xl/_rels/workbook.xml.rels": (
+        b"</Relationships>",
+        b'<Relationship Id="rIdMetadata" Target="metadata.xml" '
+        b'Type="http://schemas.openxmlformats.org/officeDocument/2006/relationships/sheetMetadata"/></Relationships>',
+    ),
+}
+
+
+def _with_values(xml: str, values: Mapping[str, object], newer: Collection[str] = ()) -> str:
     """The formula cells of a sheet that openpyxl wrote, each with the value that it has now."""
 
     def with_value(match: re.Match[str]) -> str:
@@ -198,7 +236,8 @@ def _with_values(xml: str, values: Mapping[str, object]) -> str:
             kind, text = "", repr(value)
         else:
             kind, text = ' t="str"', escape(str(value))
-        return f'<c r="{match[1]}"{match[2]}{kind}><f>{match[3]}</f><v>{text}</v></c>'
+        mark, array = (' cm="1"', f' t="array" ref="{match[1]}"') if match[1] in newer else ("", "")
+        return f'<c r="{match[1]}"{match[2]}{kind}{mark}><f{array}>{match[3]}</f><v>{text}</v></c>'
 
     return _FORMULA_CELL.sub(with_value, xml)
 
@@ -263,9 +302,9 @@ def _is_numeric(values: np.ndarray | Sequence[object]) -> bool:
 
 
 def _check_formulas(where: str, column: FormulaColumn, last_row: int) -> None:
-    formulas = [column.formula] if isinstance(column.formula, str) else column.formula
-    if not isinstance(column.formula, str) and len(formulas) != len(column.values):
-        raise ValueError(f"{where}: {len(formulas)} formulas for {len(column.values)} values")
+    formulas = [column.formula] if isinstance(column.formula, str) else [text for text in column.formula if text is not None]
+    if not isinstance(column.formula, str) and len(column.formula) != len(column.values):
+        raise ValueError(f"{where}: {len(column.formula)} formulas for {len(column.values)} values")
     extra = len(str(last_row)) - len(ROW)
     for formula in formulas:
         if not formula or formula.startswith("="):
@@ -339,7 +378,7 @@ def _most_bytes(column: Column) -> int:
     """Never less than the bytes that the texts of a column need: escaping makes at most seven of one."""
     texts = [] if _is_numeric(column.values) else _texts(column.values)
     if isinstance(column, FormulaColumn) and not isinstance(column.formula, str):
-        texts += column.formula
+        texts += [text for text in column.formula if text is not None]
     return 7 * sum(map(len, texts))
 
 
@@ -354,18 +393,24 @@ def _prepare_column(cell: Cell, column: Column) -> tuple[str, _Filler]:
         numbers = np.asarray(column.values, dtype=float)
         return f"{start}%b", lambda a, b: [_number_cells(numbers[a:b], style)]
     values, formulas, row = column.values, column.formula, cell.row
+    mark, array = (' cm="1"', f' t="array" ref="{cell.column_letter}{ROW}"') if column.dynamic else ("", "")
     if isinstance(formulas, str):
         text = escape(formulas).replace("%", "%%")
-        return f"{start}{style}%b><f>{text}</f><v>%b</v></c>", lambda a, b: _cached(values[a:b])
-    return f"{start}{style}%b><f>%b</f><v>%b</v></c>", lambda a, b: _with_formulas(
-        _cached(values[a:b]), formulas[a:b], row + a
+        return f"{start}{style}{mark}%b><f{array}>{text}</f><v>%b</v></c>", lambda a, b: _cached(values[a:b])
+    return f"{start}{style}%b>%b<v>%b</v></c>", lambda a, b: _with_formulas(
+        _cached(values[a:b]), formulas[a:b], row + a, mark, array
     )
 
 
-def _with_formulas(cached: list[list[bytes]], formulas: Sequence[str], row: int) -> list[list[bytes]]:
+def _with_formulas(cached: list[list[bytes]], formulas: Sequence[str | None], row: int, mark: str,
+                   array: str) -> list[list[bytes]]:  # fmt: skip
     kinds, values = cached
-    texts = [escape(formula.replace(ROW, str(r))).encode() for r, formula in enumerate(formulas, row)]
-    return [kinds, texts, values]
+    marked = [kind if formula is None else mark.encode() + kind for kind, formula in zip(kinds, formulas, strict=True)]
+    texts = [
+        b"" if formula is None else f"<f{array}>{escape(formula)}</f>".replace(ROW, str(r)).encode()
+        for r, formula in enumerate(formulas, row)
+    ]
+    return [marked, texts, values]
 
 
 def _value_styles(cell: Cell, style: str, values: Sequence[object]) -> _Styles:

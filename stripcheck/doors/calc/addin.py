@@ -6,7 +6,6 @@ so that it can say in the cell what is missing. It imports LibreOffice's modules
 
 import sys
 
-import uno
 import unohelper
 from com.sun.star.lang import XServiceInfo
 from striptypes import XFunctions
@@ -41,12 +40,14 @@ def missing():
 
 def functions():
     """The function behind each name: cells in, cells out."""
-    from functools import partial
+    import warnings
 
-    from stripcheck.doors.call import call
+    from stripcheck.doors.call import prepared
     from stripcheck.doors.functions import FUNCTIONS
 
-    return {function.name: answering(partial(call, function)) for function in FUNCTIONS}
+    # What has no result becomes a sentence. NumPy's own setting is kept for a thread, and each call may come in a new one.
+    warnings.filterwarnings("ignore", category=RuntimeWarning, module="stripcheck")
+    return {function.name: answering(prepared(function)) for function in FUNCTIONS}
 
 
 def answering(call):
@@ -56,10 +57,8 @@ def answering(call):
         try:
             found = call(*cells)
         except Exception as error:
-            return "stripcheck could not work this out: " + type(error).__name__ + " " + str(error)
-        if isinstance(found, list):
-            return uno.Any("[][]any", tuple(map(tuple, found)))
-        return found
+            found = "stripcheck could not work this out: " + type(error).__name__ + " " + str(error)
+        return found if isinstance(found, list) else ((found,),)
 
     return method
 
@@ -81,7 +80,7 @@ class Component(unohelper.Base, XFunctions, XServiceInfo):
     def __getattr__(self, name):
         if not name.isupper():
             raise AttributeError(name)
-        method = self._functions.get(name, lambda *cells: self._sentence)
+        method = self._functions.get(name, lambda *cells: ((self._sentence,),))
         setattr(self, name, method)
         return method
 

@@ -3,7 +3,8 @@
 Calc reads the types as source (``types.idl``), so that nothing has to be compiled. Method and service are named so that
 the name in the file and the name on the screen are one: STRIP.DENSITY_ALT, in .ods and in .xlsx alike. Every argument is of
 type ``any``, which takes a cell as well as a range, and may be left out. Names in the types are in capitals: there an
-underscore is allowed in no other name, and none is a keyword.
+underscore is allowed in no other name, and none is a keyword. The result is always rows of cells, which
+Calc takes for a single cell as well.
 """
 
 from __future__ import annotations
@@ -77,15 +78,20 @@ def types_idl(functions: Iterable[Function] = FUNCTIONS) -> str:
     >>> print(types_idl(FUNCTIONS[:1]), end="")
     module striptypes {
       interface XFunctions {
-        any PRESSURE_ALT([in] any ELEVATION, [in] any QNH, [in] any UNIT);
+        sequence< sequence<any> > PRESSURE_ALT([in] any ELEVATION, [in] any QNH, [in] any UNIT);
       };
     };
     """
-    methods = [
-        f"    any {function.name}({', '.join(f'[in] any {argument.key.upper()}' for argument in function.all_arguments)});"
-        for function in functions
-    ]
+    methods = []
+    for function in functions:
+        arguments = ", ".join(f"[in] any {argument.key.upper()}" for argument in function.all_arguments)
+        methods.append(f"    {_rows(function)} {function.name}({arguments});")
     return "\n".join(["module striptypes {", "  interface XFunctions {", *methods, "  };", "};", ""])
+
+
+def _rows(function: Function) -> str:
+    """Type of a result. Texts must be typed as such: Calc takes any two texts in rows of ``any`` for equal."""
+    return "sequence< sequence<string> >" if function.unit is None else "sequence< sequence<any> >"
 
 
 def wizard_texts(functions: Iterable[Function] = FUNCTIONS) -> str:
@@ -126,9 +132,8 @@ def calc_name(function: Function) -> str:
 
 
 def description(function: Function) -> str:
-    """Help of a function, with the unit of its result, and the caution where it tells whether a strip will do."""
-    unit = f" Result in {function.unit}, or in the unit asked for." if function.unit else ""
-    return function.help + unit + (f" {CAUTION}" if function.category in (VERDICTS, LIMITS) else "")
+    """Help of a function, with the caution where it tells whether a strip will do."""
+    return function.described + (f" {CAUTION}" if function.category in (VERDICTS, LIMITS) else "")
 
 
 def _text(name: str, text: str) -> str:
