@@ -12,6 +12,7 @@ import time
 from pathlib import Path
 
 PICTURES = Path(__file__).parent / "pictures"
+FONT = "DejaVu Sans"
 DISPLAY = ":77"
 SIZE = "1120x760"
 # run by LibreOffice's Python: open a book in a window, put the cursor on a formula, start the wizard
@@ -63,11 +64,14 @@ def book(path: Path) -> Path:
         sheet.append([*strip, f"=STRIP.DENSITY_ALT(B{row},$B$1,$D$1)",
                       *(f"=STRIP.TAKEOFF_{what}{call.format(row)}" for what in ("VERDICT", "MARGIN", "REASON"))])  # fmt: skip
         sheet[f"F{row}"].number_format = sheet[f"H{row}"].number_format = "0"
+    for cell in (cell for row in sheet for cell in row):
+        cell.font = Font(name=FONT, size=10)
     for cell in sheet[3]:
-        cell.font, cell.fill = Font(bold=True), PatternFill("solid", fgColor="E7EBF0")
+        cell.font, cell.fill = Font(name=FONT, size=10, bold=True), PatternFill("solid", fgColor="E7EBF0")
         cell.alignment = Alignment(wrap_text=True, vertical="top")
-    sheet["A2"].font = Font(italic=True)
-    for letter, width in zip("ABCDEFGHI", (15, 11, 12, 9, 11, 11, 14, 9, 44), strict=True):
+    sheet["A2"].font = Font(name=FONT, size=10, italic=True)
+    sheet.row_dimensions[3].height = 28
+    for letter, width in zip("ABCDEFGHI", (16, 12, 14, 10, 13, 12, 14, 10, 46), strict=True):
         sheet.column_dimensions[letter].width = width
     sheet.print_options.gridLines = sheet.print_options.headings = True
     sheet.page_setup.orientation = "landscape"

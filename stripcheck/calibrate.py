@@ -43,6 +43,7 @@ SLOPE_OF_THRUST = -1.5e-4  # b over a [m2/N] of a usual fixed-pitch propeller; c
 SLOPES = (0.1, 4.0)  # the same over the usual one
 TYPICAL = "held at its typical value"
 ON_BOUND = "on the bound of what is credible"
+NOT_CREDIBLE = "held at 1: the figures would need one that is not credible"
 NO_DISTANCE = "held: no distance over 50 ft in the book"
 DRAGGING = ("thrust_slope", "parasite_drag")
 TAKEOFF = (("takeoff_roll", "roll"), ("physics_takeoff", "distance"))  # chain key and column of the book
@@ -211,6 +212,8 @@ def _fit_takeoff(work: _Work, points: BookPoints, thrust: str, further: str) -> 
         work.remarks.append(f"{few}: only the {NAMES[thrust]} could be fitted; the {NAMES[further]} is a typical value")
     elif work.known[further] == ON_BOUND:
         work.remarks.append(f"{moved}, the bound of what is credible: it makes up for what else is not as the card has it")
+    elif work.known.get("takeoff_technique") == NOT_CREDIBLE:
+        work.remarks.append(f"{moved}, in place of an airborne take-off factor that would not be credible")
     elif further == "parasite_drag" and abs(work.values[further] / given - 1.0) > DRAG_TOLD:
         work.remarks.append(f"{moved} by the take-off figures")
     if not factor:
@@ -222,7 +225,7 @@ def _solve_without_factor(work: _Work, thrust: str, further: str, points: BookPo
     """Drag, or the loss of thrust with speed, moved in place of an airborne factor that is not credible."""
     found = _solve(work, (thrust, further), points, TAKEOFF)
     if found.reached and not found.bounded:
-        work.known["takeoff_technique"] = "held at 1: the figures would need one that is not credible"
+        work.known["takeoff_technique"] = NOT_CREDIBLE
         return found
     bound = found.values[further]
     found = _solve(work, (thrust, "takeoff_technique"), points, TAKEOFF, {further: bound})
@@ -331,10 +334,12 @@ def _solve(work: _Work, keys: tuple[str, ...], points: BookPoints, figures: tupl
     p = least_squares(residuals, first, low / start, high / start)
     r = residuals(p)
     errors = _errors(p, r, _slopes(residuals, p, r))
+    with np.errstate(divide="ignore"):  # a time before braking may come to nil
+        relative = errors / np.abs(p)
     edge = np.minimum(np.abs(p - low / start), np.abs(p - high / start)) < 1e-6
     return _Solution(
         dict(zip(keys, (float(value) for value in p * start), strict=True)),
-        dict(zip(keys, (float(error) for error in errors / np.abs(p)), strict=True)),
+        dict(zip(keys, (float(error) for error in relative), strict=True)),
         frozenset(key for key, at in zip(keys, edge, strict=True) if at),
         bool((r != NOT_REACHED).all()), bool((errors <= KNOWN_ENOUGH).all()),
     )  # fmt: skip

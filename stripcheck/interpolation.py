@@ -134,7 +134,9 @@ def top_edge(highest: Number, mass: Number, flap: Number, page_mass: Number, pag
 def outside(value: Number, least: Number, most: Number) -> Number:
     """How far a value lies above the most (positive) or below the least (negative) [unit of all three]; 0 between.
 
+    Above the most goes before below the least, where holes leave the least above the most.
+
     >>> [float(outside(value, 0.0, 30.0)) for value in (35.0, -5.0, 12.0)]
     [5.0, -5.0, 0.0]
     """
-    return np.maximum(value - most, 0.0) + np.minimum(value - least, 0.0)
+    return np.maximum(value - most, 0.0) + np.minimum(value - np.minimum(least, most), 0.0)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 import time
 from collections import Counter
+from itertools import product
 from pathlib import Path
 
 import numpy as np
@@ -24,10 +25,10 @@ from stripcheck.calibrate import (
     calibrate,
     least_squares,
 )
-from stripcheck.card import Card, load_card
+from stripcheck.card import Card
 from stripcheck.errors import InputError
-from stripcheck.steps import POWERS, build_chain
-from tests.aircraft import HERON, changed, load_text, shipped_text, trial_heron
+from stripcheck.steps import build_chain
+from tests.aircraft import HERON, changed, load_text, trial_heron
 
 Point = tuple[float, float, float]  # pressure altitude [ft], temperature [degC], mass [kg]
 FOOT, ZERO = 0.3048, 273.15
@@ -93,8 +94,8 @@ def test_coefficients_come_back(tmp_path: Path, kind: str) -> None:
     for label, printed, figure in card.fit.residuals:
         assert figure == pytest.approx(printed, rel=1e-6), label
     moved = own.get("parasite_drag", 0.036) / 0.036 - 1.0
-    told = [f"parasite drag moved from 0.036 to {own['parasite_drag']:.3g} by the take-off figures"] if abs(moved) > 0.15 else []
-    assert card.fit.remarks == told
+    told = f"parasite drag moved from 0.036 to {own.get('parasite_drag', 0.0):.3g} by the take-off figures"
+    assert card.fit.remarks == ([told] if abs(moved) > 0.15 else [])
     assert all(isinstance(known, float) and known < 0.6 for key, _, known in card.fit.fitted if key in truth)
 
 
@@ -104,7 +105,7 @@ def test_coefficients_come_back_through_scatter_and_rounding(tmp_path: Path, kin
     and braking factors within 6 %: three to four times the standard errors that the fit itself states, which hold too."""
     text, own = KINDS[kind]
     truth = {**own, **COMMON}
-    places = [(feet, celsius, mass) for feet in (0.0, 3000.0, 6000.0) for celsius in (0.0, 15.0, 30.0) for mass in (1110.0, 950.0)]
+    places = [*product((0.0, 3000.0, 6000.0), (0.0, 15.0, 30.0), (1110.0, 950.0))]
     card = calibrated(text, truth, places, places, tmp_path, scatter=0.01, step=5.0)
     within = {"static_thrust": 0.03, "propulsive_quality": 0.03, "thrust_slope": 0.4, "parasite_drag": 0.4}
     for key, value, known in card.fit.fitted:
@@ -114,25 +115,27 @@ def test_coefficients_come_back_through_scatter_and_rounding(tmp_path: Path, kin
 
 
 def test_standard_errors_are_those_of_repeated_manuals(tmp_path: Path) -> None:
-    """Forty manuals of one aeroplane, 3 % of scatter: the values spread as one fit says they would, within a factor of 1.5."""
+    """Forty manuals of one aeroplane, 2 % of scatter: the values spread as each fit says they would, within a third."""
     card, rng = load_text(HERON, tmp_path), np.random.default_rng(3)
     chain, values = build_chain("fixed pitch"), without_fit(card)
     feet, celsius = (grid.ravel() for grid in np.meshgrid([0.0, 3000.0, 6000.0], [0.0, 15.0, 30.0]))
     blank = np.full(9, np.nan)
     at = BookPoints(feet * FOOT, celsius + ZERO, np.full(9, 1110.0), np.full(9, np.radians(10.0)), blank, blank)
-    made = at_book_conditions(chain, card.values, at, ("takeoff_roll", "physics_takeoff"))
+    truth = {**card.values, "static_thrust": 2500.0, "thrust_slope": -0.45}
+    made = at_book_conditions(chain, truth, at, ("takeoff_roll", "physics_takeoff"))
     found: dict[str, list[float]] = {}
     stated: dict[str, list[float]] = {}
     for _ in range(40):
-        roll, whole = (made[key] * np.exp(0.03 * rng.standard_normal(9)) for key in ("takeoff_roll", "physics_takeoff"))
+        roll, whole = (made[key] * np.exp(0.02 * rng.standard_normal(9)) for key in ("takeoff_roll", "physics_takeoff"))
         points = BookPoints(at.pressure_altitude, at.temperature, at.mass, at.flap, roll, whole)
-        for key, value, known in calibrate(chain, values, points, card.landing, "here").fitted[:3]:
-            assert isinstance(known, float)
-            found.setdefault(key, []).append(value)
-            stated.setdefault(key, []).append(known)
-    assert set(found) == {"static_thrust", "thrust_slope", "takeoff_technique"} - set() or "parasite_drag" in found
+        for key, value, how in calibrate(chain, values, points, card.landing, "here").fitted:
+            if key in ("static_thrust", "thrust_slope", "takeoff_technique"):
+                assert isinstance(how, float)
+                found.setdefault(key, []).append(value)
+                stated.setdefault(key, []).append(how)
+    assert len(found) == 3
     for key, spread in found.items():
-        assert np.std(spread) / abs(np.mean(spread)) == pytest.approx(np.mean(stated[key]), rel=0.5), key
+        assert np.std(spread) / abs(np.mean(spread)) == pytest.approx(np.mean(stated[key]), rel=0.33), key
 
 
 def without_fit(card: Card) -> dict[str, object]:
@@ -211,15 +214,16 @@ def test_lift_off_speeds_where_given() -> None:
 @pytest.mark.parametrize(
     ("share", "sentence"),
     [
-        (0.9, "here: the lift-off speeds of the book are 0.90 times the stall speed, which is not credible (1.0 to 1.5): check"),
-        (1.6, "here: the lift-off speeds of the book are 1.60 times the stall speed, which is not credible (1.0 to 1.5): check"),
-        (1.3, "here: the lift-off speeds of the book are 1.30 times the stall speed, which is above the speed at 50 ft (1.20"),
+        (0.9, "0.90 times the stall speed, which is not credible (1.0 to 1.5): check"),
+        (1.6, "1.60 times the stall speed, which is not credible (1.0 to 1.5): check"),
+        (1.3, "1.30 times the stall speed, which is above the speed at 50 ft (1.20 times): give screen in [speeds], or check"),
     ],
 )
 def test_lift_off_speeds_that_can_not_be_right(share: float, sentence: str) -> None:
     card = trial_heron()
-    with pytest.raises(InputError, match=f"^{re.escape(sentence)}"):
-        calibrate(build_chain("fixed pitch"), without_fit(card), with_lift_off(card, [share * 25.7222] * 2), card.landing, "here")
+    points = with_lift_off(card, [share * 25.7222] * 2)
+    with pytest.raises(InputError, match="^" + re.escape(f"here: the lift-off speeds of the book are {sentence}")):
+        calibrate(build_chain("fixed pitch"), without_fit(card), points, card.landing, "here")
 
 
 def test_a_power_that_can_not_reach_the_roll() -> None:
@@ -243,10 +247,10 @@ def test_a_power_that_can_not_reach_the_roll() -> None:
         (MULE, [('rated_power = "134 kW"', 'rated_power = "900 kW"')],
          "the take-off rolls of the book (265 to 500 m) need 1[0-9]% of the shaft power as useful power, which is not"),
         (BARE, [('roll = "265 m"', 'roll = "42 m"'), ('roll = "500 m"', 'roll = "45 m"')],
-         "the take-off rolls of the book (42 to 45 m) need a static thrust of [0-9,]+ N for a weight of 10,885 N, which is not"),
+         "the take-off rolls of the book (42 to 45 m) need a static thrust of [0-9,]+ N for a weight of 10,885 N, which is"),
         (BARE, [('to_50ft = "475 m"', 'to_50ft = "2400 m"'), ('to_50ft = "945 m"', 'to_50ft = "2900 m"')],
-         "the take-off rolls of the book (265 to 500 m) and its distances over 50 ft (2400 to 2900 m) don't belong together: no "
-         "credible static thrust, thrust's loss with speed and airborne factor (0.4 to 2.5) gives both; check mass"),
+         "the take-off rolls of the book (265 to 500 m) and its distances over 50 ft (2400 to 2900 m) don't belong together: "
+         "no credible static thrust, thrust's loss with speed and airborne factor (0.4 to 2.5) gives both; check mass"),
         (BARE, [('to_50ft = "475 m"', 'to_50ft = "275 m"'), ('to_50ft = "945 m"', 'to_50ft = "515 m"')],
          "the take-off rolls of the book (265 to 500 m) and its distances over 50 ft (275 to 515 m) don't belong together: no"),
         (BARE, [('to_50ft = "475 m"', 'to_50ft = "1000 m"'), ('to_50ft = "945 m"', 'to_50ft = "560 m"')],
@@ -272,13 +276,24 @@ def test_figures_that_do_not_belong_together(
         load_text(changed(card + HERON[len(BARE):], *changes), tmp_path)
 
 
-def test_drag_moves_before_the_airborne_factor_loses_credit(tmp_path: Path) -> None:
-    """A short way to 50 ft from one point, which the factor alone would have to cut to less than 0.4 of the model's."""
-    text = MULE + book("takeoff", [HIGH], np.array([[520.0, 800.0]])) + book("landing", [LOW], np.array([[180.0, 410.0]]))
-    card = load_text(changed(text, ("parasite = 0.036", "parasite = 0.075")), tmp_path)
-    assert card.fit.values["parasite_drag"] < 0.075 and card.values["takeoff_technique"] >= TECHNIQUES[0]
-    assert card.fit.remarks[0].startswith("parasite drag moved from 0.075 to 0.0")
-    for label, printed, figure in card.fit.residuals:
+@pytest.mark.parametrize(
+    ("card", "roll", "whole", "remark", "factor"),
+    [
+        (changed(MULE, ("parasite = 0.036", "parasite = 0.06")), 420.0, 900.0,
+         "parasite drag moved from 0.06 to 0.024, the bound of what is credible: it makes up for", None),
+        (BARE, 265.0, 1000.0, r"thrust's loss with speed moved from -0\.\d+ to -1\.\d+, in place of an airborne take-off factor", 1.0),
+    ],
+)  # fmt: skip
+def test_drag_moves_before_the_airborne_factor_loses_credit(
+    tmp_path: Path, card: str, roll: float, whole: float, remark: str, factor: float | None
+) -> None:
+    """One point whose way to 50 ft would take a factor below 0.4, or above 2.5: drag gives way, and the point is met."""
+    text = card + book("takeoff", [HIGH], np.array([[roll, whole]])) + book("landing", [LOW], np.array([[180.0, 410.0]]))
+    found = load_text(text, tmp_path)
+    assert re.match(remark, found.fit.remarks[0])
+    assert TECHNIQUES[0] < found.values["takeoff_technique"] < TECHNIQUES[1]
+    assert factor is None or found.values["takeoff_technique"] == factor
+    for label, printed, figure in found.fit.residuals:
         assert figure == pytest.approx(printed, rel=1e-6), label
 
 
@@ -294,7 +309,7 @@ def test_time_before_braking_gives_way_to_short_rolls(tmp_path: Path) -> None:
 
 def test_a_slip_in_one_figure_is_pointed_at(tmp_path: Path) -> None:
     card = load_text(changed(HERON, ('from_50ft = "480 m"', 'from_50ft = "600 m"')), tmp_path)
-    assert card.fit.remarks[-1].startswith("farthest out is landing 1: 50 ft: 410 m in the book, ")
+    assert card.fit.remarks[-1].startswith("farthest out is landing 2: 50 ft: 600 m in the book, ")
 
 
 def rule_of_thumb_card(rng: np.random.Generator, power: str, count: int) -> str:
@@ -303,7 +318,7 @@ def rule_of_thumb_card(rng: np.random.Generator, power: str, count: int) -> str:
     Static thrust by the kilowatt, a mean acceleration, a climb gradient, a braked deceleration; distances grow with
     height and heat by powers of density, and with mass. Ranges: common practice for light aeroplanes, no source.
     """
-    draw, turbine = rng.uniform, power == "flat rated"
+    draw, turbine, charged = rng.uniform, power == "flat rated", power in ("flat rated", "turbo-normalised")
     mass = draw(2000.0, 5000.0) if turbine else draw(650.0, 1900.0)
     area = mass / draw(60.0, 110.0)
     watts = mass * draw(110.0, 170.0)
@@ -317,7 +332,7 @@ def rule_of_thumb_card(rng: np.random.Generator, power: str, count: int) -> str:
     air = (15.24 + (over**2 - leaving**2) / (2.0 * 9.80665)) / climb * draw(0.8, 1.3)
     down = 1.12 * stall["30"]
     stop = down**2 / (2.0 * 9.80665 * draw(0.22, 0.38)) + down * draw(0.3, 1.5)
-    growth, more = draw(2.2, 2.7) - 0.9 * turbine, draw(0.1, 0.5)
+    growth, more = draw(2.2, 2.7) - 0.9 * charged, draw(0.1, 0.5)
     text = re.sub(r"\[\[flap\]\]\nsetting = \"20\"\n(?:[^\[\n].*\n)*", "", KINDS.get(power, (BARE, {}))[0])
     for old, new in (("665 kg", f"{0.6 * mass:.0f} kg"), ("1110 kg", f"{mass:.0f} kg"), ("16.3 m²", f"{area:.1f} m²"),
                      ("11.0 m", f"{np.sqrt(7.0 * area):.1f} m"), ("134 kW", f"{watts / 1000.0:.0f} kW"),
@@ -340,7 +355,7 @@ def rule_of_thumb_card(rng: np.random.Generator, power: str, count: int) -> str:
 def test_plausible_aeroplanes_are_fitted_or_clearly_refused(tmp_path: Path, power: str) -> None:
     """Handbook-like figures by rules of thumb: no crash, and every fit credible. Few are refused: at most one in eight."""
     rng, refused = np.random.default_rng(11), Counter[str]()
-    for number in range(48):
+    for number in range(24):
         text = rule_of_thumb_card(rng, power, 1 + number % 3)
         try:
             card = load_text(text, tmp_path)
@@ -353,13 +368,13 @@ def test_plausible_aeroplanes_are_fitted_or_clearly_refused(tmp_path: Path, powe
         assert BRAKING[0] <= values["braking_quality"] <= BRAKING[1] and 0.01 <= values["parasite_drag"] <= 0.15
         assert QUALITIES[0] <= values.get("propulsive_quality", 0.5) <= QUALITIES[1]
         assert all(np.isfinite(figure) and figure >= SHORTEST * printed for _, printed, figure in card.fit.residuals)
-    print(f"{power}: {sum(refused.values())} of 48 refused {dict(refused)}")
-    assert sum(refused.values()) <= 6
+    print(f"{power}: {sum(refused.values())} of 24 refused {dict(refused)}")
+    assert sum(refused.values()) <= 3
 
 
 def test_a_card_with_full_tables_loads_quickly(tmp_path: Path) -> None:
     """200 take-off and 100 landing points: under a second of computing, several times what was measured."""
-    places = [(200.0 * i, celsius, mass) for i in range(20) for celsius in (0.0, 10.0, 20.0, 30.0, 40.0) for mass in (1110.0, 950.0)]
+    places = [*product(range(0, 4000, 200), (0.0, 10.0, 20.0, 30.0, 40.0), (1110.0, 950.0))]
     card = trial_heron()
     chain = build_chain("fixed pitch")
     altitude, celsius, mass = np.array(places).T

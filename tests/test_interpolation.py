@@ -135,6 +135,12 @@ def test_outside_is_the_signed_distance_to_the_edge(value: float, least: float, 
     assert far == (value - most if value > most else value - least if value < least else 0.0)
 
 
+@given(st.floats(-50.0, 80.0), st.floats(-30.0, 50.0), st.floats(-30.0, 50.0))
+def test_above_the_most_is_outside_whatever_the_least(value: float, least: float, most: float) -> None:
+    """Two pages of which one has only hot and the other only cold figures have no temperature in common."""
+    assert (interpolation.outside(value, least, most) > 0.0) == (value > most)
+
+
 @given(stacks(), st.integers(0, 10**6))
 def test_recorded_it_gives_the_same(stack: tuple[np.ndarray, ...], seed: int) -> None:
     """The recorded program over columns against the plain arrays."""

@@ -258,6 +258,19 @@ def test_a_line_that_is_all_holes_is_beyond_however_cold() -> None:
     assert result["takeoff_beyond_altitude"] == pytest.approx([1000.0] * 3, abs=1e-8)
 
 
+def test_pages_without_a_temperature_in_common_are_beyond() -> None:
+    """One page has nothing cold and the next nothing warm: between their masses no temperature is in the book."""
+    text = (
+        table("take-off roll", (0, 4000), (0, 20, 40), [[np.nan, 200, 220], [np.nan, 260, 300]], flap="10", mass="900 kg")
+        + table("take-off roll", (0, 4000), (0, 20, 40), [[240, np.nan, np.nan], [290, np.nan, np.nan]], flap="10",
+                mass="1110 kg")
+    )  # fmt: skip
+    card = load(BARE + TAKEOFF_POINTS + text + LANDING_POINTS)
+    result = assessed(card, "takeoff", "10", 1000.0, 2000.0, np.array([5.0, 10.0, 30.0]))
+    assert result["takeoff_reason"] == [BEYOND] * 3
+    assert result["takeoff_beyond_temperature"] == pytest.approx([5.0, 10.0, 30.0], abs=1e-9)
+
+
 @pytest.mark.parametrize("axis", ["height", "mass"])
 def test_a_hole_that_harder_figures_fill_is_not_beyond(axis: str) -> None:
     """A light page that starts higher and ends sooner than a heavy one: else more height or mass would better a verdict."""

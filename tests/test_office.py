@@ -210,5 +210,5 @@ def test_root_installs_what_is_missing(monkeypatch: pytest.MonkeyPatch, tmp_path
     assert calls.read_text().splitlines() == [
         "noninteractive update",
         "noninteractive install --yes --no-install-recommends "
-        "libreoffice-calc python3-uno poppler-utils fonts-dejavu fonts-liberation",
+        "libreoffice-calc python3-uno python3-numpy python3-pint poppler-utils fonts-dejavu fonts-liberation",
     ]
