@@ -13,7 +13,6 @@ from pathlib import Path
 
 PICTURES = Path(__file__).parent / "pictures"
 FONT = "DejaVu Sans"
-DISPLAY = ":77"
 SIZE = "1120x760"
 # run by LibreOffice's Python: open a book in a window, put the cursor on a formula, start the wizard
 SHOW = """
@@ -96,19 +95,22 @@ def wizard(folder: Path, extensions: Path, sheet: Path) -> None:
     """A picture of the function wizard, from a display that exists in memory only."""
     from tests.office import find_soffice, find_uno_python
 
-    screen = subprocess.Popen(["Xvfb", DISPLAY, "-screen", "0", f"{SIZE}x24"], stderr=subprocess.DEVNULL)
+    screen = subprocess.Popen(["Xvfb", "-displayfd", "1", "-screen", "0", f"{SIZE}x24"], stdout=subprocess.PIPE,
+                              stderr=subprocess.DEVNULL, text=True)  # fmt: skip
     try:
-        time.sleep(2)
+        display = f":{screen.stdout.readline().strip()}"  # told as soon as it is there
         done = folder / "done"
         kept = {name: value for name, value in os.environ.items() if name not in ("PYTHONHOME", "VIRTUAL_ENV")}
         show = subprocess.Popen(
             [str(find_uno_python()), "-c", SHOW, str(find_soffice()), str(folder / "profile"), str(extensions), str(sheet),
-             str(done)], stdin=subprocess.PIPE, env={**kept, "DISPLAY": DISPLAY, "LC_ALL": "C.UTF-8",
+             str(done)], stdin=subprocess.PIPE, env={**kept, "DISPLAY": display, "LC_ALL": "C.UTF-8",
                                                      "PYTHONPATH": str(Path(__file__).parents[1] / "tests")},
         )  # fmt: skip
-        while show.poll() is None and not done.exists():
+        while not done.exists():
+            if show.poll() is not None:
+                raise SystemExit("LibreOffice did not open the book in a window")
             time.sleep(0.5)
-        subprocess.run(["import", "-display", DISPLAY, "-window", "root", str(PICTURES / "calc-wizard.png")], check=True)
+        subprocess.run(["import", "-display", display, "-window", "root", str(PICTURES / "calc-wizard.png")], check=True)
         show.communicate()
     finally:
         screen.terminate()
