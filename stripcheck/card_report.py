@@ -193,10 +193,11 @@ def draw(card: Card, path: str | Path, force: bool = False) -> None:
     try:
         import matplotlib
         from matplotlib.figure import Figure
+        from matplotlib.layout_engine import ConstrainedLayoutEngine
     except ImportError:
         raise InputError('pictures need matplotlib, which is not installed; type: pip install "stripcheck[pictures]"') from None
     with matplotlib.rc_context({"svg.hashsalt": "stripcheck", "font.size": 10}):
-        figure = Figure(figsize=(10.0, 6.2), layout="constrained")
+        figure = Figure(figsize=(10.0, 5.9), layout=ConstrainedLayoutEngine(w_pad=0.12, h_pad=0.08))
         figure.suptitle(f"{card.name}: distances by the card against those of the manual")
         for axes, (side, points) in zip(figure.subplots(1, 2), _sides(card), strict=True):
             _panel(axes, card, side, points)
@@ -209,18 +210,18 @@ def _panel(axes: Any, card: Card, side: str, points: BookPoints) -> None:
     """One side: distance by the card over distance of the manual, with the line of no difference and 5 % each way."""
     word, over = WORDS[side]
     pairs = _pairs(card, side, points)
-    most = 1.08 * max(float(values.max()) for _, *both in pairs for values in both if len(values))
-    line = np.array([0.0, most])
+    every = np.concatenate([values for _, *both in pairs for values in both])
+    line = np.array([0.9 * every.min(), 1.06 * every.max()])
     axes.plot(line, line, color="black", linewidth=1.0, label="no difference")
     for share in (0.95, 1.05):
         axes.plot(line, share * line, color="black", linewidth=0.8, linestyle=(0, (5, 4)),
                   label="5 % either way" if share < 1.0 else None)  # fmt: skip
     for (kind, book, model), marker, fill in zip(pairs, "o^", ("0.25", "white"), strict=True):
         if len(book):
-            axes.plot(book, model, linestyle="none", marker=marker, markersize=6.0, markerfacecolor=fill,
+            axes.plot(book, model, linestyle="none", marker=marker, markersize=5.5, markerfacecolor=fill,
                       markeredgecolor="black", markeredgewidth=0.8,
                       label=f"{'roll' if kind == 'roll' else f'distance {over}'} ({len(book)})")  # fmt: skip
-    axes.set(title=word, xlabel="manual [m]", ylabel="card [m]", xlim=(0.0, most), ylim=(0.0, most), aspect="equal")
+    axes.set(title=word, xlabel="manual [m]", ylabel="card [m]", xlim=tuple(line), ylim=tuple(line), aspect="equal")
     axes.grid(color="0.88", linewidth=0.6)
     axes.set_axisbelow(True)
     axes.legend(loc="upper left", fontsize=8)

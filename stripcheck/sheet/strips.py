@@ -293,7 +293,7 @@ def _as_filled(key: str, values: Mapping[str, Any]) -> np.ndarray:
     side = key.split("_")[0]
     if key.endswith("_filled"):
         return np.asarray(100.0 * values[f"{side}_chance"])
-    return np.nan_to_num(np.asarray(values[f"{side}_margin"], dtype=float), nan=NO_MARGIN)
+    return np.asarray(np.nan_to_num(np.asarray(values[f"{side}_margin"], dtype=float), nan=NO_MARGIN))
 
 
 def direction_keys(directions: Directions) -> list[str]:

@@ -58,7 +58,7 @@ def literal(group: str, function: Function, *arguments: Any) -> Case:
 
 # --- what is put into the book
 
-SETS, SLOW_SETS = 25, 4  # an inverse question takes a tenth of a second
+SETS, SLOW_SETS = 40, 4  # an inverse question takes a tenth of a second
 
 
 def random_cases() -> list[Case]:

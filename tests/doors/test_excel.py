@@ -131,7 +131,7 @@ def test_every_example_as_a_constant_and_as_a_cell(function: Function, udf: Udf)
 @pytest.mark.parametrize("function", [f for f in FUNCTIONS if f.ask is None], ids=lambda function: function.name)
 def test_random_arguments_as_scalars_and_as_ranges(function: Function, udf: Udf) -> None:
     dice = random.Random(function.name)
-    rows = [random_arguments(function, dice) for _ in range(25)]
+    rows = [random_arguments(function, dice) for _ in range(40)]
     for row in rows:
         assert close(udf(function.name, *row), call(function, *row)), row
     single = ("aircraft", "rules", "text", "flap")  # a flap belongs to its aircraft, and rows have several
