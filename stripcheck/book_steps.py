@@ -258,6 +258,12 @@ _CLIMB_CARRY = (
 )  # fmt: skip
 
 
+# how high an obstacle is cleared hangs on the rates of climb too
+BEYOND_WITH_CLIMB = Step("takeoff_beyond", "", "", "Take-off: beyond the book, its climb too where an obstacle counts", EDGE,
+                         links.beyond_with_climb, ("tables_beyond", "climb_beyond", "obstacle_ahead"), _KNOWN, truth=True,
+                         short=True)  # fmt: skip
+
+
 def no_tables(side: str, guard: str) -> tuple[Step, ...]:
     """The two ratios of manual over model where there are no tables: the calibrated model stands for the manual."""
     word = {"takeoff": "Take-off", "landing": "Landing"}[side]

@@ -1,4 +1,4 @@
-"""The command line: ``stripcheck fill``, ``strip``, ``demo``, ``list`` and ``door``.
+"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``demo``, ``list`` and ``door``.
 
 Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
 130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.
@@ -50,6 +50,7 @@ def _parser() -> argparse.ArgumentParser:
     commands = parser.add_subparsers(title="commands", required=True, metavar="COMMAND")
     _add_fill(commands)
     _add_strip(commands)
+    _add_card(commands)
     _add_demo(commands)
     _add_door(commands)
     listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
@@ -111,6 +112,20 @@ def _add_strip(commands: Any) -> None:
     _add_loading(strip)
     _add_day(strip)
     strip.set_defaults(run=_run_strip)
+
+
+def _add_card(commands: Any) -> None:
+    card = commands.add_parser(
+        "card",
+        help="an aircraft card on one page: what was given, fitted and assumed, and how far it is from the manual",
+        description="An aircraft card on one page: what was given, what was fitted and how well it is known, what was assumed, "
+        "and how far the card is from the figures of the manual.",
+        epilog=EPILOG,
+    )
+    card.add_argument("card", metavar="CARD", help="aircraft card: a .toml file, or the name of a shipped one")
+    card.add_argument("--picture", metavar="FILE", help="draw the card against the manual too: .png or .svg (needs matplotlib)")
+    card.add_argument("--force", action="store_true", help="replace FILE if it exists")
+    card.set_defaults(run=_run_card)
 
 
 def _add_loading(parser: argparse.ArgumentParser) -> None:
@@ -237,6 +252,17 @@ def _run_strip(options: argparse.Namespace) -> int:
     lines = one_strip(strip, load_card(options.card), read_day(day), load_rules(options.rules), one_way=options.one_way,
                       **loading)  # fmt: skip
     print("\n".join(lines))
+    return 0
+
+
+def _run_card(options: argparse.Namespace) -> int:
+    from stripcheck.card import load_card
+    from stripcheck.card_report import draw, report
+
+    card = load_card(options.card)
+    if options.picture:
+        draw(card, options.picture, options.force)
+    print("\n".join(report(card)))
     return 0
 
 

@@ -393,6 +393,11 @@ def beyond_of(altitude: Number, temperature: Number, mass: Number) -> Number:
     return (altitude > 0.1) | (temperature > 0.001) | (mass > 0.001)
 
 
+def beyond_with_climb(tables: Number, climb: Number, obstacle: Number) -> Number:
+    """Whether a take-off is beyond the book: its distances, or its climb where an obstacle has to be cleared."""
+    return tables | (climb & obstacle)
+
+
 def over_reach(altitude: Number, reach: Number) -> Number:
     """Density altitude above the one that a card's single figures reach to; none where that is not known."""
     return np.where(np.isfinite(reach), altitude - reach, np.nan)

@@ -393,8 +393,10 @@ def _takeoff_steps(shaft: Step | None, tables: Collection[str], manual: bool) ->
     if tables:
         known = _as_column(known, "takeoff_known")
     if "climb" in tables:
+        beyond = tuple(replace(step, key="tables_beyond", short=False) if step.key == "takeoff_beyond" else step
+                       for step in beyond)  # fmt: skip
         distance = _with(distance, "climb_over_ground", {"climb_gradient": "carried_climb"},
-                         before=book_steps.climb_table_steps(shaft))  # fmt: skip
+                         before=(*book_steps.climb_table_steps(shaft), book_steps.BEYOND_WITH_CLIMB))  # fmt: skip
     if manual:
         known = (*known, *book_steps.manual_takeoff_left())
         wind = {"run_wind": "takeoff_wind_left", "slow_root": "manual_root"}

@@ -261,3 +261,25 @@ def test_a_length_without_unit_is_taken_in_metres_and_said_so(tmp_path, capsys):
     path.write_text(GOOD.replace("Length [m]", "Length"))
     assert fill(path, tmp_path / "out.xlsx") == 0
     assert "Taken for granted: " in capsys.readouterr().out.splitlines()[0]
+
+
+def test_card_prints_one_page_and_draws(tmp_path, capsys):
+    picture = tmp_path / "mule.svg"
+    assert main(["card", "high-mule", "--picture", str(picture)]) == 0
+    said = capsys.readouterr().out
+    assert said.startswith("Aircraft card: High Mule 500 (high-mule.toml)\n")
+    assert "THE CARD AGAINST THE MANUAL" in said and CAUTION in " ".join(said.split())
+    assert max(map(len, said.splitlines())) <= 100
+    drawn = picture.read_bytes()
+    assert main(["card", "high-mule", "--picture", str(picture)]) == 2
+    why = "this file exists; choose another name, or add --force to replace it"
+    assert capsys.readouterr() == ("", f"stripcheck: {picture}: {why}\n")
+    assert main(["card", "high-mule", "--picture", str(picture), "--force"]) == 0
+    assert picture.read_bytes() == drawn
+
+
+def test_card_refuses_what_it_can_not_read_or_draw(tmp_path, capsys):
+    assert main(["card", "nowhere"]) == 2
+    assert capsys.readouterr().err.startswith('stripcheck: "nowhere" is neither a file nor one of the shipped cards')
+    assert main(["card", "high-mule", "--picture", str(tmp_path / "mule.gif")]) == 2
+    assert "must end in .png or .svg" in capsys.readouterr().err

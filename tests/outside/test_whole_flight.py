@@ -80,7 +80,7 @@ class Flight:
         at = read_quantity(mass["stall_speeds_at"], "mass")
         stall = read_quantity(flap["stall_speed"], "speed")
         self.stall = stall * math.sqrt(self.mass / at) / math.sqrt(self.sigma)  # TAS
-        self.parasite = self.card["drag"]["parasite"] + flap["drag"]
+        self.parasite = self.fitted.get("parasite_drag", self.card["drag"]["parasite"]) + flap["drag"]
 
     def drag(self, speed: float, lift: float, near_ground: float = 1.0) -> float:
         coefficient = self.parasite + near_ground * self.induced * lift**2
