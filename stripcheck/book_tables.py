@@ -67,6 +67,7 @@ class Grid:
     altitudes: np.ndarray
     temperatures: np.ndarray
     values: np.ndarray
+    lift_off: float = np.nan  # speed that the manual states with a take-off table [m/s EAS]
 
 
 @dataclass(frozen=True)
@@ -75,7 +76,7 @@ class BookTables:
 
     ``pages`` are (flap deflection [rad], mass [kg]) in rising order; ``filled`` is ``printed`` with its holes carried by
     the model, and ``spare`` what would stand for each printed figure if it were a hole, both empty until the model is
-    known; ``remarks`` tells in words what was put between.
+    known; ``remarks`` tells in words what was put between; ``lift_offs`` are lift-off speeds by page [m/s EAS].
     """
 
     side: str
@@ -86,6 +87,7 @@ class BookTables:
     filled: Mapping[str, np.ndarray]
     spare: Mapping[str, np.ndarray]
     remarks: tuple[str, ...]
+    lift_offs: tuple[float, ...]
 
     @property
     def known(self) -> np.ndarray:
@@ -169,6 +171,7 @@ class BookTables:
             "mass": pages[page, 1],
             "altitude": self.altitudes[line],
             "temperature": self.temperatures[column],
+            "lift_off": np.array(self.lift_offs)[page],
             **{figure: grid.ravel() for figure, grid in self.printed.items()},
         }
 
@@ -188,6 +191,7 @@ def read_grids(book: Section, flaps: Sequence[Flap], greatest: Mapping[str, floa
         if not part.has("mass"):
             remarks.append(f"{part.where}: mass not given, the greatest of {mass:g} kg used")
         unit = part.text("unit", "ft/min" if side == "climb" else "m")
+        lift_off = part.number("lift_off_speed", "speed", np.nan, 10.0, 100.0) if side == "takeoff" else np.nan
         altitudes, temperatures, rows, names = _cells(part, folder, len(figures))
         _check_axis(part.where, "pressure altitudes", altitudes, ALTITUDES, "ft")
         _check_axis(part.where, "temperatures", temperatures, TEMPERATURES, "\u00b0C")
@@ -196,7 +200,7 @@ def read_grids(book: Section, flaps: Sequence[Flap], greatest: Mapping[str, floa
                                for row, name in zip(rows, names, strict=True)])  # fmt: skip
             if np.isnan(values).all():
                 raise InputError(f"{part.where}: there is no figure of the {FIGURE_WORDS[figure]}; leave such a table out")
-            grids.append(Grid(part.where, side, figure, flap, mass, altitudes, temperatures, values))
+            grids.append(Grid(part.where, side, figure, flap, mass, altitudes, temperatures, values, lift_off))
     for grid in grids:
         _check_rising(grid)
     return grids
@@ -413,9 +417,15 @@ def stack_tables(grids: Sequence[Grid], side: str) -> BookTables | None:
                 raise InputError(_pages_differ(own, figure, page, found))
             bridged = _bridged(found[0], remarks)
             printed[figure][number] = _on_lines(bridged, altitudes, temperatures)
-    tables = BookTables(side, pages, altitudes, temperatures, printed, {}, {}, tuple(remarks))
+    lift_offs = tuple(_stated([grid.lift_off for grid in own if (grid.flap, grid.mass) == page]) for page in pages)
+    tables = BookTables(side, pages, altitudes, temperatures, printed, {}, {}, tuple(remarks), lift_offs)
     _check_pages(tables, own[0].where.split(" [[")[0])
     return tables
+
+
+def _stated(speeds: Sequence[float]) -> float:
+    """The first speed that is stated, NaN where none is."""
+    return next((speed for speed in speeds if np.isfinite(speed)), np.nan)
 
 
 def _pages_differ(own: Sequence[Grid], figure: str, page: tuple[float, float], found: Sequence[Grid]) -> str:

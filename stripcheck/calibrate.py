@@ -40,7 +40,7 @@ DRAG_TOLD = 0.15  # a fit that moves parasite drag by more than this share says 
 MISFIT_TOLD = 0.10  # a printed figure that the fitted model misses by more than this share is told
 SHORTEST = 0.75  # a model below this share of a printed distance makes the card unsafe: it is refused
 SLOPE_OF_THRUST = -1.5e-4  # b over a [m2/N] of a usual fixed-pitch propeller; common practice, no source
-SLOPES = (0.1, 4.0)  # the same over the usual one
+SLOPES = (0.2, 4.0)  # the same over the usual one; wide, since what the card has wrong in drag counts in it too
 TYPICAL = "held at its typical value"
 ON_BOUND = "on the bound of what is credible"
 NOT_CREDIBLE = "held at 1: the figures would need one that is not credible"
@@ -200,7 +200,9 @@ def _fit_takeoff(work: _Work, points: BookPoints, thrust: str, further: str) -> 
     factor = ("takeoff_technique",) if np.isfinite(points.distance).any() else ()
     given = work.values[further]
     found = _solve(work, (thrust, further, *factor), points, TAKEOFF)
-    if not found.told_apart or not found.reached or found.bounded - {further}:
+    spare = len(points.roll) + np.isfinite(points.distance).sum() - 2 - len(factor)
+    told = found.told_apart and (spare > 0 or further == "thrust_slope")  # drag takes a figure more than there are coefficients
+    if not told or not found.reached or found.bounded - {further}:
         found = _solve(work, (thrust, *factor), points, TAKEOFF)
         work.known[further] = TYPICAL
     if not found.reached or found.bounded - {further}:

@@ -25,6 +25,7 @@ from stripcheck import doc_words as prose
 from stripcheck import verdict
 from stripcheck.calibrate import BRAKING, MISFIT_TOLD, QUALITIES, SHORTEST, TECHNIQUES, THRUSTS
 from stripcheck.card import TYPICAL, Card, load_card, shipped_cards
+from stripcheck.card_report import report
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.doors.aircraft import NO_REACH
@@ -74,6 +75,9 @@ WIDTH = 110  # characters of a line of prose
 MANY = 15  # inputs above which a step's list of them says nothing to a reader
 Row = tuple[str, ...]
 PAGES_READ = "mass and flap of the tables' pages"  # four inputs of many steps, in one word
+ROUNDED_BY = 5.0  # m: as the distances of the invented manual are
+REPORT_SHOWN = ("FITTED", "WHAT THE", "THE CARD AGAINST", "WARNINGS")  # headings of a card's report
+SUMMARY_LINES = 6  # of the differences: a heading, titles, and a line for each of four kinds of figures
 STATUS_WORDS = {
     "read": "figures taken from the text",
     "memory": "figures from memory: compare with the text before use",
@@ -423,6 +427,7 @@ def _walk() -> list[str]:
         path.write_text(prose.EXAMPLE_CARD.lstrip(), encoding="utf-8")
         card = load_card(str(path))
     takeoff, landing = (card.tables[side].printed["distance"][0] for side in ("takeoff", "landing"))
+    rounding = ROUNDED_BY / 2.0 / np.nanmin(card.tables["landing"].printed["roll"])
     return [
         folded(prose.WALK_INTRO.format(card.name)),
         prose.WALK_PAGES,
@@ -432,11 +437,22 @@ def _walk() -> list[str]:
         _manual_page(card, "landing"),
         prose.WALK_TYPE,
         block("toml", prose.EXAMPLE_CARD),
+        prose.WALK_REPORT,
+        block("sh", prose.REPORT_COMMAND),
+        block("text", "\n...\n\n".join(_parts_of_report(report(card)))),
+        prose.WALK_READ.format(100.0 * rounding),
         prose.WALK_FILL,
         block("csv", prose.EXAMPLE_LIST),
         block("sh", prose.EXAMPLE_COMMAND),
         folded(prose.WALK_PROOF.format(takeoff=takeoff[0, 1], landing=landing[0, 1])),
     ]
+
+
+def _parts_of_report(lines: list[str]) -> list[str]:
+    """The parts of a card's report that a reader looks at first, the differences without the single figures."""
+    parts = {part.partition("\n")[0]: part for part in "\n".join(lines).split("\n\n")}
+    shown = [part for heading, part in parts.items() if heading.startswith(REPORT_SHOWN)]
+    return ["\n".join(part.splitlines()[:SUMMARY_LINES]) + "\n" for part in shown]
 
 
 def block(kind: str, text: str) -> str:

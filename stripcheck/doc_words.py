@@ -106,6 +106,8 @@ CARD_ENTRIES = (
           "stand in pairs under each temperature"),
     Entry("[book.table]", "flap", "", "name of a setting", "", "Of this table"),
     Entry("[book.table]", "mass", "", "kg", "the greatest for that use", "Of this table"),
+    Entry("[book.table]", "lift_off_speed", "", "kt", "may be left out",
+          "Take-off tables: calibrated; then the lift-off factor is fitted"),
     Entry("[book.table]", "unit", "", "m, ft or ft/min", "m; ft/min for climb", "Of its figures"),
     Entry("[book.table]", "pressure_altitudes", "", "list of ft", "needed, or `file`", "Of its lines; rising"),
     Entry("[book.table]", "temperatures", "", "list of °C", "needed, or `file`", "Of its columns; rising"),
@@ -129,6 +131,7 @@ CARD_ENTRIES = (
     Entry("[book.takeoff]", "flap", "", "name of a setting", "", "Of this point"),
     Entry("[book.takeoff]", "roll", "", "m", "", "Take-off roll on level dry pavement in still air"),
     Entry("[book.takeoff]", "to_50ft", "", "m", "may be left out", "Distance to 50 ft, roll included"),
+    Entry("[book.takeoff]", "lift_off_speed", "", "kt", "may be left out", "Calibrated; then the lift-off factor is fitted"),
     Entry("[book.landing]", "pressure_altitude", "", "ft", "", "Of a single figure of the manual"),
     Entry("[book.landing]", "temperature", "", "°C", "", "Of this point"),
     Entry("[book.landing]", "mass", "", "kg", "max_landing", "Of this point"),
@@ -389,6 +392,22 @@ dry_grass = "15 %"
 headwind = ["10 %", "9 kt"]
 tailwind = ["10 %", "2 kt"]
 """
+WALK_REPORT = """
+**3. Ask for the report.** It is a page long; these are its main parts. (`--picture my-card.png` draws it too.)"""
+REPORT_COMMAND = """
+stripcheck card my-card.toml
+"""
+WALK_READ = """
+**4. Read it.**
+
+- *Fitted* is what no manual prints. Factors near 1 say that the figures belong together; one far from 1 says
+  that a speed, a mass or a distance is wrong.
+- *Held* and *assumed* list every usual value. Look whether the manual does tell one of them.
+- *The card against the manual:* a few per cent are usual, and rounding alone makes up to {0:.0f} % of the
+  shortest roll here. A single figure far out is most likely a slip.
+- *Warnings* should say "none".
+
+Where the tables reach, the manual's figures are used as they stand, whatever these differences."""
 WALK_FILL = """
 **5. Fill a workbook.** A list of two strips, `my-strips.csv`, the first of which is the manual's own page:"""
 EXAMPLE_LIST = """
@@ -403,7 +422,7 @@ WALK_PROOF = """
 On the sheet Strips the distances required of *Proof* are {takeoff:.0f} m and {landing:.0f} m, those of the
 manual at sea level and 15 °C. If yours are not the manual's, a figure was mistyped. Those of *Home* are what
 the manual does not print. Then take your rule set in place of `manual-only`, and your own list.
-(`stripcheck demo` fills a workbook for a shipped aeroplane, if you want to see one first.)"""
+`stripcheck strip` puts a single strip on one page; `stripcheck demo` fills a workbook for a shipped aeroplane."""
 CARD_ADVICE = """
 - *Stall speeds* are best the calibrated ones, at the mass named under `stall_speeds_at`. An indicated one
   can be several knots low, and every distance goes with its square. Where the manual prints only that, or
@@ -456,7 +475,7 @@ any of them.
 
 *Only rolls, or only distances over 50 ft:* the other one follows in the model's proportion; a card needs at
 least one roll for each side. *Rates of climb* correct the gradient with which the aeroplane climbs away and
-clears obstacles; conditions beyond those tables show in the columns and cost no verdict."""
+clears obstacles; beyond their tables counts as beyond the book where there is an obstacle to clear."""
 CORRECTIONS = """
 What the manual says about wind and grass can be entered, and then governs in place of the physics, which is
 left with slope, other ground and, for what is not entered, wind or grass. A share for grass is one of the
@@ -511,8 +530,8 @@ CALIBRATION = """
 What no manual prints is fitted to its figures by least squares, best-known first: thrust on the take-off
 rolls; then thrust, what it loses to speed (fixed pitch) or parasite drag (constant speed), and an airborne
 factor together on all take-off figures; braking on the landing rolls; an airborne factor from 50 ft to
-touchdown. What the figures don't tell well enough is held at its usual value, and the report says so: from
-one take-off point only the thrust can be told.
+touchdown. What the figures don't tell well enough is held at its usual value, and the report says so: one
+take-off point tells the thrust and the airborne factor, no more.
 
 Bounds: static thrust {0[0]} to {0[1]} of the weight, and never more than the power can give; useful share of
 the shaft power {1[0]} to {1[1]}; airborne factors {2[0]} to {2[1]}; braking {3[0]} to {3[1]} of the ground
@@ -526,7 +545,7 @@ TRUST = """
   condition. A tired engine or a dented propeller is not on it.
 - Within its tables the card is the manual. Beyond them, at other flaps, and on cards with a few single
   figures it is a calibrated model, and the further from the figures, the more of an estimate. Beyond the
-  book costs the *suitable*; another flap setting or a mass between single figures does not.
+  book costs the *suitable*; another flap setting, or another mass than that of single figures, does not.
 - Slope, surface, wind and soft ground are physics with the coefficients of the ground table. The scatter of
   real ground is wider than that of any aeroplane: walk the strip.
 - Ground effect, flap drag and lift in the run are single figures. They matter most where the aeroplane

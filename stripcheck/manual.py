@@ -85,19 +85,21 @@ def _points(book: Section, side: str, whole: str, values: Mapping[str, Any], fla
             flap_setting(part.text("flap"), flaps, use, part.where),
             roll,
             distance,
+            part.number("lift_off_speed", "speed", np.nan, 10.0, 100.0) if side == "takeoff" else np.nan,
         ])  # fmt: skip
     return rows
 
 
 def _joined(rows: Sequence[Sequence[float]], tables: BookTables | None) -> BookPoints:
     """Single figures and those of the tables that have a roll, as points."""
-    columns = [np.array(column, float) for column in zip(*rows, strict=True)] if rows else [np.empty(0)] * 6
+    columns = [np.array(column, float) for column in zip(*rows, strict=True)] if rows else [np.empty(0)] * 7
     if tables is None or "roll" not in tables.printed:
         return BookPoints(*columns)
     nodes = tables.nodes()
     printed = np.isfinite(nodes["roll"])
     whole = nodes.get("distance", np.full(len(printed), np.nan))
-    of_tables = (nodes["altitude"], nodes["temperature"], nodes["mass"], nodes["flap"], nodes["roll"], whole)
+    keys = ("altitude", "temperature", "mass", "flap", "roll")
+    of_tables = (*(nodes[key] for key in keys), whole, nodes["lift_off"])
     return BookPoints(*(np.concatenate([one, other[printed]]) for one, other in zip(columns, of_tables, strict=True)))
 
 

@@ -321,7 +321,7 @@ REFUSALS = [
      "2: there is no table of the roll for this flap and mass, but there is one for another; give both "
      "figures for each flap and mass, or one of them throughout"),
     (roll() + 'colour = "red"\n',
-     '1: "colour" is not an entry here; the entries are: file, flap, gives, mass, pressure_altitudes, '
+     '1: "colour" is not an entry here; the entries are: file, flap, gives, lift_off_speed, mass, pressure_altitudes, '
      "sheet, temperatures, unit, values"),
     (roll(file="grid.csv"), "1: the table stands in a file, so pressure_altitudes must not be typed too"),
 ]  # fmt: skip

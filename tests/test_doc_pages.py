@@ -266,6 +266,30 @@ def command(page: str, start: str) -> list[str]:
     return shlex.split(line)[1:]
 
 
+def test_report_in_the_page_is_what_the_command_prints(
+    walk: Path, pages: dict[str, str], capsys: pytest.CaptureFixture[str]
+) -> None:
+    page = pages["aircraft-card.md"]
+    assert main(command(page, "stripcheck card")) == 0
+    printed = iter(capsys.readouterr().out.splitlines())
+    shown = [line for line in next(text for text in blocks(page, "text") if "FITTED" in text).splitlines() if line.strip("., ")]
+    assert all(line in printed for line in shown)  # each after the one before it
+    assert {"WARNINGS", "  none"} <= set(shown)
+    assert sum(re.search(r" \d+ +[\d.]+ % +[+-][\d.]+ %$", line) is not None for line in shown) == 4
+
+
+def test_what_the_page_says_of_the_report_is_so(walk: Path, pages: dict[str, str]) -> None:
+    """The factors of the invented manual are near 1, its differences a few per cent, its rounding as told."""
+    card = load_card("my-card.toml")
+    factors = [card.fit.values[key] for key in ("takeoff_technique", "braking_quality", "landing_technique")]
+    assert factors == pytest.approx([1.0, 1.0, 1.0], abs=0.15)
+    assert max(abs(model / book - 1.0) for _, book, model in card.fit.residuals) < 0.03
+    assert not card.fit.remarks
+    told = re.search(r"rounding alone makes up to (\d+) % of the\s+shortest roll", pages["aircraft-card.md"])
+    shortest = min(book for label, book, _ in card.fit.residuals if label.endswith("roll"))
+    assert told is not None and float(told[1]) == pytest.approx(250.0 / shortest, abs=0.5)
+
+
 def test_workbook_of_the_walk_is_filled_and_has_the_manuals_figures(walk: Path, pages: dict[str, str]) -> None:
     page = pages["aircraft-card.md"]
     typed = command(page, "stripcheck fill")
@@ -334,7 +358,7 @@ def test_straight_lines_between_figures_lie_on_the_long_side(card: Card, side: s
     over = np.mean(corners, axis=0) / middle[:, 1::2, 1::2] - 1.0
     assert over.shape == (2, 4, 4)
     assert (over[np.isfinite(over)] > 0.0).all()
-    assert np.isfinite(over).mean() > 0.8
+    assert np.isfinite(over).mean() > 0.5  # the others are where the aeroplane does not climb away
 
 
 def test_summary_of_a_shipped_cards_residuals_counts_all_of_them(pages: dict[str, str]) -> None:

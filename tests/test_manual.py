@@ -29,7 +29,7 @@ from stripcheck.errors import InputError
 from stripcheck.links import LEAST_MANUAL_SHARE
 from stripcheck.surface import CONDITIONS, GROUND_NAMES, ground
 from stripcheck.verdict import BEYOND, MARGINAL, SUITABLE
-from tests.aircraft import HERON, changed, trial_heron, trial_mule
+from tests.aircraft import HEAVY_TABLES, HERON, changed, load_text, trial_heron, trial_mule
 from tests.manual_cards import (
     BARE,
     CLIMB,
@@ -947,3 +947,15 @@ def test_the_card_with_everything_says_what_it_took_for_granted() -> None:
     assert sorted(card.tables) == ["climb", "landing", "takeoff"] and card.corrections == {"takeoff", "landing"}
     assert len(card.assumed) == 4 and all("missing between others put between them" in line for line in card.assumed)
     assert len(CARDS["fixed pitch"].chain.steps) < len(card.chain.steps)
+
+
+@pytest.mark.parametrize("place", ["point", "table"])
+def test_lift_off_speeds_of_the_manual_make_the_lift_off_factor(tmp_path, place: str) -> None:
+    """50 kt stall at 1,110 kg with flap 10, 56 kt at lift-off: 1.12, whatever the card's own factor."""
+    if place == "point":
+        text = HERON.replace('roll = "265 m"', 'roll = "265 m"\nlift_off_speed = "56 kt"')
+    else:
+        text = HERON + HEAVY_TABLES.replace('flap = "10"', 'flap = "10"\nlift_off_speed = "56 kt"')
+    card = load_text(text, tmp_path)
+    assert card.values["lift_off_factor"] == pytest.approx(1.12, rel=1e-9)
+    assert trial_heron().values["lift_off_factor"] == 1.08

@@ -157,7 +157,7 @@ SETS = {"ridge-runner": "uk-leaflet", "high-mule": "part-cat-b"}
 def test_laws_over_many_strips(law: str, name: str) -> None:
     """What makes a strip harder never raises what is asked of it: mass, heat, tailwind; for either side, where it counts."""
     rng = np.random.default_rng(13)
-    base: Situation = {**many_strips(rng), "card": name, "takeoff_flap": CARDS[name].flaps[2].name,
+    base: Situation = {**many_strips(rng, 4000), "card": name, "takeoff_flap": CARDS[name].flaps[2].name,
                        "landing_flap": CARDS[name].flaps[-1].name}  # fmt: skip
     changes = harder(law, base, rng)
     few = {key: column[:ROWS] for key, column in base["strip"].items()}
@@ -210,8 +210,8 @@ def test_the_cards_limits_hold() -> None:
 
 def test_no_aeroplane_is_lighter_than_empty() -> None:
     """Where the card tells the empty mass, a strip that asks for less takes none; where not, 30 % of the greatest."""
-    card = trial_heron()
-    told = replace(card, values={**card.values, "empty_mass": 665.0})
+    told = trial_heron()
+    card = replace(told, values={key: value for key, value in told.values.items() if key != "empty_mass"})
     short = {**STRIP, "tora": 180.0, "lda": 2000.0}
     least = solve.most_takeoff_mass(short, card, DAY)
     assert 333.0 < least.value[0] < 665.0
