@@ -379,10 +379,6 @@ def at_book_conditions(chain: Chain, values: Mapping[str, Any], points: BookPoin
     return evaluate(chain, inputs, keys)
 
 
-def _model(chain: Chain, values: Mapping[str, Any], points: BookPoints, side: str) -> dict[str, np.ndarray]:
-    return at_book_conditions(chain, values, points)
-
-
 def _residuals(work: _Work, takeoff: BookPoints, landing: BookPoints) -> list[tuple[str, float, float]]:
     rows = []
     for side, points, figures in (("take-off", takeoff, TAKEOFF), ("landing", landing, LANDING)):

@@ -90,10 +90,11 @@ def load_card(name: str) -> Card:
     kind = propeller.text("kind", choices=PROPELLERS)
     engine = top.section("engine", required=True)
     power = engine.text("kind", POWERS[0], choices=POWERS)
+    shaft = _engine(engine, propeller, kind, power)
     values = {
         **_masses(top),
         **_airframe(top, assumed),
-        **_engine(engine, propeller, kind, power),
+        **(shaft if kind != "fixed pitch" else {}),
         **_speed_factors(top, assumed),
         **_limits(top),
     }
@@ -109,7 +110,8 @@ def load_card(name: str) -> Card:
     name, note = aeroplane.text("name"), aeroplane.text("note", "")
     top.refuse_unknown()
     values |= manual.values
-    fit = calibrate(build_chain(kind, power), values, manual.takeoff, manual.landing, path.name)
+    fit = calibrate(build_chain(kind, power), values, manual.takeoff, manual.landing, path.name,
+                    rated_power=shaft["rated_power"], diameter=shaft["propeller_diameter"])  # fmt: skip
     values |= fit.values
     tables = carry_tables(manual, kind, power, values, flaps, book.where)
     for found in tables.values():
@@ -172,10 +174,8 @@ def _engine(engine: Section, propeller: Section, kind: str, power: str) -> dict[
         altitude = engine.number(name, "altitude", low=0.0, high=10000.0)
         deviation = engine.number("at_isa_deviation", "temperature difference", 0.0, -20.0, 40.0)
         limit = {"limit_sigma": links.sigma_at(altitude, deviation)}
-    if kind == "fixed pitch":
-        if limit:
-            raise InputError(f"{engine.where}: a {power} engine goes with a constant-speed propeller")
-        return {}
+    if kind == "fixed pitch" and limit:
+        raise InputError(f"{engine.where}: a {power} engine goes with a constant-speed propeller")
     return {"rated_power": rated, "propeller_diameter": diameter, **limit}
 
 

@@ -15,7 +15,7 @@ import numpy as np
 
 from stripcheck import atmosphere, links
 from stripcheck.book_tables import BookTables, fill_holes, read_grids, stack_tables
-from stripcheck.calibrate import BookPoints, _model
+from stripcheck.calibrate import BookPoints, at_book_conditions
 from stripcheck.errors import InputError
 from stripcheck.flaps import Flap, flap_setting
 from stripcheck.steps import SIDES, build_chain
@@ -169,9 +169,9 @@ def _of_model(side: str, tables: BookTables, points: BookPoints, propeller: str,
     shape = tables.known.shape
     if side == "climb":
         chain = build_chain(propeller, power, frozenset({"climb"}))
-        model = _model(chain, {**values, **tables.values(flaps)}, points, "takeoff")
+        model = at_book_conditions(chain, {**values, **tables.values(flaps)}, points)
         return {"rate": (model["climb_model_gradient"] * model["climb_book_tas"]).reshape(shape)}
-    model = _model(build_chain(propeller, power), values, points, side)
+    model = at_book_conditions(build_chain(propeller, power), values, points)
     keys = {"roll": f"{side}_roll", "distance": f"physics_{side}"}
     figures = {figure: model[key].reshape(shape) for figure, key in keys.items()}
     lost = np.argwhere(tables.known & ~np.isfinite(figures["distance"]))

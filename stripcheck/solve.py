@@ -107,7 +107,7 @@ def hottest(strips: Given, card: Card | str, day: Day | Given, rules: Rules | st
     >>> answer = hottest({"tora": [80.0, 2000.0], "elevation_field": 2300, "slope_given": 1.5, "surface": "grass"},
     ...                  "ridge-runner", {"temperature": 22}, "uk-leaflet", takeoff_mass=950)
     >>> answer.texts(), answer.limits[1]
-    (['none', '40.0 °C'], 'beyond the book: higher, hotter or heavier than its figures go')
+    (['none', '40.0 °C'], 'beyond the book: higher, hotter or heavier')
     """
     return hottest_air(prepare(strips, card, day, rules, **loading), side, at_best)
 

@@ -20,7 +20,7 @@ SUITABLE, MARGINAL, UNSUITABLE, NOT_ASSESSED = VERDICTS = ("suitable", "marginal
 FAULT = "{fault}"  # stands for the text of the row's fault where a reason is put into words
 
 HALF_AN_OBSTACLE = "obstacle without height or without distance"
-BEYOND = "beyond the book: higher, hotter or heavier than its figures go"
+BEYOND = "beyond the book: higher, hotter or heavier"
 NO_FIGURE = "too far beyond the book for any distance"
 MOVED = "the slope profile was worked out for other conditions: fill the workbook again"
 NO_RULE = "the rules count neither physics nor corrections"

@@ -6,6 +6,7 @@ Formulas elsewhere read the SI column, so that a value is converted once and a f
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Any
@@ -33,6 +34,7 @@ from stripcheck.units import UNITS, from_si, tidy
 
 UNKNOWN_GROUND = "not known"
 NO_FIGURE = "none"
+FEW_FIGURES = 16  # of the manual's, up to which each has a row of its own
 LABEL, VALUE, UNIT, SI, NOTE = "A", "B", "C", "D", "E"
 
 
@@ -252,17 +254,30 @@ def write_book_points(sheet: Worksheet, row: int, card: Card) -> int:
     sheet[f"A{row - 1}"], sheet[f"A{row - 1}"].font = legend, styles.SMALL
     write_heading(sheet, row, "Calibration: the manual's figures and the card's, on level dry pavement in still air")
     write_header(sheet, row + 1, ("Book point", "Book [m]", "", "Card [m]", "Difference"))
-    for at, (label, book, model) in enumerate(card.fit.residuals, row + 2):
-        sheet[f"A{at}"], sheet[f"B{at}"], sheet[f"D{at}"] = label, book, round(model, 1)
-        sheet[f"E{at}"] = f"{model / book - 1.0:+.1%}"
-        for column in "ABDE":
-            sheet[f"{column}{at}"].font = styles.BODY
+    rows = _differences(card.fit.residuals)
+    for at, cells in enumerate(rows, row + 2):
+        for column, value in zip("ABDE", cells, strict=True):
+            sheet[f"{column}{at}"], sheet[f"{column}{at}"].font = value, styles.BODY
         sheet[f"E{at}"].alignment = styles.INDENT
-    end = row + 2 + len(card.fit.residuals)
+    end = row + 2 + len(rows)
     for remark in (*card.fit.remarks, *card.assumed):
         sheet[f"A{end}"], sheet[f"A{end}"].font = remark, styles.SMALL
         end += 1
     return end + 1
+
+
+def _differences(residuals: list[tuple[str, float, float]]) -> list[tuple[str, float | None, float | None, str]]:
+    """A row for each figure: label, book [m], card [m], difference; or, of many, one for each kind of them."""
+    if len(residuals) <= FEW_FIGURES:
+        return [(label, book, round(model, 1), f"{model / book - 1.0:+.1%}") for label, book, model in residuals]
+    kinds: dict[str, list[float]] = {}
+    for label, book, model in residuals:
+        kinds.setdefault(re.sub(r" \d+:", ",", label), []).append(model / book - 1.0)
+    return [
+        (f"{kind}: {len(shares)} figures", None, None,
+         f"typically {float(np.sqrt(np.mean(np.square(shares)))):.1%}, at the most {max(shares, key=abs):+.1%}")
+        for kind, shares in kinds.items()
+    ]  # fmt: skip
 
 
 def write_steps(pages: Pages, sheet: Worksheet, row: int, steps: list[Step]) -> int:
