@@ -277,7 +277,7 @@ def takeoff_table_steps(power: Step | None) -> tuple[Step, ...]:
     """Steps from the strip's conditions to the ratio of manual over model. ``power`` is the chain's step of shaft power."""
     engine: tuple[Step, ...] = (*_FIXED_PITCH, *_TAKEOFF_EXCESS, _FIXED_PITCH_ROLL)
     if power is not None:
-        engine = (_power_at(power, "book_power", "book", "takeoff_book_sigma"), *_CONSTANT_SPEED, *_TAKEOFF_EXCESS,
+        engine = (*_power_at(power, "book_power", "book", "takeoff"), *_CONSTANT_SPEED, *_TAKEOFF_EXCESS,
                   _CONSTANT_SPEED_ROLL)  # fmt: skip
     place = _place_in_tables("takeoff", "Take-off", "mass_takeoff", "takeoff_flap", _KNOWN, _SET)
     return (*place, *_TAKEOFF_SPEEDS, *_TAKEOFF_TAS, *engine, *_TAKEOFF_CARRY)
@@ -293,15 +293,18 @@ def climb_table_steps(power: Step | None) -> tuple[Step, ...]:
     """Steps from the manual's rate of climb to the climb gradient used."""
     tas = Step("climb_book_tas", "", "kt", "Speed of the manual's climb, TAS", ISA, speeds.true_airspeed,
                ("climb_speed", "climb_book_sigma"), _KNOWN)  # fmt: skip
-    at = () if power is None else (_power_at(power, "climb_book_power", "manual's climb", "climb_book_sigma"),)
+    at = () if power is None else _power_at(power, "climb_book_power", "manual's climb", "climb")
     place = _place_in_tables("climb", "Climb", "mass_takeoff", "takeoff_flap", _KNOWN, _SET)
     return (*place, *_CLIMB_SET, tas, *at, *_CLIMB_THRUST[power is None], *_CLIMB_CARRY)
 
 
-def _power_at(power: Step, key: str, label: str, sigma: str) -> Step:
-    """The chain's own step of shaft power, at another density ratio."""
-    inputs = tuple(sigma if name == "sigma" else name for name in power.inputs)
-    return replace(power, key=key, label=f"Shaft power, {label}", inputs=inputs)
+def _power_at(power: Step, key: str, label: str, side: str) -> tuple[Step, ...]:
+    """The chain's own step of shaft power, in the air of the book's conditions, and what it feels of that air."""
+    hot = Step(f"{side}_book_hot_sigma", "", "", f"Density ratio over temperature ratio, {label}", "Common practice",
+               links.hot_sigma_of, (f"{side}_book_sigma", f"{side}_temperature_held"), "density")  # fmt: skip
+    there = {"sigma": f"{side}_book_sigma", "hot_sigma": hot.key}
+    at = replace(power, key=key, label=f"Shaft power, {label}", inputs=tuple(there.get(name, name) for name in power.inputs))
+    return (hot, at) if "hot_sigma" in power.inputs else (at,)
 
 
 def manual_takeoff_left() -> tuple[Step, ...]:
@@ -342,7 +345,7 @@ def manual_takeoff_steps(fixed: bool) -> tuple[Step, ...]:
             Step("manual_square", "", "", "Lost per V², friction left, 1/m", RUN, ground_run.air_acceleration, balance,
                  _KNOWN),
             Step("manual_roll", "", "m", "Take-off roll, wind and friction left", RUN, ground_run.disk_run_between,
-                 (*disk, "takeoff_wind_left", "manual_root", "fast_root"), "lifts_off"),
+                 (*disk, "takeoff_wind_left", "manual_root", "fast_root"), "lifts_off", short=True),
         )  # fmt: skip
     return (
         *run,

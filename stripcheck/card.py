@@ -173,7 +173,7 @@ def _engine(engine: Section, propeller: Section, kind: str, power: str) -> dict[
         name = "critical_altitude" if power == "turbo-normalised" else "flat_rated_to"
         altitude = engine.number(name, "altitude", low=0.0, high=10000.0)
         deviation = engine.number("at_isa_deviation", "temperature difference", 0.0, -20.0, 40.0)
-        limit = {"limit_sigma": links.sigma_at(altitude, deviation)}
+        limit = {"limit_sigma": links.rating_limit(altitude, deviation, power == "flat rated")}
     if kind == "fixed pitch" and limit:
         raise InputError(f"{engine.where}: a {power} engine goes with a constant-speed propeller")
     return {"rated_power": rated, "propeller_diameter": diameter, **limit}

@@ -104,7 +104,7 @@ CONSTANT_SPEED = (
     Input("propulsive_quality", "Propulsive quality", "", "card", "Calibrated: useful share of the shaft power"),
 )
 POWER_LIMIT = Input("limit_sigma", "Density ratio at the rating's end", "", "card",
-                    "Critical altitude, or the end of the flat rating, as a density ratio")  # fmt: skip
+                    "Critical altitude as a density ratio; end of a flat rating: over the temperature ratio")  # fmt: skip
 
 RULES = (
     Input("headwind_credit", "Headwind credited", "%", "rules", "Share of a headwind that may be counted"),

@@ -184,6 +184,11 @@ def disk_area_of(diameter: Number) -> Number:
     return 0.25 * np.pi * np.square(diameter)
 
 
+def hot_sigma_of(sigma: Number, temperature: Number) -> Number:
+    """Density ratio over temperature ratio, on which the hot end of a turboprop's rating hangs."""
+    return sigma * atmosphere.T0 / temperature
+
+
 def fixed_pitch_start(static: Number, sigma: Number, mass: Number, friction: Number, slope: Number) -> Number:
     """Acceleration at rest with a fixed-pitch propeller."""
     return static * thrust.drop_off_factor(sigma) / mass - ground_run.resistance(friction, slope)
@@ -333,10 +338,11 @@ def stops_of(least: Number, closes: Number) -> Number:
     return closes & (least >= ground_run.LEAST_ACCELERATION)
 
 
-def sigma_at(altitude: Number, deviation: Number) -> Number:
-    """Density ratio at a pressure altitude, warmer than standard by a deviation."""
-    standard = atmosphere.isa_temperature(altitude)
-    return atmosphere.density_ratio(atmosphere.density(atmosphere.isa_pressure(altitude), standard + deviation))
+def rating_limit(altitude: float, deviation: float, turbine: bool) -> float:
+    """Where a rating ends, at a pressure altitude and so much warmer than standard, as the engine feels it there."""
+    temperature = atmosphere.isa_temperature(altitude) + deviation
+    sigma = atmosphere.density_ratio(atmosphere.density(atmosphere.isa_pressure(altitude), temperature))
+    return float(hot_sigma_of(sigma, temperature) if turbine else sigma)
 
 
 def book_mass_of(mass: Number, flap: Number, deflections: Number, least: Number, most: Number) -> Number:

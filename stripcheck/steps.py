@@ -195,13 +195,15 @@ FIXED_PITCH_STEPS = (
          ("static_thrust", "thrust_slope", "sigma", "density", "screen_tas"), "takeoff_known"),
 )  # fmt: skip
 
+HOT_SIGMA = Step("hot_sigma", "", "", "Density ratio over temperature ratio", "Common practice", links.hot_sigma_of,
+                 ("sigma", "air_temperature"), "density")  # fmt: skip
 _POWER_STEPS = {
     "normally aspirated": Step("power", "P", "kW", "Shaft power", "Gagg and Farrar", thrust.aspirated_power,
                                ("rated_power", "sigma"), "takeoff_known"),
     "turbo-normalised": Step("power", "P", "kW", "Shaft power", "Gagg and Farrar above the critical altitude",
                              thrust.turbo_normalised_power, ("rated_power", "sigma", "limit_sigma"), "takeoff_known"),
-    "flat rated": Step("power", "P", "kW", "Shaft power", "Flat rating, then density", thrust.flat_rated_power,
-                       ("rated_power", "sigma", "limit_sigma"), "takeoff_known"),
+    "flat rated": Step("power", "P", "kW", "Shaft power", "Flat rating, then density over temperature", thrust.flat_rated_power,
+                       ("rated_power", "hot_sigma", "limit_sigma"), "takeoff_known"),
 }  # fmt: skip
 
 _DISK = ("thrust_acceleration", "lost", "square", "disk_speed")
@@ -388,6 +390,8 @@ def _takeoff_steps(shaft: Step | None, tables: Collection[str], manual: bool) ->
     """``shaft``: the step of shaft power, None for a fixed-pitch propeller."""
     known: Steps = TAKEOFF_KNOWN
     engine: Steps = FIXED_PITCH_STEPS if shaft is None else (shaft, *CONSTANT_SPEED_STEPS)
+    if shaft is not None and "hot_sigma" in shaft.inputs:
+        engine = (HOT_SIGMA, *engine)
     distance: Steps = TAKEOFF_DISTANCE_STEPS
     beyond = book_steps.takeoff_table_steps(shaft) if "takeoff" in tables else _beyond_reach("takeoff", "takeoff_known")
     if tables:

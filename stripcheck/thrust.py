@@ -61,15 +61,17 @@ def turbo_normalised_power(rated: Number, sigma: Number, critical_sigma: Number)
     return rated * np.minimum(1.0, (1.132 * sigma - 0.132) / (1.132 * critical_sigma - 0.132))
 
 
-def flat_rated_power(rated: Number, sigma: Number, limit_sigma: Number) -> Number:
-    """Power [W] of a flat-rated turboprop: rated [W] down to a density ratio, then proportional to density.
+def flat_rated_power(rated: Number, hot_sigma: Number, limit: Number) -> Number:
+    """Power [W] of a flat-rated turboprop: rated [W] until its turbine gets too hot, then falling.
 
-    ``sigma`` [-]; ``limit_sigma`` [-] is the density ratio where the flat rating ends. Source: common practice.
+    ``hot_sigma`` [-]: density ratio over temperature ratio, to which the power at one turbine temperature is nearly
+    proportional; ``limit`` [-] is the one where the flat rating ends. Common practice, no source: some 0.7 % of power for
+    each kelvin.
 
     >>> flat_rated_power(500000.0, 0.9, 0.8), flat_rated_power(500000.0, 0.4, 0.8)
     (500000.0, 250000.0)
     """
-    return rated * np.minimum(1.0, sigma / limit_sigma)
+    return rated * np.minimum(1.0, hot_sigma / limit)
 
 
 def static_disk_thrust(power: Number, rho: Number, disk_area: Number) -> Number:

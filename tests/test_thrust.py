@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from stripcheck import thrust
+from stripcheck import links, thrust
 
 
 def test_fixed_pitch_thrust() -> None:
@@ -26,6 +26,18 @@ def test_turbo_normalised_power() -> None:
 def test_flat_rated_power() -> None:
     power = thrust.flat_rated_power(1000.0, np.array([1.1, 0.8, 0.4]), 0.8)
     np.testing.assert_allclose(power, [1000.0, 1000.0, 500.0])
+
+
+def test_a_flat_rating_ends_sooner_in_hot_air_than_in_high_air() -> None:
+    """At one and the same density the turbine is hotter low down in hot air: half of a per cent to one for each kelvin."""
+    limit = links.rating_limit(3048.0, 0.0, turbine=True)
+    sigma = 0.78
+    powers = [thrust.flat_rated_power(1.0, links.hot_sigma_of(sigma, kelvin), limit) for kelvin in (275.0, 318.15, 319.15)]
+    assert powers[0] == 1.0 > powers[1] > powers[2]
+    pressure = sigma * 1.225 * 287.05287 * 318.15  # the same pressure, a kelvin warmer
+    warmer = pressure / (287.05287 * 319.15) / 1.225
+    lost = 1.0 - links.hot_sigma_of(warmer, 319.15) / links.hot_sigma_of(sigma, 318.15)
+    assert 0.005 < lost < 0.010
 
 
 def test_static_thrust_and_induced_speed_are_one_disk() -> None:

@@ -63,6 +63,7 @@ class Flight:
         self.card, self.fitted = card_file(name), loaded(name).fit.values
         _, self.rolling, self.braking, feet, celsius, slope, wind = case
         self.rho, self.sigma = air(feet, celsius)
+        self.kelvin = celsius + 273.15
         self.slope, self.wind = slope / 100.0, wind * 1852.0 / 3600.0
         wing, drag = self.card["wing"], self.card["drag"]
         self.area = read_quantity(wing["area"], "area")
@@ -104,10 +105,11 @@ class Flight:
             torque = (self.sigma - 0.12) / 0.88
             return self.fitted["static_thrust"] * torque + self.fitted["thrust_slope"] * self.rho * speed**2
         engine = self.card["engine"]
-        rating_ends = air(read_quantity(engine["flat_rated_to"], "altitude") / 0.3048, 0.0)[0]
         height = read_quantity(engine["flat_rated_to"], "altitude")
-        rating_ends *= 273.15 / (288.15 - 0.0065 * height) / 1.225
-        power = read_quantity(engine["rated_power"], "power") * min(1.0, self.sigma / rating_ends)
+        standard = 288.15 - 0.0065 * height
+        rating_ends = air(height / 0.3048, standard - 273.15)[1] * 288.15 / standard
+        hot = self.sigma * 288.15 / self.kelvin
+        power = read_quantity(engine["rated_power"], "power") * min(1.0, hot / rating_ends)
         power *= self.fitted["propulsive_quality"]
         disk = math.pi / 4.0 * read_quantity(self.card["propeller"]["diameter"], "length") ** 2
         induced = brentq(lambda v: 2.0 * self.rho * disk * v * (speed + v) ** 2 - power, max(-speed, 0.0), 300.0,
