@@ -18,6 +18,8 @@ from stripcheck.atmosphere import G0
 from stripcheck.numeric import Number
 
 SCREEN = 15.24  # 50 ft screen [m]
+LEAST_PATH = 0.005  # gradient over the ground [-] below which no distance is given
+PULL_UP_LOAD = 0.19  # load factor above 1 in the pull-up after lift-off [-], [1]
 FLARE_LOAD = 0.2  # load factor above 1 in the flare [-], [1]
 
 
@@ -72,20 +74,43 @@ def rise_under(slope: Number, drift: Number) -> Number:
     return np.maximum(slope, 0.0) * np.maximum(drift, 1.0)
 
 
-def screen_distance(lift_off: Number, screen: Number, excess: Number, slope: Number, wind: Number,
-                    technique: Number) -> Number:  # fmt: skip
-    """Distance over the ground [m] from lift-off to 50 ft above the strip.
+def kinetic_head(lift_off: Number, screen: Number) -> Number:
+    """Height [m] that the speed gained from lift-off to 50 ft is worth, of equivalent airspeeds [m/s]. Source: [2].
 
-    ``lift_off`` and ``screen`` speeds [m/s TAS]; ``excess`` gradient [-], positive; ``slope`` [-]: ground that rises
-    under the climb takes from the gradient, ground that falls away gives nothing; ``wind`` [m/s]; ``technique`` [-]
-    calibrated factor on the distance. Source: [2].
-
-    >>> round(screen_distance(28.0, 32.0, 0.12, 0.0, 0.0, 1.0), 2)
-    228.97
+    >>> round(kinetic_head(28.0, 32.0), 3)
+    12.237
     """
-    energy = (np.square(screen) - np.square(lift_off)) / (2.0 * G0) + SCREEN
-    drift = drift_factor(mean_square_speed(lift_off, screen), wind)
-    return technique * energy / (excess - rise_under(slope, drift)) * drift
+    return (np.square(screen) - np.square(lift_off)) / (2.0 * G0)
+
+
+def pull_up_radius(speed: Number) -> Number:
+    """Radius [m] of the pull-up after lift-off at an equivalent airspeed [m/s], at a load factor of 1.19. Source: [1].
+
+    >>> round(pull_up_radius(30.0), 1)
+    483.0
+    """
+    return np.square(speed) / (PULL_UP_LOAD * G0)
+
+
+def screen_distance(kinetic: Number, radius: Number, sigma: Number, speed: Number, excess: Number, slope: Number,
+                    wind: Number, technique: Number) -> Number:  # fmt: skip
+    """Distance over the ground [m] from lift-off to 50 ft above the strip: a round pull-up, then a straight climb.
+
+    ``kinetic`` head and pull-up ``radius`` [m] at sea level, which grow as the density ratio ``sigma`` [-] falls; mean
+    ``speed`` [m/s TAS]; ``excess`` gradient [-], positive; ``slope`` [-]: ground that rises under the climb takes from the
+    gradient, ground that falls away gives nothing; ``wind`` [m/s]; ``technique`` [-] calibrated factor on the distance. The
+    steeper the climb, the longer the pull-up into it; a climb steeper than the arc reaches at 50 ft is flown no further.
+    Source: [2], and [1] for the pull-up.
+
+    >>> round(screen_distance(12.237, 483.0, 1.0, 30.07, 0.12, 0.0, 0.0, 1.0), 2)
+    257.96
+    """
+    energy = kinetic / sigma + SCREEN
+    arc = radius / sigma
+    drift = drift_factor(speed, wind)
+    gradient = np.minimum(excess, np.sqrt(2.0 * energy / arc))
+    path = np.maximum(gradient - rise_under(slope, drift), LEAST_PATH)
+    return technique * (energy + 0.5 * arc * np.square(gradient)) / path * drift
 
 
 def ground_gradient(climb_gradient: Number, tas: Number, wind: Number) -> Number:

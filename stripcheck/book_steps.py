@@ -98,6 +98,10 @@ _TAKEOFF_SPEEDS = (
          ("takeoff_book_parasite", "ground_lift", "aspect_ratio", "efficiency", "ground_effect"), _SET),
     Step("book_airborne_eas", "Vm", "kt", "Mean speed to 50 ft of the book, EAS", ARITHMETIC, airborne.mean_square_speed,
          ("book_lift_off_eas", "book_screen_eas"), _SET),
+    Step("book_kinetic_head", "", "m", "Height that the speed gained to 50 ft is worth, book", AIR, airborne.kinetic_head,
+         ("book_lift_off_eas", "book_screen_eas"), _SET),
+    Step("book_pull_up_radius", "R", "m", "Radius of the pull-up, book", "Anderson 6.7", airborne.pull_up_radius,
+         ("book_airborne_eas",), _SET),
     Step("book_airborne_lift", "CL", "", "Lift coefficient to 50 ft of the book", LIFT, links.lift_at,
          ("takeoff_book_mass", "wing_area", "book_airborne_eas"), _SET),
     Step("book_airborne_drag", "CD", "", "Drag coefficient to 50 ft of the book", "Drag polar", ground_run.drag_coefficient,
@@ -106,20 +110,18 @@ _TAKEOFF_SPEEDS = (
 _TAKEOFF_TAS = (
     Step("book_lift_off_tas", "", "kt", "Lift-off speed of the book, TAS", ISA, speeds.true_airspeed,
          ("book_lift_off_eas", "takeoff_book_sigma"), _KNOWN),
-    Step("book_screen_tas", "", "kt", "Speed at 50 ft of the book, TAS", ISA, speeds.true_airspeed,
-         ("book_screen_eas", "takeoff_book_sigma"), _KNOWN),
     Step("book_airborne_tas", "", "kt", "Mean speed to 50 ft of the book, TAS", ISA, speeds.true_airspeed,
          ("book_airborne_eas", "takeoff_book_sigma"), _KNOWN),
 )  # fmt: skip
 _FIXED_PITCH = (
     Step("book_start", "a0", "m/s²", "Acceleration at rest, book", POLAR, links.fixed_pitch_level_start,
-         ("static_thrust", "takeoff_book_sigma", "takeoff_book_mass", "reference_rolling"), _KNOWN),
+         ("static_thrust", "takeoff_book_engine_sigma", "takeoff_book_mass", "reference_rolling"), _KNOWN),
     Step("book_square", "", "", "Acceleration per V², book, 1/m", POLAR, links.fixed_pitch_square,
          ("thrust_slope", *_BALANCE), _KNOWN),
     Step("book_least", "", "m/s²", "Least acceleration, book", RUN, links.still_least,
          ("book_start", "book_square", "book_lift_off_tas"), _KNOWN),
     Step("book_thrust", "T", "N", "Thrust to 50 ft, book", POLAR, thrust.fixed_pitch_thrust,
-         ("static_thrust", "thrust_slope", "takeoff_book_sigma", "takeoff_book_density", "book_airborne_tas"), _KNOWN),
+         ("static_thrust", "thrust_slope", "takeoff_book_engine_sigma", "takeoff_book_density", "book_airborne_tas"), _KNOWN),
 )  # fmt: skip
 _FIXED_PITCH_ROLL = Step("takeoff_model_roll", "", "m", "Take-off roll of the model at the book's conditions", RUN,
                          links.still_run, ("book_start", "book_square", "book_lift_off_tas"), "book_flies")  # fmt: skip
@@ -153,7 +155,8 @@ _TAKEOFF_EXCESS = (
 )  # fmt: skip
 _TAKEOFF_CARRY = (
     Step("book_air", "", "m", "Lift-off to 50 ft of the model at the book's conditions", AIR, links.still_screen_distance,
-         ("book_lift_off_tas", "book_screen_tas", "book_excess", "takeoff_technique"), "book_flies"),
+         ("book_kinetic_head", "book_pull_up_radius", "takeoff_book_sigma", "book_airborne_tas", "book_excess",
+          "takeoff_technique"), "book_flies"),
     Step("takeoff_model_distance", "", "m", "Take-off to 50 ft of the model at the book's conditions", ARITHMETIC,
          links.total, ("takeoff_model_roll", "book_air"), "book_flies"),
     _figure("takeoff", "roll", "Take-off roll", "m", _KNOWN),
@@ -232,7 +235,7 @@ _CLIMB_SET = (
 _CLIMB_THRUST = {
     True: (
         Step("climb_book_thrust", "T", "N", "Thrust in the manual's climb", POLAR, thrust.fixed_pitch_thrust,
-             ("static_thrust", "thrust_slope", "climb_book_sigma", "climb_book_density", "climb_book_tas"), _KNOWN),
+             ("static_thrust", "thrust_slope", "climb_book_engine_sigma", "climb_book_density", "climb_book_tas"), _KNOWN),
     ),
     False: (
         Step("climb_useful_power", "", "kW", "Useful power in the manual's climb", "Propulsive quality times shaft power",
@@ -273,14 +276,14 @@ def no_tables(side: str, guard: str) -> tuple[Step, ...]:
     )
 
 
-def takeoff_table_steps(power: Step | None) -> tuple[Step, ...]:
+def takeoff_table_steps(power: Step | None, air: tuple[Step, ...]) -> tuple[Step, ...]:
     """Steps from the strip's conditions to the ratio of manual over model. ``power`` is the chain's step of shaft power."""
     engine: tuple[Step, ...] = (*_FIXED_PITCH, *_TAKEOFF_EXCESS, _FIXED_PITCH_ROLL)
     if power is not None:
-        engine = (*_power_at(power, "book_power", "book", "takeoff"), *_CONSTANT_SPEED, *_TAKEOFF_EXCESS,
+        engine = (_power_at(power, "book_power", "book", "takeoff"), *_CONSTANT_SPEED, *_TAKEOFF_EXCESS,
                   _CONSTANT_SPEED_ROLL)  # fmt: skip
     place = _place_in_tables("takeoff", "Take-off", "mass_takeoff", "takeoff_flap", _KNOWN, _SET)
-    return (*place, *_TAKEOFF_SPEEDS, *_TAKEOFF_TAS, *engine, *_TAKEOFF_CARRY)
+    return (*place, *_air_at("takeoff", air), *_TAKEOFF_SPEEDS, *_TAKEOFF_TAS, *engine, *_TAKEOFF_CARRY)
 
 
 def landing_table_steps() -> tuple[Step, ...]:
@@ -289,22 +292,30 @@ def landing_table_steps() -> tuple[Step, ...]:
     return (*place, *_LANDING_SPEEDS, *_LANDING_CARRY)
 
 
-def climb_table_steps(power: Step | None) -> tuple[Step, ...]:
+def climb_table_steps(power: Step | None, air: tuple[Step, ...]) -> tuple[Step, ...]:
     """Steps from the manual's rate of climb to the climb gradient used."""
     tas = Step("climb_book_tas", "", "kt", "Speed of the manual's climb, TAS", ISA, speeds.true_airspeed,
                ("climb_speed", "climb_book_sigma"), _KNOWN)  # fmt: skip
-    at = () if power is None else _power_at(power, "climb_book_power", "manual's climb", "climb")
+    at = () if power is None else (_power_at(power, "climb_book_power", "manual's climb", "climb"),)
     place = _place_in_tables("climb", "Climb", "mass_takeoff", "takeoff_flap", _KNOWN, _SET)
-    return (*place, *_CLIMB_SET, tas, *at, *_CLIMB_THRUST[power is None], *_CLIMB_CARRY)
+    return (*place, *_air_at("climb", air), *_CLIMB_SET, tas, *at, *_CLIMB_THRUST[power is None], *_CLIMB_CARRY)
 
 
-def _power_at(power: Step, key: str, label: str, side: str) -> tuple[Step, ...]:
-    """The chain's own step of shaft power, in the air of the book's conditions, and what it feels of that air."""
-    hot = Step(f"{side}_book_hot_sigma", "", "", f"Density ratio over temperature ratio, {label}", "Common practice",
-               links.hot_sigma_of, (f"{side}_book_sigma", f"{side}_temperature_held"), "density")  # fmt: skip
-    there = {"sigma": f"{side}_book_sigma", "hot_sigma": hot.key}
-    at = replace(power, key=key, label=f"Shaft power, {label}", inputs=tuple(there.get(name, name) for name in power.inputs))
-    return (hot, at) if "hot_sigma" in power.inputs else (at,)
+def _air_at(side: str, air: tuple[Step, ...]) -> tuple[Step, ...]:
+    """The chain's own steps of what the engine feels, in the air of the book's conditions."""
+    there = {"sigma": f"{side}_book_sigma", "air_temperature": f"{side}_temperature_held", "heat": f"{side}_book_heat"}
+    return tuple(
+        replace(step, key=f"{side}_book_{step.key}", label=f"{step.label}, book's conditions",
+                inputs=tuple(there.get(name, name) for name in step.inputs))
+        for step in air
+    )  # fmt: skip
+
+
+def _power_at(power: Step, key: str, label: str, side: str) -> Step:
+    """The chain's own step of shaft power, in the air of the book's conditions."""
+    felt = {name: f"{side}_book_{name}" for name in ("heat", "engine_sigma", "hot_sigma")}
+    inputs = tuple(felt.get(name, name) for name in power.inputs)
+    return replace(power, key=key, label=f"Shaft power, {label}", inputs=inputs)
 
 
 def manual_takeoff_left() -> tuple[Step, ...]:
@@ -331,7 +342,7 @@ def manual_takeoff_steps(fixed: bool) -> tuple[Step, ...]:
     if fixed:
         run = (
             Step("manual_start", "", "m/s²", "Acceleration at rest, friction left", POLAR, links.fixed_pitch_start,
-                 ("static_thrust", "sigma", "mass_takeoff", "rolling_left", "takeoff_slope"), _KNOWN),
+                 ("static_thrust", "engine_sigma", "mass_takeoff", "rolling_left", "takeoff_slope"), _KNOWN),
             Step("manual_square", "", "", "Acceleration per V², friction left, 1/m", POLAR, links.fixed_pitch_square,
                  ("thrust_slope", *balance), _KNOWN),
             Step("manual_roll", "", "m", "Take-off roll, wind and friction left", RUN, ground_run.speed_run,
@@ -350,7 +361,8 @@ def manual_takeoff_steps(fixed: bool) -> tuple[Step, ...]:
     return (
         *run,
         Step("manual_air", "", "m", "Lift-off to 50 ft, wind left", AIR, airborne.screen_distance,
-             ("lift_off_tas", "screen_tas", "excess", "climb_slope", "takeoff_wind_left", "takeoff_technique"), "climbs"),
+             ("kinetic_head", "pull_up_radius", "sigma", "airborne_tas", "excess", "climb_slope", "takeoff_wind_left",
+              "takeoff_technique"), "climbs", short=True),
         Step("manual_takeoff", "", "m", "Take-off to 50 ft with the manual's corrections", MANUAL, links.manual_distance_of,
              ("manual_roll", "manual_air", "takeoff_carry", "takeoff_roll_carry", "takeoff_grass", "takeoff_wind_factor",
               "ground", "physics_takeoff"), "climbs", short=True),
@@ -387,7 +399,8 @@ def manual_landing_steps() -> tuple[Step, ...]:
     known = "landing_known"
     return (
         Step("manual_landing_air", "", "m", "50 ft to touchdown, wind left", ANDERSON, airborne.landing_air_distance,
-             ("approach_tas", "touchdown_tas", "descent_path", "landing_wind_left", "landing_technique"), "path_closes"),
+             ("approach_tas", "touchdown_tas", "descent_path", "landing_wind_left", "landing_technique"), "path_closes",
+             short=True),
         Step("manual_braked_start", "", "m/s²", "Deceleration at zero airspeed, braking left", RUN, links.braked_start,
              ("braking_left", "braking_quality", "landing_slope"), known),
         Step("manual_braked_square", "", "", "Deceleration per V², braking left, 1/m", RUN, links.braked_square,

@@ -58,8 +58,8 @@ from stripcheck.steps import (
     AIR_STEPS,
     AIRCRAFT_STEPS,
     CONSTANT_SPEED_STEPS,
+    ENGINE_AIR,
     FIXED_PITCH_STEPS,
-    HOT_SIGMA,
     LANDING_DISTANCE_STEPS,
     POWERS,
     PROPELLERS,
@@ -191,14 +191,14 @@ def _table_ranges() -> str:
 def _step_tables() -> list[str]:
     fixed, constant = (build_chain(kind) for kind in PROPELLERS)
     powers = [build_chain("constant speed", power).by_key["power"] for power in POWERS]
-    power_steps = [step for step in powers if isinstance(step, Step)]
+    power_steps = [*ENGINE_AIR[POWERS[0]], *ENGINE_AIR[POWERS[-1]], *(step for step in powers if isinstance(step, Step))]
     limited = build_chain("constant speed", POWERS[-1])
     groups: tuple[tuple[str, Sequence[Step], Chain], ...] = (
         ("The aeroplane at its mass and flaps", AIRCRAFT_STEPS, fixed),
         ("Air, wind and ground", AIR_STEPS, fixed),
         ("Take-off: speeds", TAKEOFF_KNOWN, fixed),
         ("Take-off run with a fixed-pitch propeller", FIXED_PITCH_STEPS, fixed),
-        (f"Shaft power with a constant-speed propeller: {', '.join(POWERS)}", (HOT_SIGMA, *power_steps), limited),
+        (f"Shaft power with a constant-speed propeller: {', '.join(POWERS)}", power_steps, limited),
         ("Take-off run with a constant-speed propeller", CONSTANT_SPEED_STEPS, constant),
         ("Take-off: to 50 ft, over the obstacle, factors", TAKEOFF_DISTANCE_STEPS, fixed),
         ("Take-off: verdict", verdict.TAKEOFF_STEPS, fixed),

@@ -17,7 +17,7 @@ TEMPERATURES = (213.15, 333.15)  # K: -60 to +60 degC
 PRESSURES = (85000.0, 108500.0)  # Pa: beyond any QNH on record
 LENGTHS = (1.0, 10000.0)  # m: any length that could be meant
 SLOPES = (-0.30, 0.30)  # fraction: beyond any strip in use
-LEAST_CLIMB = 0.005  # excess gradient below which the airborne part has no meaningful length
+LEAST_CLIMB = airborne.LEAST_PATH  # excess gradient below which the airborne part has no meaningful length
 LEAST_DESCENT = 0.03  # towards falling ground; below it the distance would hang on the wind alone
 GROUND_UNKNOWN = len(GROUNDS) + 1  # row of the ground table for a surface or condition that is not known
 # A run "barely accelerates" when its least acceleration is below this share of the first one. Falling with the square
@@ -189,6 +189,12 @@ def hot_sigma_of(sigma: Number, temperature: Number) -> Number:
     return sigma * atmosphere.T0 / temperature
 
 
+def heat_of(sigma: Number, temperature: Number) -> Number:
+    """Heat factor of a piston engine; the pressure is that of dry air of this density, so that moist air is not helped."""
+    standard = atmosphere.T0 * (sigma * temperature / atmosphere.T0) ** atmosphere.BARO
+    return thrust.heat_factor(temperature, standard)
+
+
 def fixed_pitch_start(static: Number, sigma: Number, mass: Number, friction: Number, slope: Number) -> Number:
     """Acceleration at rest with a fixed-pitch propeller."""
     return static * thrust.drop_off_factor(sigma) / mass - ground_run.resistance(friction, slope)
@@ -286,9 +292,9 @@ def level_resistance(friction: Number) -> Number:
     return ground_run.resistance(friction, 0.0)
 
 
-def level_screen_distance(lift_off: Number, screen: Number, excess: Number, wind: Number,
+def level_screen_distance(kinetic: Number, radius: Number, sigma: Number, speed: Number, excess: Number, wind: Number,
                           technique: Number) -> Number:  # fmt: skip
-    return airborne.screen_distance(lift_off, screen, excess, 0.0, wind, technique)
+    return airborne.screen_distance(kinetic, radius, sigma, speed, excess, 0.0, wind, technique)
 
 
 def factored(distance: Number, short: Number, short_to: Number, long: Number, long_from: Number) -> Number:
@@ -342,7 +348,8 @@ def rating_limit(altitude: float, deviation: float, turbine: bool) -> float:
     """Where a rating ends, at a pressure altitude and so much warmer than standard, as the engine feels it there."""
     temperature = atmosphere.isa_temperature(altitude) + deviation
     sigma = atmosphere.density_ratio(atmosphere.density(atmosphere.isa_pressure(altitude), temperature))
-    return float(hot_sigma_of(sigma, temperature) if turbine else sigma)
+    piston = thrust.engine_sigma(sigma, heat_of(sigma, temperature))
+    return float(hot_sigma_of(sigma, temperature) if turbine else piston)
 
 
 def book_mass_of(mass: Number, flap: Number, deflections: Number, least: Number, most: Number) -> Number:
@@ -372,8 +379,9 @@ def still_disk_run(static: Number, lost: Number, square: Number, speed_of_disk: 
     return ground_run.disk_run_between(static, lost, square, speed_of_disk, 0.0, 1.0, fast)
 
 
-def still_screen_distance(lift_off: Number, screen: Number, excess: Number, technique: Number) -> Number:
-    return airborne.screen_distance(lift_off, screen, excess, 0.0, 0.0, technique)
+def still_screen_distance(kinetic: Number, radius: Number, sigma: Number, speed: Number, excess: Number,
+                          technique: Number) -> Number:  # fmt: skip
+    return airborne.screen_distance(kinetic, radius, sigma, speed, excess, 0.0, 0.0, technique)
 
 
 def still_landing_air(approach: Number, touchdown: Number, path: Number, technique: Number) -> Number:

@@ -52,6 +52,10 @@ AIRCRAFT_STEPS = (
          ("takeoff_flap_drag", "ground_lift", "aspect_ratio", "efficiency", "ground_effect"), "takeoff_set"),
     Step("airborne_eas", "Vm", "kt", "Mean speed from lift-off to 50 ft, EAS", ARITHMETIC, airborne.mean_square_speed,
          ("lift_off_eas", "screen_eas"), "takeoff_set"),
+    Step("kinetic_head", "", "m", "Height that the speed gained to 50 ft is worth, sea level", AIR, airborne.kinetic_head,
+         ("lift_off_eas", "screen_eas"), "takeoff_set"),
+    Step("pull_up_radius", "R", "m", "Radius of the pull-up, sea level", "Anderson 6.7", airborne.pull_up_radius,
+         ("airborne_eas",), "takeoff_set"),
     Step("airborne_lift", "CL", "", "Lift coefficient from lift-off to 50 ft", LIFT, links.lift_at,
          ("mass_takeoff", "wing_area", "airborne_eas"), "takeoff_set"),
     Step("airborne_drag", "CD", "", "Drag coefficient from lift-off to 50 ft", "Drag polar", ground_run.drag_coefficient,
@@ -118,7 +122,7 @@ AIR_STEPS = (
     Step("crosswind", "", "kt", "Crosswind", "Trigonometry", links.cross_of,
          ("wind_used", "wind_from_used", "heading"), "headwind"),
     Step("wind", "Vw", "kt", "Headwind counted by the rule", RULE, speeds.credited_headwind,
-         ("headwind", "headwind_credit", "tailwind_count"), "headwind", short=True),
+         ("headwind", "headwind_credit", "tailwind_count"), "headwind"),
     Step("slope", "", "%", "Mean slope, uphill positive", "Rise over length", links.mean_slope,
          ("slope_given", "elevation_start", "elevation_end", "length")),
     Step("takeoff_slope", "", "%", "Slope used for the take-off", "Profile, else mean, else assumed uphill",
@@ -168,11 +172,11 @@ _BALANCE = ("density", "wing_area", "mass_takeoff", "rolling_drag", "ground_lift
 
 FIXED_PITCH_STEPS = (
     Step("start", "a0", "m/s²", "Acceleration at rest", POLAR, links.fixed_pitch_start,
-         ("static_thrust", "sigma", "mass_takeoff", "rolling", "takeoff_slope"), "takeoff_known", short=True),
+         ("static_thrust", "engine_sigma", "mass_takeoff", "rolling", "takeoff_slope"), "takeoff_known", short=True),
     Step("square", "", "", "Acceleration per V², 1/m", POLAR, links.fixed_pitch_square,
          ("thrust_slope", *_BALANCE, "rolling"), "takeoff_known", short=True),
     Step("reference_start", "", "m/s²", "Acceleration at rest, level dry pavement", POLAR, links.fixed_pitch_level_start,
-         ("static_thrust", "sigma", "mass_takeoff", "reference_rolling"), "takeoff_known"),
+         ("static_thrust", "engine_sigma", "mass_takeoff", "reference_rolling"), "takeoff_known"),
     Step("reference_square", "", "", "Acceleration per V², level dry pavement, 1/m", POLAR, links.fixed_pitch_square,
          ("thrust_slope", *_BALANCE, "reference_rolling"), "takeoff_known"),
     Step("least_acceleration", "", "m/s²", "Least acceleration of the run", RUN,
@@ -190,18 +194,30 @@ FIXED_PITCH_STEPS = (
     Step("reference_roll", "", "m", "Take-off roll, level dry pavement", RUN, ground_run.speed_run,
          ("reference_start", "reference_square", "run_wind", "lift_off_tas"), "lifts_off"),
     Step("airborne_thrust", "T", "N", "Thrust from lift-off to 50 ft", POLAR, thrust.fixed_pitch_thrust,
-         ("static_thrust", "thrust_slope", "sigma", "density", "airborne_tas"), "takeoff_known"),
+         ("static_thrust", "thrust_slope", "engine_sigma", "density", "airborne_tas"), "takeoff_known"),
     Step("climb_thrust", "T", "N", "Thrust in the climb", POLAR, thrust.fixed_pitch_thrust,
-         ("static_thrust", "thrust_slope", "sigma", "density", "screen_tas"), "takeoff_known"),
+         ("static_thrust", "thrust_slope", "engine_sigma", "density", "screen_tas"), "takeoff_known"),
 )  # fmt: skip
 
-HOT_SIGMA = Step("hot_sigma", "", "", "Density ratio over temperature ratio", "Common practice", links.hot_sigma_of,
-                 ("sigma", "air_temperature"), "density")  # fmt: skip
+PRACTICE = "Flight-test practice: root of the temperature"
+_PISTON_AIR = (
+    Step("heat", "", "", "Heat factor of a piston engine", PRACTICE, links.heat_of, ("sigma", "air_temperature"),
+         "density"),
+    Step("engine_sigma", "\u03c3e", "", "Density ratio that a piston engine feels", PRACTICE, thrust.engine_sigma,
+         ("sigma", "heat"), "density"),
+)  # fmt: skip
+_TURBINE_AIR = (
+    Step("hot_sigma", "", "", "Density ratio over temperature ratio", "Common practice", links.hot_sigma_of,
+         ("sigma", "air_temperature"), "density"),
+)  # fmt: skip
+# what an engine feels of the air, by its kind
+ENGINE_AIR = {"normally aspirated": _PISTON_AIR, "turbo-normalised": _PISTON_AIR, "flat rated": _TURBINE_AIR}
 _POWER_STEPS = {
     "normally aspirated": Step("power", "P", "kW", "Shaft power", "Gagg and Farrar", thrust.aspirated_power,
-                               ("rated_power", "sigma"), "takeoff_known"),
+                               ("rated_power", "engine_sigma"), "takeoff_known"),
     "turbo-normalised": Step("power", "P", "kW", "Shaft power", "Gagg and Farrar above the critical altitude",
-                             thrust.turbo_normalised_power, ("rated_power", "sigma", "limit_sigma"), "takeoff_known"),
+                             thrust.turbo_normalised_power,
+                             ("rated_power", "engine_sigma", "limit_sigma", "heat"), "takeoff_known"),
     "flat rated": Step("power", "P", "kW", "Shaft power", "Flat rating, then density over temperature", thrust.flat_rated_power,
                        ("rated_power", "hot_sigma", "limit_sigma"), "takeoff_known"),
 }  # fmt: skip
@@ -251,7 +267,7 @@ CONSTANT_SPEED_STEPS = (
 
 TAKEOFF_DISTANCE_STEPS = (
     Step("excess", "", "%", "Excess thrust from lift-off to 50 ft", AIR, airborne.excess_gradient,
-         ("airborne_thrust", "mass_takeoff", "airborne_drag", "airborne_lift"), "takeoff_known"),
+         ("airborne_thrust", "mass_takeoff", "airborne_drag", "airborne_lift"), "takeoff_known", short=True),
     Step("climb_gradient", "", "%", "Climb gradient in still air at the screen speed", AIR, airborne.excess_gradient,
          ("climb_thrust", "mass_takeoff", "climb_drag", "climb_lift"), "takeoff_known"),
     Step("climb_over_ground", "", "%", "Climb gradient over the ground", ARITHMETIC, airborne.ground_gradient,
@@ -259,9 +275,10 @@ TAKEOFF_DISTANCE_STEPS = (
     Step("climbs", "", "", "Climbs away", "Excess of 0.5 % or more", links.climbs_of,
          ("excess", "climb_slope", "airborne_tas", "run_wind", "climb_over_ground"), "lifts_off", truth=True),
     Step("airborne_distance", "", "m", "Lift-off to 50 ft", AIR, airborne.screen_distance,
-         ("lift_off_tas", "screen_tas", "excess", "climb_slope", "run_wind", "takeoff_technique"), "climbs"),
+         ("kinetic_head", "pull_up_radius", "sigma", "airborne_tas", "excess", "climb_slope", "run_wind",
+          "takeoff_technique"), "climbs"),
     Step("reference_airborne", "", "m", "Lift-off to 50 ft, level", AIR, links.level_screen_distance,
-         ("lift_off_tas", "screen_tas", "excess", "run_wind", "takeoff_technique"), "climbs"),
+         ("kinetic_head", "pull_up_radius", "sigma", "airborne_tas", "excess", "run_wind", "takeoff_technique"), "climbs"),
     Step("physics_takeoff", "", "m", "Take-off to 50 ft by physics", ARITHMETIC, links.total,
          ("takeoff_roll", "airborne_distance"), "climbs"),
     Step("reference_takeoff", "", "m", "Take-off to 50 ft, level dry pavement", ARITHMETIC, links.total,
@@ -380,27 +397,26 @@ def build_chain(propeller: str, power: str = "normally aspirated", tables: froze
         *(item for side in SIDES if side in corrections for item in inputs.manual_inputs(side)), *inputs.RULES,
     )  # fmt: skip
     steps = (
-        *AIRCRAFT_STEPS, *AIR_STEPS, *_takeoff_steps(shaft, tables, "takeoff" in corrections), *TAKEOFF_STEPS,
-        *_landing_steps("landing" in tables, "landing" in corrections), *LANDING_STEPS,
+        *AIRCRAFT_STEPS, *AIR_STEPS, *_takeoff_steps(shaft, ENGINE_AIR[power], tables, "takeoff" in corrections),
+        *TAKEOFF_STEPS, *_landing_steps("landing" in tables, "landing" in corrections), *LANDING_STEPS,
     )  # fmt: skip
     return Chain(given, steps)
 
 
-def _takeoff_steps(shaft: Step | None, tables: Collection[str], manual: bool) -> Steps:
-    """``shaft``: the step of shaft power, None for a fixed-pitch propeller."""
+def _takeoff_steps(shaft: Step | None, air: Steps, tables: Collection[str], manual: bool) -> Steps:
+    """``shaft``: the step of shaft power, None for a fixed-pitch propeller; ``air``: what the engine feels of the air."""
     known: Steps = TAKEOFF_KNOWN
     engine: Steps = FIXED_PITCH_STEPS if shaft is None else (shaft, *CONSTANT_SPEED_STEPS)
-    if shaft is not None and "hot_sigma" in shaft.inputs:
-        engine = (HOT_SIGMA, *engine)
+    engine = (*air, *engine)
     distance: Steps = TAKEOFF_DISTANCE_STEPS
-    beyond = book_steps.takeoff_table_steps(shaft) if "takeoff" in tables else _beyond_reach("takeoff", "takeoff_known")
+    beyond = book_steps.takeoff_table_steps(shaft, air) if "takeoff" in tables else _beyond_reach("takeoff", "takeoff_known")
     if tables:
         known = _as_column(known, "takeoff_known")
     if "climb" in tables:
         beyond = tuple(replace(step, key="tables_beyond", short=False) if step.key == "takeoff_beyond" else step
                        for step in beyond)  # fmt: skip
         distance = _with(distance, "climb_over_ground", {"climb_gradient": "carried_climb"},
-                         before=(*book_steps.climb_table_steps(shaft), book_steps.BEYOND_WITH_CLIMB))  # fmt: skip
+                         before=(*book_steps.climb_table_steps(shaft, air), book_steps.BEYOND_WITH_CLIMB))  # fmt: skip
     if manual:
         known = (*known, *book_steps.manual_takeoff_left())
         wind = {"run_wind": "takeoff_wind_left", "slow_root": "manual_root"}

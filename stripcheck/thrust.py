@@ -9,6 +9,8 @@ References
 [2] Actuator-disk momentum theory, as in any text on propellers (Rankine and Froude).
 [3] R. F. Gagg and E. V. Farrar, Altitude Performance of Aircraft Engines, SAE Transactions 29, 1934 (the two
     constants from memory).
+[4] Flight-test practice: power of a piston engine at one manifold pressure goes with the root of the intake temperature
+    (FAA AC 23-8 series, from memory).
 """
 
 from __future__ import annotations
@@ -50,15 +52,38 @@ def aspirated_power(rated: Number, sigma: Number) -> Number:
     return rated * (1.132 * sigma - 0.132)
 
 
-def turbo_normalised_power(rated: Number, sigma: Number, critical_sigma: Number) -> Number:
+def heat_factor(temperature: Number, standard: Number) -> Number:
+    """Power of a piston engine [-] relative to standard air of the same pressure; temperatures [K]. Source: [4].
+
+    >>> round(heat_factor(318.15, 288.15), 4)
+    0.9517
+    """
+    return np.sqrt(standard / temperature)
+
+
+def engine_sigma(sigma: Number, heat: Number) -> Number:
+    """Density ratio [-] of standard air in which a piston engine has the power that it has in warmer or colder air.
+
+    ``sigma`` [-] of the air, ``heat`` [-]: ``heat_factor``. Pressure counts in full, temperature by its root [4]: at one
+    and the same density an engine loses less to heat than to height. Friction and pumping stay as they are.
+
+    >>> round(engine_sigma(0.9, 0.97), 4), engine_sigma(0.9, 1.0)
+    (0.9314, 0.9)
+    """
+    return DROP_OFF * (1.0 - heat) + sigma / heat
+
+
+def turbo_normalised_power(rated: Number, sigma: Number, critical_sigma: Number, heat: Number) -> Number:
     """Power [W] of a turbo-normalised piston engine: rated [W] up to its critical altitude, then as [3] from there.
 
-    ``sigma`` [-]; ``critical_sigma`` [-] is the density ratio at the critical altitude.
+    ``sigma`` [-]: ``engine_sigma``; ``critical_sigma`` [-] the one at the critical altitude; ``heat`` [-]: ``heat_factor``,
+    which takes from the rated power in warm air [4] and adds nothing in cold air.
 
-    >>> turbo_normalised_power(100000.0, 0.8, 0.6)
+    >>> turbo_normalised_power(100000.0, 0.8, 0.6, 1.02)
     100000.0
     """
-    return rated * np.minimum(1.0, (1.132 * sigma - 0.132) / (1.132 * critical_sigma - 0.132))
+    lapse = (1.132 * sigma - 0.132) / (1.132 * critical_sigma - 0.132)
+    return rated * np.minimum(np.minimum(1.0, heat), lapse)
 
 
 def flat_rated_power(rated: Number, hot_sigma: Number, limit: Number) -> Number:

@@ -13,7 +13,6 @@ Propellers and engines are other models than the project's:
   practice corrects it (FAA AC 23-8 series, from memory); a turboprop holds its torque limit, and beyond it falls with
   pressure and by 0.65 % for each kelvin (common practice, no source).
 
-``heat="density"`` lets engines feel density alone instead, so that the part of temperature can be told from the rest.
 Ground effect by Wieselsberger's formula (1921, from memory). Coefficients are common practice for aeroplanes of the kind, no
 source. All aeroplanes are invented.
 """
@@ -21,7 +20,7 @@ source. All aeroplanes are invented.
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cache
 
 import numpy as np
@@ -73,7 +72,6 @@ class Aeroplane:
     best_ratio: float = 0.9  # advance ratio of the best efficiency
     merit: float = 0.68
     limit: float = 3000.0  # critical altitude or end of the flat rating [m]
-    heat: str = "breathing"  # or "density"
 
 
 WREN = Aeroplane("Wren", "fixed pitch", "normally aspirated", 1100.0, 16.4, 10.9, 132e3, 1.92)
@@ -103,16 +101,13 @@ def stall(a: Aeroplane, lift: float, mass: float) -> float:
 def shaft_power(a: Aeroplane, height: float, temperature: float) -> float:
     """Full power [W] at the rated speed of rotation."""
     pressure, standard = pressure_at(height) / P0, standard_temperature(height)
-    breath = pressure * np.sqrt(T0 / temperature) if a.heat == "breathing" else density_at(height, temperature) / RHO0
+    breath = pressure * np.sqrt(T0 / temperature)
     if a.engine == "flat rated":
-        limit = density_at(a.limit, standard_temperature(a.limit)) / RHO0
-        if a.heat == "density":
-            return float(a.power * min(1.0, breath / limit))
         colder = 1.0 - 0.0065 * (temperature - standard_temperature(a.limit))
         return float(a.power * min(1.0, pressure_at(height) / pressure_at(a.limit) * colder))
     if a.engine == "turbo-normalised":
         held = min(1.0, pressure_at(height) / pressure_at(a.limit))
-        breath = held * (np.sqrt(standard / temperature) if a.heat == "breathing" else 1.0)
+        breath = held * np.sqrt(standard / temperature)
     return float(a.power * ((1.0 + a.friction_share) * breath - a.friction_share))
 
 
@@ -231,7 +226,7 @@ Place = tuple[float, float, float]  # pressure altitude [ft], kelvins above stan
 
 def figures(a: Aeroplane, places: Iterable[Place], step: float = 5.0) -> np.ndarray:
     """Rows of altitude [ft], temperature [degC], mass [kg] and the manual's four distances [m], rounded to ``step``."""
-    rows, idle = [], replace(a, heat="")  # engines have no part in a landing
+    rows, idle = [], a  # engines have no part in a landing
     for feet, warmer, share in places:
         height, mass = feet * FOOT, share * a.mass
         temperature = standard_temperature(height) + warmer

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import itertools
+import math
+
 import numpy as np
 import pytest
 
@@ -25,11 +28,22 @@ def test_excess_gradient() -> None:
     assert airborne.excess_gradient(2000.0, 1000.0, 0.1, 1.0) == pytest.approx(2000.0 / (1000.0 * G) - 0.1, rel=1e-14)
 
 
-def test_screen_distance_at_one_speed_is_height_over_gradient() -> None:
-    assert airborne.screen_distance(30.0, 30.0, 0.1, 0.0, 0.0, 1.0) == pytest.approx(152.4, rel=1e-12)
-    assert airborne.screen_distance(30.0, 30.0, 0.1, 0.0, 0.0, 0.7) == pytest.approx(0.7 * 152.4, rel=1e-12)
-    assert airborne.screen_distance(30.0, 30.0, 0.1, 0.02, 0.0, 1.0) == pytest.approx(15.24 / 0.08, rel=1e-12)
-    assert airborne.screen_distance(30.0, 30.0, 0.1, 0.0, 40.0, 1.0) == 0.0
+def test_screen_distance_is_an_arc_and_a_straight_climb() -> None:
+    """Height over gradient, and half of radius times gradient for the arc; a steep climb is the arc to 50 ft alone."""
+    radius = airborne.pull_up_radius(30.0)
+    assert airborne.kinetic_head(30.0, 30.0) == 0.0 and radius == pytest.approx(900.0 / (0.19 * 9.80665), rel=1e-12)
+
+    def distance(excess: float, slope: float = 0.0, wind: float = 0.0, technique: float = 1.0) -> float:
+        return float(airborne.screen_distance(0.0, radius, 1.0, 30.0, excess, slope, wind, technique))
+
+    assert distance(0.1) == pytest.approx(152.4 + 0.05 * radius, rel=1e-12)
+    assert distance(0.1, technique=0.7) == pytest.approx(0.7 * distance(0.1), rel=1e-12)
+    assert distance(0.1, slope=0.02) == pytest.approx((15.24 + 0.005 * radius) / 0.08, rel=1e-12)
+    assert distance(0.1, wind=40.0) == 0.0
+    arc = math.sqrt(2.0 * radius * 15.24)  # chord of a flat arc that rises by 50 ft
+    assert distance(0.9) == pytest.approx(arc, rel=1e-12)
+    steps = [distance(excess) for excess in (0.05, 0.1, 0.2, 0.25, 0.3, 0.5)]
+    assert all(more >= less for more, less in itertools.pairwise(steps))
 
 
 def test_gradient_over_the_ground() -> None:

@@ -56,8 +56,9 @@ def test_a_flat_rated_card() -> None:
 
 
 def test_a_turbo_normalised_card(tmp_path: Path) -> None:
-    text = changed(shipped_text("high-mule"), ('kind = "flat rated"', 'kind = "turbo-normalised"'),
-                   ("flat_rated_to", "critical_altitude"))  # fmt: skip
+    text = changed(HERON, ('kind = "normally aspirated"', 'kind = "turbo-normalised"\ncritical_altitude = "8000 ft"'),
+                   ('kind = "fixed pitch"', 'kind = "constant speed"'), ('roll = "500 m"', 'roll = "330 m"'),
+                   ('to_50ft = "945 m"', 'to_50ft = "610 m"'))  # fmt: skip
     card = load_text(text, tmp_path)
     assert card.power == "turbo-normalised" and "limit_sigma" in card.values
 

@@ -17,10 +17,21 @@ def test_fixed_pitch_thrust() -> None:
 def test_turbo_normalised_power() -> None:
     """Rated up to the critical altitude, then in proportion to a normally aspirated engine; no step between."""
     sigma = np.array([1.0, 0.8, 0.6001, 0.6, 0.5999, 0.4])
-    power = thrust.turbo_normalised_power(1000.0, sigma, 0.6)
+    power = thrust.turbo_normalised_power(1000.0, sigma, 0.6, 1.0)
     assert (power[:4] == 1000.0).all()
     assert power[4] == pytest.approx(1000.0, rel=1e-3)
     assert power[5] == pytest.approx(1000.0 * thrust.aspirated_power(1.0, 0.4) / thrust.aspirated_power(1.0, 0.6))
+
+
+def test_a_piston_engine_loses_less_to_heat_than_to_height() -> None:
+    """FAA AC 23-8 series, from memory: at one pressure the power goes with the root of the temperature; 30 K take some 5 %."""
+    hot = thrust.heat_factor(318.15, 288.15)
+    sigma = 288.15 / 318.15  # at the pressure of the sea-level standard
+    felt = thrust.engine_sigma(sigma, hot)
+    assert thrust.drop_off_factor(felt) == pytest.approx(hot, rel=1e-12)
+    assert thrust.drop_off_factor(felt) > thrust.drop_off_factor(sigma)
+    assert links.heat_of(sigma, 318.15) == pytest.approx(hot, rel=1e-9)
+    assert thrust.turbo_normalised_power(1000.0, 1.0, 0.6, hot) == pytest.approx(1000.0 * hot)
 
 
 def test_flat_rated_power() -> None:

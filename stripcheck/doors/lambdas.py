@@ -390,7 +390,7 @@ class _Trace:
         if step.lookup.startswith("ground_") and isinstance(self.known["ground"], Cell):
             found = self._figure_of(step, values[0])
         elif step.key == "power":
-            found = self._power(values)
+            found = self._power()
         else:
             with np.errstate(all="ignore"):
                 found = step.function(*values)
@@ -430,15 +430,27 @@ class _Trace:
                                  f"{step.label} of a row of the ground table.")  # fmt: skip
         return Cell(f"{name}({parameter('ground')})")
 
-    def _power(self, values: list[Any]) -> Cell:
+    def _power(self) -> Cell:
         """Shaft power by the kind of engine that the range names."""
         self.given.append((parameter("engine"), f"{STEP}WORD({parameter('aircraft')},{_text(ENGINE)})"))
         chosen = Cell("NA()", depth=1)
         for power in reversed(POWERS):
-            step = build_chain("constant speed", power).by_key["power"]
+            chain = build_chain("constant speed", power)
+            step = chain.by_key["power"]
             assert isinstance(step, Step)
-            chosen = where(Cell(parameter("engine")) == power, step.function(*values[: len(step.inputs)]), chosen)
+            values = [self._felt(key, chain) for key in step.inputs]
+            chosen = where(Cell(parameter("engine")) == power, step.function(*values), chosen)
         return chosen
+
+    def _felt(self, key: str, chain: Chain) -> Any:
+        """A value that an engine of one kind reads, which need not be in the chain of another."""
+        if key not in self.known:
+            step = chain.by_key[key]
+            assert isinstance(step, Step)
+            found = step.function(*(self._felt(name, chain) for name in step.inputs))
+            self.pairs.append((parameter(key), where(np.isfinite(self.known[step.guard]), found, np.nan).text))
+            self.known[key] = Cell(parameter(key))
+        return self.known[key]
 
 
 _CONSTANT = {"TRUE": True, "FALSE": False, BLANK: np.nan}

@@ -102,7 +102,10 @@ class Flight:
 
     def thrust(self, speed: float) -> float:
         if "static_thrust" in self.fitted:
-            torque = (self.sigma - 0.12) / 0.88
+            height = (288.15 - 288.15 * (self.sigma * self.kelvin / 288.15) ** 0.190263) / 0.0065
+            heat = math.sqrt((288.15 - 0.0065 * height) / self.kelvin)  # a piston engine: pressure, and root of temperature
+            felt = 0.12 * (1.0 - heat) + self.sigma / heat
+            torque = (felt - 0.12) / 0.88
             return self.fitted["static_thrust"] * torque + self.fitted["thrust_slope"] * self.rho * speed**2
         engine = self.card["engine"]
         height = read_quantity(engine["flat_rated_to"], "altitude")
@@ -127,7 +130,9 @@ class Flight:
         energy = (screen**2 - lift_off**2) / (2.0 * G) + SCREEN
         carried = 1.0 - self.wind / mean
         rise = max(self.slope, 0.0) * max(carried, 1.0)  # under each metre flown through the air; careful in a headwind
-        return roll, roll + self.fitted["takeoff_technique"] * energy * carried / (excess - rise)
+        radius = mean**2 / (0.19 * G)  # of the pull-up
+        climb = min(excess, math.sqrt(2.0 * energy / radius))
+        return roll, roll + self.fitted["takeoff_technique"] * carried * (energy + 0.5 * radius * climb**2) / (climb - rise)
 
     def landing(self) -> tuple[float, float]:
         """Roll, with the time before braking, and distance from 50 ft [m]."""
