@@ -190,15 +190,17 @@ def _table_ranges() -> str:
 
 def _step_tables() -> list[str]:
     fixed, constant = (build_chain(kind) for kind in PROPELLERS)
-    powers = [build_chain("constant speed", power).by_key["power"] for power in POWERS]
-    power_steps = [*ENGINE_AIR[POWERS[0]], *ENGINE_AIR[POWERS[-1]], *(step for step in powers if isinstance(step, Step))]
-    limited = build_chain("constant speed", POWERS[-1])
+    engines = {power: build_chain("constant speed", power) for power in POWERS}
+    felt = tuple(
+        (f"What the engine feels, and its shaft power: {power}", (*ENGINE_AIR[power], *_steps_of(chain, "power")), chain)
+        for power, chain in engines.items()
+    )
     groups: tuple[tuple[str, Sequence[Step], Chain], ...] = (
         ("The aeroplane at its mass and flaps", AIRCRAFT_STEPS, fixed),
         ("Air, wind and ground", AIR_STEPS, fixed),
         ("Take-off: speeds", TAKEOFF_KNOWN, fixed),
         ("Take-off run with a fixed-pitch propeller", FIXED_PITCH_STEPS, fixed),
-        (f"Shaft power with a constant-speed propeller: {', '.join(POWERS)}", power_steps, limited),
+        *felt,
         ("Take-off run with a constant-speed propeller", CONSTANT_SPEED_STEPS, constant),
         ("Take-off: to 50 ft, over the obstacle, factors", TAKEOFF_DISTANCE_STEPS, fixed),
         ("Take-off: verdict", verdict.TAKEOFF_STEPS, fixed),
@@ -216,6 +218,10 @@ def _step_table(heading: str, steps: Sequence[Step], chain: Chain) -> list[str]:
 def _rows_table(heading: str, rows: Collection[Row]) -> list[str]:
     headers = ("Step", "Sign", "Unit", "From", "Only where", "Source", "Key")
     return [f"### {heading}", table(headers, rows)] if rows else []
+
+
+def _steps_of(chain: Chain, *keys: str) -> list[Step]:
+    return [step for step in (chain.by_key[key] for key in keys) if isinstance(step, Step)]
 
 
 def _reach_steps(chain: Chain) -> list[Step]:

@@ -12,7 +12,7 @@ import pytest
 from stripcheck.card import TYPICAL, flap_setting, load_card, shipped_cards
 from stripcheck.errors import InputError
 from stripcheck.inputs import CARD, CONSTANT_SPEED, FIXED_PITCH, POWER_LIMIT, REACH, table_inputs
-from tests.aircraft import HERON, changed, load_text, shipped_text
+from tests.aircraft import HERON, changed, load_text
 
 KNOT, FOOT = 1852.0 / 3600.0, 0.3048
 OF_TABLES = (*REACH.values(), *(item for side in ("takeoff", "landing", "climb") for item in table_inputs(side)))

@@ -33,6 +33,9 @@ DISTANCES = {
     "landing": ("landing_roll", "physics_landing", "landing_distance", "landing_required"),
 }
 BOTH = ("takeoff", "landing")
+# The same for cards whose tables are printed to 5 m at wide steps: a figure that hardly grows, carried downhill or with a
+# tailwind, may fall by some 2e-4 where the air gets thinner.
+COARSE = 5e-4
 ROUNDING = 1e-10  # relative: two sums of the same run may differ by this much from rounding alone
 CARDS = {
     **{name: load_card(name) for name in shipped_cards()},
@@ -309,23 +312,27 @@ def test_laws_over_many_strips(name: str, law: str) -> None:
     flaps = {"takeoff_flap": "28" if name == "high-mule" else "10", "landing_flap": CARDS[name].flaps[-1].name}
     base = {**many_strips(rng, STRIPS[name in shipped_cards()]), "card": name, **flaps}
     broken = []
+    rounding = ROUNDING if name in shipped_cards() else COARSE
     for rules in (without_mean_slope_criterion(RULES[one]) for one in SETS):
         easy, hard = assessed(base, rules), assessed(base, rules, **harder(law, base, rng))
         for side in LAWS[law]:
             keys = (f"{side}_reason", f"{side}_distance")
             broken += [(rules.name, side, int(row), *((easy[key][row], hard[key][row]) for key in keys))
-                       for row in np.flatnonzero(better(easy, hard, side))[:2]]  # fmt: skip
+                       for row in np.flatnonzero(better(easy, hard, side, rounding))[:2]]  # fmt: skip
     assert broken == []
 
 
-def better(easy: Result, hard: Result, side: str) -> np.ndarray:
+def better(easy: Result, hard: Result, side: str, rounding: float = ROUNDING) -> np.ndarray:
     """Rows that the harder case shortens, or whose verdict, or clearance over an obstacle ahead, it betters."""
     broken = np.array([RANK.get(verdict, 3) for verdict in hard[f"{side}_verdict"]]) < np.array(
         [RANK.get(verdict, 3) for verdict in easy[f"{side}_verdict"]]
     )
     for key in DISTANCES[side]:
         before, after = (np.nan_to_num(result.si(key), nan=np.inf) for result in (easy, hard))
-        broken |= np.where(np.isinf(before), np.isfinite(after), after < before * (1.0 - ROUNDING))
+        shorter = np.where(np.isinf(before), np.isfinite(after), after < before * (1.0 - rounding))
+        # beyond a coarse table, near the ceiling, a line between carried figures grows less than the model: no verdict
+        # there is better than marginal, and that it never gets better is asked all the same
+        broken |= shorter & ~hard.si(f"{side}_beyond") if rounding == COARSE else shorter
     if side == "takeoff":
         # where 50 ft is not reached on the strip, the distance has decided, and the height means nothing
         fits = hard.si("takeoff_distance") <= hard.si("takeoff_margin") + hard.si("takeoff_required")

@@ -120,9 +120,9 @@ def test_every_printed_figure_comes_out_to_the_metre(name: str, side: str) -> No
 def test_the_shipped_figures_are_those_in_the_files() -> None:
     """A few read by eye: Ridge Runner, 1,000 kg, 4,000 ft and 30 deg C; High Mule, 2,500 kg, 8,000 ft and 20 deg C."""
     runner = assessed(load_card("ridge-runner"), "takeoff", "10", 1000.0, 4000.0, 30.0)
-    assert (runner.si("takeoff_distance")[0], runner.si("carried_takeoff_roll")[0]) == pytest.approx((580.0, 270.0), abs=EXACT)
+    assert (runner.si("takeoff_distance")[0], runner.si("carried_takeoff_roll")[0]) == pytest.approx((530.0, 260.0), abs=EXACT)
     mule = load_card("high-mule")
-    assert assessed(mule, "takeoff", "28", 2500.0, 8000.0, 20.0).si("takeoff_distance")[0] == pytest.approx(510.0, abs=EXACT)
+    assert assessed(mule, "takeoff", "28", 2500.0, 8000.0, 20.0).si("takeoff_distance")[0] == pytest.approx(555.0, abs=EXACT)
     assert assessed(mule, "landing", "40", 2660.0, 8000.0, 20.0).si("landing_distance")[0] == pytest.approx(430.0, abs=EXACT)
 
 
@@ -130,7 +130,7 @@ def test_single_values_do_too() -> None:
     """Without a column, so that nothing is broadcast."""
     strip = {**STILL, "elevation_field": 2000.0, "own_temperature": 20.0}
     result = assess(strip, "ridge-runner", {}, takeoff_mass=890, takeoff_flap="10")
-    assert result.si("takeoff_distance")[0] == pytest.approx(320.0, abs=EXACT)
+    assert result.si("takeoff_distance")[0] == pytest.approx(310.0, abs=EXACT)
 
 
 def whole_cells(tables: BookTables, numbers: list[int]) -> np.ndarray:
@@ -303,8 +303,9 @@ def test_beyond_the_table_the_model_goes_on_from_its_edge() -> None:
     beyond, edge = (assessed(model_of(RUNNER), "takeoff", "10", 890.0, *where).si("physics_takeoff")[0]
                     for where in ((9500.0, 45.0), (8000.0, 40.0)))  # fmt: skip
     found = assessed(RUNNER, "takeoff", "10", 890.0, 9500.0, 45.0).si("takeoff_distance")[0]
-    assert found == pytest.approx(770.0 * beyond / edge, rel=1e-10)
-    assert found > 1.05 * 770.0
+    printed = assessed(RUNNER, "takeoff", "10", 890.0, 8000.0, 40.0).si("takeoff_distance")[0]
+    assert printed % 5.0 == pytest.approx(0.0, abs=EXACT) and found == pytest.approx(printed * beyond / edge, rel=1e-10)
+    assert found > 1.05 * printed
 
 
 # -- carried to the strip ----------------------------------------------------------------------------------------------
@@ -374,7 +375,7 @@ def test_another_flap_is_carried_from_the_nearest_with_tables(name: str, side: s
     other, book = (assessed(card, side, setting, mass, *where).si(f"{side}_distance")[0] for setting in (flap, book_flap))
     models = [assessed(model_of(card), side, setting, mass, *where).si(f"physics_{side}")[0] for setting in (flap, book_flap)]
     assert other == pytest.approx(book * models[0] / models[1], rel=1e-10)
-    assert other != pytest.approx(book, rel=0.005)
+    assert other != pytest.approx(book, rel=0.002)
 
 
 @pytest.mark.parametrize(("name", "side"), [("ridge-runner", "takeoff"), ("ridge-runner", "landing"), ("high-mule", "landing")])
@@ -472,7 +473,9 @@ def test_what_a_flap_and_another_speed_take_from_the_climb_is_the_model_s_differ
     sigma, weight = it.si("sigma")[0], 1110.0 * 9.80665
     speed = CLIMB_SPEED / np.sqrt(sigma)
     rho = 1.225 * sigma
-    thrust = values["static_thrust"] * (sigma - 0.12) / 0.88 + values["thrust_slope"] * rho * speed**2
+    heat = np.sqrt((288.15 - 0.0065 * 4000.0 * FOOT) / 293.15)  # a piston engine: pressure, and root of the temperature
+    felt = 0.12 * (1.0 - heat) + sigma / heat
+    thrust = values["static_thrust"] * (felt - 0.12) / 0.88 + values["thrust_slope"] * rho * speed**2
     pressure = 0.5 * rho * speed**2 * values["wing_area"]
     lift = weight / pressure
     aspect = values["span"] ** 2 / values["wing_area"]

@@ -30,8 +30,8 @@ METHOD = (
     "Beyond the book: higher, hotter or heavier than the manual's figures go, a verdict is at best marginal.",
     "Ground roll: ground speed over acceleration, summed along the run with thrust, drag, lift, rolling friction, slope and "
     "wind. A run whose acceleration falls below 2 % of g counts as no lift-off, a landing roll likewise as no stop.",
-    "50 ft: after lift-off by the energy method; before touchdown a straight path and a round flare. Ground that rises under "
-    "a climb or falls away under an approach counts; ground that helps gives nothing.",
+    "50 ft: after lift-off a round pull-up and the energy method; before touchdown a straight path and a round flare. Ground "
+    "that rises under a climb or falls away under an approach counts; ground that helps gives nothing.",
     "Rules: the longer governs of (a) the physics with slope and surface, and (b) the distance on level dry pavement times the "
     "published corrections; then the safety factor. Wind counts by the shares of the Rules sheet.",
     "Obstacles: ahead, the height over them with and without the factor; behind, the 50 ft point moves up the strip until the "
@@ -44,6 +44,7 @@ SOURCES = (
     "WMO-No. 8, Guide to Instruments and Methods of Observation: humidity formulae.",
     "J. D. Anderson, Aircraft Performance and Design: ground run, ground effect, approach and flare.",
     "J. T. Lowry, Performance of Light Aircraft: linearised propeller polar.",
+    "FAA AC 23-8 series, from memory: power of piston engines with the root of the temperature.",
     "Actuator-disk momentum theory; R. F. Gagg and E. V. Farrar, SAE Transactions 29, 1934: power lapse.",
     "W. H. Mason, notes to a take-off program, Virginia Tech; D. P. Raymer, Aircraft Design: friction coefficients.",
     "Flaps: D. P. Raymer; H. Glauert, thin-aerofoil theory; A. D. Young, R&M 2622, in the form of B. W. McCormick.",

@@ -143,13 +143,14 @@ def test_units_of_any_kind_are_converted() -> None:
 def test_the_rest_of_a_range_is_computed() -> None:
     elevations = [[2400.0], ["x"], [None], ["#N/A"], [2400.0]]
     column = do("TAKEOFF_DIST", *RUN[:3], elevations, *RUN[4:])
-    assert column[0] == column[4] == [do("TAKEOFF_DIST", *RUN)]
+    assert column[0] == column[4] == pytest.approx([do("TAKEOFF_DIST", *RUN)], rel=1e-14)
     assert [cell[0].split(":")[0] for cell in column[1:4]] == ["Elevation"] * 3
     assert len(sentences(BY_NAME["TAKEOFF_DIST"], *RUN[:3], elevations, *RUN[4:])) == 3
     grounds = do("ROLLING", [["grass"], ["moss"], ["gravel"]], "dry")
     assert [type(row[0]) for row in grounds] == [float, str, float]
     verdicts = do("TAKEOFF_VERDICT", "ridge-runner", 1000, [["10"], ["99"]], *FITS[3:])
-    assert verdicts[0] == [MARGINAL] and 'no flap setting "99"' in verdicts[1][0]
+    assert verdicts[0] == [do("TAKEOFF_VERDICT", "ridge-runner", 1000, "10", *FITS[3:])]
+    assert 'no flap setting "99"' in verdicts[1][0]
 
 
 @pytest.mark.parametrize("function", [f for f in FUNCTIONS if f.ask or f.step], ids=lambda f: f.name)
