@@ -265,13 +265,17 @@ def followed(case: Result, v_abort: float, reaction: float) -> tuple[float, floa
     one = {key: float(np.ravel(value)[0]) for key, value in case.given.items()
            if np.size(value) == 1 and np.asarray(value).dtype.kind in "fi"}  # fmt: skip
     step = {key: float(case.si(key)[0]) for key in ("density", "sigma", "run_wind", "takeoff_slope", "rolling", "braking",
-                                                    "rolling_drag")}  # fmt: skip
+                                                    "rolling_drag", "air_temperature")}  # fmt: skip
+    kelvin = step["air_temperature"]
+    standard = 288.15 * (step["sigma"] * kelvin / 288.15) ** 0.190263  # at this pressure
+    heat = np.sqrt(standard / kelvin)  # a piston engine: pressure, and root of the temperature
+    felt = 0.12 * (1.0 - heat) + step["sigma"] / heat
     mass, wind, rho = one["mass_takeoff"], step["run_wind"], step["density"]
     gravity = G0 * np.sin(np.arctan(step["takeoff_slope"]))
 
     def thrust(v: float) -> float:
         if "static_thrust" in one:
-            return one["static_thrust"] * (step["sigma"] - 0.12) / 0.88 + one["thrust_slope"] * rho * v * v
+            return one["static_thrust"] * (felt - 0.12) / 0.88 + one["thrust_slope"] * rho * v * v
         power, area = float(case.si("useful_power")[0]), np.pi / 4.0 * one["propeller_diameter"] ** 2
         low, high = 0.0, 1e6  # T from P = T (v + w), w from T = 2 rho A w (v + w)
         for _ in range(200):

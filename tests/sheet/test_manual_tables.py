@@ -300,20 +300,22 @@ def column(book, path: Path, header: str) -> object:
 
 @pytest.mark.parametrize("deleted", [None, "n/a"])
 def test_a_figure_deleted_at_the_edge_is_beyond_the_book(office, one_strip, tmp_path, deleted):
-    """6,000 ft and 30 deg C at 1,000 kg: with its figures suitable; once they are gone, or words stand for them, beyond the
-    book by the 10 K to the next one, with the figure that the next one tells; typed in again, as it was."""
+    """6,000 ft and 40 deg C at 1,000 kg: with its figures suitable; once they are gone, or words stand for them, and so are
+    those at 8,000 ft, which would tell that the manual goes so far, beyond the book by the 10 K to the next one, with the
+    figure that the next one tells; typed in again, as it was."""
     card, path = everything(corrections=False), tmp_path / "out.xlsx"
     write_workbook(filling(one_strip, card, "manual-only", {"temperature": 40}, mass_takeoff=1000.0), path, True)
     cells = manual_cells(path)
     places = {figure: cells["takeoff", TEN, figure, 6000.0, 40.0] for figure in ("roll", "distance")}
     sheet = openpyxl.load_workbook(path)["Manual"]
-    typed = {place: sheet[place].value for place in places.values()}
+    higher = [cells["takeoff", TEN, figure, 8000.0, 40.0] for figure in places]
+    typed = {place: sheet[place].value for place in (*places.values(), *higher)}
     distance = "Take-off to 50 ft of the manual at its own conditions [m]"
     book = office.open(path)
     book.recalculate()
     assert column(book, path, "Take-off verdict") == SUITABLE
     assert column(book, path, distance) == pytest.approx(typed[places["distance"]], abs=1e-9)
-    book.set("Manual", dict.fromkeys(places.values(), deleted))
+    book.set("Manual", dict.fromkeys(typed, deleted))
     book.recalculate()
     assert column(book, path, "Take-off: limiting reason") == BEYOND
     assert column(book, path, "Take-off: hotter than the tables (colder: negative) [K]") == pytest.approx(10.0, abs=1e-9)
@@ -331,7 +333,7 @@ def test_one_figure_of_a_pair_deleted_is_beyond_the_book_too(office, one_strip, 
     card, path = everything(corrections=False), tmp_path / "out.xlsx"
     write_workbook(filling(one_strip, card, "manual-only", {"temperature": 40}, mass_takeoff=1000.0), path, True)
     book = office.open(path)
-    book.set("Manual", {manual_cells(path)["takeoff", TEN, "roll", 6000.0, 40.0]: None})
+    book.set("Manual", {manual_cells(path)["takeoff", TEN, "roll", height, 40.0]: None for height in (6000.0, 8000.0)})
     book.recalculate()
     assert column(book, path, "Take-off: limiting reason") == BEYOND
     book.close()
