@@ -57,13 +57,13 @@ def mean_slope(given: Number, start: Number, end: Number, length: Number) -> Num
 def adverse_uphill(slope: Number, assumed: Number, of_profile: Number) -> Number:
     """Slope for the take-off: the one that stands for the strip's profile, else its mean, else one assumed uphill."""
     mean = np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), np.abs(assumed), np.nan))
-    return np.where(np.isfinite(of_profile), of_profile, mean)
+    return first_of(of_profile, mean)
 
 
 def adverse_downhill(slope: Number, assumed: Number, of_profile: Number) -> Number:
     """The same for the landing, one assumed being downhill."""
     mean = np.where(np.isfinite(slope), slope, np.where(np.isfinite(assumed), -np.abs(assumed), np.nan))
-    return np.where(np.isfinite(of_profile), of_profile, mean)
+    return first_of(of_profile, mean)
 
 
 def first_of(of_profile: Number, otherwise: Number) -> Number:
