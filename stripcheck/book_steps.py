@@ -301,11 +301,14 @@ def climb_table_steps(power: Step | None, air: tuple[Step, ...]) -> tuple[Step, 
     return (*place, *_air_at("climb", air), *_CLIMB_SET, tas, *at, *_CLIMB_THRUST[power is None], *_CLIMB_CARRY)
 
 
+_BOOK_OF = {"takeoff": "book's conditions", "climb": "manual's climb"}
+
+
 def _air_at(side: str, air: tuple[Step, ...]) -> tuple[Step, ...]:
     """The chain's own steps of what the engine feels, in the air of the book's conditions."""
     there = {"sigma": f"{side}_book_sigma", "air_temperature": f"{side}_temperature_held", "heat": f"{side}_book_heat"}
     return tuple(
-        replace(step, key=f"{side}_book_{step.key}", label=f"{step.label}, book's conditions",
+        replace(step, key=f"{side}_book_{step.key}", label=f"{step.label}, {_BOOK_OF[side]}",
                 inputs=tuple(there.get(name, name) for name in step.inputs))
         for step in air
     )  # fmt: skip

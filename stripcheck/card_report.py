@@ -14,7 +14,7 @@ from stripcheck.calibrate import BookPoints
 from stripcheck.card import Card
 from stripcheck.caution import CAUTION
 from stripcheck.errors import InputError
-from stripcheck.sheet.stream import whole_or_not_at_all
+from stripcheck.safe_file import whole_or_not_at_all
 from stripcheck.units import from_si
 
 WIDTH = 100  # characters

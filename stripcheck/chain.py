@@ -107,7 +107,11 @@ class Chain:
 
     def depends_on_strip(self) -> set[str]:
         """Keys of all values that differ from strip to strip; the others are computed once."""
-        varying = {item.key for item in self.inputs if item.where == "strip"}
+        return self.depends_on(item.key for item in self.inputs if item.where == "strip")
+
+    def depends_on(self, keys: Iterable[str]) -> set[str]:
+        """These keys, and those of all steps that read one of them, straight or through other steps."""
+        varying = set(keys)
         for step in self.steps:
             if varying & {*step.inputs, step.guard}:
                 varying.add(step.key)

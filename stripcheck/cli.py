@@ -1,4 +1,4 @@
-"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``demo``, ``list`` and ``door``.
+"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``audit``, ``demo``, ``list`` and ``door``.
 
 Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
 130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.
@@ -15,7 +15,7 @@ from typing import Any
 
 from stripcheck import __version__
 from stripcheck.caution import CAUTION
-from stripcheck.errors import InputError
+from stripcheck.errors import InputError, one_line
 
 EPILOG = f"Exit codes: 0 done, 2 bad input (one sentence, nothing written), 130 interrupted. {CAUTION}"
 DEMO_FILE = "stripcheck-demo.xlsx"
@@ -51,6 +51,7 @@ def _parser() -> argparse.ArgumentParser:
     _add_fill(commands)
     _add_strip(commands)
     _add_card(commands)
+    _add_audit(commands)
     _add_demo(commands)
     _add_door(commands)
     listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
@@ -126,6 +127,24 @@ def _add_card(commands: Any) -> None:
     card.add_argument("--picture", metavar="FILE", help="draw the card against the manual too: .png or .svg (needs matplotlib)")
     card.add_argument("--force", action="store_true", help="replace FILE if it exists")
     card.set_defaults(run=_run_card)
+
+
+def _add_audit(commands: Any) -> None:
+    audit = commands.add_parser(
+        "audit",
+        help="what makes the verdicts from a list or a filled workbook untrustworthy, row by row",
+        description="Find what makes verdicts untrustworthy: values that are missing, absurd or contradict each other, runways "
+        "that come twice, old surveys. Each is told with a suggested correction; nothing is changed.",
+        epilog=EPILOG,
+    )
+    audit.add_argument("list", metavar="LIST", help="runway list: .csv, .xlsx, .xls or .ods; or a filled workbook")
+    audit.add_argument("--airports", metavar="FILE", help="airports file of the open runway data, to compare with")
+    audit.add_argument("--sheet", help="sheet of the list's workbook, if not the first")
+    audit.add_argument("--survey-age", type=float, metavar="YEARS", help="greatest age of a survey (usual: 5)")
+    audit.add_argument("--csv", metavar="OUT.csv", help="write all findings as a table")
+    audit.add_argument("--xlsx", metavar="OUT.xlsx", help="write all findings as a workbook, with links to the cells")
+    audit.add_argument("--force", action="store_true", help="replace the files to write if they exist")
+    audit.set_defaults(run=_run_audit)
 
 
 def _add_loading(parser: argparse.ArgumentParser) -> None:
@@ -266,6 +285,15 @@ def _run_card(options: argparse.Namespace) -> int:
     return 0
 
 
+def _run_audit(options: argparse.Namespace) -> int:
+    from stripcheck.auditing import AuditRequest, run_audit
+
+    csv, xlsx = (None if name is None else Path(name) for name in (options.csv, options.xlsx))
+    age = {} if options.survey_age is None else {"survey_age": options.survey_age}
+    request = AuditRequest(Path(options.list), options.airports, options.sheet, csv=csv, xlsx=xlsx, force=options.force, **age)
+    return _say(run_audit(request), False)
+
+
 def _run_demo(options: argparse.Namespace) -> int:
     from stripcheck.filling import demo_request, fill_list
 
@@ -274,7 +302,7 @@ def _run_demo(options: argparse.Namespace) -> int:
 
 def _say(lines: list[str], quiet: bool) -> int:
     if not quiet:
-        print("\n".join((*lines, CAUTION)))
+        print("\n".join((*map(one_line, lines), CAUTION)))
     return 0
 
 

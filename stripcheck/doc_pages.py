@@ -52,6 +52,7 @@ from stripcheck.register.columns import COLUMNS, Column
 from stripcheck.register.limits import LIMITS
 from stripcheck.rules import Rules, load_rules, shipped_rules
 from stripcheck.sheet.book import SHORT_ABOVE
+from stripcheck.sheet.labels import TABLES
 from stripcheck.sheet.method import METHOD, SOURCES
 from stripcheck.sheet.summary import BOTH
 from stripcheck.steps import (
@@ -599,7 +600,7 @@ def functions_page() -> str:
         "# Functions for the sheet",
         f"> {CAUTION}",
         MADE,
-        folded(prose.FUNCTIONS_INTRO.format(EMPTY, NO_REACH)),
+        folded(prose.FUNCTIONS_INTRO.format(EMPTY, NO_REACH, TABLES)),
         *(part for category, functions in by_category.items() for part in _functions_table(category, functions)),
     )
 

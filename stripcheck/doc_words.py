@@ -608,7 +608,8 @@ is not known, a unit that was taken for granted, and a header that is nearly one
 by itself does not change a verdict; what is missing does."""
 FUNCTIONS_INTRO = """
 The same functions work in Excel on Windows through Python ([excel.md](excel.md)) and in the other programs
-that have a door of stripcheck. Names and arguments are the same everywhere.
+that have a door of stripcheck. Names and arguments are the same everywhere. LAMBDA names, which need no
+Python, take ranges too, but not everything else that is told here: [no-python.md](no-python.md).
 
 **A cell or a range.** Every argument but aircraft, rules and unit takes one cell, a column, a row or a whole
 range, and the result has the same shape: one formula fills a column. Single cells count for all; a column
@@ -628,9 +629,14 @@ guessed.
 **Aircraft and rules** are the name of a shipped card or rule set, the path of a file of your own, which is
 read again when it has changed, or a range: the sheet Aircraft (columns A to I) or Rules (columns A to F) of a
 filled workbook as it is, such as `Aircraft!A1:I80`. A range must hold every value; blank limits and factors
-are refused. The tables of a manual stand on another sheet, so a range of the sheet Aircraft has none: the
-calibrated model answers alone, its distances can differ from the workbook's by some per cent, and the
-verdict is at best marginal, the reason being "{1}". With the name or the path of the card the tables count.
+are refused.
+
+**Tables of the manual** are in that range too: on the sheet Aircraft of a card with tables, rows with the
+manual's figures stand folded at the end, outside what is printed. They follow the sheet Manual, so that a
+figure typed over or deleted there counts. The row "{2}" tells how far the range goes, such as
+`Aircraft!A1:I201`; a range that ends before is refused. A workbook of LAMBDA names has no such rows on its
+sheet Aircraft: from that one the calibrated model answers alone, and the verdict is at best marginal, the
+reason being "{1}".
 
 **Distances without rules** count the wind as the set `manual-only` does: half of a headwind and one and a
 half times a tailwind. With rules, verdict, margin, greatest mass, hottest air and best flap follow the set.

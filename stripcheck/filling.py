@@ -23,9 +23,9 @@ from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.register import Directions, read_list
 from stripcheck.rules import load_rules
+from stripcheck.safe_file import refuse_if_open, whole_or_not_at_all
 from stripcheck.sheet import strips
 from stripcheck.sheet.book import SHORT_ABOVE, Filling, fill, write_workbook
-from stripcheck.sheet.stream import whole_or_not_at_all
 from stripcheck.units import read_quantity
 from stripcheck.verdict import VERDICTS
 
@@ -77,7 +77,7 @@ def fill_list(request: Request) -> list[str]:
     other = not is_table and request.formulas != NATIVE
     filling = fill(directions, card, day, rules, chosen, flap_names, short=not (is_table or full or other),
                    chances=request.chance)  # fmt: skip
-    instead = door_columns(request.formulas, filling, request.card) if other else None
+    instead = door_columns(request.formulas, filling) if other else None
     if is_table:
         write_csv(filling, request.output)
         cuts: list[str] = []
@@ -119,6 +119,7 @@ def _check_output(request: Request) -> None:
             raise InputError(f"{request.output}: this is the list itself; choose another name for what is written")
     if request.output.exists() and not request.force:
         raise InputError(f"{request.output}: this file exists; choose another name, or add --force to replace it")
+    refuse_if_open(request.output)  # now, and not after a long list was worked out
     if not request.output.resolve().parent.is_dir():
         raise InputError(f"{request.output}: the folder does not exist")
 
@@ -176,11 +177,11 @@ def write_csv(filling: Filling, path: Path) -> None:
 
 def _plain(values: Any) -> list[Any]:
     if not isinstance(values, np.ndarray):
-        return [_harmless(value) if isinstance(value, str) else value for value in values]
+        return [harmless(value) if isinstance(value, str) else value for value in values]
     if values.dtype == bool:
         return ["yes" if value else "no" for value in values.tolist()]
     return ["" if isnan(value) else repr(round(value, 9)) for value in values.tolist()]
 
 
-def _harmless(text: str) -> str:
+def harmless(text: str) -> str:
     return "'" + text if text.startswith(("=", "+", "-", "@", "\t", "\r")) else text

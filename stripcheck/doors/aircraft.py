@@ -4,8 +4,9 @@ A range of an Aircraft or Rules sheet has labels in its first column, values in 
 values in SI in the fourth; the flap table and the ground table stand below. Labels are those of ``stripcheck.inputs``,
 from which the sheets are made too.
 
-Tables of a manual stand on another sheet, so a range does not hold them: the calibrated model answers alone then, and since
-the workbook's own verdict could be worse, the one from the range is at best marginal.
+Tables of a manual follow at the end of a filled workbook's Aircraft sheet, as the sheet Manual has them: ``range_tables``
+reads them. A sheet that tells of no tables and not how far the manual's figures reach either, as that of the LAMBDA library
+may be, gives the calibrated model's answers, and a verdict that is at best marginal.
 """
 
 from __future__ import annotations
@@ -13,9 +14,10 @@ from __future__ import annotations
 import math
 import os
 import time
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
+from itertools import chain as joined
 from typing import Any
 
 import numpy as np
@@ -24,12 +26,13 @@ from stripcheck.assessment import Result
 from stripcheck.card import load_card
 from stripcheck.chain import Chain, Input, Step, evaluate
 from stripcheck.day import read_day
+from stripcheck.doors.range_tables import Rows, is_number, sides_told, table_values
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.inputs import REACH, STRIP, manual_inputs, table_inputs
 from stripcheck.inputs import RULES as RULE_INPUTS
 from stripcheck.rules import load_rules
-from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, FLAP_LEAST, FLAP_MOST, GROUND_HEADER, PROPELLER
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, FLAP_LEAST, FLAP_MOST, GROUND_HEADER, PROPELLER, TABLES
 from stripcheck.speeds import load_factor
 from stripcheck.steps import build_chain
 from stripcheck.surface import GROUND_NAMES
@@ -172,7 +175,7 @@ def aeroplane_of(argument: Any) -> Aeroplane:
     if isinstance(argument, str):
         return _of_card(argument, _age(argument))
     if isinstance(argument, list):
-        return _of_range(argument)
+        return _of_range(*_content(argument))
     raise InputError("Aircraft: the name of a card, or a range with the rows of an Aircraft sheet, is expected")
 
 
@@ -187,7 +190,13 @@ def _of_card(name: str, _: int) -> Aeroplane:
     return Aeroplane(card.file, card.chain, card.values, card.flaps)
 
 
-def _of_range(rows: list[list[Any]]) -> Aeroplane:
+def _content(rows: list[list[Any]]) -> tuple[tuple[tuple[Any, ...], ...], tuple[type, ...]]:
+    """A range to look up what was made of it before: its cells, and their types, since 1 and TRUE are equal."""
+    return tuple(map(tuple, rows)), tuple(map(type, joined.from_iterable(rows)))
+
+
+@lru_cache(maxsize=16)
+def _of_range(rows: Rows, _: tuple[type, ...]) -> Aeroplane:
     labels = _labels(rows)
     kinds = {}
     for label in (PROPELLER, ENGINE):
@@ -195,12 +204,24 @@ def _of_range(rows: list[list[Any]]) -> Aeroplane:
             raise _no_row(label)
         kinds[label] = str(labels[label][1])
     corrections = frozenset(side for side in REACH if manual_inputs(side)[0].label in labels)
+    tables = frozenset(sides_told(labels[TABLES][1]) if TABLES in labels else ())
     try:
-        chain = build_chain(kinds[PROPELLER], kinds[ENGINE], corrections=corrections)
+        chain = build_chain(kinds[PROPELLER], kinds[ENGINE], tables, corrections)
     except KeyError as error:
         raise InputError(f"Aircraft: {error} is no kind of propeller or engine") from None
     flaps, values = _flap_table(rows)
-    wanted = [item for item in chain.inputs if item.where == "card" and item.key not in values]
+    values |= table_values(rows, tables, len(flaps))
+    values |= _card_values(chain, labels, values)
+    if CLIMB_SPEED.label in labels and not tables:  # how far the climb tables of a sheet without them reach is not known
+        values[REACH["takeoff"].key] = math.nan
+    without_reach = frozenset(side for side, item in REACH.items() if math.isnan(values.get(item.key, 0.0)))
+    return Aeroplane("Aircraft range", chain, values, flaps, without_reach)
+
+
+def _card_values(chain: Chain, labels: Mapping[str, list[Any]], known: Collection[str]) -> dict[str, float]:
+    """The numbers of an Aircraft sheet's rows that a chain reads, SI, but those that are known already."""
+    values: dict[str, float] = {}
+    wanted = [item for item in chain.inputs if item.where == "card" and item.key not in known]
     for item in wanted:
         if item.key in ("takeoff_flap", "landing_flap"):  # names of settings, chosen for the workbook's own assessment
             values[item.key] = math.nan
@@ -210,17 +231,14 @@ def _of_range(rows: list[list[Any]]) -> Aeroplane:
             values[item.key] = math.nan
         else:
             raise _no_row(item.label)
-    if CLIMB_SPEED.label in labels:
-        values[REACH["takeoff"].key] = math.nan
-    without_reach = frozenset(side for side, item in REACH.items() if math.isnan(values[item.key]))
-    return Aeroplane("Aircraft range", chain, values, flaps, without_reach)
+    return values
 
 
 def _no_row(label: str) -> InputError:
     return InputError(f'Aircraft: the range has no row "{label}"; give the whole Aircraft sheet, columns A to I')
 
 
-def _labels(rows: list[list[Any]]) -> dict[str, list[Any]]:
+def _labels(rows: Rows) -> dict[str, list[Any]]:
     """First row of each label; four columns or more each."""
     found: dict[str, list[Any]] = {}
     for row in rows:
@@ -229,24 +247,20 @@ def _labels(rows: list[list[Any]]) -> dict[str, list[Any]]:
     return found
 
 
-def _is_number(cell: Any) -> bool:
-    return isinstance(cell, float | int) and not isinstance(cell, bool) and math.isfinite(cell)
-
-
 def _number(row: list[Any], item: Input, where: str) -> float:
     """A value in SI: column four where there is a number, else column two in the label's unit.
 
     NaN for a blank where one is allowed; raises InputError elsewhere, as no limit or factor may be lost unnoticed.
     """
     for cell, unit in ((row[3], ""), (row[1], item.unit)):
-        if _is_number(cell):
+        if is_number(cell):
             return float(to_si(float(cell), unit))
     if row[1] in (None, "") and item.key in MAY_BE_BLANK:
         return math.nan
     raise InputError(f'{where}: "{item.label}" has no number in the range')
 
 
-def _flap_table(rows: list[list[Any]]) -> tuple[list[Setting], dict[str, Any]]:
+def _flap_table(rows: Rows) -> tuple[list[Setting], dict[str, Any]]:
     start = next((i for i, row in enumerate(rows) if row[0] == FLAP_HEADER[0] and len(row) >= len(FLAP_HEADER)), None)
     if start is None:
         raise InputError("Aircraft: the range has no flap table; give the whole Aircraft sheet, columns A to I")
@@ -256,7 +270,7 @@ def _flap_table(rows: list[list[Any]]) -> tuple[list[Setting], dict[str, Any]]:
             break
         name = str(int(row[0])) if isinstance(row[0], float) and row[0].is_integer() else str(row[0])
         numbers = [row[at] for at in (3, 7, 8)]
-        if not all(_is_number(cell) for cell in numbers):
+        if not all(is_number(cell) for cell in numbers):
             raise InputError(f"Aircraft: the flap table of the range lacks a number for setting {name}")
         uses = tuple(use.split(";")[0].strip() for use in str(row[4]).split(","))
         flaps.append(Setting(name, float(row[3]), uses))
@@ -278,7 +292,7 @@ def rules_of(argument: Any) -> dict[str, Any]:
     if isinstance(argument, str):
         return _named_rules(argument, _age(argument))
     if isinstance(argument, list):
-        return _rules_of_range(argument)
+        return _rules_of_range(*_content(argument))
     raise InputError("Rules: the name of a rule set, or a range with the rows of a Rules sheet, is expected")
 
 
@@ -287,7 +301,8 @@ def _named_rules(name: str, _: int) -> dict[str, Any]:
     return dict(load_rules(name).values)
 
 
-def _rules_of_range(rows: list[list[Any]]) -> dict[str, Any]:
+@lru_cache(maxsize=16)
+def _rules_of_range(rows: Rows, _: tuple[type, ...]) -> dict[str, Any]:
     labels = _labels(rows)
     values: dict[str, Any] = {}
     for item in RULE_INPUTS:
@@ -306,7 +321,7 @@ def _flag(row: list[Any], item: Input) -> bool:
     return bool(row[1] == "yes")
 
 
-def _ground_table(rows: list[list[Any]]) -> dict[str, Any]:
+def _ground_table(rows: Rows) -> dict[str, Any]:
     start = next((i for i, row in enumerate(rows) if row[0] == GROUND_HEADER[0] and len(row) >= 6), None)
     if start is None:
         raise InputError("Rules: the range has no ground table; give the whole Rules sheet, columns A to F")
@@ -315,7 +330,7 @@ def _ground_table(rows: list[list[Any]]) -> dict[str, Any]:
     if [str(row[0]) for row in table] != list(GROUND_NAMES):
         raise InputError("Rules: the ground table of the range is not complete; give the whole Rules sheet, columns A to F")
     found: dict[str, Any] = {
-        key: np.array([*(float(row[at]) if _is_number(row[at]) else math.nan for row in table), math.nan])
+        key: np.array([*(float(row[at]) if is_number(row[at]) else math.nan for row in table), math.nan])
         for key, at in columns.items()
     }
     return found | {"reference_rolling": found["ground_rolling"][0], "reference_braking": found["ground_braking"][0]}

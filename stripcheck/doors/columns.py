@@ -9,7 +9,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from pathlib import Path
 
 import numpy as np
 
@@ -33,7 +32,6 @@ class DoorColumns:
 
     kind: str
     filling: Filling
-    card: str  # as the user named it
 
     @property
     def names(self) -> tuple[tuple[str, str, str], ...]:
@@ -60,8 +58,6 @@ class DoorColumns:
     def _reference(self, argument: Argument, side: str, layout: Layout) -> str:
         own = {"length": {"takeoff": "tora", "landing": "lda"}[side], "qnh": "qnh_used", "temperature": "air_temperature",
                "slope": f"{side}_slope"}  # fmt: skip
-        if argument.kind == "aircraft" and self.filling.card.tables:
-            return '"' + self.card.replace('"', '""') + '"'
         if argument.kind in ("aircraft", "rules"):
             return layout.ranges[argument.kind]
         if argument.key in ("mass", "flap"):
@@ -77,18 +73,16 @@ def known_rows(filling: Filling, side: str) -> list[bool]:
     known = np.broadcast_to(values[f"{side}_known"], n) & np.asarray(given[free]) & ~np.asarray(given["fault"])
     for key in UNKNOWN:
         known = known & ~np.isfinite(given[key])
-    if not filling.card.tables:  # a range that does not tell how far the figures reach has other words
-        known = known & np.isfinite(filling.card.values[f"{side}_reach"])
     crosswind = np.broadcast_to(values["crosswind"], n) <= filling.card.values["crosswind_limit"]
     known = known & crosswind & ~np.isfinite(np.broadcast_to(values["width_asked"], n))
     return [bool(one) for one in known]
 
 
-def door_columns(kind: str, filling: Filling, card: str) -> DoorColumns:
+def door_columns(kind: str, filling: Filling) -> DoorColumns:
     """The columns for a choice of ``FORMULAS`` but native. Raises InputError where the door can't give the verdicts."""
     if kind != NONE:
         _check(kind, filling)
-    return DoorColumns(kind, filling, str(Path(card).resolve()) if Path(card).suffix else card)
+    return DoorColumns(kind, filling)
 
 
 def told(columns: DoorColumns) -> list[str]:
@@ -107,8 +101,8 @@ def _check(kind: str, filling: Filling) -> None:
     if moist:
         raise InputError(f"--formulas {kind}: the functions take no humidity; leave it out, or use native formulas")
     if kind == LAMBDA and (filling.card.tables or _corrections(filling)):
-        raise InputError(f"--formulas {kind}: the manual's tables and corrections of this card are not in the LAMBDA "
-                         "functions; use native formulas")  # fmt: skip
+        raise InputError(f"--formulas {kind}: the LAMBDA functions do not read the manual's tables and corrections of this "
+                         "card, so their verdicts would not be the workbook's; use native, excel or calc")  # fmt: skip
 
 
 def _corrections(filling: Filling) -> bool:

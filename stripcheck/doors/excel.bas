@@ -235,6 +235,19 @@ failed:
     STRIP_LANDING_REASON = Err.Description
 End Function
 
+Function STRIP_LANDING_REQUIRED(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, rules, Optional condition, Optional headwind, Optional unit)
+    #If App = "Microsoft Excel" Then
+        If TypeOf Application.Caller Is Range Then On Error GoTo failed
+        STRIP_LANDING_REQUIRED = XLPy.CallUDF("stripcheck.doors.excel", "STRIP_LANDING_REQUIRED", Array(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, rules, condition, headwind, unit), ThisWorkbook, Application.Caller)
+        Exit Function
+    #Else
+        STRIP_LANDING_REQUIRED = XLPy.CallUDF("stripcheck.doors.excel", "STRIP_LANDING_REQUIRED", Array(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, rules, condition, headwind, unit))
+        Exit Function
+    #End If
+failed:
+    STRIP_LANDING_REQUIRED = Err.Description
+End Function
+
 Function STRIP_LANDING_ROLL(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, Optional condition, Optional headwind, Optional unit)
     #If App = "Microsoft Excel" Then
         If TypeOf Application.Caller Is Range Then On Error GoTo failed
@@ -415,6 +428,19 @@ Function STRIP_TAKEOFF_REASON(aircraft, mass, flap, length, elevation, qnh, temp
     #End If
 failed:
     STRIP_TAKEOFF_REASON = Err.Description
+End Function
+
+Function STRIP_TAKEOFF_REQUIRED(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, rules, Optional condition, Optional headwind, Optional unit)
+    #If App = "Microsoft Excel" Then
+        If TypeOf Application.Caller Is Range Then On Error GoTo failed
+        STRIP_TAKEOFF_REQUIRED = XLPy.CallUDF("stripcheck.doors.excel", "STRIP_TAKEOFF_REQUIRED", Array(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, rules, condition, headwind, unit), ThisWorkbook, Application.Caller)
+        Exit Function
+    #Else
+        STRIP_TAKEOFF_REQUIRED = XLPy.CallUDF("stripcheck.doors.excel", "STRIP_TAKEOFF_REQUIRED", Array(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, rules, condition, headwind, unit))
+        Exit Function
+    #End If
+failed:
+    STRIP_TAKEOFF_REQUIRED = Err.Description
 End Function
 
 Function STRIP_TAKEOFF_ROLL(aircraft, mass, flap, elevation, qnh, temperature, slope, surface, Optional condition, Optional headwind, Optional unit)

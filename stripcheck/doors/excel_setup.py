@@ -81,7 +81,7 @@ def _import(folder: Path) -> list[str]:
 
 
 def _write(path: Path, content: bytes) -> None:
-    from stripcheck.sheet.stream import whole_or_not_at_all
+    from stripcheck.safe_file import whole_or_not_at_all
 
     with whole_or_not_at_all(path) as file:
         file.write(content)

@@ -122,6 +122,7 @@ _AIR = (ELEVATION, QNH, TEMPERATURE)
 _LOADED = (AIRCRAFT, MASS, FLAP)
 _GROUND = (SLOPE, SURFACE)
 _RUN = (*_LOADED, *_AIR, *_GROUND, CONDITION, HEAD)
+_REQUIRED = (*_LOADED, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
 _FITS = (*_LOADED, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
 _LIMIT = (AIRCRAFT, FLAP, LENGTH, *_AIR, *_GROUND, RULES, CONDITION, HEAD)
 
@@ -131,6 +132,8 @@ _RUN_ON = (*_LOADED, LENGTH, *_AIR, *_GROUND, CONDITION, HEAD)
 
 _EXAMPLE_RUN = ("ridge-runner", 1000, "10", 2400, 1008, 31, 1.5, "grass")
 _EXAMPLE_LAND = ("ridge-runner", 1000, "30", 2400, 1008, 31, 1.5, "grass")
+_EXAMPLE_REQUIRED = ("ridge-runner", 1000, "10", 2400, 1008, 31, 1.5, "grass", "part-cat-b")
+_EXAMPLE_REQUIRED_LAND = ("ridge-runner", 1000, "30", 2400, 1008, 31, 1.5, "grass", "part-cat-b")
 _EXAMPLE_FITS = ("ridge-runner", 1000, "10", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
 _EXAMPLE_FITS_LAND = ("ridge-runner", 1000, "30", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
 _EXAMPLE_LIMIT = ("ridge-runner", "10", 800, 2400, 1008, 31, 1.5, "grass", "part-cat-b")
@@ -240,6 +243,10 @@ FUNCTIONS = (
              step="landing_roll"),
     Function("LANDING_DIST", DISTANCES, "Landing distance from 50 ft, without factor.", _RUN, "m", _EXAMPLE_LAND,
              step="landing_distance"),
+    Function("TAKEOFF_REQUIRED", DISTANCES, "Take-off distance to 50 ft that a rule set requires, with surface, slope and "
+             "safety factor.", _REQUIRED, "m", _EXAMPLE_REQUIRED, step="takeoff_required"),
+    Function("LANDING_REQUIRED", DISTANCES, "Landing distance from 50 ft that a rule set requires, with surface, slope and "
+             "safety factor.", _REQUIRED, "m", _EXAMPLE_REQUIRED_LAND, step="landing_required"),
     Function("TAKEOFF_FACTORED", DISTANCES, "A take-off distance with the safety factor of a rule set.", (DISTANCE, RULES),
              "m", (620, "part-cat-b"), _factored("takeoff")),
     Function("LANDING_FACTORED", DISTANCES, "A landing distance with the safety factor of a rule set.", (DISTANCE, RULES),

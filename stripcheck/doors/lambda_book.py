@@ -35,8 +35,9 @@ HEADER_ROW = 6
 NEEDS = (
     "These functions are names of this workbook: no Python, no add-in. They work where the program knows LAMBDA: Excel of "
     "Microsoft 365, Excel 2024 and later, on Windows, Mac, web and tablet. Other programs show an error in their cells.",
-    "Give every argument. Aircraft and Rules are ranges with the rows of those sheets here, or of a filled workbook. One value "
-    "at a time: fill the formula down. Names that begin STRIP_X_ are steps that the functions share.",
+    "Give every argument. Aircraft and Rules are ranges with the rows of those sheets here, or of a filled workbook. Every "
+    "other argument takes a cell or a range, and the result fills the same shape. Names that begin STRIP_X_ are steps that "
+    "the functions share.",
 )
 
 
@@ -155,7 +156,7 @@ def _typed(value: Any) -> str:
 
 def write_copy(book: Path, path: Path) -> Copied:
     """A copy of a workbook with all names. Raises InputError for what is no such workbook, and for a name in use."""
-    from stripcheck.sheet.stream import whole_or_not_at_all
+    from stripcheck.safe_file import whole_or_not_at_all
 
     try:
         source = zipfile.ZipFile(book)

@@ -5,6 +5,9 @@ the parameters, as a filled workbook's formulas are made; each step is a variabl
 name of its own, ``STRIP_X_...``, which every function that needs it calls: formulas stay within a program's limits. Such
 names take SI and are not meant to be typed. What can't be written so is listed with its reason.
 
+A function takes cells and ranges as ``stripcheck.doors.call`` does. Its work for one cell is a name ``STRIP_X_..._ONE``; the
+function's own name calls that once where all values are single, else for every cell of the result, which spills.
+
 In the file a parameter is written ``_xlpm.x``, and a function newer than the format ``_xlfn.LET``; a program shows them
 without these.
 """
@@ -23,7 +26,8 @@ import numpy as np
 
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.doors.aircraft import CLIMB_SPEED, MAY_BE_BLANK, NO_BANK, NO_REACH, NO_WORDS, Aeroplane
-from stripcheck.doors.functions import FUNCTIONS, Argument, Function
+from stripcheck.doors.call import EMPTY, WHOLE
+from stripcheck.doors.functions import CONDITION, FLAP, FUNCTIONS, SURFACE, Argument, Function
 from stripcheck.inputs import POWER_LIMIT, REACH, manual_inputs
 from stripcheck.sheet.cell import BLANK, MAX_DEPTH, MAX_LENGTH, Cell, as_cell, call, reference, shown, where
 from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
@@ -35,6 +39,7 @@ from stripcheck.verdict import BEYOND, NOT_ASSESSED
 STEP = "STRIP_X_"
 LONG_STEP = 100  # characters from which a step's formula is a name of its own
 MAX_PAIRS = 126  # names and values in one LET, an Excel limit
+ARRAY_TYPE = 64  # what TYPE gives for an array
 MAX_COMMENT = 255  # characters of a name's comment, an Excel limit
 AIRCRAFT_SHEET, RULES_SHEET = "columns A to I of the whole Aircraft sheet", "columns A to F of the whole Rules sheet"
 # values that hang on the air or on the loading alone, and are names of their own: a function is spared what leads to them
@@ -45,7 +50,7 @@ INVERSE = "it looks for its answer by trying, which a formula without a program 
 UNITS_BY_NAME = "it reads units by their names"
 NO_CORRECTIONS = "the corrections of the manual on this Aircraft sheet are not in this function: use the filled workbook"
 NO_REACH_HERE = NO_REACH.split(":")[0]  # without the advice to give a card's name, which these functions can't take
-ONE_VALUE = "one value at a time: fill the formula down"
+ONE_VALUE = "one value at a time: call the function that this is a step of"
 
 
 @dataclass(frozen=True)
@@ -183,7 +188,9 @@ class _Writer:
     def write(self, function: Function) -> None:
         body = self._assessed(function) if function.step else self._computed(function)
         keys = [argument.key for argument in function.arguments]
-        self.names.append(_name(function.full_name, lambda_of(list(map(parameter, keys)), body), _comment(function)))
+        one = self.step(f"{function.name}_ONE", keys, body, f"Called by {function.full_name} for each cell of its result.")
+        whole = _for_ranges(function, one)
+        self.names.append(_name(function.full_name, lambda_of(list(map(parameter, keys)), whole), _comment(function)))
 
     def step(self, key: str, parameters: list[str], body: str, comment: str) -> str:
         """A name for what several functions share, made once."""
@@ -543,6 +550,29 @@ def _si_of(argument: Argument) -> Cell:
     return reference(text, KINDS[argument.kind][0])
 
 
+def _for_ranges(function: Function, one: str) -> str:
+    """A call for one value, or one for every cell of the shape that the ranges have together.
+
+    Single values count for all cells, a column for all columns, a row for all rows; an aircraft and rules are whole ranges.
+    """
+    rows, columns, row, column = map(parameter, ("rows", "columns", "row", "column"))
+    keys = [parameter(argument.key) for argument in function.arguments]
+    spread = [parameter(argument.key) for argument in function.arguments if argument.kind not in WHOLE]
+
+    def at(row: str, column: str) -> str:
+        return f"{one}({','.join(f'{STEP}AT({key},{row},{column})' if key in spread else key for key in keys)})"
+
+    each = f"_xlfn.MAKEARRAY({rows},{columns},{lambda_of([row, column], at(row, column))})"
+    shapes = '""'
+    for key in spread:
+        shapes = f"{STEP}SHAPES({shapes},{key})"
+    fits = ",".join(f"{STEP}FITS({key},{rows},{columns})" for key in spread)
+    differ = f'"the ranges have different shapes: "&MID({shapes},6,999)&" cells; give ranges of one shape"'
+    sides = [(side, f"MAX({','.join(f'{STEP}{name}({key})' for key in spread)})")
+             for side, name in ((rows, "ROWS"), (columns, "COLUMNS"))]  # fmt: skip
+    return let(sides, f"IF({rows}*{columns}=1,{at('1', '1')},IF(AND({fits}),{each},{differ}))")
+
+
 def _checked(function: Function, then: str) -> str:
     """What follows where every number argument is one number; else a sentence on the first that is none."""
     numbers = [argument for argument in function.arguments if argument.kind in KINDS]
@@ -551,7 +581,7 @@ def _checked(function: Function, then: str) -> str:
     sentence = _text(ONE_VALUE)
     for argument in reversed(numbers):
         unit = KINDS[argument.kind][0]
-        wrong = _text(f"{argument.name}: a number{f' [{unit}]' if unit else ''} is needed")
+        wrong = _wrong(argument, _text(f"a number{f' [{unit}]' if unit else ''} is needed"))
         sentence = f"IF(ISNUMBER({parameter(argument.key)}),{sentence},{wrong})"
     tests = [f"ISNUMBER({parameter(argument.key)})" for argument in numbers]
     tests.append(f"COUNT({','.join(parameter(argument.key) for argument in numbers)})={len(numbers)}")
@@ -585,12 +615,17 @@ def _first_line(function: Callable[..., Any]) -> str:
     return (inspect.getdoc(function) or function.__name__.replace("_", " ")).split("\n")[0]
 
 
+def _wrong(argument: Argument, what: str) -> str:
+    """The sentence on an argument's cell: that it is empty or holds an error, or else the words of a formula."""
+    return f"{STEP}WRONG({parameter(argument.key)},{_text(argument.name)},{what})"
+
+
 def _exactly_one_of(variable: str, words: tuple[str, ...]) -> str:
-    return f"SUMPRODUCT(--EXACT({variable},{_word_list(words)}))=1"
+    return f"IFERROR(SUMPRODUCT(--EXACT({variable},{_word_list(words)}))=1,FALSE)"
 
 
-def _none_of(name: str, variable: str, words: tuple[str, ...]) -> str:
-    return f'"{name}: """&{variable}&""" is none of: {", ".join(words)}"'
+def _none_of(argument: Argument, words: tuple[str, ...]) -> str:
+    return _wrong(argument, f'""""&{parameter(argument.key)}&""" is none of: {", ".join(words)}"')
 
 
 def _helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
@@ -607,16 +642,16 @@ def _helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
     row = (f"(MATCH({p('surface')},{_word_list(SURFACES)},0)-1)*{len(CONDITIONS)}"
            f"+MATCH({p('condition')},{_word_list(CONDITIONS)},0)")  # fmt: skip
     by_condition = (f"IF({_exactly_one_of(p('condition'), CONDITIONS)},{row},"
-                    f"{_none_of('Condition', p('condition'), CONDITIONS)})")  # fmt: skip
+                    f"{_none_of(CONDITION, CONDITIONS)})")  # fmt: skip
     ground = (f"IF({_exactly_one_of(p('surface'), SURFACES)},{by_condition},"
-              f"{_none_of('Surface', p('surface'), SURFACES)})")  # fmt: skip
+              f"{_none_of(SURFACE, SURFACES)})")  # fmt: skip
     at = [f"INDEX({p('aircraft')},{p('row')},{column})" for column in (1, 4, 8, 9, 5)]
     name = f'{p("flap")}&""'
     is_setting = (f"IFERROR(AND(COUNT({p('row')})=1,{p('row')}>{p('head')},EXACT({at[0]}&\"\",{name}),ISNUMBER({at[1]}),"
                   f"ISNUMBER({at[2]}),ISNUMBER({at[3]})),FALSE)")  # fmt: skip
     allowed = f"OR({p('use')}=\"\",ISNUMBER(SEARCH({p('use')},{at[4]})))"
     refused = f'"Flap: """&{p("flap")}&""" is not allowed for "&{p("use")}&" by the card"'
-    unknown = f'"Flap: the flap table has no setting """&{p("flap")}&""""'
+    unknown = _wrong(FLAP, f'"the flap table has no setting """&{p("flap")}&""""')
     no_table = _text(f"Aircraft: the range has no flap table; give {AIRCRAFT_SHEET}")
     labels = f"INDEX({p('aircraft')},0,1)"
     told = f"IF({is_setting},IF({allowed},{p('row')},{refused}),{unknown})"
@@ -632,4 +667,33 @@ def _helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
     }
 
 
-_HELPERS = _helpers()
+def _range_helpers() -> dict[str, tuple[tuple[str, ...], str, str]]:
+    """Names by which a function takes ranges, and tells what is wrong with a cell: key -> parameters, body, comment."""
+    p = parameter
+    cells = p("cells")
+    single = f"{STEP}ROWS({cells})*{STEP}COLUMNS({cells})=1"
+    place = ",".join(f"IF({STEP}{side}({cells})=1,1,{p(key)})" for side, key in (("ROWS", "row"), ("COLUMNS", "column")))
+    one, of_many = f"INDEX({cells},1,1)", f"INDEX({cells},{place})"
+    # a blank cell as a text, since it must not count as 0 on its way; an array of one value is no single value yet
+    at = (f'IF({single},IF(TYPE({cells})={ARRAY_TYPE},{one},IF(ISBLANK({cells}),"",{cells})),'
+          f'IF(ISBLANK({of_many}),"",{of_many}))')  # fmt: skip
+    fits = ",".join(f"OR({STEP}{side}({cells})=1,{STEP}{side}({cells})={p(side.lower())})" for side in ("ROWS", "COLUMNS"))
+    told, shape = p("told"), p("shape")
+    known = f'ISNUMBER(SEARCH({shape}&" and ",{told}&" and "))'
+    shapes = let([(shape, f'" and "&{STEP}ROWS({cells})&" x "&{STEP}COLUMNS({cells})')],
+                 f"IF({single},{told},IF({known},{told},{told}&{shape}))")  # fmt: skip
+    wrong = (f'{p("name")}&": "&IF(ISERROR({p("cell")}),"the cell holds an error",'
+             f'IF({p("cell")}="",{_text(EMPTY)},{p("what")}))')  # fmt: skip
+    return {
+        # what is not there counts as a single value, and is told as wrong by what reads it
+        "rows": (("cells",), f"IFERROR(ROWS({cells}),1)", "Rows of a range; 1 of a single value."),
+        "columns": (("cells",), f"IFERROR(COLUMNS({cells}),1)", "Columns of a range; 1 of a single value."),
+        "at": (("cells", "row", "column"), at,
+               "What counts of an argument in a cell of the result: its one value, row or column counts for all."),
+        "fits": (("cells", "rows", "columns"), f"AND({fits})", "Whether an argument goes with a result of that shape."),
+        "shapes": (("told", "cells"), shapes, "The shapes told so far, and that of one more range."),
+        "wrong": (("cell", "name", "what"), wrong, "What is wrong with a cell, in words."),
+    }
+
+
+_HELPERS = _range_helpers() | _helpers()

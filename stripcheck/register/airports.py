@@ -13,19 +13,24 @@ from stripcheck.units import to_si
 
 
 class Airport(NamedTuple):
-    """An airfield: name, elevation [m] (NaN = not given or not usable), type as the file spells it."""
+    """An airfield: name, elevation [m], type as the file spells it, latitude and longitude [rad].
+
+    NaN = not given or not usable.
+    """
 
     name: str
     elevation: float
     type: str
+    latitude: float = math.nan
+    longitude: float = math.nan
 
 
 def read_airports(path: str | Path, wanted: set[str]) -> dict[str, Airport]:
     """Airfields of an airports file in the layout of the open data: columns ident, name, elevation_ft, type.
 
     ``wanted``: identifiers to keep; the rest of the file is passed over. Raises InputError when the file
-    can't be read or one of the columns is missing. An elevation that is no number, or one outside of the
-    limits of ``limits.LIMITS``, counts as not given.
+    can't be read or one of the columns is missing; latitude_deg and longitude_deg may be missing. A number that is none,
+    or one outside of the limits of ``limits.LIMITS``, counts as not given.
 
     >>> read_airports("no such airports.csv", set())
     Traceback (most recent call last):
@@ -44,17 +49,20 @@ def read_airports(path: str | Path, wanted: set[str]) -> dict[str, Airport]:
         )
     places = [header.index(name) for name in ("ident", "name", "elevation_ft", "type")]
     ident_at = places[0]
+    where = [header.index(name) if name in header else len(header) for name in ("latitude_deg", "longitude_deg")]
     found = {}
     for row in rows:
         if len(row) > max(places) and row[ident_at].strip() in wanted:
             ident, name, elevation, kind = (row[place].strip() for place in places)
-            found[ident] = Airport(name, _feet(elevation), kind)
+            latitude, longitude = (row[place] if place < len(row) else "" for place in where)
+            found[ident] = Airport(name, _number(elevation, "ft", "elevation"), kind, _number(latitude, "°", "latitude"),
+                                   _number(longitude, "°", "longitude"))  # fmt: skip
     return found
 
 
-def _feet(text: str) -> float:
+def _number(text: str, unit: str, key: str) -> float:
     try:
-        elevation = to_si(float(text), "ft")
+        number = to_si(float(text), unit)
     except ValueError:
         return math.nan
-    return elevation if within_limits("elevation", elevation) else math.nan
+    return number if within_limits(key, number) else math.nan

@@ -52,7 +52,7 @@ def _check_thresholds(runways: Runways) -> None:
     for end in (1, 2):
         beyond = np.flatnonzero(runways.at_end("displaced", end) >= length)
         message = "the displaced threshold lies beyond the other end of the runway; check it and the length"
-        _add(runways, beyond, "displaced", message)
+        _add(runways, beyond, "displaced", message, end)
         runways.unreadable.setdefault(("displaced", end), []).extend(int(index) for index in beyond)
 
 

@@ -11,7 +11,7 @@ from __future__ import annotations
 import codecs
 import csv
 from collections.abc import Iterable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from itertools import islice
 from pathlib import Path
 
@@ -33,7 +33,7 @@ class Table:
     file. ``headers``: as written; ``header_row``: their row. ``cells``: one list for each header, all of the
     same length. ``row_numbers``: the row of each in the file, as a spreadsheet shows it (1 = first).
     ``too_wide``: index -> number of cells of a text row that has more cells than the header. ``delimiter``:
-    "" for a workbook.
+    "" for a workbook. ``places``: column of each header in the file (1 = first).
     """
 
     where: str
@@ -45,6 +45,7 @@ class Table:
     row_numbers: list[int]
     too_wide: dict[int, int]
     delimiter: str
+    places: list[int] = field(default_factory=list)
 
 
 def read_table(path: str | Path, sheet: str | None = None) -> Table:
@@ -238,5 +239,6 @@ def _drop_blank_columns(table: Table) -> None:
         for place, header in enumerate(table.headers)
         if header != f"(column {place + 1})" or not _is_empty(table.cells[place])
     ]
+    table.places = [place + 1 for place in keep]
     table.headers = [table.headers[place] for place in keep]
     table.cells = [table.cells[place] for place in keep]

@@ -15,6 +15,7 @@ for both ends.
 from __future__ import annotations
 
 from collections import Counter
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TypeVar
 
@@ -25,16 +26,36 @@ from stripcheck.errors import InputError
 from stripcheck.register.airports import Airport, read_airports
 from stripcheck.register.checks import allowed_directions, check_all, check_one_way
 from stripcheck.register.columns import near_misses
-from stripcheck.register.direction_numbers import Doubt, direction_numbers
+from stripcheck.register.direction_numbers import Doubt, Pair, direction_numbers
 from stripcheck.register.directions import Directions, LeftOut
 from stripcheck.register.left_out import Reason, reasons_to_leave_out
-from stripcheck.register.read_table import read_table
+from stripcheck.register.read_table import Table, read_table
 from stripcheck.register.runways import Runways, runways_of
 from stripcheck.register.surface_words import Surface, known_condition, read_surface, worse_condition
 from stripcheck.units import KINDS
 
 T = TypeVar("T")
 Texts = dict[str, tuple[list[str], list[str]]]  # of the directions that begin at end 1, and at end 2
+
+
+@dataclass(frozen=True)
+class Reading:
+    """All runways of a list as read, also those that are left out.
+
+    ``known``: the airfield of each, None where there is none. ``surfaces``: what each spelling means. ``reasons``: why a
+    runway is left out, None for one that is kept. ``texts``, ``numbers``: of both directions, SI, keys of ``Directions``.
+    ``doubts``: about each runway. ``cell_faults``: how many of ``runways.faults``, the first ones, are about a single
+    value; the others are about values that contradict each other or a way that is not told.
+    """
+
+    runways: Runways
+    known: list[Airport | None]
+    surfaces: list[Surface]
+    reasons: list[Reason | None]
+    texts: Texts
+    numbers: dict[str, Pair]
+    doubts: list[Doubt]
+    cell_faults: int
 
 
 def read_list(
@@ -62,31 +83,42 @@ def read_list(
     """
     path = Path(path)
     table = read_table(path, sheet)
-    runways = runways_of(table)
-    known = _join_airports(runways, path, airports)
-    surfaces = [read_surface(text) for text in runways.spellings("surface")]
-    reasons = reasons_to_leave_out(runways, surfaces, [airport.type if airport else "" for airport in known])
+    reading = read_runways(table, path, airports)
+    runways, texts, reasons = reading.runways, reading.texts, reading.reasons
     kept = np.array([index for index, reason in enumerate(reasons) if reason is None], dtype=np.intp)
-    texts = _texts(runways, known, surfaces)
-    check_all(runways)
-    field = np.array([airport.elevation if airport else np.nan for airport in known])
-    numbers, doubts = direction_numbers(runways, field)
-    doubts += _doubts_about_texts(runways, surfaces)
     faults = _fault_texts(runways, kept, strict)
     texts["fault"] = faults, faults
     return Directions(
         n=2 * len(kept),
-        numbers={key: _pair_up(*pair, kept) for key, pair in numbers.items()},
+        numbers={key: _pair_up(*pair, kept) for key, pair in reading.numbers.items()},
         texts={key: _interleave(*pair, kept) for key, pair in texts.items()},
         carried={table.headers[at]: _interleave(table.cells[at], table.cells[at], kept) for at in runways.carried},
         left_out=_list_left_out(runways, texts, reasons),
-        doubts=_doubts_about_headers(runways) + _list_doubts(runways, texts, doubts, kept),
+        doubts=doubts_about_headers(runways) + _list_doubts(runways, texts, reading.doubts, kept),
         source=table.source,
         rows_read=runways.count,
         profiles=_interleave(
             runways.profiles, [profile and profile.reversed() for profile in runways.profiles], kept
         ),
     )
+
+
+def read_runways(table: Table, path: Path, airports: str | Path | None = None) -> Reading:
+    """The runways of a raw list with all that is found out about them; ``path``, ``airports`` as in ``read_list``.
+
+    Raises InputError for a header row that can't be used; mistakes in a row are in ``runways.faults``.
+    """
+    runways = runways_of(table)
+    cell_faults = len(runways.faults)
+    known = _join_airports(runways, path, airports)
+    surfaces = [read_surface(text) for text in runways.spellings("surface")]
+    reasons = reasons_to_leave_out(runways, surfaces, [airport.type if airport else "" for airport in known])
+    texts = _texts(runways, known, surfaces)
+    check_all(runways)
+    field = np.array([airport.elevation if airport else np.nan for airport in known])
+    numbers, doubts = direction_numbers(runways, field)
+    doubts += _doubts_about_texts(runways, surfaces)
+    return Reading(runways, known, surfaces, reasons, texts, numbers, doubts, cell_faults)
 
 
 def _join_airports(runways: Runways, path: Path, airports: str | Path | None) -> list[Airport | None]:
@@ -175,7 +207,7 @@ def _doubts_about_texts(runways: Runways, surfaces: list[Surface]) -> list[Doubt
     return doubts + [Doubt(index, "strip not named", why) for index, pair in enumerate(nameless) if not any(pair)]
 
 
-def _doubts_about_headers(runways: Runways) -> list[LeftOut]:
+def doubts_about_headers(runways: Runways) -> list[LeftOut]:
     """A doubt for each header that is nearly a known one, and for each that leaves the unit to the default."""
     row = runways.table.header_row
     doubts = [

@@ -27,7 +27,6 @@ from stripcheck.sheet.formulas import write_formulas
 from stripcheck.sheet.stream import Column as AnyColumn
 from stripcheck.sheet.stream import FormulaColumn, NumberColumn, Table, TextColumn, write_book
 from stripcheck.units import from_si, tidy
-from stripcheck.verdict import FAULT
 
 SHORT_ABOVE = 2000  # directions above which a list is long, and gets the short detail unless told otherwise
 
@@ -53,14 +52,7 @@ class Filling:
 
     def shown(self, step: Step) -> Any:
         """A step's values as its column shows them: numbers in its unit, truths, or texts."""
-        values = np.broadcast_to(self.values[step.key], self.directions.n)
-        if step.words:
-            faults = self.directions.texts["fault"]
-            return [faults[i] if step.words[n - 1] == FAULT else step.words[n - 1]
-                    for i, n in enumerate(values.astype(int).tolist())]  # fmt: skip
-        if step.lookup.startswith("ground_"):
-            return [value if np.isfinite(value) else pages.NO_FIGURE for value in values.tolist()]
-        return values if step.truth else np.asarray(from_si(values.astype(float), step.unit))
+        return strips.shown(step, self.values[step.key], self.directions.texts["fault"])
 
     def counts(self) -> dict[str, dict[str, int]]:
         """How many strips have each verdict, in and out, and each pair of them."""
@@ -144,7 +136,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
 
     summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in _FACTS), "Rules"])
     strips.write_skeleton(made, columns, directions.n, f"{filling.card.name}: every direction")
-    aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names)
+    aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names, tables_follow=True)
     manual_tables.write_manual(made, filling.card, filling.values)
     pages.write_day(made, filling.day)
     pages.write_rules(made, filling.rules)
@@ -158,6 +150,7 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     made.places.update(strips.places_of(columns, chain))
     formulas = write_formulas(chain, made.places)
     pages.fill_steps(made, aircraft, row, once, formulas, filling.values)
+    manual_tables.write_as_rows(made, aircraft, filling.card, filling.values)
     _fill_facts(made, summary_sheet, filling)
     summary.write_counts(made, summary_sheet, count, filling.counts())
 

@@ -13,7 +13,7 @@ import numpy as np
 
 from stripcheck import ground_run
 from stripcheck.chain import Chain, Input, Step
-from stripcheck.interpolation import HAIR
+from stripcheck.interpolation import HAIR, SAME_FLAP
 from stripcheck.links import GROUND_UNKNOWN
 from stripcheck.sheet.cell import ADD, ATOM, BLANK, COMPARE, Cell, as_cell, call, formula, reference, shown, where
 from stripcheck.verdict import FAULT
@@ -80,6 +80,10 @@ class _Writer:
         return self.guarded(item, self.expression(item, holding | self.held(item)), holding)
 
     def expression(self, step: Step, holding: frozenset[str]) -> Cell:
+        side = step.key.split("_")[0]
+        if step.lookup in _IN_STACK and f"{side}_lines" in self.places:
+            lines, columns = (Cell(self.places[f"{side}_{part}"].reference, many=True) for part in ("lines", "columns"))
+            return _IN_STACK[step.lookup](lines, columns, *(self.value(key, holding) for key in step.inputs))
         if step.lookup in _IN_TABLES:
             function, count = _IN_TABLES[step.lookup]
             return function(*(self.value(key, holding) for key in step.inputs[:count]))
@@ -167,6 +171,54 @@ _IN_TABLES: dict[str, tuple[Callable[..., Cell], int]] = {
     "hot edge": (_edge("MIN"), 2),
     "cold edge": (_edge("MAX"), 2),
     "top edge": (lambda top: Cell(top.text), 1),
+}
+
+
+def _page_share(mass: Cell, flap: Cell, page_mass: Cell, page_flap: Cell, below: Cell, above: Cell) -> str:
+    """Weight of each line's page, as an array; what ``interpolation.page_weight`` gives."""
+    m, page, low, high = mass.within(ATOM), page_mass.text, below.text, above.text
+    rising = f"({m}<={page})*({m}>{low})*({m}-{low})/({page}-{low})"
+    falling = f"({m}>{page})*({m}<{high})*({high}-{m})/({high}-{page})"
+    return f"(ABS({flap.text}-{page_flap.text})<{SAME_FLAP})*({rising}+{falling})"
+
+
+def _near(place: Cell, nodes: Cell) -> str:
+    """Weight of each node at a position, as an array; what ``interpolation.near`` gives."""
+    apart = f"ABS({place.text}-{nodes.text})"
+    return f"({apart}<1)*(1-{apart})"
+
+
+def _stacked_figure(lines: Cell, columns: Cell, table: Cell, row: Cell, column: Cell, *page: Cell) -> Cell:
+    text = f"{_page_share(*page)}*{_near(row, lines)}*{_near(column, columns)}*{table.text}"
+    return Cell(f"SUMPRODUCT({text})", ATOM, 3 + max(row.depth, column.depth))
+
+
+def _stacked_edge(hot: bool) -> Callable[..., Cell]:
+    """The nearest edge of the lines that count, of all pages that count; what ``hot_edge`` and ``cold_edge`` give.
+
+    MAX swallows the whole array here, as it must; SUMPRODUCT around it makes every program take it as one.
+    """
+
+    def edge(lines: Cell, columns: Cell, at: Cell, row: Cell, *page: Cell) -> Cell:
+        counts = f"({_page_share(*page)}>{HAIR:.6f})*({_near(row, lines)}>{HAIR:.6f})"
+        farthest = f"SUMPRODUCT(MAX({counts}*({_FAR_OFF:.0f}{'-' if hot else '+'}{at.text})))"
+        return Cell(f"{_FAR_OFF:.0f}-{farthest}" if hot else f"{farthest}-{_FAR_OFF:.0f}", ADD, row.depth + 4)
+
+    return edge
+
+
+def _stacked_top(lines: Cell, columns: Cell, highest: Cell, *page: Cell) -> Cell:
+    counts = f"({_page_share(*page)}>{HAIR:.6f})"
+    return Cell(f"{_FAR_UP:.0f}-SUMPRODUCT(MAX({counts}*({_FAR_UP:.0f}-{highest.text})))", ADD, 4)
+
+
+_FAR_OFF, _FAR_UP = 1000.0, 100000.0  # K and m: beyond any edge, and near enough to leave an edge its digits
+# the same where every row has a mass and flap of its own: over the stack of all pages (`sheet.manual_stack`)
+_IN_STACK: dict[str, Callable[..., Cell]] = {
+    "table": _stacked_figure,
+    "hot edge": _stacked_edge(hot=True),
+    "cold edge": _stacked_edge(hot=False),
+    "top edge": _stacked_top,
 }
 
 

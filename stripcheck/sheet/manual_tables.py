@@ -23,14 +23,14 @@ from stripcheck.card import Card
 from stripcheck.caution import CAUTION
 from stripcheck.inputs import SIDE_WORDS
 from stripcheck.interpolation import FAR, HAIR
-from stripcheck.sheet import styles
+from stripcheck.sheet import labels, styles
 from stripcheck.sheet.cell import Cell, formula, reference, where
 from stripcheck.sheet.formulas import Place
 from stripcheck.sheet.pages import Pages, write_header, write_heading
 from stripcheck.units import UNITS, from_si, tidy, to_si
 
 SHEET = "Manual"
-FIGURES = {"roll": ("Roll", "m"), "distance": ("Over 50 ft", "m"), "rate": ("Rate of climb", "ft/min")}
+FIGURES = labels.FIGURES
 IN_SI = {"m": "m", "ft/min": "m/s"}  # the tables as loaded are in SI
 FIRST = 3  # column of the first temperature: the altitude and its SI value stand before it
 LEGENDS = (
@@ -38,6 +38,11 @@ LEGENDS = (
     "manual's: the model carries the nearest figure on, and what needs them is beyond the book, at best marginal.",
     "As loaded: for the mass and flap on the sheet Aircraft, linear between the pages below. The formulas of the strips read "
     "these by name; those on grey are not the manual's.",
+)
+AS_ROWS = "Figures of the manual, as the sheet Manual has them (rows folded below)"
+AS_ROWS_LEGEND = (
+    "Read by functions that are given this sheet as their aircraft. Type over figures on the sheet Manual, not here. "
+    f'"{labels.CARRIED.strip()}" behind a figure: the manual has none there, the model carries the nearest on.'
 )
 
 
@@ -52,11 +57,10 @@ def write_manual(pages: Pages, card: Card, values: Mapping[str, Any]) -> Workshe
     for line, legend in enumerate(LEGENDS, 3):
         sheet[f"A{line}"], sheet[f"A{line}"].font = legend, styles.SMALL
     sheet.column_dimensions["A"].width, sheet.column_dimensions["B"].width = 24, 13
-    row = 6
-    for number, tables in enumerate(card.tables.values()):
+    for number, side in enumerate(_sides(pages, sheet, card, values)):
         if number:
-            sheet.row_breaks.append(Break(id=row - 1))  # each side begins a page of the print
-        row = _Side(pages, sheet, card, tables, values, row).write()
+            sheet.row_breaks.append(Break(id=side.row - 1))  # each side begins a page of the print
+        side.write()
     for column in range(FIRST, sheet.max_column + 1):
         sheet.column_dimensions[get_column_letter(column)].width = 10.5
     sheet.freeze_panes = "B5"
@@ -64,10 +68,43 @@ def write_manual(pages: Pages, card: Card, values: Mapping[str, Any]) -> Workshe
     return sheet
 
 
+def write_as_rows(pages: Pages, aircraft: Worksheet, card: Card, values: Mapping[str, Any]) -> None:
+    """The manual's figures as rows at the end of the sheet Aircraft, live from the sheet Manual, for who reads it as a range.
+
+    Folded, and outside what is printed; a row by the aeroplane's other facts tells how far the range goes.
+    """
+    if not card.tables:
+        return
+    last = aircraft.max_row
+    aircraft.print_area = f"A1:I{last}"
+    heading = last + 2
+    write_heading(aircraft, heading, AS_ROWS)
+    aircraft[f"A{heading + 1}"], aircraft[f"A{heading + 1}"].font = AS_ROWS_LEGEND, styles.SMALL
+    row = heading + 2
+    for side in _sides(pages, pages.book[SHEET], card, values):
+        row = side.write_as_rows(aircraft, row)
+    aircraft.row_dimensions.group(heading + 1, row - 1, outline_level=1, hidden=True)
+    aircraft.row_dimensions[heading].collapsed = True
+    aircraft.sheet_properties.outlinePr.summaryBelow = False
+    told = next(cell.row for cell in aircraft["A"] if cell.value == labels.TABLES)
+    note = aircraft[f"E{told}"]
+    note.value = f"As a range for the functions: {aircraft.title}!A1:I{row - 1}, with the folded rows at the end"
+    note.font, note.alignment = styles.SMALL, styles.INDENT
+
+
 def _as_typed(value: float, unit: str) -> float:
     """The number that a cell shows for a value [SI]: without the noise of a conversion, unless it is none."""
     plain = tidy(from_si(value, unit))
     return plain if abs(to_si(plain, unit) - value) <= 1e-14 * abs(value) else float(from_si(value, unit))
+
+
+def _sides(pages: Pages, sheet: Worksheet, card: Card, values: Mapping[str, Any]) -> list[_Side]:
+    """The sides, one below the other."""
+    sides: list[_Side] = []
+    for tables in card.tables.values():
+        row = sides[-1].next_row if sides else 6
+        sides.append(_Side(pages, sheet, card, tables, values, row))
+    return sides
 
 
 class _Side:
@@ -85,15 +122,84 @@ class _Side:
         self.weights = interpolation.page_weight(
             self.mass, self.flap, pages_array[:, 1], pages_array[:, 0], tables.below(), tables.above()
         )
+        lines = len(tables.altitudes)
+        self.page_rows = [row + lines + 5 + i * (lines + 3) for i in range(len(tables.pages))]
+        self.settings_row = self.page_rows[-1] + lines + 4
+        self.next_row = self.settings_row + len(card.flaps) + 2
 
-    def write(self) -> int:
-        """All blocks; returns the next free row."""
-        lines = len(self.tables.altitudes)
-        page_rows = [self.row + lines + 5 + i * (lines + 3) for i in range(len(self.tables.pages))]
-        for number, row in enumerate(page_rows):
+    def write(self) -> None:
+        """All blocks."""
+        for number, row in enumerate(self.page_rows):
             self._page(row, number)
-        self._today(page_rows)
-        return self._settings(page_rows[-1] + lines + 4) + 2
+        self._today(self.page_rows)
+        self._settings(self.settings_row)
+
+    def write_as_rows(self, aircraft: Worksheet, row: int) -> int:
+        """The same as rows of labels and values on another sheet; returns the next free row."""
+        side, tables = self.tables.side, self.tables
+        rows: list[tuple[str, str, list[Any]]] = [
+            (labels.table_row(side, "figures"), "of the manual", [FIGURES[figure][0].lower() for figure in tables.printed]),
+            (labels.table_row(side, "pages"), "how many", [len(tables.pages)]),
+            (labels.table_row(side, "temperatures"), "°C", [self._live(at) for at in self._temperature_cells()]),
+            (labels.table_row(side, "pressure altitudes"), "ft",
+             [self._live(f"A{self.row + 3 + i}") for i in range(len(tables.altitudes))]),
+        ]  # fmt: skip
+        for i, flap in enumerate(self.card.flaps, 1):
+            cells = [self._live(f"{letter}{self.settings_row + i}") for letter in "BCD"]
+            rows.append((labels.table_row(side, f"setting {i}"), f"flap {flap.name}; tables [rad], from, to [kg]", cells))
+        for number in range(len(tables.pages)):
+            rows += self._page_as_rows(number)
+        for label, rest, cells in rows:
+            row = self._write_row(aircraft, row, label + labels.REST + rest, cells)
+        return row
+
+    def _page_as_rows(self, number: int) -> list[tuple[str, str, list[Any]]]:
+        """Label, what the reader is told, and cells, of a page and each of its lines."""
+        side, tables = self.tables.side, self.tables
+        deflection, mass = tables.pages[number]
+        told = f"{self._page_name(number)}; mass [kg], flap [rad]"
+        rows: list[tuple[str, str, list[Any]]] = [(labels.table_row(side, f"page {number + 1}"), told, [mass, deflection])]
+        for figure in tables.filled:
+            for i, altitude in enumerate(tables.altitudes):
+                label = labels.figure_row(side, figure, number + 1, i + 1)
+                cells = [self._used(figure, number, i, j) for j in range(len(tables.temperatures))]
+                rows.append((label, f"{from_si(altitude, 'ft'):,.0f} ft", cells))
+        return rows
+
+    def _write_row(self, aircraft: Worksheet, row: int, label: str, cells: list[Any]) -> int:
+        """Values, and formulas with the value that they have now, beside a label; as many rows as they need."""
+        for start in range(0, len(cells), labels.VALUES_IN_ROW):
+            aircraft[f"A{row}"], aircraft[f"A{row}"].font = label, styles.SMALL
+            for column, value in enumerate(cells[start : start + labels.VALUES_IN_ROW], labels.FIRST_VALUE):
+                cell = aircraft.cell(row, column)
+                if isinstance(value, tuple):
+                    self.pages.formula(aircraft, cell.coordinate, *value)
+                else:
+                    cell.value = value
+                cell.font = styles.SMALL
+            row += 1
+        return row
+
+    def _live(self, cell: str) -> tuple[str, Any]:
+        """A number of the sheet by formula; a blank is neither 0 nor the end of the row."""
+        there = f"{SHEET}!{cell}"
+        return f'IF(ISNUMBER({there}),{there},"no number")', self.sheet[cell].value
+
+    def _used(self, figure: str, number: int, line: int, column: int) -> tuple[str, Any]:
+        """The figure of a page that is used: the one that stands there, or else the carried one, as a text."""
+        there = f"{self._letter(figure, column)}{self.page_rows[number] + 2 + line}"
+        carried = f"{self._carried(figure, (number, line, column)):.15g}{labels.CARRIED}"
+        value = self.sheet[there].value
+        return f'IF(ISNUMBER({SHEET}!{there}),{SHEET}!{there},"{carried}")', carried if value is None else value
+
+    def _temperature_cells(self) -> list[str]:
+        first = next(iter(self.tables.filled))
+        return [f"{self._letter(first, j)}{self.row + 2}" for j in range(len(self.tables.temperatures))]
+
+    def _page_name(self, number: int) -> str:
+        deflection, mass = self.tables.pages[number]
+        name = next(flap.name for flap in self.card.flaps if flap.deflection == deflection)
+        return f"flap {name}, {mass:,.0f} kg"
 
     def _letter(self, figure: str, column: int) -> str:
         return str(get_column_letter(self.columns[figure] + column))
@@ -129,12 +235,11 @@ class _Side:
         """One page of the manual, with its weight for the mass and flap of the day."""
         tables, sheet = self.tables, self.sheet
         deflection, mass = tables.pages[number]
-        name = next(flap.name for flap in self.card.flaps if flap.deflection == deflection)
-        sheet[f"A{row}"], sheet[f"A{row}"].font = f"Page: flap {name}, {mass:,.0f} kg", styles.BOLD
+        sheet[f"A{row}"], sheet[f"A{row}"].font = f"Page: {self._page_name(number)}", styles.BOLD
         self._headers(row, "Weight now", row, "To [K]")
-        loaded = Cell(f"{tables.side}_book_mass")
+        loaded = Cell(f"{self.pages.prefix}{tables.side}_book_mass")
         weight = interpolation.page_weight(
-            loaded, Cell(f"{tables.side}_book_flap"), mass, deflection, float(tables.below()[number]),
+            loaded, Cell(f"{self.pages.prefix}{tables.side}_book_flap"), mass, deflection, float(tables.below()[number]),
             float(tables.above()[number]),
         )  # fmt: skip
         known = where(np.isfinite(loaded), weight, 0.0)  # without a mass and flap nothing reads the tables
@@ -232,19 +337,21 @@ class _Side:
     def _now(self, figure: str, line: int, column: int, page_rows: list[int]) -> str:
         """One figure for the day: the pages by their weights, a figure that is not there as its neighbours tell."""
         factor = UNITS[FIGURES[figure][1]].factor
-        absent = self.tables.filled[figure]
-        if figure in self.tables.printed:
-            absent = np.where(np.isfinite(self.tables.printed[figure]), self.tables.spare[figure], absent)
         terms = []
         for number, row in enumerate(page_rows):
             cell = f"{self._letter(figure, column)}{row + 2 + line}"
-            carried = from_si(absent[number, line, column], FIGURES[figure][1])
-            terms.append(f"$B${row + 2}*IF(ISNUMBER({cell}),{cell},{carried:.15g})")
+            terms.append(f"$B${row + 2}*IF(ISNUMBER({cell}),{cell},{self._carried(figure, (number, line, column)):.15g})")
         whole = "+".join(terms)
         return whole if factor == 1.0 else f"({whole})*{factor:.15g}"
 
-    def _settings(self, row: int) -> int:
-        """Which tables stand for each flap setting of the card; returns the next free row."""
+    def _carried(self, figure: str, place: tuple[int, int, int]) -> float:
+        """What stands for a figure of a page, in its unit, where its cell has none."""
+        printed = self.tables.printed.get(figure)
+        there = printed is not None and np.isfinite(printed[place])
+        return float(from_si((self.tables.spare if there else self.tables.filled)[figure][place], FIGURES[figure][1]))
+
+    def _settings(self, row: int) -> None:
+        """Which tables stand for each flap setting of the card."""
         sheet, flaps = self.sheet, self.card.flaps
         values = self.tables.values(flaps)
         write_header(sheet, row, ("Flap setting", "Tables [rad]", "From [kg]", "To [kg]"))
@@ -257,4 +364,3 @@ class _Side:
                 cell = sheet[f"{letter}{first + i}"]
                 cell.value, cell.font, cell.number_format = float(value), styles.SMALL, "0.0000" if letter == "B" else "#,##0"
             self._name(key, f"{letter}{first}:{letter}{last}")
-        return last

@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 from openpyxl import Workbook
 from openpyxl.comments import Comment
+from openpyxl.utils import quote_sheetname
 from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.worksheet import Worksheet
@@ -22,12 +23,12 @@ from stripcheck.card import Card
 from stripcheck.caution import CAUTION
 from stripcheck.chain import Input, Step
 from stripcheck.day import Day
-from stripcheck.inputs import CARD, DAY, RULES
+from stripcheck.inputs import CARD, DAY, RULES, SIDE_WORDS
 from stripcheck.rules import Rules
 from stripcheck.sheet import styles
 from stripcheck.sheet.cell import Cell, formula, reference, where
 from stripcheck.sheet.formulas import GROUND_NAMES, WORDS, Place
-from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, FLAP_LEAST, FLAP_MOST, GROUND_HEADER, PROPELLER
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, FLAP_LEAST, FLAP_MOST, GROUND_HEADER, PROPELLER, TABLES
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.surface import CONDITIONS, GROUNDS, REFERENCE_GROUND
 from stripcheck.units import UNITS, from_si, tidy
@@ -35,6 +36,7 @@ from stripcheck.units import UNITS, from_si, tidy
 UNKNOWN_GROUND = "not known"
 NO_FIGURE = "none"
 FEW_FIGURES = 16  # of the manual's, up to which each has a row of its own
+GROUND_COLUMNS = {"ground_rolling": "B", "ground_braking": "C", "ground_takeoff_factor": "D", "ground_landing_factor": "F"}
 LABEL, VALUE, UNIT, SI, NOTE = "A", "B", "C", "D", "E"
 
 
@@ -43,6 +45,7 @@ class Pages:
     """What the pages hand to the other sheets: where each value stands, and the values beside the formulas."""
 
     book: Workbook
+    prefix: str = ""  # of all names, where a workbook holds several aeroplanes
     places: dict[str, Place] = field(default_factory=dict)
     cached: dict[str, dict[str, Any]] = field(default_factory=dict)
     value_cells: dict[str, str] = field(default_factory=dict)  # where a user types each value
@@ -57,8 +60,9 @@ class Pages:
         """Give a range a name, and return the name."""
         first, _, last = cells.partition(":")
         absolute = ":".join(_absolute(cell) for cell in (first, last) if cell)
-        self.book.defined_names[name] = DefinedName(name, attr_text=f"{sheet.title}!{absolute}")
-        return name
+        whole = self.prefix + name
+        self.book.defined_names[whole] = DefinedName(whole, attr_text=f"{quote_sheetname(sheet.title)}!{absolute}")
+        return whole
 
 
 def _absolute(cell: str) -> str:
@@ -145,28 +149,33 @@ def _style_si(sheet: Worksheet, row: int) -> None:
     cell.font, cell.number_format = styles.SMALL, "0.000000"
 
 
-def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any], flap_names: Mapping[str, str]) -> Worksheet:
+def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any] | None = None,
+                   flap_names: Mapping[str, str] | None = None, tables_follow: bool = False,
+                   title: str = "Aircraft") -> Worksheet:  # fmt: skip
     """The aircraft sheet, without the computed steps; returns it with the rows after the inputs free.
 
-    ``chosen`` holds mass and flap of this assessment by chain key, SI; ``flap_names`` the names of the flap settings.
+    ``chosen`` holds mass and flap of this assessment by chain key, SI, and ``flap_names`` the names of the flap settings;
+    without them the sheet has no loading of its own. ``tables_follow``: the manual's figures will stand at the end, and a
+    row tells which, so that none of them is lost unseen.
     """
-    sheet = start_page(pages, "Aircraft", card.name)
+    sheet = start_page(pages, title, card.name)
     sheet["A3"], sheet["A3"].font = card.note, styles.SMALL
-    write_header(sheet, 5, ("This assessment", "Value", "Unit", "In SI", "Meaning"))
-    inputs = [item for item in card.chain.inputs if item.where == "card"]
-    values = {**card.values, **chosen}
-    rows = {item.key: item for item in inputs if item.kind == "number"}
-    first = ("mass_takeoff", "mass_landing")
-    row = 6
-    for key in first:
-        value_row(pages, sheet, row, rows.pop(key), values[key])
-        row += 1
-    flap_rows = {key: row + i for i, key in enumerate(("takeoff_flap", "landing_flap"))}
-    row += 3
+    values = {**card.values, **(chosen or {})}
+    rows = {item.key: item for item in card.chain.inputs if item.where == "card" and item.kind == "number"}
+    masses = [rows.pop(key) for key in ("mass_takeoff", "mass_landing")]
+    row, flap_rows = 6, {}
+    if flap_names is not None:
+        write_header(sheet, 5, ("This assessment", "Value", "Unit", "In SI", "Meaning"))
+        for item in masses:
+            value_row(pages, sheet, row, item, values[item.key])
+            row += 1
+        flap_rows = {key: row + i for i, key in enumerate(flap_names)}
+        row += 1 + len(flap_rows)
     write_header(sheet, row, ("The aeroplane", "Value", "Unit", "In SI", "Meaning"))
     row += 1
-    for label, kind in ((PROPELLER, card.propeller), (ENGINE, card.power)):
-        _fact(sheet, row, label, kind)
+    told = [(TABLES, ", ".join(SIDE_WORDS[side].lower() for side in card.tables))] if tables_follow and card.tables else []
+    for label, text in ((PROPELLER, card.propeller), (ENGINE, card.power), *told):
+        _fact(sheet, row, label, text)
         row += 1
     for key, item in rows.items():
         if key in ("takeoff_flap", "landing_flap", "flap_least", "flap_most"):
@@ -176,7 +185,8 @@ def write_aircraft(pages: Pages, card: Card, chosen: Mapping[str, Any], flap_nam
         row += 1
     row = _flap_table(pages, sheet, row + 1, card)
     for key, at in flap_rows.items():
-        _flap_choice(pages, sheet, at, next(i for i in CARD if i.key == key), flap_names[key], values[key], len(card.flaps))
+        item = next(i for i in CARD if i.key == key)
+        _flap_choice(pages, sheet, at, item, (flap_names or {})[key], values[key], len(card.flaps))
     sheet.freeze_panes = "A6"
     return sheet
 
@@ -218,7 +228,7 @@ def _flap_table(pages: Pages, sheet: Worksheet, row: int, card: Card) -> int:
         pages.places[key] = Place(pages.name(key + "s", sheet, f"{column}{first}:{column}{last}"))
     for at, key, name, label in ((last + 1, "flap_least", "MIN", FLAP_LEAST), (last + 2, "flap_most", "MAX", FLAP_MOST)):
         sheet[f"A{at}"], sheet[f"A{at}"].font = label, styles.SMALL
-        pages.formula(sheet, f"D{at}", f"{name}(flap_deflections)", card.values[key])
+        pages.formula(sheet, f"D{at}", f"{name}({pages.prefix}flap_deflections)", card.values[key])
         _style_si(sheet, at)
         pages.places[key] = Place(pages.name(key, sheet, f"D{at}"))
     return last + 4
@@ -230,8 +240,9 @@ def _flap_choice(pages: Pages, sheet: Worksheet, row: int, item: Input, name: st
     cell = sheet[f"{VALUE}{row}"]
     cell.number_format = "@"  # so that a setting called 10 stays a name
     cell.alignment = styles.CENTRE
-    choice(sheet, f"{VALUE}{row}", "flap_names", "Choose a setting of the flap table below.")
-    text = f'IFERROR(INDEX(flap_deflections,MATCH({VALUE}{row}&"",flap_names,0)),"")'
+    choice(sheet, f"{VALUE}{row}", f"{pages.prefix}flap_names", "Choose a setting of the flap table below.")
+    names, deflections = f"{pages.prefix}flap_names", f"{pages.prefix}flap_deflections"
+    text = f'IFERROR(INDEX({deflections},MATCH({VALUE}{row}&"",{names},0)),"")'
     pages.formula(sheet, f"{SI}{row}", text, value)
     _style_si(sheet, row)
     pages.places[item.key] = Place(pages.name(item.key, sheet, f"{SI}{row}"))
@@ -330,9 +341,7 @@ def write_day(pages: Pages, day: Day) -> Worksheet:
 def write_rules(pages: Pages, rules: Rules) -> Worksheet:
     """The rules sheet: the set's values, and the ground table."""
     sheet = start_page(pages, "Rules", rules.title)
-    told = {"read": "taken from the text", "memory": "from memory: compare with the text", "own": "the user's own"}
-    facts = (rules.issue, rules.citation, f"Status of the figures: {told[rules.status]}.", " ".join(rules.note.split()))
-    for row, text in enumerate(facts, 3):
+    for row, text in enumerate(rule_facts(rules), 3):
         write_wrapped(sheet, row, text, "E", 165)
     write_header(sheet, 8, ("Rule", "Value", "Unit", "In SI", "Meaning"))
     row = 9
@@ -350,19 +359,24 @@ def write_rules(pages: Pages, rules: Rules) -> Worksheet:
     return sheet
 
 
+def rule_facts(rules: Rules) -> tuple[str, ...]:
+    """What stands above the rules: issue, citation, status of the figures, note."""
+    told = {"read": "taken from the text", "memory": "from memory: compare with the text", "own": "the user's own"}
+    return (rules.issue, rules.citation, f"Status of the figures: {told[rules.status]}.", " ".join(rules.note.split()))
+
+
 def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> None:
     """Coefficients and published corrections by ground; a word where there is no figure keeps the strip unassessed."""
     write_heading(sheet, row, f'Ground table ("{NO_FIGURE}": a strip with this ground is not assessed)')
     write_header(sheet, row + 1, GROUND_HEADER)
     first = row + 2
-    columns = {"ground_rolling": "B", "ground_braking": "C", "ground_takeoff_factor": "D", "ground_landing_factor": "F"}
     names = [*(ground.name for ground in GROUNDS), UNKNOWN_GROUND]
     for i, name in enumerate(names):
         at = first + i
         sheet[f"A{at}"], sheet[f"A{at}"].font = name, styles.BODY
         sheet[f"E{at}"] = GROUNDS[i].source if i < len(GROUNDS) else "always without figures"
         sheet[f"E{at}"].font, sheet[f"E{at}"].alignment = styles.SMALL, styles.INDENT
-        for key, column in columns.items():
+        for key, column in GROUND_COLUMNS.items():
             value = float(rules.values[key][i])  # type: ignore[index]
             _number(sheet, f"{column}{at}", value)
             if math.isnan(value):
@@ -370,7 +384,7 @@ def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> Non
             sheet[f"{column}{at}"].alignment = styles.CENTRE
     last = first + len(names) - 1
     pages.places[GROUND_NAMES] = Place(pages.name(GROUND_NAMES, sheet, f"A{first}:A{last}"))
-    for key, column in columns.items():
+    for key, column in GROUND_COLUMNS.items():
         pages.places[key] = Place(pages.name(key, sheet, f"{column}{first}:{column}{last}"))
     reference_row = first + names.index(REFERENCE_GROUND)
     pages.places["reference_rolling"] = Place(pages.name("reference_rolling", sheet, f"B{reference_row}"))

@@ -16,23 +16,20 @@ from __future__ import annotations
 import datetime
 import io
 import math
-import os
 import re
-import secrets
-import shutil
 import zipfile
-from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
-from contextlib import contextmanager
 from copy import copy
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, BinaryIO
-from xml.sax.saxutils import escape
+from typing import TYPE_CHECKING
+from xml.sax.saxutils import escape, quoteattr
 
 import numpy as np
 
 from stripcheck.errors import InputError
+from stripcheck.safe_file import whole_or_not_at_all
 
 if TYPE_CHECKING:
     from openpyxl import Workbook
@@ -55,6 +52,7 @@ _MARK = "\x01"  # between the texts of a block; XML forbids it, so no text keeps
 _NOT_XML = re.compile("[\x00\x02-\x08\x0b\x0c\x0e-\x1f\ud800-\udfff\ufffe\uffff]")
 _LOOKS_ESCAPED = re.compile("_(?=x[0-9A-Fa-f]{4}_)")
 _SHEET_DATA = re.compile(r"<sheetData\s*/>|<sheetData>(.*)</sheetData>", re.DOTALL)
+_LINK = re.compile(r'<hyperlink([^>]*?) ref="([A-Z]+)[0-9]+"([^>]*?) location="[^"]*"([^>]*?) ?/>')
 _ROW_TAG = re.compile(r'<row\b([^>]*?)\br="(\d+)"([^>]*?)/?>')
 
 
@@ -100,12 +98,14 @@ _DATES = (datetime.date, datetime.time, datetime.timedelta)
 class Table:
     """The rows of one large sheet: number of the first row (the template row), and the columns from A on.
 
-    ``heights`` [points], shape (rows,), sets the height of each row; NaN leaves it as usual.
+    ``heights`` [points], shape (rows,), sets the height of each row; NaN leaves it as usual. ``links``: places such as
+    "'List'!C5", one per row or fewer, to which the cells below the template row's own link lead, in the same file as that.
     """
 
     first_row: int
     columns: Sequence[Column]
     heights: np.ndarray | None = None
+    links: Sequence[str] = ()
 
 
 @dataclass
@@ -118,6 +118,7 @@ class _Sheet:
     rows: int
     width: int
     may_pass_zip64: bool
+    links: Sequence[str]
 
 
 def write_book(
@@ -128,6 +129,7 @@ def write_book(
     progress: Callable[[int], None] | None = None,
     cached: Mapping[str, Mapping[str, object]] | None = None,
     dynamic: Mapping[str, Collection[str]] | None = None,
+    level: int = _LEVEL,
 ) -> list[str]:
     """Write the book to ``path``, whole or not at all, and return what had to be cut, one sentence each.
 
@@ -137,6 +139,7 @@ def write_book(
     progress : called with the number of rows just written, again and again
     cached : name of a sheet -> cell such as "D5" -> the value beside the formula that the skeleton has there
     dynamic : name of a sheet -> cells of those whose formula is of the newer kind, see `FormulaColumn`
+    level : of deflate, 1 to 9
 
     The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself
     get the value that ``cached`` has for them. Raises InputError when there are more rows than a sheet holds or
@@ -177,7 +180,7 @@ def write_book(
     with (
         zipfile.ZipFile(packed) as source,
         whole_or_not_at_all(path) as file,
-        zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, compresslevel=_LEVEL) as target,
+        zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, compresslevel=level) as target,
     ):
         for part in source.namelist():
             data = _with_relative_targets(part, source.read(part))
@@ -245,31 +248,6 @@ def _with_values(xml: str, values: Mapping[str, object], newer: Collection[str] 
 def _with_relative_targets(part: str, data: bytes) -> bytes:
     """Some readers look for a sheet's comments beside the sheet and can't follow a target from the root."""
     return data.replace(b'Target="/xl/', b'Target="../') if part.startswith("xl/worksheets/_rels/") else data
-
-
-@contextmanager
-def whole_or_not_at_all(path: Path) -> Iterator[BinaryIO]:
-    """A file beside ``path`` that takes its place at the end; after any failure ``path`` is as it was."""
-    place = Path(os.path.realpath(path))  # a link stays a link
-    if place.is_dir():
-        raise InputError(f"{path}: this is a folder; give the name of a file in it")
-    spare = place.with_name(f".{secrets.token_hex(8)}.tmp")
-    try:
-        try:
-            with open(spare, "xb") as file:
-                yield file
-                file.flush()
-                os.fsync(file.fileno())
-            if place.exists():
-                shutil.copymode(place, spare)
-            os.replace(spare, place)
-        except BaseException:
-            spare.unlink(missing_ok=True)
-            raise
-    except OSError as error:
-        why = error.strerror or str(error)
-        hint = "close it in other programs, and check the folder and the space on the disk"
-        raise InputError(f"{path}: can't be written ({why}); {hint}") from error
 
 
 # --- what must hold before anything is written
@@ -367,7 +345,7 @@ def _prepare(worksheet: Worksheet, table: Table) -> _Sheet:
     rows = len(table.columns[0].values)
     size = rows * (len(row) + 6 * row.count(b"\0") + 60 * len(pieces)) + sum(map(_most_bytes, table.columns))
     width = max(worksheet.max_column, len(template))
-    return _Sheet(row, fillers, table.first_row, rows, width, size > _ZIP64_FROM)
+    return _Sheet(row, fillers, table.first_row, rows, width, size > _ZIP64_FROM, table.links)
 
 
 def _height_attributes(heights: np.ndarray) -> list[bytes]:
@@ -572,7 +550,7 @@ def _split(xml: str, sheet: _Sheet) -> tuple[str, str, str]:
     data = _SHEET_DATA.search(xml)
     if data is None:
         raise ValueError("openpyxl has written a sheet without data; is there a newer kind of it?")
-    head, tail = xml[: data.start()] + "<sheetData>" + (data[1] or ""), "</sheetData>" + xml[data.end() :]
+    head, tail = xml[: data.start()] + "<sheetData>" + (data[1] or ""), "</sheetData>" + _linked(xml[data.end() :], sheet)
     tag = None
     for tag in _ROW_TAG.finditer(head):
         if int(tag[2]) > sheet.first_row:
@@ -581,6 +559,19 @@ def _split(xml: str, sheet: _Sheet) -> tuple[str, str, str]:
         return head, f'<row r="{ROW}">', tail
     start = f'<row{tag[1]}r="{ROW}"{tag[3].rstrip()}>'.replace("%", "%%")
     return head[: tag.start()], start, tail
+
+
+def _linked(tail: str, sheet: _Sheet) -> str:
+    """What stands after the rows, with a link for each row in place of the template row's."""
+    link = _LINK.search(tail)
+    if not sheet.links or link is None:
+        return tail
+    rest = link[3] + link[4]  # with the file that all of them lead to, if it is another
+    links = (
+        f'<hyperlink{link[1]} ref="{link[2]}{row}" location={quoteattr(place)}{rest}/>'
+        for row, place in enumerate(sheet.links, sheet.first_row)
+    )
+    return tail[: link.start()] + "".join(links) + tail[link.end() :]
 
 
 def _letter(number: int) -> str:

@@ -19,11 +19,12 @@ from stripcheck.profile_run import profile_slopes
 from stripcheck.register import Directions
 from stripcheck.sheet import styles
 from stripcheck.sheet.formulas import NOWHERE, Place
-from stripcheck.sheet.pages import Pages, choice, note, write_header
+from stripcheck.sheet.pages import NO_FIGURE, Pages, choice, note, write_header
 from stripcheck.sheet.stream import ROW, FormulaColumn, NumberColumn, Table, TextColumn
 from stripcheck.sheet.stream import Column as AnyColumn
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import from_si, to_si
+from stripcheck.verdict import FAULT
 
 SHEET = "Strips"
 HEADER_ROW, FIRST_ROW = 3, 4
@@ -50,6 +51,7 @@ ABOUT = (
     ("survey_date", "Survey date", 12, "From the list"),
     ("notes", "Notes", 30, "From the list"),
 )
+PROFILE_TEXT = ("profile", "Slope profile", 24, "From the list, from the end where this direction starts; refresh reads it")
 # keys of the register's numbers that the chain knows under another name
 REGISTER_KEYS = {"own_temperature": "temperature", "own_qnh": "qnh", "own_wind_from": "wind_from",
                  "own_wind_speed": "wind_speed"}  # fmt: skip
@@ -88,8 +90,8 @@ def given_columns(directions: Directions) -> dict[str, Any]:
     columns["fault"] = np.array([bool(text) for text in texts["fault"]])
     columns["land_here"] = np.array([text != "no" for text in texts["land_here"]])
     columns["take_off_here"] = np.array([text != "no" for text in texts["take_off_here"]])
-    columns["surface"] = _codes(texts["surface"], SURFACES)
-    columns["condition"] = _codes(texts["condition"], CONDITIONS, blank=-1, strange=-2)
+    columns["surface"] = codes(texts["surface"], SURFACES)
+    columns["condition"] = codes(texts["condition"], CONDITIONS, blank=-1, strange=-2)
     return columns
 
 
@@ -101,7 +103,7 @@ def profile_columns(chain: Chain, values: Mapping[str, Any], directions: Directi
     return {key: to_si(np.round(from_si(column, units[key]), 6), units[key]) for key, column in found.items()}
 
 
-def _codes(words: Sequence[str], table: tuple[str, ...], blank: int = -1, strange: int = -1) -> np.ndarray:
+def codes(words: Sequence[str], table: tuple[str, ...], blank: int = -1, strange: int = -1) -> np.ndarray:
     code = {"": blank, **{word: number for number, word in enumerate(table)}}
     return np.array([code.get(word, strange) for word in words], dtype=np.int64)
 
@@ -115,29 +117,41 @@ def layout(chain: Chain, directions: Directions, full: bool, chances: bool = Fal
     steps = {step.key: step for step in chain.steps if step.key in varying and (full or step.short)}
     columns = [Column(key, header, width, comment=text, hidden=key == "key") for key, header, width, text in IDENTITY]
     for key in KEY_STEPS:
-        columns += [_step_column(steps.pop(key), "Verdicts")] if key in steps else []
+        columns += [step_column(steps.pop(key), "Verdicts")] if key in steps else []
         columns += [_chance_column(key.removesuffix("_margin"))] if chances and key.endswith("_margin") else []
     for item in STRIP:
         if full or _has_any(item, directions):
-            columns.append(_input_column(item))
+            columns.append(input_column(item))
     group, openers = "", {key: name for name, key in GROUPS}
     for step in steps.values():
         group = openers.get(step.key, group or GROUPS[0][0])
-        columns.append(_step_column(step, group, hidden=full))
+        columns.append(step_column(step, group, hidden=full))
     columns += [Column(key, header, width, comment=text, group="From the list") for key, header, width, text in ABOUT]
+    if any(profile is not None for profile in directions.profiles):
+        columns.append(Column(*PROFILE_TEXT[:3], comment=PROFILE_TEXT[3], group="From the list"))
     columns.append(Column("source_row", "Row in the list", 9, comment="Row in the list", group="From the list"))
-    if chances:
-        for key in CHANCES:
-            word = "take-off" if "takeoff" in key else "landing"
-            columns += [
-                Column(f"{key}_filled", f"Chance as filled, {word} [%]", 11, "%", "Worked out when the workbook was filled",
-                       AS_FILLED, hidden=True),
-                Column(f"{key}_margin", f"Margin as filled, {word} [m]", 11, "m", "For which that chance was worked out",
-                       AS_FILLED, hidden=True),
-            ]  # fmt: skip
+    columns += _filled_columns() if chances else []
     for header in directions.carried:
         columns.append(Column(header, header, 14, comment="Carried from the list as it is", group="Carried along",
                               carried=True))  # fmt: skip
+    return columns
+
+
+def chance_columns() -> list[Column]:
+    """The columns of the chance of needing more: what is shown, and what held when it was worked out."""
+    return [*(_chance_column(key.removesuffix("_chance")) for key in CHANCES), *_filled_columns()]
+
+
+def _filled_columns() -> list[Column]:
+    columns = []
+    for key in CHANCES:
+        word = "take-off" if "takeoff" in key else "landing"
+        columns += [
+            Column(f"{key}_filled", f"Chance as filled, {word} [%]", 11, "%", "Worked out when the workbook was filled",
+                   AS_FILLED, hidden=True),
+            Column(f"{key}_margin", f"Margin as filled, {word} [m]", 11, "m", "For which that chance was worked out",
+                   AS_FILLED, hidden=True),
+        ]  # fmt: skip
     return columns
 
 
@@ -161,12 +175,12 @@ def _has_any(item: Input, directions: Directions) -> bool:
     return item.key == "surface" or any(text != usual for text in directions.texts[item.key])
 
 
-def _input_column(item: Input) -> Column:
+def input_column(item: Input) -> Column:
     width = {"fault": 26, "choice": 12, "flag": 9}.get(item.kind, 10)
     return Column(item.key, _header(item.label, item.unit), width, item.unit, item.help, "Given", item=item)
 
 
-def _step_column(step: Step, group: str, hidden: bool = False) -> Column:
+def step_column(step: Step, group: str, hidden: bool = False) -> Column:
     label = f"{step.label}, {step.symbol}" if step.symbol else step.label
     width = REASON_WIDTH if step.key.endswith("_reason") else 13 if step.key.endswith("_verdict") else 11
     unit = f"\nUnit: {step.unit}" if step.unit else ""
@@ -273,12 +287,26 @@ def table_of(columns: list[Column], directions: Directions, given: Mapping[str, 
         elif column.key in CHANCES:
             made.append(FormulaColumn(_chance_formula(column.key, columns), 100.0 * values[column.key]))
         elif column.key.endswith(("_chance_filled", "_chance_margin")):
-            made.append(NumberColumn(_as_filled(column.key, values)))
+            made.append(NumberColumn(as_filled(column.key, values)))
         elif column.key == "key":
             made.append(TextColumn(direction_keys(directions)))
+        elif column.key == PROFILE_TEXT[0]:
+            made.append(TextColumn([str(profile or "") for profile in directions.profiles]))
         else:
             made.append(TextColumn(directions.texts[column.key]))
     return Table(FIRST_ROW, made, styles.heights_for(directions.texts["fault"], REASON_WIDTH + 8))
+
+
+def shown(step: Step, values: Any, faults: Sequence[str]) -> Any:
+    """A step's values, one for each of the rows with these faults, as a column shows them: numbers in its unit, truths, or
+    texts."""
+    values = np.broadcast_to(values, len(faults))
+    if step.words:
+        return [faults[i] if step.words[n - 1] == FAULT else step.words[n - 1]
+                for i, n in enumerate(values.astype(int).tolist())]  # fmt: skip
+    if step.lookup.startswith("ground_"):
+        return [value if np.isfinite(value) else NO_FIGURE for value in values.tolist()]
+    return values if step.truth else np.asarray(from_si(values.astype(float), step.unit))
 
 
 def _chance_formula(key: str, columns: list[Column]) -> str:
@@ -289,7 +317,7 @@ def _chance_formula(key: str, columns: list[Column]) -> str:
     return f'IF({same},IF(ISNUMBER({found}),{found},""),"{MOVED_ON}")'
 
 
-def _as_filled(key: str, values: Mapping[str, Any]) -> np.ndarray:
+def as_filled(key: str, values: Mapping[str, Any]) -> np.ndarray:
     side = key.split("_")[0]
     if key.endswith("_filled"):
         return np.asarray(100.0 * values[f"{side}_chance"])

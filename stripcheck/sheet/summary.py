@@ -75,12 +75,12 @@ def summarise(values: Mapping[str, np.ndarray], words: Mapping[str, tuple[str, .
 
 
 COLUMNS = (
-    ("key_1", "", 4, ""),
-    ("key_2", "", 4, ""),
-    ("row_1", "", 4, ""),
-    ("row_2", "", 4, ""),
-    ("in_row", "", 4, ""),
-    ("out_row", "", 4, ""),
+    ("key_1", "Key 1", 4, ""),
+    ("key_2", "Key 2", 4, ""),
+    ("row_1", "Row 1", 4, ""),
+    ("row_2", "Row 2", 4, ""),
+    ("in_row", "Row in", 4, ""),
+    ("out_row", "Row out", 4, ""),
     ("strip", "Strip", 12, "Identifier in the list"),
     ("name", "Name", 26, "Name in the list"),
     ("runway", "Runway", 10, "Both directions"),
@@ -176,53 +176,74 @@ def table_of(directions: Directions, letters: Mapping[str, str], values: Mapping
     count = directions.n // 2
     column = {key: f"Strips!${letter}${STRIPS_ROW}:${letter}${STRIPS_ROW + directions.n - 1}"
               for key, letter in letters.items()}  # fmt: skip
+    formulas = row_formulas(column, LETTERS, FIRST_ROW)
+    found = row_values(values, best)
     made: dict[str, Any] = {"key_1": TextColumn(keys[::2]), "key_2": TextColumn(keys[1::2])}
-    for i in (1, 2):
-        # rows stand where they were written unless somebody sorted them: look there first
-        guess = f"2*(ROW()-{FIRST_ROW})+{i}"
-        key = f"${LETTERS[f'key_{i}']}{ROW}"
-        text = f"IF(INDEX({column['key']},{guess})={key},{guess},IFERROR(MATCH({key},{column['key']},0),0))"
-        made[f"row_{i}"] = FormulaColumn(text, np.arange(i, directions.n + 1, 2, dtype=float))
-    for key in ("strip", "name", "runway"):
-        made[key] = TextColumn(texts[key][::2])
-    for side, step, _ in SIDES:
-        chosen = f"${LETTERS[f'{side}_row']}{ROW}"
-        made[f"{side}_row"] = FormulaColumn(_better_row(column, step), best[side] + 1.0)
-        for name, source in (("verdict", f"{step}_verdict"), ("direction", "direction"), ("margin", f"{step}_margin"),
-                             ("reason", f"{step}_reason")):  # fmt: skip
-            found = f"INDEX({column[source]},{chosen})"
-            made[f"{side}_{name}"] = FormulaColumn(f"IF({chosen}>0,{found},\"\")", _picked(values[source], best[side]))
-        length = column["tora" if step == "takeoff" else "lda"]
-        margin = f"${LETTERS[f'{side}_margin']}{ROW}"
-        share = values[f"{step}_margin_share"][best[side]]
-        made[f"{side}_share"] = FormulaColumn(
-            f'IF(ISNUMBER({margin}),{margin}/INDEX({length},{chosen})*100,"")', share
-        )
-    ranks = [Cell(f"MATCH(${LETTERS[f'{side}_verdict']}{ROW},{_RANK_LIST},0)", depth=1) for side, _, _ in SIDES]
-    words = ",".join(f'"{word}"' for word in BOTH)
-    number = formula(in_and_out(*ranks))
-    made["both"] = FormulaColumn(f"IFERROR(CHOOSE({number},{words}),\"not assessed\")",
-                                 [BOTH[int(i) - 1] for i in best["both"]])  # fmt: skip
+    made |= {f"row_{i}": FormulaColumn(formulas[f"row_{i}"], np.arange(i, directions.n + 1, 2, dtype=float)) for i in (1, 2)}
+    made |= {key: TextColumn(texts[key][::2]) for key in ("strip", "name", "runway")}
+    made |= {key: FormulaColumn(formulas[key], value) for key, value in found.items()}
     if any(len(column.values) != count for column in made.values()):
         raise ValueError("the summary's columns are not equally long")
     longest = [max(pair, key=len) for pair in zip(made["in_reason"].values, made["out_reason"].values, strict=True)]
     return Table(FIRST_ROW, [made[key] for key, *_ in COLUMNS], styles.heights_for(longest, 50))
 
 
-_RANK_LIST = "{" + ",".join(f'"{word}"' for word in RANKS) + "}"
+def row_values(values: Mapping[str, Any], best: Mapping[str, np.ndarray]) -> dict[str, Any]:
+    """What the computed columns show, but the places of the two directions: ``values`` of the directions' rows as shown."""
+    made: dict[str, Any] = {}
+    for side, step, _ in SIDES:
+        made[f"{side}_row"] = best[side] + 1.0
+        for name, source in _SHOWN.items():
+            made[f"{side}_{name}"] = _picked(values[source.format(step)], best[side])
+        made[f"{side}_share"] = values[f"{step}_margin_share"][best[side]]
+    made["both"] = [BOTH[int(i) - 1] for i in best["both"]]
+    return made
 
 
-def _better_row(column: Mapping[str, str], step: str) -> str:
+# columns of the summary that show one of the better direction -> key of the column among the strips
+_SHOWN = {"verdict": "{}_verdict", "direction": "direction", "margin": "{}_margin", "reason": "{}_reason"}
+
+
+def row_formulas(column: Mapping[str, str], letters: Mapping[str, str], first: int) -> dict[str, str]:
+    """The formula of each computed column, with ``ROW``.
+
+    ``column``: ranges of the Strips sheet by key; ``letters``: this sheet's columns by key; ``first``: its first row.
+    """
+    made: dict[str, str] = {}
+    for i in (1, 2):
+        # rows stand where they were written unless somebody sorted them: look there first
+        guess = f"2*(ROW()-{first})+{i}"
+        key = f"${letters[f'key_{i}']}{ROW}"
+        there = f'IFERROR(INDEX({column["key"]},{guess}),"")={key}'
+        made[f"row_{i}"] = f"IF({there},{guess},IFERROR(MATCH({key},{column['key']},0),0))"
+    for side, step, _ in SIDES:
+        chosen = f"${letters[f'{side}_row']}{ROW}"
+        made[f"{side}_row"] = _better_row(column, letters, step)
+        for name, source in _SHOWN.items():
+            made[f"{side}_{name}"] = f'IF({chosen}>0,INDEX({column[source.format(step)]},{chosen}),"")'
+        length = column["tora" if step == "takeoff" else "lda"]
+        margin = f"${letters[f'{side}_margin']}{ROW}"
+        made[f"{side}_share"] = f'IF(ISNUMBER({margin}),{margin}/INDEX({length},{chosen})*100,"")'
+    ranks = [Cell(f"MATCH(${letters[f'{side}_verdict']}{ROW},{RANK_LIST},0)", depth=1) for side, _, _ in SIDES]
+    words = ",".join(f'"{word}"' for word in BOTH)
+    made["both"] = f'IFERROR(CHOOSE({formula(in_and_out(*ranks))},{words}),"not assessed")'
+    return made
+
+
+RANK_LIST = "{" + ",".join(f'"{word}"' for word in RANKS) + "}"
+
+
+def _better_row(column: Mapping[str, str], letters: Mapping[str, str], step: str) -> str:
     """Formula for the row, among the strips, of the better direction; 0 where neither direction is found."""
     cells = []
     for i in (1, 2):
-        row = f"${LETTERS[f'row_{i}']}{ROW}"
-        rank = Cell(f"MATCH(INDEX({column[f'{step}_verdict']},{row}),{_RANK_LIST},0)", depth=2)
+        row = f"${letters[f'row_{i}']}{ROW}"
+        rank = Cell(f"MATCH(INDEX({column[f'{step}_verdict']},{row}),{RANK_LIST},0)", depth=2)
         finding = Cell(f"INDEX({column[f'{step}_finding']},{row})", depth=1)
         cells.append(where(finding == float(FORBIDDEN), 0.0, rank))
         cells.append(Cell(f"INDEX({column[f'{step}_margin']},{row})", depth=1))
     better = first_is_better(*cells)
-    row_1, row_2 = (f"${LETTERS[f'row_{i}']}{ROW}" for i in (1, 2))
+    row_1, row_2 = (f"${letters[f'row_{i}']}{ROW}" for i in (1, 2))
     return f"IF(AND({row_1}>0,{row_2}>0),IF({formula(better)},{row_1},{row_2}),MAX({row_1},{row_2}))"
 
 

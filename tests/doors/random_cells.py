@@ -29,6 +29,13 @@ SPANS_OF_KEY = {"headwind": (-12.0, 25.0, "kt", -12.0, 25.0), "bank": (0.0, 60.0
                 "height": (0.0, 250.0, "m", 0.0, 80.0), "beyond": (0.0, 2500.0, "ft", 0.0, 8000.0)}  # fmt: skip
 ASKED = {"m": "ft", "ft": "m", "kt": "km/h", "kg": "lb", "°C": "°F", "%": "%"}  # unit of the result -> another
 SAME_KIND = (("ft", "m"), ("lb", "kg"), ("kt", "km/h"), ("degC", "degF"), ("gallon", "liter"))
+SETS, SLOW_SETS = 40, 4  # of each function; an inverse question takes a tenth of a second
+
+
+def random_sets(function: Function) -> list[list[Any]]:
+    """The sets of arguments with which every door is tried."""
+    dice = random.Random(function.name)
+    return [random_arguments(function, dice) for _ in range(SLOW_SETS if function.ask else SETS)]
 
 
 def random_arguments(function: Function, dice: random.Random) -> list[Any]:

@@ -273,18 +273,20 @@ def test_the_aircraft_and_rules_sheets_of_a_filled_workbook_are_arguments(calc: 
     assert main(["demo", "-o", str(tmp_path / "demo.xlsx"), "--quiet"]) == 0
     filled = openpyxl.load_workbook(tmp_path / "demo.xlsx")
     sheet = filled.create_sheet("S")
-    aircraft, rules = "Aircraft!A1:I70", "Rules!A1:F70"
+    last = filled["Aircraft"].max_row
+    aircraft, rules = f"Aircraft!A1:I{last}", "Rules!A1:F70"
     sheet["A1"] = formula(MARGIN, aircraft, *map(typed, FITS[1:-1]), rules)
     sheet["A2"] = formula(VERDICT, aircraft, *map(typed, FITS[1:-1]), rules)
     filled.save(tmp_path / "demo.xlsx")
     with calc.open(tmp_path / "demo.xlsx") as opened:
         opened.recalculate()
         got = [row[0] for row in opened.values("S", "A1:A2")]
-        rows, rule_rows = opened.values("Aircraft", "A1:I70"), opened.values("Rules", "A1:F70")
+        rows, rule_rows = opened.values("Aircraft", f"A1:I{last}"), opened.values("Rules", "A1:F70")
     expected = [call(function, rows, *FITS[1:-1], rule_rows) for function in (MARGIN, VERDICT)]
     assert isinstance(expected[0], float)
     assert equal(got[0], expected[0], scale_of(calc_name(MARGIN) + "("))
     assert got[1] == expected[1]
+    assert equal(got[0], call(MARGIN, *FITS), scale_of(calc_name(MARGIN) + "("))  # the manual's tables are in the range
 
 
 def test_the_function_wizard_shows_the_registry(calc: Office) -> None:

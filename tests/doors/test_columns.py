@@ -21,7 +21,12 @@ from stripcheck.doors.columns import FORMULAS, PARTS, SIDES
 from stripcheck.doors.functions import BY_NAME
 from tests.aircraft import HERON
 from tests.ironcalc_book import Book
+from tests.manual_cards import everything_text
+from tests.office import Office
 from tests.sheet.package_check import package_faults
+from tests.sheet.recalculated import MARGIN_SCALE, same
+from tests.sheet.test_book import cells_of
+from tests.sheet.test_manual_tables import EDITS, FULL, TEN, Place, manual_cells
 
 LIST = str(files("stripcheck") / "scenario" / "lantern-range.csv")
 FIRST_ROW = 4
@@ -40,10 +45,11 @@ def filled(formulas: str, card: str = "heron") -> Path:
 @cache
 def _filled(formulas: str, card: str) -> Path:
     place = Path(folder().name)
-    if card == "heron":
-        (place / "heron.toml").write_text(HERON, encoding="utf-8")
+    text = {"heron": HERON, "everything": everything_text()}.get(card)
+    if text:
+        (place / f"{card}.toml").write_text(text, encoding="utf-8")
     out = place / f"{card}-{formulas}.xlsx"
-    named = str(place / "heron.toml") if card == "heron" else card
+    named = str(place / f"{card}.toml") if text else card
     arguments = ["fill", LIST, "--card", named, "--rules", "part-cat-b", *DAY, "--formulas", formulas, "--detail", "full"]
     assert main([*arguments, "-o", str(out)]) == 0
     return out
@@ -91,6 +97,7 @@ def argument_values(shown: openpyxl.Workbook, text: str) -> list[Any]:
 
 @pytest.mark.parametrize(("formulas", "card"), [
     ("excel", "heron"), ("calc", "heron"), ("lambda", "heron"), ("excel", "ridge-runner"), ("calc", "ridge-runner"),
+    ("excel", "high-mule"), ("excel", "everything"), ("calc", "everything"),
 ])  # fmt: skip
 def test_every_door_formula_s_kept_value_is_what_the_door_gives(formulas: str, card: str) -> None:
     path = filled(formulas, card)
@@ -108,7 +115,7 @@ def test_every_door_formula_s_kept_value_is_what_the_door_gives(formulas: str, c
 
 
 @pytest.mark.parametrize("formulas", [kind for kind in FORMULAS if kind not in ("native", "lambda")])
-@pytest.mark.parametrize("card", ["heron", "ridge-runner"])
+@pytest.mark.parametrize("card", ["heron", "ridge-runner", "everything"])
 def test_all_values_are_those_of_the_native_workbook(formulas: str, card: str) -> None:
     """But for a margin that is none, in whose place the function says why."""
     native, other = cells(filled("native", card), values=True), cells(filled(formulas, card), values=True)
@@ -204,7 +211,7 @@ def test_native_formulas_and_names_give_the_same_for_every_kind_of_function() ->
 
 
 @pytest.mark.parametrize(("arguments", "words"), [
-    (["--card", "ridge-runner", "--formulas", "lambda"], "tables and corrections of this card"),
+    (["--card", "ridge-runner", "--formulas", "lambda"], "do not read the manual's tables and corrections of this card"),
     (["--card", "ridge-runner", "--formulas", "excel", "--humidity", "60"], "take no humidity"),
 ])  # fmt: skip
 def test_what_a_door_can_t_say_is_refused(
@@ -222,3 +229,66 @@ def test_directions_whose_obstacles_a_function_does_not_know_hold_values() -> No
     assert any(heights)
     for height, verdict in zip(heights, columns["Take-off verdict"], strict=True):
         assert not (height and str(verdict).startswith("="))
+
+
+# edits on the sheet Manual, and what they are called in a failing test's name
+TYPED_OVER: dict[str, dict[Place, float | None]] = {
+    "typed over, filled and deleted": EDITS,
+    "longer everywhere": {
+        (side, page, figure, height, heat): 900.0 if figure == "distance" else 610.0
+        for side, page in [("takeoff", TEN), ("takeoff", FULL), *(("landing", f"flap 30, {kg} kg") for kg in ("1,110", "900"))]
+        for figure in ("roll", "distance") for height in (0.0, 2000.0, 4000.0) for heat in (10.0, 20.0, 30.0)
+    },
+    "all of the take-off deleted": {
+        ("takeoff", page, figure, height, heat): None
+        for page in (TEN, FULL) for figure in ("roll", "distance")
+        for height in (0.0, 2000.0, 3000.0, 4000.0, 6000.0, 8000.0, 9000.0)
+        for heat in (-10.0, 0.0, 10.0, 15.0, 20.0, 30.0, 40.0)
+    },
+}  # fmt: skip
+
+
+LOADED = {"Take-off mass": 960.0, "Landing mass": 1000.0, "Take-off flap": "20", "Landing flap": "20"}
+
+
+@pytest.mark.parametrize(("edit", "loaded"), [*((edit, {}) for edit in TYPED_OVER), ("typed over, filled and deleted", LOADED)],
+                         ids=[*TYPED_OVER, "edited, and another mass and flap"])  # fmt: skip
+def test_figures_edited_on_the_manual_s_sheet_are_followed_by_the_functions(
+    office: Office, tmp_path: Path, edit: str, loaded: dict[str, float | str]
+) -> None:
+    """Verdict, reason and margin from the range of the sheet Aircraft against the native columns of the same workbook, after
+    LibreOffice has recalculated it."""
+    native, found = filled("native", "everything"), door_formulas(filled("excel", "everything"))
+    before = openpyxl.load_workbook(native, data_only=True)["Strips"]
+    places = manual_cells(native)
+    book = office.open(native)
+    book.set("Manual", {places[place]: value for place, value in TYPED_OVER[edit].items() if place in places})
+    book.set("Aircraft", {cells_of(native, "Aircraft", "B")[label]: value for label, value in loaded.items()})
+    book.recalculate()
+    book.save_as(tmp_path / "edited.xlsx")
+    book.close()
+    shown = openpyxl.load_workbook(tmp_path / "edited.xlsx", data_only=True)
+    changed = 0
+    for where, name, text, _ in found:
+        got, native_value = call(BY_NAME[name], *argument_values(shown, text)), shown["Strips"][where].value
+        if native_value in (None, ""):
+            assert name.endswith("MARGIN") and isinstance(got, str), where
+        else:
+            assert same(got, native_value, MARGIN_SCALE), (where, name, got, native_value)
+        changed += not same(native_value, before[where].value)
+    assert len(found) > 60 and changed > 10
+
+
+def test_a_temperature_deleted_on_the_manual_s_sheet_is_told(office: Office, tmp_path: Path) -> None:
+    """It is not the end of the tables, nor 0 degrees."""
+    native, found = filled("native", "ridge-runner"), door_formulas(filled("excel", "ridge-runner"))
+    heats = next(cell for cell in openpyxl.load_workbook(native)["Manual"]["A"] if cell.value == "Pressure altitude [ft]").row
+    book = office.open(native)
+    book.set("Manual", {f"G{heats}": None})  # the last of five
+    book.recalculate()
+    book.save_as(tmp_path / "edited.xlsx")
+    book.close()
+    shown = openpyxl.load_workbook(tmp_path / "edited.xlsx", data_only=True)
+    _, name, text, _ = found[0]
+    said = call(BY_NAME[name], *argument_values(shown, text))
+    assert said == 'Aircraft: "Take-off tables, temperatures" lacks a number in the range'

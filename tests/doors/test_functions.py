@@ -22,6 +22,7 @@ PROMISED = {
     "most mass in": "MOST_LANDING_MASS", "hottest out": "HOTTEST_TAKEOFF", "hottest in": "HOTTEST_LANDING",
     "abort point": "ABORT_POINT", "best flap out": "BEST_TAKEOFF_FLAP", "best flap in": "BEST_LANDING_FLAP",
     "climb gradient": "CLIMB_GRADIENT", "obstacle clearance": "OVER_OBSTACLE", "rolling coefficient": "ROLLING",
+    "required take-off": "TAKEOFF_REQUIRED", "required landing": "LANDING_REQUIRED",
     "braking coefficient": "BRAKING", "unit conversion": "CONVERT",
 }  # fmt: skip
 SLOPE = BY_NAME["SLOPE"]

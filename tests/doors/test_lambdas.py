@@ -1,6 +1,7 @@
-"""The LAMBDA names against Python's own call, recalculated by a spreadsheet engine that knows LET and LAMBDA.
+"""The LAMBDA names against Python's own call, recalculated by a spreadsheet engine that knows LET, LAMBDA and MAKEARRAY.
 
-No Excel was at hand: that Excel takes the names is expected from the file format, not seen.
+No Excel was at hand: that Excel takes the names, and fills ranges as that engine does, is expected from the file format and
+the functions' descriptions, not seen.
 """
 
 from __future__ import annotations
@@ -12,12 +13,14 @@ import re
 import zipfile
 from collections.abc import Sequence
 from functools import cache
+from itertools import chain
 from pathlib import Path
 from tempfile import TemporaryDirectory
 from typing import Any
 
 import openpyxl
 import pytest
+from openpyxl.utils import get_column_letter
 from openpyxl.workbook.defined_name import DefinedName
 
 from stripcheck.card import Card, load_card
@@ -25,9 +28,18 @@ from stripcheck.caution import CAUTION
 from stripcheck.cli import main
 from stripcheck.doors import lambda_book
 from stripcheck.doors.aircraft import NO_REACH
-from stripcheck.doors.call import call
+from stripcheck.doors.call import EMPTY, WHOLE, call
 from stripcheck.doors.functions import BY_NAME, FUNCTIONS, Argument, Function
-from stripcheck.doors.lambdas import MAX_COMMENT, MAX_PAIRS, NO_CORRECTIONS, NO_REACH_HERE, library, nesting, not_a_lambda
+from stripcheck.doors.lambdas import (
+    MAX_COMMENT,
+    MAX_PAIRS,
+    NO_CORRECTIONS,
+    NO_REACH_HERE,
+    STEP,
+    library,
+    nesting,
+    not_a_lambda,
+)
 from stripcheck.rules import load_rules
 from stripcheck.sheet.cell import MAX_DEPTH, MAX_LENGTH
 from stripcheck.surface import CONDITIONS, SURFACES
@@ -48,6 +60,8 @@ CREDIBLE = {
     "mass": (600, 3200), "bank": (0, 60), "length": (150, 1500), "slope": (-9, 9), "headwind": (-18, 25),
     "distance": (50, 2500), "height": (0, 300), "beyond": (10, 2000),
 }  # fmt: skip
+TALLEST, WIDEST = 4, 3  # cells of the ranges that are tried
+NO_VALUE = "#N/A"  # an error in a cell, as the sheet shows it and the other doors hand it over
 
 
 class Tried:
@@ -88,6 +102,70 @@ class Tried:
             recalculated = Book(path)
             recalculated.recalculate()
         return [row[0] for row in recalculated.values("Cases", f"A1:A{len(cases)}")]
+
+    def filled(self, cases: Sequence[tuple[Function, Sequence[Any]]], name: str = "STRIP_{}") -> list[list[list[Any]]]:
+        """What the names fill where arguments are rows of cells that stand in the sheet, blank ones for None.
+
+        The formulas are typed in, as a user does, so that their results spill."""
+        book = openpyxl.load_workbook(self.path)
+        sheet = book.create_sheet("Cases")
+        formulas = []
+        for at, (function, given) in enumerate(cases):
+            typed = []
+            for place, (argument, rows) in enumerate(zip(function.arguments, given, strict=True)):
+                if argument.kind in self.ranges:
+                    typed.append(self.ranges[argument.kind])
+                    continue
+                first = (1 + at * (TALLEST + 1), 1 + place * WIDEST)
+                for row, cells in enumerate(rows):
+                    for column, value in enumerate(cells):
+                        cell = sheet.cell(first[0] + row, first[1] + column, value)
+                        cell.data_type = "s" if isinstance(value, str) and value != NO_VALUE else cell.data_type
+                last = f"{get_column_letter(first[1] + len(rows[0]) - 1)}{first[0] + len(rows) - 1}"
+                typed.append(f"{get_column_letter(first[1])}{first[0]}:{last}")
+            formulas.append(f"={name.format(function.name)}({','.join(typed)})")
+        with TemporaryDirectory() as folder:
+            path = Path(folder) / "cases.xlsx"
+            book.save(path)
+            recalculated = Book(path)
+        left = 1 + WIDEST * max(len(given) for _, given in cases)
+        columns = f"{get_column_letter(left)}{{}}:{get_column_letter(left + WIDEST)}{{}}"
+        number = recalculated.sheets().index("Cases")
+        for at, formula in enumerate(formulas):
+            recalculated._model.set_user_input(number, 1 + at * (TALLEST + 1), left, formula)
+        recalculated.recalculate()
+        tops = [1 + at * (TALLEST + 1) for at in range(len(cases))]
+        blocks = [recalculated.values("Cases", columns.format(top, top + TALLEST)) for top in tops]
+        return [[kept for row in block if (kept := [value for value in row if value is not None])] for block in blocks]
+
+    def expected_rows(self, function: Function, given: Sequence[Any]) -> list[list[Any]]:
+        found = self.expected(function, given)
+        rows = found if isinstance(found, list) else [[found]]
+        return [[NO_REACH_HERE if value == NO_REACH else value for value in row] for row in rows]
+
+    def usual(self, function: Function) -> list[Any]:
+        """The function's example with a setting that the card has."""
+        pairs = zip(function.arguments, lambda_book.whole_example(function), strict=True)
+        return [self.flaps[1] if argument.kind == "flap" else value for argument, value in pairs]
+
+    def random_ranges(self, function: Function, dice: random.Random) -> list[Any]:
+        """Arguments as rows of cells: one at least fills the result, others a column or a row of it, or one cell."""
+        rows, columns = dice.choice([(TALLEST, 1), (1, WIDEST), (3, 2)])
+        spread = [argument for argument in function.arguments if argument.kind not in WHOLE]
+        whole = dice.choice(spread)
+        shapes = {argument.key: dice.choice([(rows, columns), (rows, 1), (1, columns), (1, 1), (1, 1)]) for argument in spread}
+        shapes[whole.key] = (rows, columns)
+        given = []
+        for argument in function.arguments:
+            if argument.kind in self.rows:
+                given.append(None)
+                continue
+            high, wide = shapes[argument.key]
+            given.append([[self._random_cell(argument, dice) for _ in range(wide)] for _ in range(high)])
+        return given
+
+    def _random_cell(self, argument: Argument, dice: random.Random) -> Any:
+        return dice.choice([None, NO_VALUE]) if dice.random() < 0.02 else self._random(argument, dice)
 
     def random_given(self, function: Function, dice: random.Random) -> list[Any]:
         return [self._random(argument, dice) for argument in function.arguments]
@@ -175,8 +253,7 @@ def test_documented_examples_and_the_values_kept_beside_them(name: str) -> None:
 def test_wrong_arguments_are_told_in_the_cell() -> None:
     book, cases = tried("heron"), []
     for function in WRITTEN:
-        usual = list(lambda_book.whole_example(function))
-        usual = [book.flaps[1] if a.kind == "flap" else v for a, v in zip(function.arguments, usual, strict=True)]
+        usual = book.usual(function)
         for place, argument in enumerate(function.arguments):
             if argument.kind not in book.rows:
                 wrongs = [None, "x"] if argument.kind not in KINDS else [None, "x", "12", True]
@@ -184,32 +261,109 @@ def test_wrong_arguments_are_told_in_the_cell() -> None:
     got = book.answers([(function, given) for function, _, given in cases])
     for (function, argument, given), sentence in zip(cases, got, strict=True):
         assert about(sentence, function.arguments) == argument.name, (function.name, given, sentence)
+        if given[function.arguments.index(argument)] is None:
+            assert sentence == f"{argument.name}: {EMPTY}", (function.name, given)
 
 
-def test_a_range_where_one_value_belongs_never_gives_a_number() -> None:
-    book = tried("heron")
-    workbook = openpyxl.load_workbook(book.path)
-    sheet = workbook.create_sheet("Cases")
-    places = {}
+def test_cells_that_are_empty_or_hold_an_error_are_told_in_their_place() -> None:
+    """In a column of every argument in turn; alone they are told in the same words."""
+    book, cases = tried("heron"), []
     for function in WRITTEN:
+        usual = [[[value]] for value in book.usual(function)]
+        for place, argument in enumerate(function.arguments):
+            if argument.kind not in book.rows:
+                good = usual[place][0]
+                for rows in ([good, [None], [NO_VALUE], good], [[None]], [[NO_VALUE]]):
+                    cases.append((function, argument, [*usual[:place], rows, *usual[place + 1 :]]))
+    got = book.filled([(function, given) for function, _, given in cases])
+    for at in range(0, len(cases), 3):
+        function, argument, given = cases[at]
+        words = [[f"{argument.name}: {EMPTY}"], [f"{argument.name}: the cell holds an error"]]
+        column, *alone = got[at : at + 3]
+        assert column[1:3] == words and alone == [[words[0]], [words[1]]], (function.name, argument.key, column, alone)
+        expected = book.expected_rows(function, given)
+        assert column[0] == column[3] and expected[1] == words[0], (function.name, argument.key)
+        assert same(column[0][0], expected[0][0], 1000.0), (function.name, argument.key)
+    assert len(cases) > 400
+
+
+@pytest.mark.parametrize("name", CARDS)
+def test_random_ranges_give_what_python_gives(name: str) -> None:
+    book, dice = tried(name), random.Random(11)
+    cases = [(function, book.random_ranges(function, dice)) for function in WRITTEN for _ in range(3)]
+    numbers = words = told = 0
+    for (function, given), got in zip(cases, book.filled(cases), strict=True):
+        expected = book.expected_rows(function, given)
+        assert [len(row) for row in got] == [len(row) for row in expected], (function.name, given, got)
+        for one, other in zip(chain.from_iterable(got), chain.from_iterable(expected), strict=True):
+            of = about(other, function.arguments)
+            if of:  # wrong input is told in other words, as units in texts are not read
+                assert about(one, function.arguments), (function.name, given, one, other)
+            else:
+                assert same(one, other, 1000.0), (function.name, given, one, other)
+            told, words = told + bool(of), words + (isinstance(one, str) and not of)
+            numbers += isinstance(one, float)
+    assert len(cases) >= 75 and numbers > 120 and words > 40 and told > 40
+
+
+def test_a_column_beside_a_row_makes_a_table_and_one_value_counts_for_all() -> None:
+    book, function = tried("heron"), BY_NAME["DENSITY_ALT"]
+    elevations, temperatures = [[800.0], [2400.0], [4100.0]], [[12.0, 31.0]]
+    column, table, row = book.filled([
+        (function, [elevations, [[1008.0]], [[31.0]], [[0.0]]]),
+        (function, [elevations, [[1008.0]], temperatures, [[0.0]]]),
+        (function, [[[2400.0]], [[29.77]], temperatures, [[0.0]]]),
+    ])  # fmt: skip
+    alone = [[call(function, start, 1008.0, heat, 0.0) for heat in temperatures[0]] for (start,) in elevations]
+    assert table == [pytest.approx(one, rel=1e-9) for one in alone]
+    assert column == [[pytest.approx(one[1], rel=1e-9)] for one in alone]
+    assert row == [pytest.approx([call(function, 2400.0, 29.77, heat, 0.0) for heat in temperatures[0]], rel=1e-9)]
+
+
+@pytest.mark.parametrize(("typed", "given"), [
+    ("{2400;4100},{1008}", ([[2400.0], [4100.0]], 1008.0)), ("{2400},{1008}", (2400.0, 1008.0)),
+    ("{2400,4100},1000+{8;13}", ([[2400.0, 4100.0]], [[1008.0], [1013.0]])),
+    ("1200*{2;3},29.77", ([[2400.0], [3600.0]], 29.77)),
+])  # fmt: skip
+def test_arrays_that_a_formula_makes_count_as_ranges(typed: str, given: tuple[Any, Any]) -> None:
+    book, function = Book(tried("heron").path), BY_NAME["PRESSURE_ALT"]
+    book._model.set_user_input(book.sheets().index("Functions"), 200, 1, f"={function.full_name}({typed})")
+    book.recalculate()
+    expected = call(function, *given)
+    rows = expected if isinstance(expected, list) else [[expected]]
+    got = book.values("Functions", f"A200:{get_column_letter(len(rows[0]) + 1)}{200 + len(rows)}")
+    assert [row[:-1] for row in got[:-1]] == [pytest.approx(row, rel=1e-9) for row in rows]
+    assert {row[-1] for row in got} | set(got[-1]) == {None}
+
+
+def test_ranges_that_do_not_go_together_are_told_in_the_words_of_the_other_doors() -> None:
+    book, cases = tried("heron"), []
+    misfits = [((3, 1), (2, 1)), ((3, 2), (2, 2)), ((2, 3), (2, 2)), ((1, 3), (1, 2)), ((4, 1), (2, 2))]
+    for function in WRITTEN:
+        spread = [place for place, argument in enumerate(function.arguments) if argument.kind not in WHOLE]
+        if len(spread) > 1:
+            for one, other in misfits:
+                given = [[[value]] for value in book.usual(function)]
+                for at, place in enumerate(spread):  # the two shapes again and again: each is told once
+                    rows, columns = one if at == 0 else (1, 1) if at % 3 == 2 else other if at % 3 == 1 else one
+                    given[place] = [given[place][0] * columns] * rows
+                cases.append((function, given))
+    for (function, given), got in zip(cases, book.filled(cases), strict=True):
+        expected = book.expected(function, given)
+        assert "different shapes" in expected and got == [[expected]], (function.name, got)
+    assert len(cases) > 100
+
+
+def test_a_range_given_to_the_step_for_one_value_never_gives_a_number() -> None:
+    book, cases = tried("heron"), []
+    for function in WRITTEN:
+        usual = [[[value]] for value in book.usual(function)]
         for place, argument in enumerate(function.arguments):
             if argument.kind in KINDS:
-                row = 3 * len(places) + 1
-                typed = [book.ranges.get(a.kind) or lambda_book._typed(v)
-                         for a, v in zip(function.arguments, lambda_book.whole_example(function), strict=True)]  # fmt: skip
-                value = lambda_book.whole_example(function)[place]
-                sheet.cell(row, 2).value = sheet.cell(row + 1, 2).value = value
-                typed[place] = f"B{row}:B{row + 1}"
-                sheet.cell(row, 1).value = f"={function.full_name}({','.join(typed)})"
-                places[row] = function.name
-    with TemporaryDirectory() as folder:
-        path = Path(folder) / "ranges.xlsx"
-        workbook.save(path)
-        recalculated = Book(path)
-        recalculated.recalculate()
-    assert len(places) > 80
-    for row, name in places.items():
-        assert not isinstance(recalculated.value("Cases", f"A{row}"), float), name
+                cases.append((function, [*usual[:place], usual[place] * 2, *usual[place + 1 :]]))
+    for (function, given), got in zip(cases, book.filled(cases, f"{STEP}{{}}_ONE"), strict=True):
+        assert got and not any(isinstance(value, float) for row in got for value in row), (function.name, given, got)
+    assert len(cases) > 80
 
 
 @pytest.mark.parametrize(("sheet", "label", "blank"), [
@@ -224,8 +378,8 @@ def test_a_range_that_lacks_a_row_or_a_number_gives_no_verdict(tmp_path: Path, s
     workbook[sheet][f"{blank}{row}"] = "gone" if blank == "A" else "none"
     cases = workbook.create_sheet("Cases")
     for at, name in enumerate(("TAKEOFF_VERDICT", "TAKEOFF_MARGIN"), 1):
-        given = zip(BY_NAME[name].arguments, lambda_book.whole_example(BY_NAME[name]), strict=True)
-        typed = [book.ranges.get(a.kind) or lambda_book._typed(book.flaps[1] if a.kind == "flap" else v) for a, v in given]
+        given = zip(BY_NAME[name].arguments, book.usual(BY_NAME[name]), strict=True)
+        typed = [book.ranges.get(argument.kind) or lambda_book._typed(value) for argument, value in given]
         cases.cell(at, 1).value = f"=STRIP_{name}({','.join(typed)})"
     workbook.save(tmp_path / "lacks.xlsx")
     recalculated = Book(tmp_path / "lacks.xlsx")
@@ -238,9 +392,7 @@ def test_a_range_that_lacks_a_row_or_a_number_gives_no_verdict(tmp_path: Path, s
 def test_corrections_of_a_manual_are_refused(tmp_path: Path) -> None:
     made = Tried(tmp_path / "library.xlsx", everything(), "part-cat-b")
     function = BY_NAME["TAKEOFF_VERDICT"]
-    given = [made.flaps[1] if a.kind == "flap" else v
-             for a, v in zip(function.arguments, lambda_book.whole_example(function), strict=True)]  # fmt: skip
-    assert made.answers([(function, given)]) == [NO_CORRECTIONS]
+    assert made.answers([(function, made.usual(function))]) == [NO_CORRECTIONS]
 
 
 def test_names_are_within_excel_s_limits() -> None:
@@ -252,6 +404,7 @@ def test_names_are_within_excel_s_limits() -> None:
         assert re.fullmatch(r"STRIP_[A-Z0-9_]+", name.name)  # with its underscore no reference to a cell in any style
         for variable in set(re.findall(r"_xlpm\.(\w+)", name.text)):
             assert not re.fullmatch(r"[A-Za-z]{1,3}[0-9]+|[RrCc]|[Rr][0-9]*[Cc][0-9]*", variable), (name.name, variable)
+        assert not re.search(r"(?<![.\w])(LET|LAMBDA|MAKEARRAY)\(", name.text)  # newer than the format: with its prefix
         pairs = [len(variables) for variables in _let_variables(name.text)]
         assert max(pairs, default=0) <= MAX_PAIRS and name.text.count("(") == name.text.count(")")
         assert len(re.findall(r"_xlpm\.\w+", name.text.split("(", 1)[1])) > 0

@@ -324,39 +324,6 @@ def test_a_failure_leaves_the_old_file_and_no_other(tmp_path):
     assert list(tmp_path.iterdir()) == [path]
 
 
-def test_a_failure_at_the_last_step_leaves_the_old_file_and_no_other(tmp_path, monkeypatch):
-    path = tmp_path / "strips.xlsx"
-    path.write_bytes(b"the old file")
-
-    def full(*_names):
-        raise OSError(28, "No space left on device")
-
-    monkeypatch.setattr(stream.os, "replace", full)
-    with pytest.raises(
-        InputError, match=r"strips\.xlsx: can't be written \(No space left on device\); close it"
-    ):
-        write_book(book_with(1), {}, path)
-    assert path.read_bytes() == b"the old file"
-    assert list(tmp_path.iterdir()) == [path]
-
-
-def test_the_new_file_has_the_rights_of_the_old_one_and_a_link_stays_a_link(tmp_path):
-    real, link = tmp_path / "real.xlsx", tmp_path / "link.xlsx"
-    real.write_bytes(b"the old file")
-    real.chmod(0o640)
-    link.symlink_to(real)
-    write_book(book_with(1), {}, link)
-    assert link.is_symlink() and real.stat().st_mode & 0o777 == 0o640
-    assert package_faults(real) == []
-
-
-def test_a_place_that_cannot_be_written_is_said_in_one_sentence(tmp_path):
-    with pytest.raises(InputError, match="this is a folder"):
-        write_book(book_with(1), {}, tmp_path)
-    with pytest.raises(InputError, match=r"can't be written \(No such file or directory\)"):
-        write_book(book_with(1), {}, tmp_path / "nowhere" / "strips.xlsx")
-
-
 # --- tables that don't fit
 
 
@@ -464,3 +431,20 @@ def altered(path: Path, part: str, old: str, new: str | None) -> Path:
 def test_the_package_check_finds_what_is_wrong(tmp_path, part, old, new, says):
     path = write(tmp_path, [FormulaColumn("1", np.ones(2))])
     assert says in " | ".join(package_faults(altered(path, part, old, new)))
+
+
+@pytest.mark.parametrize("target", [None, "../our%20list.xlsx"])
+def test_each_row_has_a_link_of_its_own(tmp_path, target):
+    """Inside the workbook, and to another; the last row has none."""
+    book = openpyxl.Workbook()
+    cell = book.active["B2"]
+    cell.value, cell.hyperlink = "x", openpyxl.worksheet.hyperlink.Hyperlink(ref="B2", location="'A'!A1", target=target)
+    places = ["'A & \"B\"'!C5", "'A'!C6"]
+    table = Table(2, [NumberColumn(np.arange(3.0)), TextColumn(["one", "two", "three"])], links=places)
+    write_book(book, {"Sheet": table}, tmp_path / "book.xlsx")
+    outward = ["xl/worksheets/_rels/sheet1.xml.rels: external link to ../our list.xlsx"]  # meant
+    assert package_faults(tmp_path / "book.xlsx") == (outward if target else [])
+    sheet = openpyxl.load_workbook(tmp_path / "book.xlsx")["Sheet"]
+    found = [sheet.cell(row, 2).hyperlink for row in (2, 3, 4)]
+    assert [(link.location, link.target) for link in found[:2]] == [(place, target) for place in places]
+    assert found[2] is None and sheet["A2"].hyperlink is None

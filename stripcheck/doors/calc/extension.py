@@ -20,7 +20,7 @@ from stripcheck import __version__
 from stripcheck.caution import CAUTION
 from stripcheck.doors.functions import FUNCTIONS, LIMITS, PREFIX, VERDICTS, Function
 from stripcheck.errors import InputError
-from stripcheck.sheet.stream import whole_or_not_at_all
+from stripcheck.safe_file import whole_or_not_at_all
 
 IDENTIFIER = "stripcheck.calc"
 PACKAGE = Path(__file__).parents[2]
