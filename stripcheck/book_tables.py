@@ -30,6 +30,7 @@ from stripcheck.register.read_table import (
     text_rows,
     workbook_sheets,
 )
+from stripcheck.register.safe_read import check_text
 from stripcheck.toml_fields import Section
 from stripcheck.units import from_si, read_quantity, tidy
 
@@ -264,11 +265,12 @@ def _from_file(part: Section, folder: Path, wide: int) -> tuple[np.ndarray, np.n
 
 
 def _raw_rows(path: Path, sheet: str | None) -> list[Sequence[object]]:
-    check_file(path)
+    check_file(path, "table")
     kind = path.suffix.lower()
     if kind in TEXT_KINDS:
         if sheet is not None:
             raise InputError(f'{path.name}: a text file has no sheets; leave the sheet "{sheet}" out')
+        check_text(path)
         encoding = find_encoding(path)
         return list(text_rows(path, encoding, find_delimiter(path, encoding)))
     if kind in WORKBOOK_KINDS:

@@ -15,9 +15,10 @@ from typing import Any
 
 from stripcheck import __version__
 from stripcheck.caution import CAUTION
-from stripcheck.errors import InputError, one_line
+from stripcheck.cli_options import EPILOG, add_day, add_loading, day_of, say
+from stripcheck.cli_register import add_audit, add_refresh
+from stripcheck.errors import InputError
 
-EPILOG = f"Exit codes: 0 done, 2 bad input (one sentence, nothing written), 130 interrupted. {CAUTION}"
 DEMO_FILE = "stripcheck-demo.xlsx"
 
 
@@ -51,7 +52,8 @@ def _parser() -> argparse.ArgumentParser:
     _add_fill(commands)
     _add_strip(commands)
     _add_card(commands)
-    _add_audit(commands)
+    add_audit(commands)
+    add_refresh(commands)
     _add_demo(commands)
     _add_door(commands)
     listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
@@ -82,8 +84,8 @@ def _add_fill(commands: Any) -> None:
     fill.add_argument("--formulas", choices=("native", "excel", "calc", "lambda", "none"), default="native",
                       help="native: live everywhere (usual); excel, calc, lambda: verdict, reason and margin by the functions "
                       "of that door; none: values only")  # fmt: skip
-    _add_loading(fill)
-    _add_day(fill)
+    add_loading(fill)
+    add_day(fill)
     fill.add_argument("--quiet", action="store_true", help="no progress bar, no summary line")
     fill.set_defaults(run=_run_fill)
 
@@ -110,8 +112,8 @@ def _add_strip(commands: Any) -> None:
     group.add_argument("--obstacle", metavar="FT/M", help="height above and distance beyond the far end")
     group.add_argument("--obstacle-behind", metavar="FT/M", help="height above and distance before the near end")
     group.add_argument("--one-way", action="store_true", help="land in the direction given only, take off in the other only")
-    _add_loading(strip)
-    _add_day(strip)
+    add_loading(strip)
+    add_day(strip)
     strip.set_defaults(run=_run_strip)
 
 
@@ -127,48 +129,6 @@ def _add_card(commands: Any) -> None:
     card.add_argument("--picture", metavar="FILE", help="draw the card against the manual too: .png or .svg (needs matplotlib)")
     card.add_argument("--force", action="store_true", help="replace FILE if it exists")
     card.set_defaults(run=_run_card)
-
-
-def _add_audit(commands: Any) -> None:
-    audit = commands.add_parser(
-        "audit",
-        help="what makes the verdicts from a list or a filled workbook untrustworthy, row by row",
-        description="Find what makes verdicts untrustworthy: values that are missing, absurd or contradict each other, runways "
-        "that come twice, old surveys. Each is told with a suggested correction; nothing is changed.",
-        epilog=EPILOG,
-    )
-    audit.add_argument("list", metavar="LIST", help="runway list: .csv, .xlsx, .xls or .ods; or a filled workbook")
-    audit.add_argument("--airports", metavar="FILE", help="airports file of the open runway data, to compare with")
-    audit.add_argument("--sheet", help="sheet of the list's workbook, if not the first")
-    audit.add_argument("--survey-age", type=float, metavar="YEARS", help="greatest age of a survey (usual: 5)")
-    audit.add_argument("--csv", metavar="OUT.csv", help="write all findings as a table")
-    audit.add_argument("--xlsx", metavar="OUT.xlsx", help="write all findings as a workbook, with links to the cells")
-    audit.add_argument("--force", action="store_true", help="replace the files to write if they exist")
-    audit.set_defaults(run=_run_audit)
-
-
-def _add_loading(parser: argparse.ArgumentParser) -> None:
-    group = parser.add_argument_group("loading (the card's usual values where not given)")
-    group.add_argument("--takeoff-mass", metavar="KG")
-    group.add_argument("--landing-mass", metavar="KG")
-    group.add_argument("--takeoff-flap", metavar="SETTING", help="name of a setting in the card")
-    group.add_argument("--landing-flap", metavar="SETTING", help="name of a setting in the card")
-
-
-def _add_day(parser: argparse.ArgumentParser) -> None:
-    group = parser.add_argument_group("day (for strips that have no values of their own in the list)")
-    group.add_argument("--temp", metavar="C", dest="temperature", help="air temperature")
-    group.add_argument("--temp-at", metavar="FT", dest="temperature_elevation",
-                       help="elevation where it was taken; else the same temperature at every strip")  # fmt: skip
-    group.add_argument("--isa-dev", metavar="K", dest="isa_deviation", help="ISA deviation at every strip")
-    group.add_argument("--qnh", metavar="HPA", help="altimeter setting (usual: 1013.25)")
-    group.add_argument("--humidity", metavar="PCT", help="relative humidity (usual: dry air)")
-    group.add_argument("--dew-point", metavar="C", help="dew point, instead of the humidity")
-    group.add_argument("--wind", metavar="DIR/KT", help="true direction it comes from, and knots, such as 270/10 (usual: calm)")
-    group.add_argument("--ground", choices=("dry", "wet", "soft"), dest="day_condition",
-                       help="condition of the ground where the list says none (usual: dry)")  # fmt: skip
-    group.add_argument("--assume-slope", metavar="PCT", dest="assumed_slope",
-                       help="slope against you, both ways, where none is known (usual: not assessed)")  # fmt: skip
 
 
 def _add_demo(commands: Any) -> None:
@@ -212,20 +172,20 @@ def _add_door(commands: Any) -> None:
 def _run_door_excel(options: argparse.Namespace) -> int:
     from stripcheck.doors.excel_setup import install
 
-    return _say(install(Path(options.folder), options.force), False)
+    return say(install(Path(options.folder), options.force), False)
 
 
 def _run_door_lambda(options: argparse.Namespace) -> int:
     from stripcheck.doors import lambda_book
 
     book, output = (None if name is None else Path(name) for name in (options.book, options.output))
-    return _say(lambda_book.run(book, output, options.force), False)
+    return say(lambda_book.run(book, output, options.force), False)
 
 
 def _run_door_calc(options: argparse.Namespace) -> int:
     from stripcheck.doors.calc.install import calc_door
 
-    return _say(calc_door(Path(options.output), options.install, options.force), False)
+    return say(calc_door(Path(options.output), options.install, options.force), False)
 
 
 def _run_list(_: argparse.Namespace) -> int:
@@ -245,14 +205,14 @@ def _run_list(_: argparse.Namespace) -> int:
 def _run_fill(options: argparse.Namespace) -> int:
     from stripcheck.filling import Request, fill_list
 
-    day = _day(options)
+    day = day_of(options)
     request = Request(
         Path(options.list), Path(options.output), options.card, options.rules, day,
         takeoff_mass=options.takeoff_mass, landing_mass=options.landing_mass, takeoff_flap=options.takeoff_flap,
         landing_flap=options.landing_flap, airports=options.airports, sheet=options.sheet, strict=options.strict,
         detail=options.detail, formulas=options.formulas, chance=options.chance, force=options.force, quiet=options.quiet,
     )  # fmt: skip
-    return _say(fill_list(request), options.quiet)
+    return say(fill_list(request), options.quiet)
 
 
 def _run_strip(options: argparse.Namespace) -> int:
@@ -265,7 +225,7 @@ def _run_strip(options: argparse.Namespace) -> int:
              "obstacle_behind")  # fmt: skip
     loading = {name: getattr(options, name) for name in ("takeoff_mass", "landing_mass", "takeoff_flap", "landing_flap")}
     strip = typed_strip({name: getattr(options, name) for name in names})
-    day = _day(options)
+    day = day_of(options)
     if day["temperature"] is None and day["isa_deviation"] is None:
         raise InputError("no temperature: add --temp or --isa-dev")
     lines = one_strip(strip, load_card(options.card), read_day(day), load_rules(options.rules), one_way=options.one_way,
@@ -285,43 +245,9 @@ def _run_card(options: argparse.Namespace) -> int:
     return 0
 
 
-def _run_audit(options: argparse.Namespace) -> int:
-    from stripcheck.auditing import AuditRequest, run_audit
-
-    csv, xlsx = (None if name is None else Path(name) for name in (options.csv, options.xlsx))
-    age = {} if options.survey_age is None else {"survey_age": options.survey_age}
-    request = AuditRequest(Path(options.list), options.airports, options.sheet, csv=csv, xlsx=xlsx, force=options.force, **age)
-    return _say(run_audit(request), False)
-
-
 def _run_demo(options: argparse.Namespace) -> int:
     from stripcheck.filling import demo_request, fill_list
 
-    return _say(fill_list(demo_request(Path(options.output), options.force, options.quiet)), options.quiet)
-
-
-def _say(lines: list[str], quiet: bool) -> int:
-    if not quiet:
-        print("\n".join((*map(one_line, lines), CAUTION)))
-    return 0
-
-
-def _day(options: argparse.Namespace) -> dict[str, str | None]:
-    """The day as typed, by key of ``inputs.DAY``."""
-    names = ("temperature", "temperature_elevation", "isa_deviation", "qnh", "humidity", "dew_point", "day_condition",
-             "assumed_slope")  # fmt: skip
-    return {name: getattr(options, name) for name in names} | _wind(options.wind)
-
-
-def _wind(text: str | None) -> dict[str, str | None]:
-    """Direction and speed of a wind such as "270/10"."""
-    if text is None:
-        return {}
-    if text.strip().lower() == "calm":
-        return {"wind_speed": "0"}
-    direction, slash, speed = text.partition("/")
-    if not slash or not direction.strip() or not speed.strip():
-        raise InputError(f'--wind {text}: a direction and a speed such as 270/10 are expected, or "calm"')
-    return {"wind_from": direction, "wind_speed": speed}
+    return say(fill_list(demo_request(Path(options.output), options.force, options.quiet)), options.quiet)
 
 

@@ -628,13 +628,13 @@ guessed.
 
 **Aircraft and rules** are the name of a shipped card or rule set, the path of a file of your own, which is
 read again when it has changed, or a range: the sheet Aircraft (columns A to I) or Rules (columns A to F) of a
-filled workbook as it is, such as `Aircraft!A1:I80`. A range must hold every value; blank limits and factors
+filled workbook as it is, such as `Aircraft!A1:I201`. A range must hold every value; blank limits and factors
 are refused.
 
 **Tables of the manual** are in that range too: on the sheet Aircraft of a card with tables, rows with the
 manual's figures stand folded at the end, outside what is printed. They follow the sheet Manual, so that a
-figure typed over or deleted there counts. The row "{2}" tells how far the range goes, such as
-`Aircraft!A1:I201`; a range that ends before is refused. A workbook of LAMBDA names has no such rows on its
+figure typed over or deleted there counts. The row "{2}" tells how far the range goes; one that ends
+before is refused. A workbook of LAMBDA names has no such rows on its
 sheet Aircraft: from that one the calibrated model answers alone, and the verdict is at best marginal, the
 reason being "{1}".
 

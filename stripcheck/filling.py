@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from importlib.resources import files
 from math import isnan
 from pathlib import Path
-from typing import Any
+from typing import Any, Protocol
 
 import numpy as np
 
@@ -88,7 +88,20 @@ def fill_list(request: Request) -> list[str]:
     return [*cuts, *summary_lines(filling, request.output)]
 
 
-def loading(card: Card, request: Request) -> tuple[dict[str, float], dict[str, str]]:
+class Loading(Protocol):
+    """What a user may say of mass and flap."""
+
+    @property
+    def takeoff_mass(self) -> str | None: ...
+    @property
+    def landing_mass(self) -> str | None: ...
+    @property
+    def takeoff_flap(self) -> str | None: ...
+    @property
+    def landing_flap(self) -> str | None: ...
+
+
+def loading(card: Card, request: Loading) -> tuple[dict[str, float], dict[str, str]]:
     """Mass and flap by chain key in SI, and the names of the two flap settings."""
     chosen = {key: float(card.values[key]) for key in ("mass_takeoff", "mass_landing", "takeoff_flap", "landing_flap")}
     for key, typed, greatest in (("mass_takeoff", request.takeoff_mass, "max_takeoff_mass"),

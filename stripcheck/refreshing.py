@@ -13,20 +13,26 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
+from openpyxl import Workbook
 from openpyxl.utils import column_index_from_string, get_column_letter
+from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck import interpolation
 from stripcheck.assessment import Result
-from stripcheck.chain import Input, evaluate
+from stripcheck.card import Card, load_card
+from stripcheck.chain import Chain, Input, evaluate
 from stripcheck.chance import chance_of
 from stripcheck.day import read_day
+from stripcheck.doors.aircraft import Aeroplane
 from stripcheck.errors import InputError
+from stripcheck.filling import loading
 from stripcheck.flaps import flap_setting
 from stripcheck.inputs import DAY, RULES, SIDE_WORDS, STRIP
 from stripcheck.profile_run import KEYS as PROFILE
 from stripcheck.rules import Rules, load_rules
 from stripcheck.safe_file import keeping_the_old, refuse_if_open, whole_or_not_at_all
-from stripcheck.sheet import filled, pages, strips, summary
+from stripcheck.sheet import filled, manual_tables, pages, strips, summary
+from stripcheck.sheet.cases import no_inputs
 from stripcheck.sheet.filled import Filled, Sheet
 from stripcheck.sheet.formulas import GROUND_NAMES, NOWHERE, WORDS, Place, write_formulas
 from stripcheck.sheet.labels import GROUND_HEADER
@@ -46,6 +52,7 @@ class Request:
     book: Path
     output: Path | None = None
     day: Mapping[str, Any] | None = None
+    card: str | None = None
     rules: str | None = None
     takeoff_mass: str | None = None
     landing_mass: str | None = None
@@ -80,8 +87,14 @@ class _Refresh:
         self.edits |= {sheet.title: Edits(sheet.raw) for sheet in (strip_sheet, summary_sheet)}
         self.typed: dict[str, dict[tuple[int, int], Value]] = {title: {} for title in filled.PAGES}
         self.rules = None if request.rules is None else load_rules(request.rules)
+        self.card = None if request.card is None else load_card(request.card)
         self._take_over()
-        self.book: Filled = filled.read_filled(package, self.pages, strip_sheet, summary_sheet, self.typed)
+        loaded = None
+        if self.card is not None:
+            chosen, flap_names = loading(self.card, request)
+            loaded = Aeroplane(self.card.file, self.card.chain, self.card.values, self.card.flaps), chosen
+            self._take_card(self.card, chosen, flap_names)
+        self.book: Filled = filled.read_filled(package, self.pages, strip_sheet, summary_sheet, self.typed, loaded)
         self.found = evaluate(self.book.chain, self.book.inputs)
         self.shown = {
             step.key: strips.shown(step, self.found[step.key], self.book.faults) for step in self.book.chain.steps
@@ -94,7 +107,7 @@ class _Refresh:
     def run(self) -> list[str]:
         """All edits; returns what to tell, the counts first."""
         self._named_values()
-        if "Manual" in self.pages and self._loading_given():
+        if "Manual" in self.pages and self.card is None and self._loading_given():
             self._tables_of_the_day()
         keys = self._keys()
         self._strips(keys)
@@ -108,7 +121,8 @@ class _Refresh:
 
     def _take_over(self) -> None:
         self._take_day()
-        self._take_loading()
+        if self.card is None:
+            self._take_loading()
         if self.rules is not None:
             self._take_rules(self.rules)
 
@@ -187,6 +201,41 @@ class _Refresh:
                 shown: Value = pages.NO_FIGURE if np.isnan(value) else value
                 self.edits["Rules"].set(at, column, shown)
                 self.typed["Rules"][at, column] = shown
+
+    def _take_card(self, card: Card, chosen: Mapping[str, float], flap_names: Mapping[str, str]) -> None:
+        """Another aeroplane of the same kind: the cells of the sheets Aircraft and Manual, as they would be filled."""
+        made = pages.Pages(Workbook())
+        aircraft = pages.write_aircraft(made, card, chosen, flap_names, tables_follow=True)
+        once = [step for step in card.chain.steps if step.key not in card.chain.depends_on_strip()]
+        page_values = {**no_inputs(), **card.values, **chosen}
+        inputs = {item.key: page_values.get(item.key, np.nan) for item in card.chain.inputs if item.where != "rules"}
+        inputs |= self.rules.values if self.rules is not None else filled.rules_in(self.pages)
+        values = evaluate(card.chain, inputs, [step.key for step in once])
+        manual_tables.write_manual(made, card, values)
+        row = pages.write_book_points(aircraft, aircraft.max_row + 3, card)
+        pages.write_steps(made, aircraft, row, once)
+        formulas = write_formulas(card.chain, self._page_places(card.chain) | made.places)
+        pages.fill_steps(made, aircraft, row, once, formulas, values)
+        manual_tables.write_as_rows(made, aircraft, card, values)
+        names = {name: defined.attr_text for name, defined in made.book.defined_names.items()}
+        if any(self.package.names.get(name) != text for name, text in names.items()):
+            raise InputError(
+                f"{self.package.path}: this workbook was filled for an aeroplane of another make (propeller, engine, number of "
+                f"flap settings, tables or figures of the manual), so {card.name} does not fit its sheets; fill a new one"
+            )
+        for sheet in (made.book[title] for title in ("Aircraft", "Manual") if title in made.book.sheetnames):
+            self._copy(sheet, made.cached.get(sheet.title, {}))
+        self.typed["Aircraft"][1, 1] = card.name
+        self.edits[strips.SHEET].set(1, 2, f"{card.name}: every direction")
+
+    def _copy(self, sheet: Worksheet, cached: Mapping[str, Any]) -> None:
+        """The contents of a page as filled anew, into the cells where they stand; the formats stay."""
+        for cell in (cell for row in sheet.iter_rows() for cell in row if cell.value is not None or cell.has_style):
+            text = str(cell.value)[1:] if cell.data_type == "f" else None
+            value = cached.get(cell.coordinate, "") if text is not None else cell.value
+            if text is not None or value is not None or self.pages[sheet.title].value(cell.row, cell.column) is not None:
+                plain = value if value is None or isinstance(value, str | bool) else _plain(value)
+                self.edits[sheet.title].set(cell.row, cell.column, plain, text)
 
     # --- what follows from it
 
@@ -303,13 +352,19 @@ class _Refresh:
         cells = (self.book.strips.raw.by_number[row].cells.get(column) for row in self.book.rows for column in columns.values())
         return any(cell is not None and cell.formula is not None for cell in cells)
 
-    def _places(self, columns: Mapping[str, int]) -> dict[str, Place]:
-        chain, names, sheet = self.book.chain, self.package.names, self.book.strips
+    def _page_places(self, chain: Chain) -> dict[str, Place]:
+        """Where the chain's values stand on the pages: under their names."""
+        names = self.package.names
         places = {step.key + WORDS: Place(step.key + WORDS) for step in chain.steps if step.words}
         places[GROUND_NAMES] = Place(GROUND_NAMES)
         for item in chain.inputs:
             name = next((name for name in (item.key, f"{item.key}s") if name in names), "")
             places[item.key] = Place(name) if name and item.where != "strip" else NOWHERE
+        return places
+
+    def _places(self, columns: Mapping[str, int]) -> dict[str, Place]:
+        chain, names, sheet = self.book.chain, self.package.names, self.book.strips
+        places = self._page_places(chain)
         for item in STRIP:
             column = sheet.columns.get(strips.input_column(item).header)
             if column:

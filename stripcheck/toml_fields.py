@@ -13,6 +13,7 @@ from stripcheck.errors import InputError
 from stripcheck.units import KINDS, from_si, read_quantity, tidy
 
 REQUIRED = object()
+MAX_FILE = 1_000_000  # [bytes]: a hundred times a card with tables
 BARE_SHARE = 0.003  # 0.3 per cent, below which a bare figure was probably meant as a share
 
 
@@ -134,15 +135,20 @@ def read_share(entry: object) -> float:
 
 
 def read_toml(path: Path) -> Section:
-    """The whole of a TOML file. Raises InputError if it can't be read."""
+    """The whole of a TOML file. Raises InputError if it can't be read, or is far larger or deeper than any card."""
     try:
+        size = path.stat().st_size
+        if not path.is_file() or size > MAX_FILE:
+            raise InputError(f"{path}: a TOML text file of at most {MAX_FILE / 1e6:.0f} MB is expected")
         with path.open("rb") as file:
             return Section(path.name, tomllib.load(file))
     except FileNotFoundError:
         raise InputError(f"{path}: there is no such file") from None
     except (OSError, UnicodeDecodeError) as error:
         raise InputError(f"{path}: can't be read ({error.__class__.__name__}); a TOML text file is expected") from None
-    except tomllib.TOMLDecodeError as error:
+    except RecursionError:
+        raise InputError(f"{path}: lists or parts nest too deep; a card and a rule set have at most three levels") from None
+    except ValueError as error:  # what is no TOML, and a number with thousands of digits
         raise InputError(f"{path}: is not a TOML file that can be read: {error}") from None
 
 

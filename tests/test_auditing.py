@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import re
 from pathlib import Path
 
 import openpyxl
@@ -10,6 +11,7 @@ import pytest
 
 from stripcheck.caution import CAUTION
 from stripcheck.cli import main
+from stripcheck.register.audit_kinds import KINDS
 from tests.sheet.package_check import package_faults
 
 UGLY = (
@@ -165,3 +167,15 @@ def test_an_old_file_is_replaced_when_forced(strips: Path, tmp_path: Path) -> No
     (tmp_path / "old.csv").write_text("mine")
     assert main(["audit", str(strips), "--csv", str(tmp_path / "old.csv"), "--force"]) == 0
     assert "Caution" in (tmp_path / "old.csv").read_text(encoding="utf-8-sig")
+
+
+def test_the_page_in_the_docs(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
+    """What docs/register.md shows is what the command says, and the kinds that it lists are all there are."""
+    page = (Path(__file__).parents[1] / "docs" / "register.md").read_text(encoding="utf-8")
+    blocks = dict(re.findall(r"^```(csv|text)\n(.*?)^```$", page, re.DOTALL | re.MULTILINE))
+    (tmp_path / "ugly.csv").write_text(blocks["csv"], encoding="utf-8")
+    monkeypatch.chdir(tmp_path)
+    assert main(["audit", "ugly.csv"]) == 0
+    assert capsys.readouterr().out == blocks["text"]
+    listed = re.findall(r"^\| ([a-z ]+) \| ([^|]+) \| ([^|\d][^|]*) \|$", page, re.MULTILINE)
+    assert listed == [(kind.severity, kind.name, kind.meaning) for kind in KINDS]

@@ -196,7 +196,7 @@ FILE_REFUSALS = [
     ("0,200,220\n2000,280,310\n", f"grid.csv: no line of temperatures was found; {HINT}"),
     ("x,ISA,ISA+20\n0,200,220\n2000,280,310\n", f"grid.csv: no line of temperatures was found; {HINT}"),
     ("x,20,0\n0,200,220\n2000,280,310\n", f"grid.csv: no line of temperatures was found; {HINT}"),
-    ("", "grid.csv: the file is empty; a list has a header row and a row for each entry"),
+    ("", "grid.csv: the file is empty; a table has a header row and a row for each entry"),
     ('"x,0,20\n0,200,220\n',
      "grid.csv line 2: broken quote marks or text (unexpected end of data); a quote mark inside a quoted "
      'value must be doubled ("")'),
@@ -228,11 +228,11 @@ def test_one_figure_under_each_temperature_is_not_taken_for_two(tmp_path: Path) 
     ("file", "more", "sentence"),
     [
         ("none.csv", "", "none.csv: there is no such file"),
-        (".", "", ": this is a directory; name the file of the runway list"),
+        (".", "", ": this is a directory; name the file of the table"),
         ("grid.md", "", 'grid.md: ".md" is not a kind of table; save it as one of .csv, .xlsx, .xls or .ods'),
         ("grid.csv", 'sheet = "Roll"\n', 'grid.csv: a text file has no sheets; leave the sheet "Roll" out'),
         ("grid.xlsx", 'sheet = "Roll"\n', 'grid.xlsx: there is no sheet "Roll"; its sheets are Flap 10, Flap 20'),
-        ("broken.xlsx", "", "broken.xlsx: the workbook can't be read ("),
+        ("broken.xlsx", "", "broken.xlsx: this is a text and no workbook; name it .csv if it is a list"),
     ],
 )
 def test_files_that_are_refused(tmp_path: Path, file: str, more: str, sentence: str) -> None:

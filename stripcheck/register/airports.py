@@ -9,6 +9,7 @@ from typing import NamedTuple
 from stripcheck.errors import InputError
 from stripcheck.register.limits import within_limits
 from stripcheck.register.read_table import check_file, find_delimiter, find_encoding, text_rows
+from stripcheck.register.safe_read import check_text
 from stripcheck.units import to_si
 
 
@@ -38,10 +39,11 @@ def read_airports(path: str | Path, wanted: set[str]) -> dict[str, Airport]:
     stripcheck.errors.InputError: no such airports.csv: there is no such file
     """
     path = Path(path)
-    check_file(path)
+    check_file(path, "airports file")
+    check_text(path)
     encoding = find_encoding(path)
     rows = text_rows(path, encoding, find_delimiter(path, encoding))
-    header = [cell.strip().lower() for cell in next(rows)]
+    header = [cell.strip().lower() for cell in next(rows, [])]
     missing = [name for name in ("ident", "name", "elevation_ft", "type") if name not in header]
     if missing:
         raise InputError(

@@ -173,7 +173,7 @@ def _notes(case: Case) -> Hits:
     both = [set(values) for values in zip(*texts["land_here"], *texts["take_off_here"], strict=True)]
     for index, note in enumerate(runways.texts("notes")):
         if both[index] == {"yes"} and _ONE_WAY.search(note) and not re.search(r"\bnot? one", note, re.IGNORECASE):
-            fix = "tell which way: one lands on, and leaves by"
+            fix = "tell which way one lands, and which way one leaves"
             yield Hit(index, "notes", 0, kinds.ONE_WAY_IN_NOTES, f"the notes say one-way: {_short(note)}", fix)
         if _CLOSED.search(note):
             fix = 'fill the column "Closed" if it is'

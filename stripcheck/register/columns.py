@@ -132,6 +132,8 @@ _TRAILING_UNITS = {
     "°t": "°", "deg t": "°", "deg true": "°", "° true": "°", "degrees true": "°",
 }  # fmt: skip
 
+LONGEST_HEADER = 200  # [characters]: no header that is understood is nearly as long, and brackets without an end take ages
+
 _REMARKS = frozenset(("amsl", "msl", "asl", "above sea level", "true", "optional"))
 
 _LEADING_END = re.compile(r"(?:(le|end ?1|first end|1st end)|(he|end ?2|second end|2nd end))(?: (.*))?$")
@@ -208,6 +210,8 @@ def match_header(header: str) -> tuple[Column, int, str] | None:
     >>> match_header("Heading (magnetic)") is None
     True
     """
+    if len(header) > LONGEST_HEADER:
+        return None
     bare = _tidy(_BRACKETS.sub(" ", header))
     bracketed = [content for content in (_tidy(text) for text in _BRACKETS.findall(header)) if content not in _REMARKS]
     if any(content.startswith("mag") for content in bracketed):

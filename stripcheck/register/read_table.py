@@ -10,17 +10,21 @@ from __future__ import annotations
 
 import codecs
 import csv
+import stat
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from itertools import islice
 from pathlib import Path
+from typing import TextIO
 
 from stripcheck.errors import InputError
 from stripcheck.register.columns import known_headers
+from stripcheck.register.safe_limits import MAX_COLUMNS, MAX_LINE, MAX_LIST_COLUMNS, MAX_ROWS, check_area, damaged, protected
+from stripcheck.register.safe_read import check_text, check_workbook
 from stripcheck.register.values import as_written
 
 TEXT_KINDS = (".csv", ".txt", ".tsv", ".tab")
-WORKBOOK_KINDS = (".xlsx", ".xlsm", ".xlsb", ".xls", ".ods")
+WORKBOOK_KINDS = (".xlsx", ".xlsm", ".xls", ".ods")
 DELIMITERS = (",", ";", "\t", "|")
 HEADER_WITHIN = 40  # rows in which the header is looked for; title lines above a list are never as many
 
@@ -73,31 +77,43 @@ def read_table(path: str | Path, sheet: str | None = None) -> Table:
     raise InputError(f'{path.name}: "{kind}" is not a kind of runway list; save the list as one of {kinds}')
 
 
-def check_file(path: Path) -> None:
-    """Raise InputError unless ``path`` is a file with something in it."""
-    if path.is_dir():
-        raise InputError(f"{path}: this is a directory; name the file of the runway list")
-    if not path.exists():
-        raise InputError(f"{path}: there is no such file")
+def check_file(path: Path, what: str = "runway list") -> None:
+    """Raise InputError unless ``path`` is a file with something in it; ``what`` it should be, for the sentence."""
     try:
+        mode = path.stat().st_mode
+        if stat.S_ISDIR(mode):
+            raise InputError(f"{path}: this is a directory; name the file of the {what}")
+        if not stat.S_ISREG(mode):
+            raise InputError(f"{path}: this is a device or a pipe; name the file of the {what}")
         path.open("rb").close()
+    except (FileNotFoundError, ValueError):  # a name with a zero byte is no name
+        raise InputError(f"{path}: there is no such file") from None
     except OSError as error:
         raise InputError(
             f"{path}: the file can't be opened ({error.strerror}); close it elsewhere or check its rights"
         ) from error
     if path.stat().st_size == 0:
-        raise InputError(f"{path.name}: the file is empty; a list has a header row and a row for each entry")
+        raise InputError(f"{path.name}: the file is empty; a {what} has a header row and a row for each entry")
 
 
 def text_rows(path: Path, encoding: str, delimiter: str) -> Iterator[list[str]]:
     """Rows of a text file, a blank line giving ``[]``; InputError where the quotes or the text are broken.
 
-    Quotes are checked strictly: an open quote mark would swallow the runways that follow it.
+    Quotes are checked strictly: an open quote mark would swallow the runways that follow it. A row is held within
+    ``safe_limits``, so that a line or a quote without an end takes no memory.
     """
     with path.open(encoding=encoding, newline="") as stream:
-        reader = csv.reader(stream, delimiter=delimiter, strict=True)
+        lines = _Lines(path.name, stream)
+        reader = csv.reader(lines, delimiter=delimiter, strict=True)
         try:
-            yield from reader
+            for number, row in enumerate(reader, 1):
+                lines.length = 0
+                if len(row) > MAX_COLUMNS or number > MAX_ROWS:
+                    raise InputError(
+                        f"{path.name} line {reader.line_num}: a list has at most {MAX_COLUMNS:,} columns and {MAX_ROWS:,} "
+                        "rows; divide it"
+                    )
+                yield row
         except csv.Error as error:
             raise InputError(
                 f"{path.name} line {reader.line_num}: broken quote marks or text ({error}); "
@@ -105,6 +121,28 @@ def text_rows(path: Path, encoding: str, delimiter: str) -> Iterator[list[str]]:
             ) from error
         except UnicodeError as error:
             raise InputError(f"{path.name}: the text breaks off or is damaged; save the list as CSV, UTF-8") from error
+
+
+class _Lines:
+    """The lines of a text; InputError where those of one row are longer than a row can be."""
+
+    def __init__(self, name: str, stream: TextIO) -> None:
+        self.name, self.stream = name, stream
+        self.length = 0  # of the row so far, set back by whoever has a whole row
+
+    def __iter__(self) -> _Lines:
+        return self
+
+    def __next__(self) -> str:
+        line = self.stream.readline(MAX_LINE + 1)
+        if not line:
+            raise StopIteration
+        self.length += len(line)
+        if self.length > MAX_LINE:
+            raise InputError(
+                f"{self.name}: a row is longer than {MAX_LINE:,} characters; is a quote mark open, or is this no list?"
+            )
+        return line
 
 
 def find_encoding(path: Path) -> str:
@@ -153,6 +191,7 @@ def _decodes(decoder: codecs.IncrementalDecoder, block: bytes) -> bool:
 
 
 def _read_text(path: Path) -> Table:
+    check_text(path)
     encoding = find_encoding(path)
     delimiter = find_delimiter(path, encoding)
     table = _collect(text_rows(path, encoding, delimiter), path.name, "", delimiter)
@@ -171,19 +210,24 @@ def _read_workbook(path: Path, wanted: str | None) -> Table:
 
 def workbook_sheets(path: Path, wanted: str | None) -> Iterator[tuple[str, Sequence[Sequence[object]]]]:
     """Name and rows of the sheets of a workbook, or of the one wanted; InputError where it can't be read."""
-    from python_calamine import CalamineError, CalamineWorkbook, PasswordError
+    check_workbook(path)
+    from python_calamine import CalamineError, CalamineWorkbook, PasswordError, SheetTypeEnum
 
     try:
         with CalamineWorkbook.from_path(path) as book:
-            if wanted is not None and wanted not in book.sheet_names:
-                names = ", ".join(book.sheet_names)
-                raise InputError(f'{path.name}: there is no sheet "{wanted}"; its sheets are {names}')
-            for name in [wanted] if wanted is not None else book.sheet_names:
+            names = [sheet.name for sheet in book.sheets_metadata if sheet.typ == SheetTypeEnum.WorkSheet]
+            if wanted is not None and wanted not in names:
+                raise InputError(f'{path.name}: there is no sheet "{wanted}"; its sheets are {", ".join(names)}')
+            for name in [wanted] if wanted is not None else names:
                 yield name, book.get_sheet_by_name(name).to_python(skip_empty_area=False)
     except PasswordError as error:
-        raise InputError(f"{path.name}: the workbook has a password; save a copy without it") from error
+        raise protected(path.name) from error
     except (CalamineError, OSError, ValueError) as error:
         raise InputError(f"{path.name}: the workbook can't be read ({error}); open it and save it again") from error
+    except BaseException as error:
+        if type(error).__name__ != "PanicException":  # how that reader ends when it meets what it did not expect
+            raise
+        raise damaged(path.name, "it can't be understood") from error
 
 
 def _no_header(where: str) -> str:
@@ -208,12 +252,18 @@ def _collect(rows: Iterable[Sequence[object]], source: str, sheet: str, delimite
         if not _is_empty(cells[len(headers) :]):
             table.too_wide[len(table.row_numbers)] = len(cells)
         table.row_numbers.append(number)
+        check_area(where, len(table.row_numbers), len(headers))
         cells += [""] * (len(headers) - len(cells))
         for column, cell in zip(table.cells, cells, strict=False):
             column.append(cell)
     if not table.row_numbers:
         raise InputError(f"{table.where}: there are no runways below the header row; add a row for each runway")
     _drop_blank_columns(table)
+    if len(table.headers) > MAX_LIST_COLUMNS:
+        raise InputError(
+            f"{where}: the list has {len(table.headers):,} columns, and at most {MAX_LIST_COLUMNS:,} are read; delete "
+            "those that are not needed"
+        )
     return table
 
 

@@ -25,7 +25,6 @@ MAX_DEPTH = 256  # of elements within elements: workbooks have some twenty
 MAX_PIECE = 16_000_000  # [bytes] of one text or tag: a cell holds 32,767 characters, a query in a workbook some megabytes
 MAX_ROWS, MAX_COLUMNS = 1_048_576, 16_384  # of a sheet
 MAX_LIST_COLUMNS = 1_000  # of a list, with something in them: each is carried into the workbook
-MAX_TOML_FILE = 1_000_000  # [bytes] of a card or a rule set: a hundred times a card with tables
 
 SAVE_AS = "open it in a spreadsheet program and save it as .xlsx"
 SAVE_AGAIN = "open it in a spreadsheet program and save it again"

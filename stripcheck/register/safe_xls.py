@@ -21,6 +21,7 @@ MAX_RECORDS = 20_000_000  # that are walked: more than a file of the greatest si
 ROWS, COLUMNS = 65_536, 256  # of a sheet of this kind
 
 _END_OF_CHAIN, _NO_SECTOR = 0xFFFFFFFE, 0xFFFFFFFA  # sector numbers from the latter on mean something else
+_LONGEST = 65_535  # [characters] of a text
 _SMALL = 4096  # [bytes] below which a stream stands among the small ones
 _STREAM, _ROOT = 2, 5
 _BEGIN, _END, _SHEET, _PASSWORD, _CONTINUED = 0x809, 0x0A, 0x85, 0x2F, 0x3C
@@ -48,7 +49,7 @@ def check_compound(path: Path) -> None:
     if book is None:
         raise InputError(f"{path.name}: this is a document of another program and no workbook; {SAVE_AS}")
     if path.suffix.lower() != ".xls":
-        raise InputError(f"{path.name}: this is an old workbook (.xls) with another ending; name it {path.stem}.xls, or {SAVE_AS}")
+        raise InputError(f"{path.name}: by its content this is a workbook of the kind .xls; name it {path.stem}.xls")
     _Records(path.name, file.content(book)).check()
 
 
@@ -123,7 +124,7 @@ class _Compound:
             length, kind = struct.unpack("<HB", entry[64:67])
             start, size, high = struct.unpack("<III", entry[116:128])
             if kind in (_STREAM, _ROOT):
-                if high and self.size > 512 or size > len(self.data):
+                if (high and self.size > 512) or size > len(self.data):
                     raise damaged(self.name, "a part of it is larger than the file")
                 name = entry[: max(min(length, 64) - 2, 0)].decode("utf-16-le", "replace")
                 streams.append(_Stream(name, kind, start, size))
@@ -187,7 +188,7 @@ class _Records:
                 cells, most_rows, most_columns = cells + 1, max(most_rows, row + 1), max(most_columns, column + 1)
                 if kind == _SHOWS_SHARED and len(content) >= 10:
                     at = int.from_bytes(content[6:10], "little")
-                    self.tally.add_text(self.lengths[at] if at < len(self.lengths) else 0)
+                    self.tally.add_text(self.lengths[at] if at < len(self.lengths) else _LONGEST)
             elif kind == _MERGED and len(content) < 2 + 8 * int.from_bytes(content[:2], "little"):
                 raise damaged(self.name, f"the list of merged cells of sheet {number} breaks off")
         self.tally.add_area(f"number {number}", most_rows, most_columns, cells)

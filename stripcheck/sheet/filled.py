@@ -87,13 +87,15 @@ def open_filled(package: Package) -> tuple[dict[str, RawSheet], Sheet, Sheet]:
 
 
 def read_filled(package: Package, pages: Mapping[str, RawSheet], strip_sheet: Sheet, summary_sheet: Sheet,
-                typed: Mapping[str, Mapping[tuple[int, int], Value]] | None = None) -> Filled:  # fmt: skip
-    """Read a workbook's inputs. ``typed``: values that go before those of the pages, by sheet, row and column."""
+                typed: Mapping[str, Mapping[tuple[int, int], Value]] | None = None,
+                loaded: tuple[Aeroplane, Mapping[str, float]] | None = None) -> Filled:  # fmt: skip
+    """Read a workbook's inputs. ``typed``: values that go before those of the pages, by sheet, row and column; ``loaded``: an
+    aeroplane, with its mass and flap by chain key, that goes before the one on the sheet Aircraft."""
     own = typed or {}
     rows = {title: page_rows(pages, title, own.get(title, {})) for title in PAGES}
-    aeroplane = aeroplane_in(pages["Aircraft"], rows["Aircraft"])
+    aeroplane = loaded[0] if loaded else aeroplane_in(pages["Aircraft"], rows["Aircraft"])
     values = {**aeroplane.values, **rules_of(_typed_counts(pages["Rules"], rows["Rules"], "Rules")), **_day(rows["Day"])}
-    values |= _loading(rows["Aircraft"], aeroplane)
+    values |= loaded[1] if loaded else _loading(rows["Aircraft"], aeroplane)
     below = (row for row in sorted(strip_sheet.raw.by_number) if row > strip_sheet.header_row)
     directions = [row for row in below if _is_direction(strip_sheet, row)]
     if not directions:
@@ -111,6 +113,11 @@ def read_filled(package: Package, pages: Mapping[str, RawSheet], strip_sheet: Sh
 def aeroplane_in(raw: RawSheet, rows: list[list[Any]]) -> Aeroplane:
     """The aeroplane of a sheet Aircraft, by what is typed on it."""
     return aeroplane_of(_typed_counts(raw, rows, "Aircraft"))
+
+
+def rules_in(pages: Mapping[str, RawSheet]) -> dict[str, Any]:
+    """The values of the sheet Rules, by what is typed on it."""
+    return rules_of(_typed_counts(pages["Rules"], page_rows(pages, "Rules", {}), "Rules"))
 
 
 def _with_header(package: Package, title: str, mark: str) -> Sheet:
