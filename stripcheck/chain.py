@@ -92,8 +92,11 @@ class Chain:
         further = [self.held_with(other) for other in (item.guard, *item.implies) if other]
         return frozenset({key}).union(*further)
 
-    def leading_to(self, keys: Iterable[str]) -> tuple[Step, ...]:
-        """The steps with these keys and all that they read, in order. Raises KeyError for a key of no step."""
+    def leading_to(self, keys: Iterable[str], known: Collection[str] = ()) -> tuple[Step, ...]:
+        """The steps with these keys and all that they read, in order, but not what only the steps ``known`` read.
+
+        Raises KeyError for a key of no step.
+        """
         needed = set(keys)
         unknown = needed - {step.key for step in self.steps}
         if unknown:
@@ -102,7 +105,7 @@ class Chain:
         for step in reversed(self.steps):
             if step.key in needed:
                 leading.append(step)
-                needed |= {key for key in (*step.inputs, step.guard) if key}
+                needed |= {key for key in (*step.inputs, step.guard) if key and step.key not in known}
         return tuple(leading[::-1])
 
     def depends_on_strip(self) -> set[str]:

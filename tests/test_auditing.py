@@ -111,7 +111,7 @@ def test_the_workbook_of_a_workbook_links_to_it(tmp_path: Path) -> None:
     assert main(["audit", str(listed), "--xlsx", str(tmp_path / "sub" / "out.xlsx")]) == 0
     # a link to the list is meant; nothing else is wrong
     (outward,) = package_faults(tmp_path / "sub" / "out.xlsx")
-    assert outward.endswith("external link to ../our list.xlsx")
+    assert outward.endswith("external link to ../our strips.xlsx")
     book = openpyxl.load_workbook(tmp_path / "sub" / "out.xlsx")
     assert book.sheetnames == ["Audit", "Kinds"]
     sheet = book["Audit"]

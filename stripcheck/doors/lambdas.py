@@ -27,10 +27,10 @@ import numpy as np
 from stripcheck.chain import Chain, Input, Step
 from stripcheck.doors.aircraft import CLIMB_SPEED, MAY_BE_BLANK, NO_BANK, NO_REACH, NO_WORDS, Aeroplane
 from stripcheck.doors.call import EMPTY, WHOLE
-from stripcheck.doors.functions import CONDITION, FLAP, FUNCTIONS, SURFACE, Argument, Function
+from stripcheck.doors.functions import CONDITION, FLAP, FUNCTIONS, SPEEDS, SURFACE, Argument, Function
 from stripcheck.inputs import POWER_LIMIT, REACH, manual_inputs
 from stripcheck.sheet.cell import BLANK, MAX_DEPTH, MAX_LENGTH, Cell, as_cell, call, reference, shown, where
-from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER
+from stripcheck.sheet.labels import ENGINE, FLAP_HEADER, GROUND_HEADER, PROPELLER, TABLES
 from stripcheck.steps import POWERS, build_chain
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import KINDS, PRESSURE_HPA, PRESSURE_INHG
@@ -49,6 +49,7 @@ KIND_NAMES = {"fixed pitch": "FIXED", "constant speed": "CONSTANT"}
 INVERSE = "it looks for its answer by trying, which a formula without a program can't"
 UNITS_BY_NAME = "it reads units by their names"
 NO_CORRECTIONS = "the corrections of the manual on this Aircraft sheet are not in this function: use the filled workbook"
+NO_TABLES = "the manual's tables of this Aircraft sheet are not in this function: use the filled workbook"
 NO_REACH_HERE = NO_REACH.split(":")[0]  # without the advice to give a card's name, which these functions can't take
 ONE_VALUE = "one value at a time: call the function that this is a step of"
 
@@ -238,6 +239,8 @@ class _Writer:
             whole = let([(parameter("kind"), kind)], whole)
         if "slope" in typed:
             whole = f"IF({_has_row(manual_inputs(side)[0].label)},{_text(NO_CORRECTIONS)},{whole})"
+        if function.category != SPEEDS:
+            whole = f"IF({_has_row(TABLES)},{_text(NO_TABLES)},{whole})"
         use = "" if function.name == "STALL_SPEED" else {"landing": "landing", "takeoff": "take-off"}[side]
         whole = self._whole_ranges(typed, whole)
         row = f"{STEP}FLAP({parameter('aircraft')},{parameter('flap')},{_text(use)})"

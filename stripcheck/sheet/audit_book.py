@@ -11,6 +11,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
+from stripcheck.errors import InputError
 from stripcheck.inputs import STRIP
 from stripcheck.register import audit_kinds as kinds
 from stripcheck.register.audit import SURVEY_AGE, Audit, Finding, Place, check_age, column_of, find, in_order
@@ -93,10 +94,7 @@ class Book:
 
 
 def is_filled(path: Path, sheet: str | None) -> bool:
-    """Whether a file is a workbook that stripcheck filled, told by its sheet Strips; one with a ``sheet`` named is a list.
-
-    Raises InputError for a file that can't be read.
-    """
+    """Whether a file is a workbook that stripcheck filled, told by its sheet Strips; one with a ``sheet`` named is a list."""
     return _book_in(path) is not None if sheet is None and path.suffix.lower() in BOOK_KINDS else False
 
 
@@ -123,11 +121,14 @@ def _needless(book: Book, finding: Finding) -> bool:
 
 
 def _book_in(path: Path) -> Book | None:
-    check_file(path)
-    found = next((rows for name, rows in workbook_sheets(path, None) if name == SHEET), None)
-    for number, row in enumerate((found or ())[:HEADER_WITHIN], 1):
+    try:
+        check_file(path)
+        _, found = next(workbook_sheets(path, SHEET))
+    except InputError:  # no such sheet, or no workbook: whoever reads it as a list says what is wrong
+        return None
+    for number, row in enumerate(found[:HEADER_WITHIN], 1):
         titles = [" ".join(as_written(cell).split()) for cell in row]
-        if found is not None and set(MARKS) <= {*titles}:
+        if set(MARKS) <= {*titles}:
             columns: dict[str, int] = {}
             for column, title in enumerate(titles, 1):
                 columns.setdefault(title, column)  # a user's column of the same title stands further right

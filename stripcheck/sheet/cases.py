@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Collection, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
@@ -63,6 +63,29 @@ class Given:
 
 
 @dataclass(frozen=True)
+class Elsewhere:
+    """Inputs and steps that vary from row to row, and stand on other sheets.
+
+    ``places``: by key; a reference may have marks for row numbers, besides ``ROW`` for the case's own row. ``rows``: of each
+    mark the row number that it stands for, case by case. ``faults``: the text of each case's fault.
+    """
+
+    places: Mapping[str, Place] = field(default_factory=dict)
+    rows: Mapping[str, Sequence[int]] = field(default_factory=dict)
+    faults: Sequence[str] = ()
+
+    def in_rows(self, text: str) -> str | list[str]:
+        """A formula for all cases, or, where it has marks, one for each."""
+        marks = [mark for mark in self.rows if mark in text]
+        if not marks:
+            return text
+        made = [text] * len(self.faults)
+        for mark in marks:
+            made = [one.replace(mark, str(row)) for one, row in zip(made, self.rows[mark], strict=True)]
+        return made
+
+
+@dataclass(frozen=True)
 class Cases:
     """A sheet of cases as written: where each key's column stands, its rows, and what all inputs and steps come to, SI.
 
@@ -104,31 +127,35 @@ def write_once(pages: Pages, sheet: Worksheet, row: int, chain: Chain, varying: 
     steps = [step for step in chain.steps if step.key not in differing]
     found = evaluate(chain, {key: inputs[key] for key in inputs if key not in varying}, [step.key for step in steps])
     end = page.write_steps(pages, sheet, row, steps)
-    formulas = write_formulas(chain, {**_blank_places(chain, pages), **pages.places})
+    formulas = write_formulas(chain, {**_blank_places(pages.places), **pages.places})
     page.fill_steps(pages, sheet, row, steps, formulas, found)
     return end
 
 
 def write_cases(pages: Pages, name: str, heading: str, chain: Chain, about: Mapping[str, About], given: Mapping[str, Given],
-                values: Mapping[str, Any], wanted: Collection[str] = WANTED) -> Cases:  # fmt: skip
+                values: Mapping[str, Any], wanted: Collection[str] = WANTED,
+                elsewhere: Elsewhere | None = None) -> Cases:  # fmt: skip
     """Write the sheet's skeleton and work out its rows.
 
-    ``values``: the chain's other inputs in SI. ``wanted``: the steps that are read from elsewhere. The steps that vary with
-    none of ``given`` must stand on a page already (`write_once`), and so must the inputs with a cell of their own.
+    ``values``: the chain's other inputs in SI, also those ``elsewhere``. ``wanted``: the steps that are read from elsewhere.
+    The steps that vary with none of ``given`` must stand on a page already (`write_once`), and so must the inputs with a
+    cell of their own.
     """
     inputs = {item.key: item for item in chain.inputs}
     found = _work_out(chain, inputs, given, values)
-    faults = _faults(given)
+    faults = _faults(given) if elsewhere is None else elsewhere.faults
+    elsewhere = elsewhere or Elsewhere()
+    placed = {**pages.places, **elsewhere.places}
     leading = [Column(key, one.header, one.width) for key, one in about.items()]
     leading += [input_column(inputs[key]) for key in given]
-    steps = _kept(chain, given, wanted, pages)
+    steps = _kept(chain, {*given, *elsewhere.places}, wanted, placed)
     columns = leading + [replace(step_column(step, "Worked out"), hidden=False) for step in steps]
     letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
-    formulas = write_formulas(chain, _places(chain, pages, given, inputs, letters, steps))
+    formulas = write_formulas(chain, _places(placed, given, inputs, letters, steps))
     made: list[AnyColumn] = [one.column for one in about.values()]
     made += [_given_column(inputs[key], one) for key, one in given.items()]
-    made += [FormulaColumn(formulas[step.key], shown(step, found[step.key], faults)) for step in steps]
-    for side in SIDES:
+    made += [FormulaColumn(elsewhere.in_rows(formulas[step.key]), shown(step, found[step.key], faults)) for step in steps]
+    for side in [side for side in SIDES if f"{side}_verdict" in letters]:
         columns.append(Column(f"{side}_score", f"{side.capitalize()}, order", 10, comment="By which the best case is found"))
         letters[f"{side}_score"] = get_column_letter(len(columns))
         found[f"{side}_score"] = _scores(chain, found, side)
@@ -194,14 +221,14 @@ def _given_column(item: Input, given: Given) -> AnyColumn:
     return NumberColumn(np.asarray(given.shown)) if item.kind == "number" else TextColumn(list(given.shown))
 
 
-def _blank_places(chain: Chain, pages: Pages) -> dict[str, Place]:
+def _blank_places(placed: Mapping[str, Place]) -> dict[str, Place]:
     """Nowhere, for inputs of strip and day that stand neither on a page nor in a column."""
-    return {item.key: NOWHERE for item in (*STRIP, *DAY) if item.key not in pages.places}
+    return {item.key: NOWHERE for item in (*STRIP, *DAY) if item.key not in placed}
 
 
-def _places(chain: Chain, pages: Pages, given: Mapping[str, Given], inputs: Mapping[str, Input], letters: Mapping[str, str],
+def _places(placed: Mapping[str, Place], given: Mapping[str, Given], inputs: Mapping[str, Input], letters: Mapping[str, str],
             steps: Sequence[Step]) -> dict[str, Place]:  # fmt: skip
-    places = {**_blank_places(chain, pages), **pages.places}
+    places = {**_blank_places(placed), **placed}
     for key in given:
         places[key] = Place(f"${letters[key]}{ROW}", inputs[key].unit if inputs[key].kind == "number" else "")
     for step in steps:
@@ -209,16 +236,16 @@ def _places(chain: Chain, pages: Pages, given: Mapping[str, Given], inputs: Mapp
     return places
 
 
-def _kept(chain: Chain, given: Mapping[str, Given], wanted: Collection[str], pages: Pages) -> list[Step]:
+def _kept(chain: Chain, varying: Collection[str], wanted: Collection[str], placed: Mapping[str, Place]) -> list[Step]:
     """The steps with a column: those wanted, and those that several others read, or that would make another too long."""
-    differing = chain.depends_on(given)
-    steps = [step for step in chain.leading_to(wanted) if step.key in differing]
+    differing = chain.depends_on(varying)
+    steps = [step for step in chain.leading_to(wanted, placed) if step.key in differing and step.key not in placed]
     readers = Counter(key for step in steps for key in {*step.inputs, step.guard})
     lone = {step.key for step in steps if readers[step.key] == 1 and step.key not in wanted and not step.short}
     nowhere = Place(f"$ZZ{ROW}")
     while True:
         kept = [step for step in steps if step.key not in lone]
-        places = {**_blank_places(chain, pages), **pages.places, **dict.fromkeys(given, nowhere)}
+        places = {**_blank_places(placed), **dict.fromkeys(varying, nowhere), **placed}
         formulas = write_formulas(chain, {**places, **{step.key: nowhere for step in kept}})
         long = [step for step in kept if len(formulas[step.key]) > LONG_FORMULA]
         parts = {key for step in long for key in step.inputs if key in lone}

@@ -95,6 +95,8 @@ class Cell(np.lib.mixins.NDArrayOperatorsMixin):
             return _swallowing(_SWALLOWING[ufunc], *cells)
         if ufunc in _UNARY:
             return _UNARY[ufunc](*cells)
+        if ufunc in _OF_TWO:
+            return _OF_TWO[ufunc](*cells)
         raise TypeError(f"np.{ufunc.__name__} can't be written as a cell formula")
 
     def __array_function__(self, func: Any, types: Any, args: Any, kwargs: Any) -> Any:
@@ -235,6 +237,11 @@ def _not(cell: Cell) -> Cell:
     return Cell({"TRUE": "FALSE", "FALSE": "TRUE"}[cell.text]) if cell.text in ("TRUE", "FALSE") else call("NOT", cell)
 
 
+# written as a function of two cells, in the order that a spreadsheet wants them
+_OF_TWO: dict[Any, Callable[[Cell, Cell], Cell]] = {
+    np.remainder: lambda one, other: call("MOD", one, other),
+    np.arctan2: lambda y, x: call("ATAN2", x, y),
+}
 _UNARY: dict[Any, Callable[..., Cell]] = {
     np.negative: _negative,
     np.square: lambda cell: _binary(np.power, cell, as_cell(2.0)),

@@ -35,6 +35,7 @@ from stripcheck.doors.lambdas import (
     MAX_PAIRS,
     NO_CORRECTIONS,
     NO_REACH_HERE,
+    NO_TABLES,
     STEP,
     library,
     nesting,
@@ -42,6 +43,7 @@ from stripcheck.doors.lambdas import (
 )
 from stripcheck.rules import load_rules
 from stripcheck.sheet.cell import MAX_DEPTH, MAX_LENGTH
+from stripcheck.sheet.labels import TABLES
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import KINDS
 from tests.aircraft import trial_heron, trial_mule
@@ -393,6 +395,18 @@ def test_corrections_of_a_manual_are_refused(tmp_path: Path) -> None:
     made = Tried(tmp_path / "library.xlsx", everything(), "part-cat-b")
     function = BY_NAME["TAKEOFF_VERDICT"]
     assert made.answers([(function, made.usual(function))]) == [NO_CORRECTIONS]
+
+
+def test_tables_of_a_manual_are_refused_but_for_speeds(tmp_path: Path) -> None:
+    made = Tried(tmp_path / "library.xlsx", load_card("ridge-runner"), "part-cat-b")
+    workbook = openpyxl.load_workbook(tmp_path / "library.xlsx")
+    sheet = workbook["Aircraft"]
+    next(cell for cell in sheet["A"] if cell.value is None).value = TABLES
+    workbook.save(made.path)
+    functions = [BY_NAME[name] for name in ("TAKEOFF_VERDICT", "CLIMB_GRADIENT", "LANDING_DIST", "LIFT_OFF_SPEED")]
+    *refused, speed = made.answers([(function, made.usual(function)) for function in functions])
+    assert refused == [NO_TABLES] * 3
+    assert isinstance(speed, float)
 
 
 def test_names_are_within_excel_s_limits() -> None:
