@@ -15,7 +15,7 @@ from pathlib import Path
 from stripcheck.errors import InputError
 from stripcheck.register.audit_case import HEADER, Case, Hit
 from stripcheck.register.audit_duplicates import duplicate_hits
-from stripcheck.register.audit_kinds import DOUBTFUL, KINDS, SEVERITIES, UNUSABLE, Kind
+from stripcheck.register.audit_kinds import BAD_VALUE, DOUBTFUL, KINDS, SEVERITIES, UNUSABLE, Kind
 from stripcheck.register.audit_numbers import number_hits
 from stripcheck.register.audit_rows import row_hits
 from stripcheck.register.columns import Found
@@ -121,9 +121,11 @@ def find(
     kept = {HEADER, *case.kept}
     strips, runways = reading.texts["strip"][0], reading.texts["runway"][0]
     hits = [*row_hits(case, survey_age, today or datetime.date.today()), *number_hits(case), *duplicate_hits(case)]
+    unusable = {(hit.at, hit.key) for hit in hits if hit.kind is BAD_VALUE}
     findings = []
     for hit in dict.fromkeys(hits):  # what is told of a column for both ends comes twice
-        if hit.at in kept:
+        is_there = hit.kind.name.endswith("missing") and (hit.at, hit.key) in unusable  # there, but no good, as is told
+        if hit.at in kept and not is_there:
             row, column, header = place(hit)
             named = ("", "") if hit.at == HEADER else (strips[hit.at], runways[hit.at])
             findings.append(Finding(row, column, *named, header, hit.kind, hit.what, hit.fix))

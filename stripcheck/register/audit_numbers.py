@@ -79,7 +79,7 @@ def _coordinates(case: Case) -> Hits:
     for index in _where((number > 0) & (number < len(places))):
         missing = [place for place, known in zip(places, given[:, index], strict=True) if not known]
         names = ", ".join(f"{key} of end {end}" for key, end in missing)
-        yield Hit(index, *missing[0], kinds.HALF_COORDINATES, f"the {names} is missing", "add it")
+        yield Hit(index, *missing[0], kinds.HALF_COORDINATES, f"missing: {names}", "add it")
     for index in _where(case.apart <= ONE_PLACE):
         what = "the coordinates of both ends are the same, as when they are those of the airfield"
         yield Hit(index, "latitude", 1, kinds.ENDS_IN_ONE_PLACE, what, "take the coordinates of each end")
