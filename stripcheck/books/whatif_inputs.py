@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from math import ceil, floor, inf, isnan, nan
+from math import ceil, floor, inf, isnan
 from pathlib import Path
 from typing import Any
 
@@ -273,4 +273,3 @@ def wrong(entry: Entry, value: Value) -> bool:
     return not (isinstance(value, float | int) and low <= value <= high)
 
 
-NAN = nan

@@ -158,7 +158,7 @@ def write_cases(pages: Pages, name: str, heading: str, chain: Chain, about: Mapp
     for side in [side for side in SIDES if f"{side}_verdict" in letters]:
         columns.append(Column(f"{side}_score", f"{side.capitalize()}, order", 10, comment="By which the best case is found"))
         letters[f"{side}_score"] = get_column_letter(len(columns))
-        found[f"{side}_score"] = _scores(chain, found, side)
+        found[f"{side}_score"] = scores(chain, found, side)
         made.append(FormulaColumn(formula(_score_cell(letters, side)), found[f"{side}_score"]))
     _write_skeleton(pages, name, heading, columns, len(faults), len(about))
     return Cases(name, letters, len(faults), Table(FIRST_ROW, made), found)
@@ -183,7 +183,8 @@ def score(order: Number, margin: Number) -> Number:
     return order * STEP + np.where(np.isfinite(margin), held, -0.45 * STEP)
 
 
-def _scores(chain: Chain, found: Mapping[str, Any], side: str) -> np.ndarray:
+def scores(chain: Chain, found: Mapping[str, Any], side: str) -> np.ndarray:
+    """By which of several cases the best has the greatest, from their steps; as the sheet of cases has it in a column."""
     verdict = chain.by_key[f"{side}_verdict"]
     rank = summary.ranks_of(found[f"{side}_verdict"], verdict.words) if isinstance(verdict, Step) else 0
     order = np.where(found[f"{side}_finding"] == summary.FORBIDDEN, 0, rank)

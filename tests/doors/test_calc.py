@@ -7,6 +7,7 @@ another Python with another release of NumPy than LibreOffice's. Error codes are
 from __future__ import annotations
 
 import ast
+import json
 import os
 import random
 import subprocess
@@ -30,13 +31,22 @@ from stripcheck.doors.calc.extension import PACKAGE, build, calc_name, package_f
 from stripcheck.doors.call import call, prepared
 from stripcheck.doors.functions import BY_NAME, FUNCTIONS, LIMITS, VERDICTS, Argument, Function
 from tests.calc_extension import formula, typed, unpacked, write_book
-from tests.doors.random_cells import random_arguments
+from tests.doors.random_cells import SLOW_SETS, random_sets
 from tests.office import Book, Office, find_uno_python, require_office
 
 RELATIVE = 1e-9
 # LibreOffice's Python has other releases of NumPy and pint, whose results differ in the last digits; where an aeroplane
-# hardly climbs, as in some of the random calls, the distance magnifies that many thousand times.
+# hardly climbs, as in some of the random calls, the distance magnifies that many thousand times. What the random cells show
+# is compared with this Python at 1e-8, and with that other one at 1e-9.
 RANDOM = 1e-8
+IN_THE_OTHER_PYTHON = """
+import json
+import random
+from stripcheck.doors.call import call
+from stripcheck.doors.functions import FUNCTIONS
+from tests.doors.random_cells import random_sets
+print(json.dumps([call(function, *arguments) for function in FUNCTIONS for arguments in random_sets(function)]))
+"""
 EMPTY_TEXT = "J1"  # a cell with a formula that gives ""
 BLANK_CELL = "J2"
 DIVISION = "#ERR:532"
@@ -61,17 +71,9 @@ def literal(group: str, function: Function, *arguments: Any) -> Case:
 
 # --- what is put into the book
 
-SETS, SLOW_SETS = 40, 4  # an inverse question takes a tenth of a second
-
-
 def random_cases() -> list[Case]:
-    """The same calls that the door into Excel is tried with."""
-    found = []
-    for function in FUNCTIONS:
-        dice = random.Random(function.name)
-        sets = [random_arguments(function, dice) for _ in range(SLOW_SETS if function.ask else SETS)]
-        found += [literal("random", function, *arguments) for arguments in sets]
-    return found
+    """Random calls of every function, aeroplane and rule set, with units and without, which every door is tried with."""
+    return [literal("random", function, *arguments) for function in FUNCTIONS for arguments in random_sets(function)]
 
 
 def cases() -> list[Case]:
@@ -218,6 +220,16 @@ def test_the_random_calls_are_hundreds_of_every_function_and_mostly_have_a_resul
         assert len(results) >= SLOW_SETS
         assert function.ask or function.unit is None or any(isinstance(result, float) for result in results), function.name
     assert sum(isinstance(case.expected, float) for case in drawn) > 0.5 * len(drawn)
+
+
+def test_the_random_calls_show_what_libreoffice_s_own_python_gives(shown: list[Any], column: list[Case]) -> None:
+    python = find_uno_python("import uno, numpy, pint")
+    assert python is not None
+    told = subprocess.run([str(python), "-c", IN_THE_OTHER_PYTHON], cwd=Path(__file__).parents[2], env={"LC_ALL": "C.UTF-8"},
+                          capture_output=True, text=True, check=True).stdout  # fmt: skip
+    drawn = [(got, case) for got, case in zip(shown, column, strict=True) if case.group == "random"]
+    assert [f"{case.formula}: {got!r}, not {expected!r}" for (got, case), expected in zip(drawn, json.loads(told), strict=True)
+            if not equal(got, expected, scale_of(case.formula))] == []  # fmt: skip
 
 
 def check_matrices(book: Book) -> None:

@@ -9,7 +9,6 @@ import ast
 import csv
 import datetime as dt
 import platform
-import random
 import re
 import subprocess
 import sys
@@ -29,7 +28,7 @@ from stripcheck.doors import excel_setup
 from stripcheck.doors.call import call
 from stripcheck.doors.functions import BY_NAME, FUNCTIONS, Function
 from tests.doors.pywin32_stand_in import DOOR, MISSING, Cells, Workbook, vba_text, windows_xlwings
-from tests.doors.random_cells import random_arguments
+from tests.doors.random_cells import random_sets
 
 ROOT = Path(__file__).parents[2]
 TIGHT = 1e-9  # the same call is made in the end
@@ -130,8 +129,7 @@ def test_every_example_as_a_constant_and_as_a_cell(function: Function, udf: Udf)
 
 @pytest.mark.parametrize("function", [f for f in FUNCTIONS if f.ask is None], ids=lambda function: function.name)
 def test_random_arguments_as_scalars_and_as_ranges(function: Function, udf: Udf) -> None:
-    dice = random.Random(function.name)
-    rows = [random_arguments(function, dice) for _ in range(40)]
+    rows = random_sets(function)
     for row in rows:
         assert close(udf(function.name, *row), call(function, *row)), row
     single = ("aircraft", "rules", "text", "flap")  # a flap belongs to its aircraft, and rows have several
@@ -146,9 +144,7 @@ def test_random_arguments_as_scalars_and_as_ranges(function: Function, udf: Udf)
 
 @pytest.mark.parametrize("function", [f for f in FUNCTIONS if f.ask is not None], ids=lambda function: function.name)
 def test_random_arguments_of_the_inverse_questions(function: Function, udf: Udf) -> None:
-    dice = random.Random(function.name)
-    for _ in range(4):
-        row = random_arguments(function, dice)
+    for row in random_sets(function):
         assert close(udf(function.name, *row), call(function, *row)), row
 
 
