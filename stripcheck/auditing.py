@@ -10,8 +10,8 @@ from pathlib import Path
 
 from stripcheck.caution import CAUTION
 from stripcheck.errors import InputError
-from stripcheck.filling import harmless
 from stripcheck.register.audit import SURVEY_AGE, Audit, Finding, audit_list
+from stripcheck.register.values import harmless
 from stripcheck.safe_file import refuse_if_open, whole_or_not_at_all
 from stripcheck.sheet.audit_book import audit_book, is_filled
 from stripcheck.sheet.audit_sheet import TITLES, cell_name, write_sheets

@@ -22,6 +22,7 @@ from stripcheck.doors.columns import NATIVE, door_columns, told
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.register import Directions, read_list
+from stripcheck.register.values import harmless
 from stripcheck.rules import load_rules
 from stripcheck.safe_file import refuse_if_open, whole_or_not_at_all
 from stripcheck.sheet import strips
@@ -71,7 +72,7 @@ def fill_list(request: Request) -> list[str]:
     chosen, flap_names = loading(card, request)
     day = read_day(request.day)
     directions = read_list(request.list, airports=request.airports, sheet=request.sheet, strict=request.strict)
-    _check_air(day, directions)
+    check_air(day, directions)
     is_table = request.output.suffix == ".csv"
     full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
     other = not is_table and request.formulas != NATIVE
@@ -137,7 +138,7 @@ def _check_output(request: Request) -> None:
         raise InputError(f"{request.output}: the folder does not exist")
 
 
-def _check_air(day: Day, directions: Directions) -> None:
+def check_air(day: Day, directions: Directions) -> None:
     """A day without any temperature would leave every strip unassessed: say so at once."""
     if isnan(day.values["temperature"]) and isnan(day.values["isa_deviation"]):
         own = directions.numbers["temperature"]
@@ -162,7 +163,8 @@ def summary_lines(filling: Filling, output: Path) -> list[str]:
     """Counts of verdicts, and what was left out, in a few lines."""
     counts, directions = filling.counts(), filling.directions
     guessed = [f"Taken for granted: {doubt.reason}" for doubt in directions.doubts if doubt.what == "unit not named"]
-    lines = [f"{output}: {directions.n // 2} runways, {len(directions.left_out)} of {directions.rows_read} left out"]
+    kept = f"{directions.n // 2} {'runway' if directions.n == 2 else 'runways'}"
+    lines = [f"{output}: {kept}, {len(directions.left_out)} of {directions.rows_read} left out"]
     for side, label in (("in", "Landing"), ("out", "Take-off")):
         lines.append(f"{label}: " + ", ".join(f"{counts[side][verdict]} {verdict}" for verdict in VERDICTS))
     lines.append("In and out: " + "; ".join(f"{number} {words}" for words, number in counts["both"].items() if number))
@@ -194,7 +196,3 @@ def _plain(values: Any) -> list[Any]:
     if values.dtype == bool:
         return ["yes" if value else "no" for value in values.tolist()]
     return ["" if isnan(value) else repr(round(value, 9)) for value in values.tolist()]
-
-
-def harmless(text: str) -> str:
-    return "'" + text if text.startswith(("=", "+", "-", "@", "\t", "\r")) else text

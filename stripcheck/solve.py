@@ -28,6 +28,7 @@ from stripcheck.day import Day
 from stripcheck.errors import InputError
 from stripcheck.flaps import flap_setting
 from stripcheck.inputs import STRIP
+from stripcheck.numeric import Number
 from stripcheck.profile import read_profile
 from stripcheck.rules import Rules
 from stripcheck.units import from_si, to_si
@@ -35,11 +36,11 @@ from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE
 
 Array = NDArray[Any]
 Given = Mapping[str, Any]
-OfSpeed = Callable[[Array], Array]
 
 SIDES = ("takeoff", "landing")
 FOUND, NONE, OPEN = "found", "none", "open"  # besides NOT_ASSESSED; open: even the hardest value works
 HALVINGS = 26  # of 120 K leave 2e-6 K, of a tonne 2e-5 kg, of 5 nm 0.2 mm
+FINE_HALVINGS = 44  # of 60 m/s leave 3e-12 m/s, so that a workbook's cells can be compared at 1e-9
 LEAST_SHARE = 0.3  # of the greatest mass: lighter than any aeroplane flies
 WINDS = (to_si(30.0, "kt"), to_si(-20.0, "kt"))  # along the strip, from the easiest headwind to the hardest tailwind
 # Seconds from the abort point until the brakes bite. Transport aeroplanes are certified with two seconds at that speed
@@ -178,9 +179,10 @@ def verdict_words(case: Result, side: str) -> tuple[str, ...]:
     return words
 
 
-def _last_that_holds(holds: Callable[[Array], Array], good: Array, bad: Array) -> tuple[Array, Array]:
+def _last_that_holds(holds: Callable[[Array], Array], good: Array, bad: Array,
+                     halvings: int = HALVINGS) -> tuple[Array, Array]:  # fmt: skip
     """Two values a hair apart, of which the one still holds and the other no more, from one of each kind."""
-    for _ in range(HALVINGS):
+    for _ in range(halvings):
         middle = 0.5 * (good + bad)
         still = holds(middle)
         good, bad = np.where(still, middle, good), np.where(still, bad, middle)
@@ -284,23 +286,30 @@ def abort_point_of(case: Result, reaction: float = REACTION) -> AbortPoint:
     """The abort point for what `prepare` gives, after a ``reaction`` [s]. Raises InputError for one that can't be right."""
     if not 0.0 <= reaction < np.inf:
         raise InputError(f"a time to react of {reaction} s can't be right; 0 s or more is expected")
-    values = _values(case, "run_wind", "lift_off_tas", "sigma", *_RUN_KEYS, *_STOP_KEYS)
-    accelerated, quickens = _accelerating(values)
-    stopped, slows = _stopping(values)
+    values = _values(case, "run_wind", "lift_off_tas", "sigma", *_RUN_KEYS, *STOP_KEYS)
+    run, stop = take_off_run(values), braked_run(values)
     usable = np.broadcast_to(np.minimum(case.given["tora"], case.given["lda"]), case.size)
     wind, lift_off = values["run_wind"], values["lift_off_tas"]
 
+    def accelerated(speed: Array) -> Array:
+        return np.asarray(run.length(run.end(speed)))
+
+    def quickens(speed: Array) -> Array:
+        return np.asarray(run.least(run.end(speed)) >= ground_run.LEAST_ACCELERATION)
+
     def stops(speed: Array) -> Array:
-        needed = accelerated(speed) + (speed - wind) * reaction + stopped(speed)
-        return quickens(speed) & slows(speed) & (needed <= usable)
+        slows = stop.least(speed) >= ground_run.LEAST_ACCELERATION
+        needed = abort_needed(run.length(run.end(speed)), speed, wind, reaction, stop.length(speed))
+        return np.asarray(quickens(speed) & slows & (needed <= usable))
 
     def within_half(speed: Array) -> Array:
         return quickens(speed) & (accelerated(speed) <= 0.5 * usable)
 
     with np.errstate(all="ignore"):
-        known = np.isfinite(accelerated(wind) + stopped(wind) + usable) & (usable >= links.LENGTHS[0]) & ~_has_profile(case)
+        known = np.isfinite(accelerated(wind) + stop.length(wind) + usable) & (usable >= links.LENGTHS[0])
+        known &= ~_has_profile(case)
         state = np.select([~known, ~stops(wind), stops(lift_off)], [NOT_ASSESSED, NONE, OPEN], FOUND)
-        last, _ = _last_that_holds(stops, wind, lift_off)
+        last, _ = _last_that_holds(stops, wind, lift_off, FINE_HALVINGS)
         tas = np.select([state == FOUND, state == OPEN], [last, lift_off], np.nan)
         at_half = np.where(within_half(lift_off), lift_off, _last_that_holds(within_half, wind, lift_off)[0])
         seventy = GO_SHARE * lift_off
@@ -310,9 +319,9 @@ def abort_point_of(case: Result, reaction: float = REACTION) -> AbortPoint:
                           seventy_at)  # fmt: skip
 
 
-_DISK = ("thrust_acceleration", "lost", "square", "disk_speed", "slow_root")
-_RUN_KEYS = ("start", *_DISK, "takeoff_roll_carry")
-_STOP_KEYS = ("density", "rolling_drag", "braking", "landing_slope", "landing_roll_carry")
+DISK_KEYS = ("thrust_acceleration", "lost", "square", "disk_speed", "slow_root")
+_RUN_KEYS = ("start", *DISK_KEYS, "takeoff_roll_carry")
+STOP_KEYS = ("density", "rolling_drag", "braking", "landing_slope", "landing_roll_carry")
 
 
 def _values(case: Result, *keys: str) -> dict[str, Array]:
@@ -328,27 +337,34 @@ def _has_profile(case: Result) -> Array:
     return np.broadcast_to(np.logical_or(*(np.isfinite(slope) for slope in slopes)), case.size)
 
 
-def _accelerating(values: Mapping[str, Array]) -> tuple[OfSpeed, OfSpeed]:
-    """Length [m] of the take-off run to an airspeed [m/s], by the chain's own law, and whether it accelerates so far."""
+@dataclass(frozen=True)
+class Run:
+    """A run by the chain's own law, of anything that answers NumPy's protocols.
+
+    ``end``: what the other two take of an airspeed [m/s] at the fast end; ``length`` [m] from or to rest; ``least``
+    acceleration, or deceleration, on the way [m/s2].
+    """
+
+    end: Callable[[Number], Number]
+    length: Callable[[Number], Number]
+    least: Callable[[Number], Number]
+
+
+def take_off_run(values: Mapping[str, Number]) -> Run:
+    """The take-off run of steps by key: those of a chain with a fixed-pitch propeller, or those with a constant-speed one."""
     wind, carry = values["run_wind"], values.get("takeoff_roll_carry", 1.0)
     if "start" in values:  # a fixed-pitch propeller
         return _square_law(values["start"], values["square"], wind, carry)
-    thrust, lost, square, disk_speed, slow = (values[key] for key in _DISK)
-
-    def length(speed: Array) -> Array:
-        fast = links.disk_root_of(speed, disk_speed)
-        return np.asarray(ground_run.disk_run_between(thrust, lost, square, disk_speed, wind, slow, fast) * carry)
-
-    def quickens(speed: Array) -> Array:
-        fast = links.disk_root_of(speed, disk_speed)
-        least = ground_run.least_disk_acceleration(thrust, lost, square, disk_speed, slow, fast)
-        return np.asarray(least >= ground_run.LEAST_ACCELERATION)
-
-    return length, quickens
+    thrust, lost, square, disk_speed, slow = (values[key] for key in DISK_KEYS)
+    return Run(
+        lambda speed: links.disk_root_of(speed, disk_speed),
+        lambda fast: ground_run.disk_run_between(thrust, lost, square, disk_speed, wind, slow, fast) * carry,
+        lambda fast: ground_run.least_disk_acceleration(thrust, lost, square, disk_speed, slow, fast),
+    )
 
 
-def _stopping(values: Mapping[str, Array]) -> tuple[OfSpeed, OfSpeed]:
-    """Length [m] of a braked roll from an airspeed [m/s] at take-off mass and flap, and whether it slows down all along."""
+def braked_run(values: Mapping[str, Number]) -> Run:
+    """A braked roll at take-off mass and flap, of inputs and steps of a chain by key."""
     braking, quality = values["braking"], values["braking_quality"]
     start = links.braked_start(braking, quality, values["landing_slope"])
     square = links.braked_square(values["density"], values["wing_area"], values["mass_takeoff"], values["rolling_drag"],
@@ -356,17 +372,22 @@ def _stopping(values: Mapping[str, Array]) -> tuple[OfSpeed, OfSpeed]:
     return _square_law(start, square, values["run_wind"], values.get("landing_roll_carry", 1.0))
 
 
-def _square_law(start: Array, square: Array, wind: Array, carry: Array | float) -> tuple[OfSpeed, OfSpeed]:
-    """The same for a run whose acceleration is ``start + square V^2``, either way."""
+def _square_law(start: Number, square: Number, wind: Number, carry: Number) -> Run:
+    """A run whose acceleration is ``start + square V^2``, either way."""
+    return Run(
+        lambda speed: speed,
+        lambda speed: ground_run.speed_run(start, square, wind, speed) * carry,
+        lambda speed: ground_run.least_speed_run_acceleration(start, square, wind, speed),
+    )
 
-    def length(speed: Array) -> Array:
-        return np.asarray(ground_run.speed_run(start, square, wind, speed) * carry)
 
-    def quickens(speed: Array) -> Array:
-        least = ground_run.least_speed_run_acceleration(start, square, wind, speed)
-        return np.asarray(least >= ground_run.LEAST_ACCELERATION)
+def abort_needed(accelerated: Number, speed: Number, wind: Number, reaction: Number, stopped: Number) -> Number:
+    """Length [m] that an abort at an airspeed [m/s] takes: the run until there, the reaction [s], the braked roll.
 
-    return length, quickens
+    >>> abort_needed(200.0, 30.0, 5.0, 3.0, 150.0)
+    425.0
+    """
+    return accelerated + (speed - wind) * reaction + stopped
 
 
 def _check_in_words(share: float, seventy_at: float) -> str:

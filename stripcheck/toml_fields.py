@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import os
+import re
 import tomllib
 from collections.abc import Iterator
 from pathlib import Path
@@ -14,6 +15,8 @@ from stripcheck.units import KINDS, from_si, read_quantity, tidy
 
 REQUIRED = object()
 MAX_FILE = 1_000_000  # [bytes]: a hundred times a card with tables
+# twenty parts of a key, bare or quoted: reading one takes time and memory by the square of their number
+_LONG_KEY = re.compile(rb"""(?<![\w\-"'])(?:(?:[\w-]++|"[^"\n]*+"|'[^'\n]*+')[ \t]*+\.[ \t]*+){20}""")
 BARE_SHARE = 0.003  # 0.3 per cent, below which a bare figure was probably meant as a share
 
 
@@ -138,10 +141,12 @@ def read_toml(path: Path) -> Section:
     """The whole of a TOML file. Raises InputError if it can't be read, or is far larger or deeper than any card."""
     try:
         size = path.stat().st_size
-        if not path.is_file() or size > MAX_FILE:
+        if not path.is_dir() and (not path.is_file() or size > MAX_FILE):
             raise InputError(f"{path}: a TOML text file of at most {MAX_FILE / 1e6:.0f} MB is expected")
-        with path.open("rb") as file:
-            return Section(path.name, tomllib.load(file))
+        content = path.read_bytes()
+        if _LONG_KEY.search(content):
+            raise InputError(f"{path}: a key has twenty parts or more; a card and a rule set have at most three levels")
+        return Section(path.name, tomllib.loads(content.decode()))
     except FileNotFoundError:
         raise InputError(f"{path}: there is no such file") from None
     except (OSError, UnicodeDecodeError) as error:

@@ -22,7 +22,7 @@ FAULT = "{fault}"  # stands for the text of the row's fault where a reason is pu
 HALF_AN_OBSTACLE = "obstacle without height or without distance"
 BEYOND = "beyond the book: higher, hotter or heavier"
 NO_FIGURE = "too far beyond the book for any distance"
-MOVED = "the slope profile was worked out for other conditions: fill the workbook again"
+MOVED = "the slope profile was worked out for other conditions: refresh the workbook"
 NO_RULE = "the rules count neither physics nor corrections"
 
 

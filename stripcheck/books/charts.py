@@ -14,6 +14,7 @@ from openpyxl.chart import BarChart, LineChart, ScatterChart
 from openpyxl.chart.axis import ChartLines
 from openpyxl.chart.data_source import AxDataSource, NumData, NumDataSource, NumRef, NumVal, StrData, StrRef, StrVal
 from openpyxl.chart.label import DataLabelList
+from openpyxl.chart.legend import LegendEntry
 from openpyxl.chart.layout import Layout
 from openpyxl.chart.marker import Marker
 from openpyxl.chart.series import Series, SeriesLabel, XYSeries
@@ -22,6 +23,7 @@ from openpyxl.chart.text import RichText
 from openpyxl.chart.title import Title
 from openpyxl.drawing.fill import ColorChoice, PatternFillProperties
 from openpyxl.drawing.line import LineProperties
+from openpyxl.drawing.spreadsheet_drawing import AnchorMarker, TwoCellAnchor
 from openpyxl.drawing.text import CharacterProperties, Paragraph, ParagraphProperties, RegularTextRun
 from openpyxl.utils import range_boundaries
 from openpyxl.utils.cell import get_column_letter
@@ -49,21 +51,22 @@ class Look:
 class Row:
     """A series: its name, the cells of its values, and how it looks; ``places``: the cells along the other axis, of points.
 
-    ``labels``: number format of the figures beside its bars, "" for none.
+    ``labels``: whether the figures stand beside its bars, as their cells show them.
     """
 
     name: str
     values: str
     look: Look
     places: str = ""
-    labels: str = ""
+    labels: bool = False
 
 
 def bars(pages: Pages, title: str, categories: str, rows: Sequence[Row], axis: tuple[str, str], *, stacked: bool = False,
-         lines: Sequence[Row] = ()) -> BarChart:  # fmt: skip
+         lines: Sequence[Row] = (), unnamed: int = 0) -> BarChart:  # fmt: skip
     """Upright bars by category, beside or upon each other, and lines over them.
 
-    ``categories`` and the rows' cells are references such as ``Tables!$E$5:$E$8``; ``axis``: titles along and up.
+    ``categories`` and the rows' cells are references such as ``Tables!$E$5:$E$8``; ``axis``: titles along and up;
+    ``unnamed``: so many of the first rows are left out of the legend.
     """
     chart = BarChart()
     chart.type, chart.grouping = "col", "stacked" if stacked else "clustered"
@@ -72,11 +75,13 @@ def bars(pages: Pages, title: str, categories: str, rows: Sequence[Row], axis: t
         series = _series(pages, row, categories)
         series.graphicalProperties, series.invertIfNegative = _bar_look(row.look), False
         if row.labels:
-            series.dLbls = _labels(row.labels)
+            series.dLbls = _labels()
         chart.series.append(series)
     if lines:
         chart += _lines(pages, categories, lines)
-    return _dressed(chart, title, axis)  # type: ignore[no-any-return]
+    _dressed(chart, title, axis)
+    chart.legend.legendEntry = [LegendEntry(idx=i, delete=True) for i in range(unnamed)]
+    return chart  # type: ignore[no-any-return]
 
 
 def points(pages: Pages, title: str, rows: Sequence[Row], axis: tuple[str, str]) -> ScatterChart:
@@ -116,13 +121,13 @@ def _dressed(chart: Any, title: str, axis: tuple[str, str]) -> Any:
     chart.title = _title(title, 1100, True)
     for one, words in ((chart.x_axis, axis[0]), (chart.y_axis, axis[1])):
         one.delete, one.title = False, _title(words, 900, False)
-        one.txPr = RichText(p=[Paragraph(pPr=ParagraphProperties(defRPr=CharacterProperties(sz=850)), endParaRPr=None)])
+        one.txPr = _small(850)
         one.graphicalProperties = GraphicalProperties(ln=LineProperties(solidFill="8C8C8C"))
         one.majorTickMark = "out"
     chart.y_axis.majorGridlines = ChartLines(spPr=GraphicalProperties(ln=LineProperties(solidFill=GRID)))
     chart.y_axis.number_format, chart.y_axis.scaling.min = "#,##0", 0
     chart.legend.position = "b"
-    chart.legend.txPr = RichText(p=[Paragraph(pPr=ParagraphProperties(defRPr=CharacterProperties(sz=850)), endParaRPr=None)])
+    chart.legend.txPr = _small(850)
     return chart
 
 
@@ -167,11 +172,14 @@ def _marker(look: Look) -> Marker:
     return marker
 
 
-def _labels(number_format: str) -> DataLabelList:
-    labels = DataLabelList(numFmt=number_format, showVal=True, showSerName=False, showCatName=False, showLegendKey=False,
-                           showPercent=False)  # fmt: skip
-    labels.txPr = RichText(p=[Paragraph(pPr=ParagraphProperties(defRPr=CharacterProperties(sz=800)), endParaRPr=None)])
+def _labels() -> DataLabelList:
+    labels = DataLabelList(showVal=True, showSerName=False, showCatName=False, showLegendKey=False, showPercent=False)
+    labels.txPr = _small(800)
     return labels
+
+
+def _small(size: int) -> RichText:
+    return RichText(p=[Paragraph(pPr=ParagraphProperties(defRPr=CharacterProperties(sz=size)), endParaRPr=None)])
 
 
 # --- the cells, with the values that they have now
@@ -199,9 +207,8 @@ def _texts(pages: Pages, cells: str) -> StrRef:
     return StrRef(f=cells, strCache=StrData(ptCount=len(values), pt=kept))
 
 
-def place(sheet: Any, chart: Any, cell: str, width: float, height: float) -> None:
-    """Put a chart on a sheet with its corner at a cell, so large [cm]."""
-    chart.width, chart.height = width, height
-    sheet.add_chart(chart, cell)
-
-
+def place(sheet: Any, chart: Any, cells: str) -> None:
+    """Put a chart over cells such as "A4:C17", so that it keeps to them whatever the font makes of their width."""
+    left, top, right, bottom = range_boundaries(cells)
+    chart.anchor = TwoCellAnchor("twoCell", _from=AnchorMarker(col=left - 1, row=top - 1), to=AnchorMarker(col=right, row=bottom))
+    sheet.add_chart(chart)

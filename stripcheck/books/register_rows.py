@@ -228,7 +228,7 @@ def _carried_places(runways: Runways) -> tuple[dict[str, int], dict[int, int], l
     for at in runways.carried:
         name = " ".join(runways.table.headers[at].lower().replace("_", " ").split())
         key = next((key for key, names in TOLD.items() if name in names), None)
-        number = _month(name)
+        number = month_number(name)
         if key is not None:
             places.setdefault(key, at)
         elif number and number not in months:
@@ -265,7 +265,7 @@ def closed_months(text: str) -> set[int]:
     for part in re.split(r"[,;/+&]| and ", text):
         if not part.strip():
             continue
-        ends = [_month(end) for end in re.split(r"\s*(?:-|\u2013|\bto\b)\s*", part.strip().lower())]
+        ends = [month_number(end) for end in re.split(r"\s*(?:-|\u2013|\bto\b)\s*", part.strip().lower())]
         if not all(ends) or len(ends) > 2:
             raise InputError(f'"{text}" is no closure; write months such as "Jun-Aug, Dec"')
         first, last = ends[0], ends[-1]
@@ -273,7 +273,7 @@ def closed_months(text: str) -> set[int]:
     return closed
 
 
-def _month(word: str) -> int:
+def month_number(word: str) -> int:
     """Number of a month by its name or its first three letters; 0 for anything else."""
     names = ("january", "february", "march", "april", "may", "june", "july", "august", "september", "october", "november",
              "december")  # fmt: skip

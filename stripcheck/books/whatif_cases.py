@@ -6,7 +6,7 @@ page's inputs by formula; what it has instead of them is in `Case.instead`.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -76,12 +76,12 @@ class Case:
 class Source:
     """Where the cases read from, by key: the formula for a case's row, and its values in the two directions, as shown.
 
-    ``best`` is the cell with the better direction of each side.
+    ``best`` is the cell with the better direction.
     """
 
     formulas: Mapping[str, str]
     values: Mapping[str, tuple[Value, Value]]
-    best: Mapping[str, str]
+    best: str
 
 
 def rows_of(kind: str, flaps: int) -> tuple[int, int]:
@@ -155,7 +155,7 @@ def write_side(pages: Pages, side: str, card: Card, rules: Rules, source: Source
     chain, everything = card.chain, {**card.values, **rules.values, **values}
     best = better_way(side, chain, source, everything)
     ways = np.array([best if case.way == BEST else case.way for case in cases], dtype=float)
-    way_formulas = [source.best[side] if case.way == BEST else None for case in cases]
+    way_formulas = [source.best if case.way == BEST else None for case in cases]
     about = {
         "case": About("Case", 24, TextColumn([case.label for case in cases])),
         "way": About("Direction", 9, FormulaColumn(way_formulas, ways)),
@@ -165,23 +165,19 @@ def write_side(pages: Pages, side: str, card: Card, rules: Rules, source: Source
     for key in (*OWN[side], *SHARED):
         shown = [case.instead[key][1] if key in case.instead else source.values[key][int(way) - 1]
                  for case, way in zip(cases, ways.tolist(), strict=True)]  # fmt: skip
-        own = [_own(case, key) for case in cases]
-        formula = source.formulas[key]
-        formulas = formula if not any(own) else [one(formula) if one else formula for one in own]
+        usual = source.formulas[key]
+        formulas = [case.instead[key][0] or '""' if key in case.instead else usual for case in cases]
         number = inputs[key].kind == "number"
         given[key] = Given(np.array([np.nan if one == "" else one for one in shown], dtype=float) if number
-                           else [str(one) for one in shown], formulas)  # fmt: skip
+                           else [str(one) for one in shown], usual if set(formulas) == {usual} else formulas)  # fmt: skip
     return write_cases(pages, title, heading, chain, about, given, everything, WANTED[side])
 
 
-def _own(case: Case, key: str) -> Callable[[str], str] | None:
-    if key not in case.instead:
-        return None
-    text = case.instead[key][0] or '""'
-    return lambda _: text
+def way_formula(cells: str, other: bool = False) -> str:
+    """Of two cells that one of a case's direction, or of the other."""
+    return f"INDEX({cells},{'3-' if other else ''}$B{ROW})"
 
 
-def page_formula(reference: str, both: bool) -> str:
-    """The formula by which a case reads an input of the page, blank where it is; ``both``: a cell for each direction."""
-    one = f"INDEX({reference},$B{ROW})" if both else reference
+def blank_kept(one: str) -> str:
+    """A formula that reads a cell, blank where it is: read straight, a blank would be 0."""
     return f'IF({one}="","",{one})'

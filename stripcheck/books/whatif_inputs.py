@@ -6,7 +6,7 @@ verdict is then *not assessed*, and the sentence tells what would be right.
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from math import ceil, floor, inf, isnan
 from pathlib import Path
@@ -79,7 +79,7 @@ def _list(key: str) -> tuple[float, float]:
 
 
 def _ahead(key: str, label: str, unit: str, meaning: str, limit: str) -> Entry:
-    return Entry(key, label, unit, meaning, both=True, limits=_list(limit), here=("takeoff",), there=("landing",))
+    return Entry(key, label, unit, meaning, both=True, limits=_list(limit), there=SIDES)
 
 
 STRIP = (
@@ -88,10 +88,9 @@ STRIP = (
     Entry("lda", "Usable for landing", "m", "length in this direction", both=True, limits=links.LENGTHS, here=("landing",)),
     Entry("take_off_here", "Take-off allowed", "", "no: one-way strip", YES_OR_NO, both=True, here=("takeoff",)),
     Entry("land_here", "Landing allowed", "", "no: one-way strip", YES_OR_NO, both=True, here=("landing",)),
-    Entry("heading", "Heading", "°", "true; needed in any wind", both=True, turned=True, limits=_list("heading"),
-          there=SIDES),
+    Entry("heading", "Heading", "°", "true; needed in any wind", both=True, turned=True, limits=_list("heading")),
     Entry("slope_given", "Slope", "%", "mean, uphill positive; the other way follows", both=True, turned=True,
-          limits=links.SLOPES, there=SIDES),
+          limits=links.SLOPES),
     _ahead("obstacle_height", "Obstacle ahead, height", "ft", "above the far end; blank: none known", "obstacle_height"),
     _ahead("obstacle_distance", "Obstacle ahead, distance", "m", "beyond the far end", "obstacle_distance"),
     Entry("local_slope", "Steepest part", "%", "where the rules limit it; blank: not looked at", limits=_list("local_slope")),
@@ -207,6 +206,8 @@ def _start(title: str, names: tuple[str, str], given: Mapping[str, Any], card: C
     units = {entry.key: entry.unit for entry in entries_of(card)}
     numbers = {key: _numbers(value, units[key]) for key, value in si.items()}
     values = {**words, **numbers}
+    values["heading"] = _turned(values["heading"][0], lambda heading: (heading + 180.0) % 360.0)
+    values["slope_given"] = _turned(values["slope_given"][0], lambda slope: 0.0 - slope)
     for entry in entries_of(card):
         for value in values[entry.key]:
             if wrong(entry, value):
@@ -226,6 +227,10 @@ def _texts(words: Any) -> tuple[Value, Value]:
 def _numbers(column: Any, unit: str) -> tuple[Value, Value]:
     shown = [round(float(from_si(value, unit)), 6) for value in _pair(column)]
     return _texts("" if isnan(value) else value for value in shown)
+
+
+def _turned(first: Value, turn: Callable[[float], float]) -> tuple[Value, Value]:
+    return first, turn(first) if isinstance(first, float) else ""
 
 
 def _humidity(given: Mapping[str, Any], air: Any) -> Any:

@@ -6,7 +6,9 @@ Of a user's workbook only the list of names changes; every other part of the pac
 from __future__ import annotations
 
 import re
+import shutil
 import zipfile
+from copy import copy
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -19,6 +21,7 @@ from stripcheck.doors.call import call
 from stripcheck.doors.functions import FUNCTIONS, Argument, Function
 from stripcheck.doors.lambdas import NO_REACH_HERE, STEP, Library, Name, library, not_a_lambda
 from stripcheck.errors import InputError
+from stripcheck.safe_file import whole_or_not_at_all
 from stripcheck.units import KINDS
 
 if TYPE_CHECKING:
@@ -156,22 +159,24 @@ def _typed(value: Any) -> str:
 
 def write_copy(book: Path, path: Path) -> Copied:
     """A copy of a workbook with all names. Raises InputError for what is no such workbook, and for a name in use."""
-    from stripcheck.safe_file import whole_or_not_at_all
+    from stripcheck.register.read_table import check_file
+    from stripcheck.register.safe_read import check_workbook
 
-    try:
-        source = zipfile.ZipFile(book)
-    except OSError as error:
-        raise InputError(f"{book}: can't be read ({error.strerror or error})") from error
-    except zipfile.BadZipFile as error:
-        raise InputError(f"{book}: this is no .xlsx workbook, or it is locked with a password") from error
-    with source:
+    check_file(book, "workbook")
+    check_workbook(book)
+    with zipfile.ZipFile(book) as source:
         try:
             part = _workbook_part(source, book)
             changed, result = _with_names(source.read(part).decode("utf-8-sig"), library().names, book)
             with whole_or_not_at_all(path) as file, zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED) as target:
                 target.comment = source.comment
                 for entry in source.infolist():
-                    target.writestr(entry, changed.encode() if entry.filename == part else source.read(entry))
+                    if entry.filename == part:
+                        target.writestr(entry, changed.encode())
+                        continue
+                    fresh = copy(entry)  # the writer sets its own places in it
+                    with source.open(entry) as old, target.open(fresh, "w", force_zip64=entry.file_size >= 2**31) as new:
+                        shutil.copyfileobj(old, new, 1 << 20)
         except (zipfile.BadZipFile, UnicodeDecodeError, RuntimeError, NotImplementedError, ElementTree.ParseError) as error:
             raise InputError(f"{book}: the workbook is damaged ({error})") from error
     return result

@@ -82,9 +82,12 @@ def read_list(
     [0.04, -0.04]
     """
     path = Path(path)
-    table = read_table(path, sheet)
-    reading = read_runways(table, path, airports)
-    runways, texts, reasons = reading.runways, reading.texts, reading.reasons
+    return directions_of(read_runways(read_table(path, sheet), path, airports), strict)
+
+
+def directions_of(reading: Reading, strict: bool = False) -> Directions:
+    """The runways that are kept, as directions; ``strict`` and errors as in ``read_list``."""
+    runways, texts, reasons, table = reading.runways, reading.texts, reading.reasons, reading.runways.table
     kept = np.array([index for index, reason in enumerate(reasons) if reason is None], dtype=np.intp)
     faults = _fault_texts(runways, kept, strict)
     texts["fault"] = faults, faults

@@ -65,6 +65,15 @@ def as_written(cell: object) -> str:
     return str(cell).strip()
 
 
+def harmless(text: str) -> str:
+    """A text with an apostrophe before it where a spreadsheet would take it for a formula.
+
+    >>> harmless("=1+1"), harmless("Otter Bend")
+    ("'=1+1", 'Otter Bend')
+    """
+    return "'" + text if text.startswith(("=", "+", "-", "@", "\t", "\r")) else text
+
+
 def read_yes(cell: object) -> bool | None:
     """True or False for a yes-or-no cell, None for a blank one. Raises InputError for anything else.
 
@@ -92,7 +101,7 @@ def read_numbers(
     >>> read_numbers(["620", "2300 ft", "-", "far"], "length", "", "Length", False)[0]
     array([620.  , 701.04,    nan,    nan])
     """
-    marks = _decimal_marks(cells, kind) if local_marks else None
+    marks = decimal_marks(cells, kind) if local_marks else None
     known: dict[object, float | str] = {}
     numbers = np.full(len(cells), np.nan)
     faults = []
@@ -137,7 +146,7 @@ def _english(text: str, decimal_marks: str) -> str:
     return head[0].translate(str.maketrans(marks)) + text[head.end() :]
 
 
-def _decimal_marks(cells: Sequence[object], kind: str) -> str:
+def decimal_marks(cells: Sequence[object], kind: str) -> str:
     """The decimal marks of a column in a file that may have "," or "."; the other mark parts thousands.
 
     A mark that is followed by one, two or more than three digits somewhere, or stands after a lone 0, is the

@@ -46,11 +46,11 @@ AS_ROWS_LEGEND = (
 )
 
 
-def write_manual(pages: Pages, card: Card, values: Mapping[str, Any]) -> Worksheet | None:
+def write_manual(pages: Pages, card: Card, values: Mapping[str, Any], title: str = SHEET) -> Worksheet | None:
     """The sheet, or None for a card without tables. ``values`` are the steps that are the same for all strips, SI."""
     if not card.tables:
         return None
-    sheet: Worksheet = pages.book.create_sheet(SHEET)
+    sheet: Worksheet = pages.book.create_sheet(title)
     sheet.sheet_view.showGridLines = False
     sheet["A1"], sheet["A1"].font = f"{card.name}: the flight manual's tables", styles.TITLE
     styles.write_caution(sheet, "A2", CAUTION)

@@ -145,8 +145,9 @@ class Package:
             self._texts = [_plain_text(item) for item in root]
         return self._texts
 
-    def save(self, changed: Mapping[str, Iterable[bytes]], file: BinaryIO) -> None:
-        """Write the package anew: the parts of ``changed`` from pieces of bytes, every other part as it is."""
+    def save(self, changed: Mapping[str, Iterable[bytes]], file: BinaryIO, added: Mapping[str, bytes] | None = None) -> None:
+        """Write the package anew: the parts of ``changed`` from pieces of bytes, every other part as it is, those of ``added``
+        last."""
         with zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, allowZip64=True) as target:
             for info in self.zip.infolist():
                 fresh = zipfile.ZipInfo(info.filename, info.date_time)
@@ -159,6 +160,8 @@ class Package:
                     else:
                         with self.zip.open(info) as source:
                             shutil.copyfileobj(source, out)
+            for name, data in (added or {}).items():
+                target.writestr(name, data)
 
     def _root(self, part: str) -> ElementTree.Element:
         root = ElementTree.fromstring(self.zip.read(part))

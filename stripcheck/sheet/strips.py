@@ -28,7 +28,7 @@ from stripcheck.verdict import FAULT
 
 SHEET = "Strips"
 HEADER_ROW, FIRST_ROW = 3, 4
-REASON_WIDTH = 42
+REASON_WIDTH = 48
 
 IDENTITY = (
     ("key", "Key", 4, "Key of this direction, by which the Summary finds it"),
@@ -44,7 +44,7 @@ KEY_STEPS = (
 CHANCES = ("landing_chance", "takeoff_chance")
 NO_MARGIN = -9e9  # stands for "no margin" where the two are compared
 SAME_MARGIN = 0.5  # m
-MOVED_ON = "fill again"
+MOVED_ON = "refresh"
 AS_FILLED = "As filled"  # the group of columns that tell what held when the workbook was filled
 ABOUT = (
     ("surface_given", "Surface in the list", 20, "Spelling in the list"),

@@ -89,12 +89,12 @@ COLUMNS = (
     ("in_direction", "Land on", 9, "Direction in which to land"),
     ("in_margin", "Land: margin [m]", 10, "Length available less length required; negative: missing"),
     ("in_share", "Land: margin [%]", 9, "Margin as a share of the length available"),
-    ("in_reason", "Land: limiting reason", 42, "What decides the verdict"),
+    ("in_reason", "Land: limiting reason", 48, "What decides the verdict"),
     ("out_verdict", "Take off: verdict", 13, "Verdict for the better take-off direction"),
     ("out_direction", "Leave by", 9, "Direction in which to take off"),
     ("out_margin", "Take off: margin [m]", 10, "Length available less length required; negative: missing"),
     ("out_share", "Take off: margin [%]", 9, "Margin as a share of the length available"),
-    ("out_reason", "Take off: limiting reason", 42, "What decides the verdict"),
+    ("out_reason", "Take off: limiting reason", 48, "What decides the verdict"),
 )
 HIDDEN = 6
 LETTERS = {key: get_column_letter(number) for number, (key, *_) in enumerate(COLUMNS, 1)}
@@ -185,7 +185,7 @@ def table_of(directions: Directions, letters: Mapping[str, str], values: Mapping
     if any(len(column.values) != count for column in made.values()):
         raise ValueError("the summary's columns are not equally long")
     longest = [max(pair, key=len) for pair in zip(made["in_reason"].values, made["out_reason"].values, strict=True)]
-    return Table(FIRST_ROW, [made[key] for key, *_ in COLUMNS], styles.heights_for(longest, 50))
+    return Table(FIRST_ROW, [made[key] for key, *_ in COLUMNS], styles.heights_for(longest, 56))
 
 
 def row_values(values: Mapping[str, Any], best: Mapping[str, np.ndarray]) -> dict[str, Any]:

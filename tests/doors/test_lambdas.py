@@ -558,8 +558,8 @@ def test_names_find_their_place_in_a_workbook_with_a_prefix(own_book: Path, tmp_
 
 
 @pytest.mark.parametrize(("what", "words"), [
-    ("another meaning", "in use there with another meaning"), ("no zip", "no .xlsx workbook"), ("missing", "can't be read"),
-    ("other zip", "no .xlsx workbook"), ("other suffix", "saved as .xlsx"), ("itself", "the workbook itself"),
+    ("another meaning", "in use there with another meaning"), ("no zip", "no workbook"), ("missing", "there is no such file"),
+    ("other zip", "no workbook"), ("other suffix", "saved as .xlsx"), ("itself", "the workbook itself"),
     ("exists", "this file exists"), ("signed", "signed"), ("folder", "folder does not exist"), ("out suffix", "end in .xlsx"),
 ])  # fmt: skip
 def test_what_can_t_take_the_names_is_refused_in_one_sentence(
