@@ -9,11 +9,17 @@ import sys
 import tempfile
 import zipfile
 from pathlib import Path
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from tests.office import Office
 
 PICTURES = Path(__file__).parent / "pictures"
 # page of the printed workbook -> name of the picture
 PAGES = {"Summary": "summary", "Strips": "strips", "Aircraft": "aircraft", "Manual": "manual", "Day": "day", "Rules": "rules",
          "Left out": "left-out", "Method": "method"}  # fmt: skip
+# the workbooks for people: the command that makes one, and the same for its pages
+BOOKS = {("whatif", "--demo"): {"What if": "what-if", "Charts": "what-if-charts"}}
 DPI = 110
 
 
@@ -27,23 +33,10 @@ def main() -> None:
         folder = Path(name)
         stripcheck(["demo", "-o", str(folder / "demo.xlsx"), "--quiet"])
         with Office() as office:
-            book = office.open(folder / "demo.xlsx")
-            book.recalculate()
-            book.pdf(folder / "demo.pdf")
-            book.close()
-        pages = int(_told(["pdfinfo", str(folder / "demo.pdf")], "Pages:"))
-        kept: set[str] = set()
-        for page in range(1, pages + 1):
-            text = subprocess.run(["pdftotext", "-f", str(page), "-l", str(page), "-layout", str(folder / "demo.pdf"), "-"],
-                                  check=True, capture_output=True, text=True).stdout  # fmt: skip
-            sheet = next((title for title in PAGES if text.rstrip().splitlines()[-1].strip().startswith(title)), None)
-            if sheet is None or sheet in kept:
-                continue
-            kept.add(sheet)
-            _picture(folder / "demo.pdf", page, PICTURES / f"{PAGES[sheet]}.png")
-        missing = set(PAGES) - kept
-        if missing:
-            raise SystemExit(f"no page found for: {', '.join(sorted(missing))}")
+            _pictures(office, folder / "demo.xlsx", PAGES)
+            for arguments, pages in BOOKS.items():
+                stripcheck([*arguments, "-o", str(folder / f"{arguments[0]}.xlsx")])
+                _pictures(office, folder / f"{arguments[0]}.xlsx", pages)
         stripcheck(["door", "lambda", "-o", str(folder / "library.xlsx")])
         _without_formulas(folder / "library.xlsx", folder / "kept.xlsx")
         with Office() as office:
@@ -51,6 +44,25 @@ def main() -> None:
             book.pdf(folder / "library.pdf")
             book.close()
         _picture(folder / "library.pdf", 1, PICTURES / "lambda-library.png")
+
+
+def _pictures(office: "Office", path: Path, pages: dict[str, str]) -> None:
+    """The first printed page of each of these sheets of a workbook."""
+    book, pdf = office.open(path), path.with_suffix(".pdf")
+    book.recalculate()
+    book.pdf(pdf)
+    book.close()
+    kept: set[str] = set()
+    for page in range(1, int(_told(["pdfinfo", str(pdf)], "Pages:")) + 1):
+        text = subprocess.run(["pdftotext", "-f", str(page), "-l", str(page), "-layout", str(pdf), "-"],
+                              check=True, capture_output=True, text=True).stdout  # fmt: skip
+        sheet = next((title for title in pages if text.rstrip().splitlines()[-1].strip().startswith(title)), None)
+        if sheet is not None and sheet not in kept:
+            kept.add(sheet)
+            _picture(pdf, page, PICTURES / f"{pages[sheet]}.png")
+    missing = set(pages) - kept
+    if missing:
+        raise SystemExit(f"no page found for: {', '.join(sorted(missing))}")
 
 
 def _without_formulas(path: Path, target: Path) -> None:

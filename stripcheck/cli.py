@@ -1,4 +1,4 @@
-"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``audit``, ``demo``, ``list`` and ``door``.
+"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``audit``, ``merge``, ``demo``, ``list`` and ``door``.
 
 Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
 130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.
@@ -15,8 +15,9 @@ from typing import Any
 
 from stripcheck import __version__
 from stripcheck.caution import CAUTION
-from stripcheck.cli_options import EPILOG, add_day, add_loading, day_of, say
-from stripcheck.cli_register import add_audit, add_refresh
+from stripcheck.cli_books import add_register, add_trip, add_whatif
+from stripcheck.cli_options import EPILOG, add_day, add_loading, add_strip_values, day_of, loading_of, say, strip_of
+from stripcheck.cli_register import add_audit, add_merge, add_refresh
 from stripcheck.errors import InputError
 
 DEMO_FILE = "stripcheck-demo.xlsx"
@@ -54,6 +55,10 @@ def _parser() -> argparse.ArgumentParser:
     _add_card(commands)
     add_audit(commands)
     add_refresh(commands)
+    add_merge(commands)
+    add_trip(commands)
+    add_register(commands)
+    add_whatif(commands)
     _add_demo(commands)
     _add_door(commands)
     listing = commands.add_parser("list", help="list the shipped aircraft cards and rule sets", epilog=EPILOG)
@@ -99,19 +104,8 @@ def _add_strip(commands: Any) -> None:
     )
     strip.add_argument("--card", required=True, help="aircraft card: a .toml file, or the name of a shipped one")
     strip.add_argument("--rules", required=True, help="rule set: a .toml file, or the name of a shipped one")
-    group = strip.add_argument_group("strip")
-    group.add_argument("--length", metavar="M", help="length, usable both ways unless --tora or --lda says otherwise")
-    group.add_argument("--tora", metavar="M", help="length usable for take-off")
-    group.add_argument("--lda", metavar="M", help="length usable for landing")
-    group.add_argument("--width", metavar="M", help="width, where the rule set asks for one")
-    group.add_argument("--elev", required=True, metavar="FT", dest="elevation_field", help="elevation of its highest point")
-    group.add_argument("--surface", required=True, help="surface, such as grass, gravel, 'wet grass'")
-    group.add_argument("--slope", metavar="PCT", dest="slope_given", help="mean slope in the direction given, uphill positive")
-    group.add_argument("--profile", metavar="POINTS", help="heights along it, such as '0:0, 200:3.5, 450:12' (m)")
-    group.add_argument("--heading", metavar="DEG", help="true heading of the direction given; needed in any wind")
-    group.add_argument("--obstacle", metavar="FT/M", help="height above and distance beyond the far end")
-    group.add_argument("--obstacle-behind", metavar="FT/M", help="height above and distance before the near end")
-    group.add_argument("--one-way", action="store_true", help="land in the direction given only, take off in the other only")
+    add_strip_values(strip, required=True)
+    strip.add_argument("--profile", metavar="POINTS", help="heights along it, such as '0:0, 200:3.5, 450:12' (m)")
     add_loading(strip)
     add_day(strip)
     strip.set_defaults(run=_run_strip)
@@ -221,10 +215,8 @@ def _run_strip(options: argparse.Namespace) -> int:
     from stripcheck.one_strip import one_strip, typed_strip
     from stripcheck.rules import load_rules
 
-    names = ("length", "tora", "lda", "width", "elevation_field", "surface", "slope_given", "profile", "heading", "obstacle",
-             "obstacle_behind")  # fmt: skip
-    loading = {name: getattr(options, name) for name in ("takeoff_mass", "landing_mass", "takeoff_flap", "landing_flap")}
-    strip = typed_strip({name: getattr(options, name) for name in names})
+    loading = loading_of(options)
+    strip = typed_strip({**strip_of(options), "profile": options.profile})
     day = day_of(options)
     if day["temperature"] is None and day["isa_deviation"] is None:
         raise InputError("no temperature: add --temp or --isa-dev")

@@ -19,6 +19,34 @@ def add_loading(parser: argparse.ArgumentParser) -> None:
     group.add_argument("--landing-flap", metavar="SETTING", help="name of a setting in the card")
 
 
+def add_strip_values(parser: argparse.ArgumentParser, required: bool) -> None:
+    """One strip; ``required``: what no strip can be without must be given."""
+    group = parser.add_argument_group("strip")
+    group.add_argument("--length", metavar="M", help="length, usable both ways unless --tora or --lda says otherwise")
+    group.add_argument("--tora", metavar="M", help="length usable for take-off")
+    group.add_argument("--lda", metavar="M", help="length usable for landing")
+    group.add_argument("--width", metavar="M", help="width, where the rule set asks for one")
+    group.add_argument("--elev", required=required, metavar="FT", dest="elevation_field", help="elevation of its highest point")
+    group.add_argument("--surface", required=required, help="surface, such as grass, gravel, 'wet grass'")
+    group.add_argument("--slope", metavar="PCT", dest="slope_given", help="mean slope in the direction given, uphill positive")
+    group.add_argument("--heading", metavar="DEG", help="true heading of the direction given; needed in any wind")
+    group.add_argument("--obstacle", metavar="FT/M", help="height above and distance beyond the far end")
+    group.add_argument("--obstacle-behind", metavar="FT/M", help="height above and distance before the near end")
+    group.add_argument("--one-way", action="store_true", help="land in the direction given only, take off in the other only")
+
+
+def strip_of(options: argparse.Namespace) -> dict[str, str | None]:
+    """One strip as typed, by key of ``one_strip.typed_strip``."""
+    names = ("length", "tora", "lda", "width", "elevation_field", "surface", "slope_given", "heading", "obstacle",
+             "obstacle_behind")  # fmt: skip
+    return {name: getattr(options, name) for name in names}
+
+
+def loading_of(options: argparse.Namespace) -> dict[str, str | None]:
+    """Mass and flap as typed."""
+    return {name: getattr(options, name) for name in ("takeoff_mass", "landing_mass", "takeoff_flap", "landing_flap")}
+
+
 def add_day(parser: argparse.ArgumentParser) -> None:
     """QNH, temperature, humidity, wind and ground."""
     group = parser.add_argument_group("day (for strips that have no values of their own in the list)")

@@ -185,7 +185,7 @@ def write_csv(filling: Filling, path: Path) -> None:
     with whole_or_not_at_all(path) as file:
         text = io.TextIOWrapper(file, encoding="utf-8-sig", newline="")
         writer = csv.writer(text)
-        writer.writerow([*(header for header, _ in kept), "Caution"])
+        writer.writerow([*(harmless(header) for header, _ in kept), "Caution"])
         writer.writerows((*row, CAUTION) for row in zip(*columns, strict=True))
         text.detach()  # which empties the buffer; the file itself is closed by who opened it
 

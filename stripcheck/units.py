@@ -92,8 +92,9 @@ _SPELLINGS = {
     "m²": "meter**2", "m2": "meter**2", "sq m": "meter**2", "ft²": "foot**2", "ft2": "foot**2", "sq ft": "foot**2",
 }  # fmt: skip
 
-# What may be handed to pint: words, apart by blanks or strokes. It would work out "9**9**9**9" before it says no.
-_UNIT_WORDS = re.compile(r"[^\W\d_]+(?:[ /][^\W\d_]+)*")
+# What may be handed to pint: words, apart by blanks or strokes, and not many. It would work out "9**9**9**9" before it says
+# no, and takes minutes over a word of a hundred thousand letters.
+_UNIT_WORDS = re.compile(r"(?=.{1,60}\Z)[^\W\d_]+(?:[ /][^\W\d_]+)*")
 _QUANTITY = re.compile(r"\s*([-+]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][-+]?\d+)?)\s*(.*?)\s*$")
 
 WITHOUT_PINT = "without it a text may carry m, ft, km, nm, kt, km/h, kg, lb, °C, hPa, inHg, % or °"

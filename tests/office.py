@@ -271,6 +271,22 @@ class Book:
         """
         self._ask("set", sheet=sheet, cells=dict(cells))
 
+    def insert_rows(self, sheet: str, before: int, count: int = 1) -> None:
+        """Insert blank rows before a row, as a user does; a protected sheet that does not allow it is left as it is."""
+        self._ask("insert", sheet=sheet, what="Rows", before=before, count=count)
+
+    def insert_columns(self, sheet: str, before: int, count: int = 1) -> None:
+        """Insert blank columns before a column (1 is A), as `insert_rows` does."""
+        self._ask("insert", sheet=sheet, what="Columns", before=before, count=count)
+
+    def delete_rows(self, sheet: str, first: int, count: int = 1) -> None:
+        """Delete rows, as a user does."""
+        self._ask("remove", sheet=sheet, what="Rows", first=first, count=count)
+
+    def sort(self, sheet: str, area: str, column: int, ascending: bool = True) -> None:
+        """Sort the rows of an area such as "A8:AZ20" by one of its columns (1 is its first)."""
+        self._ask("sort", sheet=sheet, area=area, column=column, ascending=ascending)
+
     def save_as(self, path: Path | str) -> None:
         """Write the book as .xlsx or .ods, as the ending of the name says."""
         if Path(path).suffix not in (".xlsx", ".ods"):

@@ -162,6 +162,21 @@ class Books:
         finally:
             document.enableAutomaticCalculation(True)
 
+    def insert(self, book: int, sheet: str, what: str, before: int, count: int) -> None:
+        """Insert blank "Rows" or "Columns" before the one with this number (1 is the first), as a user does."""
+        getattr(self._sheet(book, sheet), what).insertByIndex(before - 1, count)
+
+    def remove(self, book: int, sheet: str, what: str, first: int, count: int) -> None:
+        getattr(self._sheet(book, sheet), what).removeByIndex(first - 1, count)
+
+    def sort(self, book: int, sheet: str, area: str, column: int, ascending: bool) -> None:
+        """Sort the rows of an area by one of its columns (1 is the first)."""
+        field = uno.createUnoStruct("com.sun.star.table.TableSortField")
+        field.Field, field.IsAscending = column - 1, ascending
+        fields = uno.Any("[]com.sun.star.table.TableSortField", (field,))
+        settings = PropertyValue(Name="SortFields", Value=fields), PropertyValue(Name="ContainsHeader", Value=False)
+        self._area(self._sheet(book, sheet), area).sort(settings)
+
     def export(self, book: int, path: str) -> None:
         kind = FILTERS.get(Path(path).suffix)
         if kind is None:

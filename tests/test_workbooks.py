@@ -1,4 +1,4 @@
-"""The shipped workbook is the one that the present code makes."""
+"""The shipped workbooks are the ones that the present code makes."""
 
 from pathlib import Path
 
@@ -7,20 +7,22 @@ import pytest
 
 from stripcheck.cli import main
 
-SHIPPED = Path(__file__).parents[1] / "workbooks" / "lantern-range.xlsx"
+FOLDER = Path(__file__).parents[1] / "workbooks"
+# each with the command that makes it anew: stripcheck demo -o workbooks/lantern-range.xlsx --force
+COMMANDS = {"lantern-range.xlsx": ["demo"], "what-if.xlsx": ["whatif", "--demo"]}
 
 
-@pytest.fixture(scope="module")
-def fresh(tmp_path_factory):
-    path = tmp_path_factory.mktemp("demo") / "demo.xlsx"
-    assert main(["demo", "-o", str(path), "--quiet"]) == 0
-    return path
+@pytest.fixture(scope="module", params=COMMANDS)
+def shipped_and_fresh(request, tmp_path_factory):
+    path = tmp_path_factory.mktemp("demo") / request.param
+    assert main([*COMMANDS[request.param], "-o", str(path)]) == 0
+    return FOLDER / request.param, path
 
 
 @pytest.mark.parametrize("values", [False, True], ids=["formulas", "values"])
-def test_the_shipped_workbook_is_current(fresh, values):
-    """Cell by cell; only the date differs. Remake it: stripcheck demo -o workbooks/lantern-range.xlsx --force"""
-    shipped, made = (openpyxl.load_workbook(path, data_only=values) for path in (SHIPPED, fresh))
+def test_the_shipped_workbook_is_current(shipped_and_fresh, values):
+    """Cell by cell; only the date differs."""
+    shipped, made = (openpyxl.load_workbook(path, data_only=values) for path in shipped_and_fresh)
     assert shipped.sheetnames == made.sheetnames
     compared = 0
     for sheet in made.worksheets:
@@ -38,5 +40,6 @@ def test_the_shipped_workbook_is_current(fresh, values):
     assert compared > 8_000
 
 
-def test_it_is_small_enough_to_send():
-    assert SHIPPED.stat().st_size < 1_000_000
+@pytest.mark.parametrize("name", COMMANDS)
+def test_it_is_small_enough_to_send(name):
+    assert (FOLDER / name).stat().st_size < 1_000_000

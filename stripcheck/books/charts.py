@@ -14,8 +14,8 @@ from openpyxl.chart import BarChart, LineChart, ScatterChart
 from openpyxl.chart.axis import ChartLines
 from openpyxl.chart.data_source import AxDataSource, NumData, NumDataSource, NumRef, NumVal, StrData, StrRef, StrVal
 from openpyxl.chart.label import DataLabelList
-from openpyxl.chart.legend import LegendEntry
 from openpyxl.chart.layout import Layout
+from openpyxl.chart.legend import LegendEntry
 from openpyxl.chart.marker import Marker
 from openpyxl.chart.series import Series, SeriesLabel, XYSeries
 from openpyxl.chart.shapes import GraphicalProperties
@@ -51,14 +51,14 @@ class Look:
 class Row:
     """A series: its name, the cells of its values, and how it looks; ``places``: the cells along the other axis, of points.
 
-    ``labels``: whether the figures stand beside its bars, as their cells show them.
+    ``labels``: where the figures stand that its bars show, as their cells have them: "outside", "inside", or "" for nowhere.
     """
 
     name: str
     values: str
     look: Look
     places: str = ""
-    labels: bool = False
+    labels: str = ""
 
 
 def bars(pages: Pages, title: str, categories: str, rows: Sequence[Row], axis: tuple[str, str], *, stacked: bool = False,
@@ -75,13 +75,13 @@ def bars(pages: Pages, title: str, categories: str, rows: Sequence[Row], axis: t
         series = _series(pages, row, categories)
         series.graphicalProperties, series.invertIfNegative = _bar_look(row.look), False
         if row.labels:
-            series.dLbls = _labels()
+            series.dLbls = _labels(row.labels)
         chart.series.append(series)
     if lines:
         chart += _lines(pages, categories, lines)
     _dressed(chart, title, axis)
     chart.legend.legendEntry = [LegendEntry(idx=i, delete=True) for i in range(unnamed)]
-    return chart  # type: ignore[no-any-return]
+    return chart
 
 
 def points(pages: Pages, title: str, rows: Sequence[Row], axis: tuple[str, str]) -> ScatterChart:
@@ -98,7 +98,7 @@ def points(pages: Pages, title: str, rows: Sequence[Row], axis: tuple[str, str])
     _dressed(chart, title, axis)
     chart.x_axis.majorGridlines = None
     chart.x_axis.number_format, chart.x_axis.tickLblPos = "0", "low"
-    return chart  # type: ignore[no-any-return]
+    return chart
 
 
 def _lines(pages: Pages, categories: str, rows: Sequence[Row]) -> LineChart:
@@ -107,7 +107,7 @@ def _lines(pages: Pages, categories: str, rows: Sequence[Row]) -> LineChart:
         series = _series(pages, row, categories)
         series.graphicalProperties, series.marker, series.smooth = _line_look(row.look), _marker(row.look), False
         chart.series.append(series)
-    return chart  # type: ignore[no-any-return]
+    return chart
 
 
 def _series(pages: Pages, row: Row, categories: str) -> Any:
@@ -172,14 +172,16 @@ def _marker(look: Look) -> Marker:
     return marker
 
 
-def _labels() -> DataLabelList:
+def _labels(where: str) -> DataLabelList:
     labels = DataLabelList(showVal=True, showSerName=False, showCatName=False, showLegendKey=False, showPercent=False)
-    labels.txPr = _small(800)
+    labels.position = {"outside": "outEnd", "inside": "inEnd"}[where]
+    labels.txPr = _small(800, "FFFFFF" if where == "inside" else BLACK)
     return labels
 
 
-def _small(size: int) -> RichText:
-    return RichText(p=[Paragraph(pPr=ParagraphProperties(defRPr=CharacterProperties(sz=size)), endParaRPr=None)])
+def _small(size: int, colour: str = BLACK) -> RichText:
+    look = CharacterProperties(sz=size, solidFill=ColorChoice(srgbClr=colour))
+    return RichText(p=[Paragraph(pPr=ParagraphProperties(defRPr=look), endParaRPr=None)])
 
 
 # --- the cells, with the values that they have now
@@ -210,5 +212,6 @@ def _texts(pages: Pages, cells: str) -> StrRef:
 def place(sheet: Any, chart: Any, cells: str) -> None:
     """Put a chart over cells such as "A4:C17", so that it keeps to them whatever the font makes of their width."""
     left, top, right, bottom = range_boundaries(cells)
-    chart.anchor = TwoCellAnchor("twoCell", _from=AnchorMarker(col=left - 1, row=top - 1), to=AnchorMarker(col=right, row=bottom))
+    corners = AnchorMarker(col=left - 1, row=top - 1), AnchorMarker(col=right, row=bottom)
+    chart.anchor = TwoCellAnchor("twoCell", _from=corners[0], to=corners[1])
     sheet.add_chart(chart)

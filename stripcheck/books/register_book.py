@@ -4,11 +4,11 @@ register`` does."""
 from __future__ import annotations
 
 import datetime
+import math
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from importlib.resources import files
-from math import isnan
 from pathlib import Path
 from typing import Any
 
@@ -18,21 +18,20 @@ from stripcheck.books import common, register_climate, register_fleet, register_
 from stripcheck.books.register_best import WORDS, Best
 from stripcheck.books.register_climate import Climate, read_climate
 from stripcheck.books.register_columns import spare_rows
-from stripcheck.books.register_levels import (
-    ALL_VARYING, Days, Ends, blank_day, register_chain, short_values, write_aeroplane, write_ends,
-)  # fmt: skip
+from stripcheck.books.register_levels import ALL_VARYING, Days, Ends, register_chain, short_values, write_aeroplane, write_ends
 from stripcheck.books.register_reading import Reading, write_reading
 from stripcheck.books.register_rows import Rows, rows_of
 from stripcheck.card import Card, load_card
 from stripcheck.chain import evaluate
 from stripcheck.day import Day, read_day
 from stripcheck.errors import InputError
+from stripcheck.inputs import DAY
 from stripcheck.rules import Rules, load_rules
 from stripcheck.safe_file import refuse_if_open
-from stripcheck.sheet import manual_tables, method, pages, styles
+from stripcheck.sheet import manual_tables, method, pages
 from stripcheck.sheet.cases import Cases, no_inputs, write_once
 from stripcheck.sheet.stream import write_book
-from stripcheck.units import from_si, tidy
+from stripcheck.units import from_si
 
 MOST_CARDS = 4
 FLAPS = ("takeoff_flap", "landing_flap")
@@ -80,7 +79,7 @@ def make_register(request: Request) -> list[str]:
     if request.output.exists() and request.output.samefile(request.list):
         raise InputError(f"{request.output}: this is the list itself; choose another name for what is written")
     cards, rules, day = [load_card(name) for name in request.cards], load_rules(request.rules), read_day(request.day)
-    if isnan(day.values["temperature"]) and isnan(day.values["isa_deviation"]):
+    if math.isnan(day.values["temperature"]) and math.isnan(day.values["isa_deviation"]):
         raise InputError("no temperature of the standard day: add --temp or --isa-dev")
     climate = register_climate.UNKNOWN if request.climate is None else read_climate(request.climate)
     rows = rows_of(request.list, request.airports, request.sheet)
@@ -127,8 +126,9 @@ class RegisterBook:
         ends = write_ends(self.pages, reading, chains[0], {**shared, "elevation": np.nan})
         for number, (card, chain) in enumerate(zip(self.cards, chains, strict=True), 1):
             self._aeroplane(number, card, chain, reading, ends, days)
-        sentences = register_fleet.write_fleet(self.pages, reading, self.planes, self._facts(), self.counted_on, self.survey_age)
-        register_sheet.say(self.pages, sentences)
+        facts = self._facts()
+        said = register_fleet.write_fleet(self.pages, reading, self.planes, facts, self.counted_on, self.survey_age)
+        register_sheet.say(self.pages, said)
         plane = self.planes[self.of_year]
         register_months.write_months(self.pages, reading, plane.best, plane.heading, plane.loading, self.all_rows)
         self._order(reading, ends)
@@ -143,7 +143,7 @@ class RegisterBook:
         chosen = {key: float(card.values[key]) for key in LOADING}
         flaps = {key: next(flap.name for flap in card.flaps if flap.deflection == chosen[key]) for key in FLAPS}
         sheet = pages.write_aircraft(made, card, chosen, flaps, title=name)
-        values = {**no_inputs(), **blank_day(), **self.rules.values, **self.day.values, **card.values, **chosen, "elevation": np.nan}
+        values = {**no_inputs(), **self.rules.values, **self.day.values, **card.values, **chosen, "elevation": np.nan}
         found = evaluate(chain, values)
         manual_tables.write_manual(made, card, found, title=f"Manual {number}")
         row = pages.write_book_points(sheet, sheet.max_row + 3, card)
@@ -155,29 +155,36 @@ class RegisterBook:
         loading = [_loading(cells, word, mass, flap, chosen, flaps) for word, mass, flap in (
             ("Take-off", "mass_takeoff", "takeoff_flap"), ("Landing", "mass_landing", "landing_flap"))]  # fmt: skip
         heading = f"'{name}'!$A$1", card.name
-        self.planes.append(register_fleet.Plane(name, heading, loading, Best(fleet, reading, chain)))
+        self.planes.append(register_fleet.Plane(heading, loading, Best(fleet, reading, chain)))
 
     def _facts(self) -> list[tuple[str, str, Any]]:
         """Label, formula and value of what the verdicts stand on."""
         cells, values = self.pages.value_cells, self.day.values
-        facts: list[tuple[str, str, Any]] = []
-        for label, key, unit in (("Temperature", "temperature", "°C"), ("taken at", "temperature_elevation", "ft"),
-                                 ("ISA deviation", "isa_deviation", "K"), ("QNH", "qnh", "hPa"),
-                                 ("Wind from", "wind_from", "°"), ("Wind", "wind_speed", "kt")):  # fmt: skip
-            cell = cells[key]
-            known = not isnan(values[key])
-            value = f"{_rounded(from_si(values[key], unit))} {unit}" if known else "not given"
-            facts.append((label, f'IF(ISNUMBER({cell}),ROUND({cell},1)&" {unit}","not given")', value))
-        facts.append(("Ground", f'{cells["day_condition"]}&""', self.day.condition))
-        facts.append(("Rules", "Rules!$A$1", self.rules.title))
-        return facts
+        shown = {item.key: _rounded(from_si(values[item.key], item.unit)) for item in DAY
+                 if item.kind == "number" and not math.isnan(values[item.key])}  # fmt: skip
+        temperature, at, deviation, wind, direction = (
+            cells[key] for key in ("temperature", "temperature_elevation", "isa_deviation", "wind_speed", "wind_from")
+        )
+        air = f"{shown['temperature']} °C" if "temperature" in shown else ""
+        air += f" at {shown['temperature_elevation']} ft" if "temperature_elevation" in shown else ""
+        air = air or f"ISA {'+' if values['isa_deviation'] >= 0 else ''}{shown['isa_deviation']} K"
+        return [
+            ("Temperature",
+             f'IF(ISNUMBER({deviation}),"ISA "&IF({deviation}<0,"","+")&ROUND({deviation},1)&" K",IF(ISNUMBER({temperature}),'
+             f'ROUND({temperature},1)&" °C"&IF(ISNUMBER({at})," at "&ROUND({at},0)&" ft",""),"not given"))', air),
+            ("QNH", f'IF(ISNUMBER({cells["qnh"]}),ROUND({cells["qnh"]},1)&" hPa","not given")', f"{shown['qnh']} hPa"),
+            ("Wind", f'IF(ISNUMBER({wind}),IF({wind}=0,"calm",ROUND({direction},0)&"° "&ROUND({wind},1)&" kt"),"not given")',
+             f"{shown['wind_from']}° {shown['wind_speed']} kt" if values["wind_speed"] > 0 else "calm"),
+            ("Ground", f'{cells["day_condition"]}&""', self.day.condition),
+            ("Rules", "Rules!$A$1", self.rules.title),
+        ]  # fmt: skip
 
     def _taken(self) -> list[str]:
         lines = list(self.day.defaults)
         for card in self.cards:
             lines += [f"{card.name}: {line}" for line in (*card.assumed, *card.fit.remarks)]
         lines += self.rows.told
-        if isnan(self.day.values["temperature_elevation"]) and not isnan(self.day.values["temperature"]):
+        if math.isnan(self.day.values["temperature_elevation"]) and not math.isnan(self.day.values["temperature"]):
             lines.append("The standard day's temperature stands for every strip, whatever its elevation")
         lines += self.climate.told
         return lines
@@ -193,7 +200,8 @@ class RegisterBook:
     def _order(self, reading: Reading, ends: Ends) -> None:
         """Sheets in the order in which they are used, with tabs coloured; the workings come last."""
         book, count = self.pages.book, len(self.cards)
-        planes = [name for number in range(1, count + 1) for name in (f"Aircraft {number}", f"Manual {number}") if name in book.sheetnames]
+        planes = [f"{page} {number}" for number in range(1, count + 1) for page in ("Aircraft", "Manual")]
+        planes = [name for name in planes if name in book.sheetnames]
         kinds = {
             "input": ["Register"],
             "result": [register_fleet.SHEET, register_months.SHEET],
@@ -226,4 +234,6 @@ def _loading(cells: Mapping[str, str], word: str, mass: str, flap: str, chosen: 
 
 
 def _rounded(value: float, digits: int = 1) -> str:
-    return f"{tidy(round(float(value), digits)):.12g}"
+    """As a spreadsheet's ROUND has it, which rounds a half away from zero."""
+    whole = math.floor(abs(float(value)) * 10.0**digits + 0.5 + 1e-9)
+    return f"{math.copysign(whole / 10.0**digits, value) + 0.0:.12g}"

@@ -41,9 +41,9 @@ _COLUMNS = {
 }
 _KINDS = {"temperature": "temperature", "qnh": "pressure", "taken_at": "altitude"}
 SAID = (
-    "Each month's temperature is carried to a strip's elevation at the standard lapse rate; blank in B4: the same everywhere. "
-    "Ground: where the register tells no condition. QNH: blank is the standard 1013.25 hPa. Wind and humidity are those of the "
-    "sheet Day."
+    "Each month's temperature is carried to a strip's elevation at the standard lapse rate; B4 blank: the same everywhere. "
+    "Ground: where the register tells no condition; soft is wet where a strip is paved. QNH: blank is the standard 1013.25 "
+    "hPa. Wind and humidity are those of the sheet Day."
 )
 
 
@@ -83,7 +83,8 @@ def read_climate(path: str | Path) -> Climate:
         cells = {key: row[at].strip() if at < len(row) else "" for key, (at, _) in places.items()}
         month = month_number(cells["month"]) or _plain_month(cells["month"])
         if not month or month in found:
-            raise InputError(f'{path.name} row {number}: "{cells["month"]}" is no month, or comes twice; write Jan to Dec once each')
+            what = f'"{cells["month"]}" is no month, or comes twice; write each of the twelve once'
+            raise InputError(f"{path.name} row {number}: {what}")
         found[month] = cells
     missing = [MONTHS[month - 1] for month in range(1, 13) if month not in found]
     if missing:
@@ -150,7 +151,8 @@ def write_climate(pages: Pages, climate: Climate, day: Day) -> Days:
     common.expect_number(sheet, "B4", "Elevation", *LIMITS["taken_at"])
     sheet["A5"], sheet["A5"].font = SAID, styles.SMALL
     write_header(sheet, HEADER_ROW, ("Day", "Temperature [°C]", "Ground", "QNH [hPa]"))
-    write_header(sheet, HEADER_ROW, ("Temperature [K]", "Taken at [m]", "ISA deviation [K]", "Dew point [K]", "QNH [Pa]", "Ground"), 6)
+    in_si = ("Temperature [K]", "Taken at [m]", "ISA deviation [K]", "Dew point [K]", "QNH [Pa]", "Ground")
+    write_header(sheet, HEADER_ROW, in_si, 6)
     sheet.row_dimensions[HEADER_ROW].height = 30
     for letter, width in zip("ABCDEFGHIJK", (22, 13, 11, 11, 3, 13, 11, 13, 11, 11, 10), strict=True):
         sheet.column_dimensions[letter].width = width
@@ -180,7 +182,8 @@ def _values(climate: Climate, day: Day) -> dict[str, np.ndarray]:
     return {key: np.array([day.values[key], *column]) for key, column in columns.items()}
 
 
-def _write_row(pages: Pages, sheet: Worksheet, row: int, at: int, name: str, climate: Climate, values: Mapping[str, float]) -> None:
+def _write_row(pages: Pages, sheet: Worksheet, row: int, at: int, name: str, climate: Climate,
+               values: Mapping[str, float]) -> None:  # fmt: skip
     sheet[f"A{row}"], sheet[f"A{row}"].font = name, styles.BOLD if at == 0 else styles.BODY
     sheet[f"A{row}"].border = styles.LINE
     if at == 0:

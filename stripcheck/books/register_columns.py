@@ -50,7 +50,8 @@ def _text(key: str, header: str, width: float, band: str, help_text: str, kind: 
 
 
 def _number(key: str, header: str, unit: str, band: str, help_text: str, end: int = 0, width: float = 9.5) -> RegisterColumn:
-    return RegisterColumn(key, end, f"{header} [{'° true' if key == 'heading' else unit}]", "number", width, band, help_text, unit)
+    shown = "° true" if key == "heading" else unit
+    return RegisterColumn(key, end, f"{header} [{shown}]", "number", width, band, help_text, unit)
 
 
 def _ends(key: str, header: str, unit: str, band: str, help_text: str, width: float = 9.5) -> list[RegisterColumn]:
@@ -98,7 +99,7 @@ COLUMNS: tuple[RegisterColumn, ...] = (
     *(RegisterColumn("month", number, name, "month", 4.6, _CLOSED,
                      f'"{CLOSED}": closed in this month; "{UNSURE}": not known whether')
       for number, name in enumerate(MONTHS, 1)),
-    _text("survey_date", "Survey date", 12.5, _SURVEY, "When the figures were last measured", "date"),
+    _text("survey_date", "Survey date", 17, _SURVEY, "When the figures were last measured", "date"),
     _text("survey_source", "Survey source", 20, _SURVEY, "Who or what they come from"),
     _text("notes", "Notes", 34, _SURVEY, "Anything"),
     _text("photo", "Photo link", 24, _SURVEY, "A file or an address, as text or as a link"),

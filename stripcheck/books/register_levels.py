@@ -18,12 +18,12 @@ from openpyxl.utils import quote_sheetname
 from stripcheck.books.register_columns import MONTHS
 from stripcheck.books.register_reading import Reading
 from stripcheck.chain import Chain, Input, Step
-from stripcheck.inputs import CARD, DAY, STRIP
+from stripcheck.inputs import CARD, STRIP
 from stripcheck.numeric import Number
 from stripcheck.sheet.cases import FIRST_ROW, About, Cases, Elsewhere, Given, write_cases
 from stripcheck.sheet.cell import Cell, as_cell, formula
 from stripcheck.sheet.formulas import Place
-from stripcheck.sheet.pages import Pages
+from stripcheck.sheet.pages import UNKNOWN_GROUND, Pages
 from stripcheck.sheet.stream import ROW, FormulaColumn, Table, TextColumn
 from stripcheck.sheet.strips import codes
 from stripcheck.surface import CONDITIONS, SURFACES
@@ -184,21 +184,17 @@ def _given(reading: Reading, end: int) -> dict[str, Given]:
     for side, slope in (("takeoff", up), ("climb", up), ("landing", down), ("approach", down)):
         read[f"profile_{side}_slope"] = turn, (slope,)
     given: dict[str, Given] = {"fault": Given(reading.values["fault"], reading.at("fault"))}
-    name = reading.at(f"end_{end}")
+    names = [reading.at(f"end_{number}") for number in (end, other)]
+    texts = [reading.values[f"end_{number}"] for number in (end, other)]
     for key, only in (("land_here", "land_towards"), ("take_off_here", "take_off_towards")):
-        shown = ["yes" if told in ("", this) else "no"
-                 for told, this in zip(reading.values[only], reading.values[f"end_{end}"], strict=True)]  # fmt: skip
-        given[key] = Given(shown, f'IF(OR({reading.at(only)}="",{reading.at(only)}={name}),"yes","no")')
+        shown = ["no" if told == that != this else "yes" for told, this, that in zip(reading.values[only], *texts, strict=True)]
+        given[key] = Given(shown, f'IF(AND({reading.at(only)}={names[1]},{names[0]}<>{names[1]}),"no","yes")')
     with np.errstate(invalid="ignore"):
         for key, (function, inputs) in read.items():
             cells = [Cell(reading.at(name)) for name in inputs]
-            numbers = [_numbers(reading.values[name]) for name in inputs]
+            numbers = [reading.number(name) for name in inputs]
             given[key] = Given(np.asarray(function(*numbers)), formula(as_cell(function(*cells))))
     return {key: given[key] for key in OF_END}
-
-
-def _numbers(values: Sequence[Any]) -> np.ndarray:
-    return np.array([value if isinstance(value, float) else np.nan for value in values])
 
 
 @dataclass(frozen=True)
@@ -242,20 +238,25 @@ def write_aeroplane(pages: Pages, name: str, heading: str, chain: Chain, reading
         DAY_ROW: [row for row in days.rows for _ in range(rows)],
     }
     air_values = {key: np.repeat(column, rows) for key, column in days.values.items()}
-    air_values["elevation"] = np.tile(to_si(reading_numbers(reading, "elevation_used"), "ft"), count)
+    air_values["elevation"] = np.tile(to_si(reading.number("elevation_used"), "ft"), count)
     air_values["surface"] = np.tile(codes(reading.values["surface"], SURFACES), count)
     air_values["condition"] = np.tile(codes(reading.values["condition"], CONDITIONS, blank=-1, strange=-2), count)
     air_places = {key: Place(f"{days.sheet}!${letter}{DAY_ROW}") for key, letter in days.letters.items()}
+    del air_places["day_condition"]  # which has a column of its own
     air_places["elevation"] = Place(reading.at("elevation_used", RUNWAY), "ft")
     air_places |= {key: Place(reading.at(key, RUNWAY)) for key in ("surface", "condition")}
     faults = [reading.values["fault"][runway] for _ in range(count) for runway in range(rows)]
     elsewhere = Elsewhere(air_places, marks, faults)
+    ground = _ground_of_day(reading, days)
+    air_values["day_condition"] = codes([str(word) for word in ground.shown], CONDITIONS, blank=-1, strange=-2)
     inside = inside_of(chain, "air")
+    names = FormulaColumn(elsewhere.in_rows(reading.at("strip", RUNWAY)), list(reading.values["strip"]) * count)
     about = {
-        "strip": About("Strip", 10, FormulaColumn(elsewhere.in_rows(reading.at("strip", RUNWAY)), list(reading.values["strip"]) * count)),
+        "strip": About("Strip", 10, names),
         "day": About("Day", 12, TextColumn([day for day in days.names for _ in range(rows)])),
     }
-    air = write_cases(pages, f"{name} air", f"{heading}: air and ground at each strip, and the book in that air", chain, about, {},
+    air = write_cases(pages, f"{name} air", f"{heading}: air and ground at each strip, and the book in that air", chain, about,
+                      {"day_condition": ground},
                       {**values, **air_values}, boundary(chain, inside), elsewhere)  # fmt: skip
     of_air = {key: Place(f"{quote_sheetname(air.sheet)}!${letter}{ROW}", _unit(chain, key))
               for key, letter in air.letters.items() if key in chain.by_key}  # fmt: skip
@@ -264,13 +265,29 @@ def write_aeroplane(pages: Pages, name: str, heading: str, chain: Chain, reading
         of_end = {key: Place(f"{quote_sheetname(cases.sheet)}!${letter}{RUNWAY}", _unit(chain, key))
                   for key, letter in cases.letters.items() if key in chain.by_key}  # fmt: skip
         known = {key: np.tile(cases.values[key], count) for key in OF_END}
-        direction = FormulaColumn(elsewhere.in_rows(reading.at(f"end_{end}", RUNWAY)), list(reading.values[f"end_{end}"]) * count)
+        name_of_end = elsewhere.in_rows(reading.at(f"end_{end}", RUNWAY))
+        direction = FormulaColumn(name_of_end, list(reading.values[f"end_{end}"]) * count)
         made.append(write_cases(
             pages, f"{name} end {end}", f"{heading}: in and out in the directions that begin at end {end}", chain,
             {**about, "direction": About("Direction", 9, direction)}, {}, {**values, **air_values, **known}, WANTED,
             Elsewhere({"elevation": air_places["elevation"], **of_air, **of_end}, marks, faults),
         ))  # fmt: skip
     return Fleet(air, (made[0], made[1]), rows)
+
+
+def _ground_of_day(reading: Reading, days: Days) -> Given:
+    """The ground of the day at each strip: of the climate's soft months a paved strip has the wet."""
+    shown, formulas = [], []
+    for day, row in enumerate(days.rows):
+        code = int(days.values["day_condition"][day])
+        word = CONDITIONS[code] if code >= 0 else UNKNOWN_GROUND
+        cell = f"{days.sheet}!${days.letters['day_condition']}${row}"
+        for runway in range(reading.rows):
+            surface = reading.at("surface", FIRST_ROW + runway)
+            paved = day > 0 and reading.values["surface"][runway] == SURFACES[0] and word == "soft"
+            shown.append("wet" if paved else word)
+            formulas.append(f'IF(AND({surface}="{SURFACES[0]}",{cell}="soft"),"wet",{cell})' if day else cell)
+    return Given(shown, formulas)
 
 
 def short_values(cases: Cases) -> Cases:
@@ -286,19 +303,11 @@ def _short(column: FormulaColumn) -> FormulaColumn:
     return replace(column, values=np.array([float(f"{value:.{DIGITS}g}") for value in values.tolist()]))
 
 
-def reading_numbers(reading: Reading, key: str) -> np.ndarray:
-    return _numbers(reading.values[key])
-
-
 def _unit(chain: Chain, key: str) -> str:
     item = chain.by_key[key]
     return item.unit if isinstance(item, Step) or item.kind == "number" else ""
 
 
 def day_names() -> tuple[str, ...]:
+    """The days, in the order of the sheet Climate."""
     return ("Standard day", *MONTHS)
-
-
-def blank_day() -> dict[str, Any]:
-    """The day's inputs where nothing is known, SI."""
-    return {item.key: -1 if item.kind == "choice" else np.nan for item in DAY}

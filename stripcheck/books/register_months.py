@@ -4,17 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
-from openpyxl.chart import BarChart, Reference
-from openpyxl.chart.shapes import GraphicalProperties
-from openpyxl.drawing.fill import ColorChoice, PatternFillProperties
 from openpyxl.styles import Alignment
 from openpyxl.utils import get_column_letter
 from openpyxl.worksheet.worksheet import Worksheet
 
-from stripcheck.books import common, register_climate
+from stripcheck.books import charts, common, register_climate
 from stripcheck.books.register_best import CLOSED, Best
 from stripcheck.books.register_columns import CLOSED as MARK
-from stripcheck.books.register_columns import FIRST_ROW as REGISTER_ROW
 from stripcheck.books.register_columns import MONTHS, Key
 from stripcheck.books.register_reading import Reading
 from stripcheck.books.register_rows import Cell
@@ -29,13 +25,14 @@ SHEET = "Months"
 HEADER_ROW, AIR_ROW, FIRST_ROW = 5, 6, 8
 MAYBE_CLOSED = "closed?"
 COLOURS = {**styles.BOTH_COLOURS, CLOSED: NOT_ASSESSED, MAYBE_CLOSED: NOT_ASSESSED}
-# what the chart counts, the words of the cells that it means, and how it is drawn: pattern, line, ground
+CHART_ROWS, ONE_PAGE = 20, 40  # rows that the chart takes, and runways that go on one page
+# what the chart counts, the words of the cells that it means, and how it is drawn
 COUNTED = (
-    ("in and out", BOTH[:1], "solid", "CFE6F5", "CFE6F5"),
-    ("in and out, marginal", BOTH[1:2], "wdUpDiag", "8A6A00", "F6D77A"),
-    ("not in and out", BOTH[2:5], "solid", "B3440B", "B3440B"),
-    ("not assessed", BOTH[5:], "pct20", "777777", "E4E4E4"),
-    ("closed", (CLOSED, MAYBE_CLOSED), "solid", "595959", "595959"),
+    ("in and out", BOTH[:1], charts.Look(charts.PALE)),
+    ("in and out, marginal", BOTH[1:2], charts.Look("8A6A00", "wdUpDiag")),
+    ("not in and out", BOTH[2:5], charts.Look(charts.RED)),
+    ("not assessed", BOTH[5:], charts.Look("777777", "pct20")),
+    ("closed", (CLOSED, MAYBE_CLOSED), charts.Look("595959")),
 )
 
 
@@ -60,11 +57,13 @@ def write_months(pages: Pages, reading: Reading, best: Best, name: tuple[str, st
     cells = f"D{FIRST_ROW}:O{last}"
     styles.colour_words(sheet, cells, COLOURS)
     end = _write_counts(pages, sheet, last, found)
-    _draw(sheet, last + 3, end)
+    _draw(pages, sheet, last + 3, end)
     sheet.freeze_panes = f"D{FIRST_ROW}"
     sheet.sheet_view.showGridLines = False
     styles.set_print(sheet, f"{HEADER_ROW}:{HEADER_ROW}")
-    sheet.print_area = f"A1:O{end + 20}"
+    sheet.print_area = f"A1:O{end + CHART_ROWS}"
+    if reading.rows <= ONE_PAGE:
+        sheet.page_setup.fitToHeight = 1
     common.protect(sheet)
 
 
@@ -124,35 +123,8 @@ def _plain(words: Sequence[str]) -> list[str]:
     return [word.replace("?", "~?") for word in words]
 
 
-def _draw(sheet: Worksheet, first: int, last: int) -> None:
-    chart = BarChart()
-    chart.type, chart.grouping, chart.overlap, chart.gapWidth = "col", "stacked", 100, 60
-    chart.title, chart.x_axis.title, chart.y_axis.title = "Runways in and out, month by month", "Month", "Runways"
-    chart.x_axis.delete = chart.y_axis.delete = False
-    chart.y_axis.number_format, chart.y_axis.majorUnit = "0", None
-    chart.legend.position = "r"
-    chart.width, chart.height = 30, 8.5
-    chart.add_data(Reference(sheet, min_col=3, max_col=15, min_row=first, max_row=last), from_rows=True, titles_from_data=False)
-    chart.set_categories(Reference(sheet, min_col=4, max_col=15, min_row=HEADER_ROW))
-    chart.series.clear()
-    for row, (_, _, pattern, line, ground) in enumerate(COUNTED, first):
-        chart.series.append(_series(sheet, row, pattern, line, ground))
-    sheet.add_chart(chart, f"A{last + 2}")
-
-
-def _series(sheet: Worksheet, row: int, pattern: str, line: str, ground: str) -> object:
-    from openpyxl.chart import Series
-    from openpyxl.chart.series import SeriesLabel
-    from openpyxl.chart.data_source import StrRef
-
-    series = Series(Reference(sheet, min_col=4, max_col=15, min_row=row))
-    series.tx = SeriesLabel(strRef=StrRef(f"'{sheet.title}'!$A${row}"))
-    series.cat = None
-    looks = GraphicalProperties()
-    if pattern == "solid":
-        looks.solidFill = ground
-    else:
-        looks.pattFill = PatternFillProperties(prst=pattern, fgClr=ColorChoice(srgbClr=line), bgClr=ColorChoice(srgbClr=ground))
-    looks.line.solidFill = "404040"
-    series.graphicalProperties = looks
-    return series
+def _draw(pages: Pages, sheet: Worksheet, first: int, last: int) -> None:
+    rows = [charts.Row(label, f"{SHEET}!$D${row}:$O${row}", look) for row, (label, _, look) in enumerate(COUNTED, first)]
+    months = f"{SHEET}!$D${HEADER_ROW}:$O${HEADER_ROW}"
+    chart = charts.bars(pages, "Runways in and out, month by month", months, rows, ("Month", "Runways"), stacked=True)
+    charts.place(sheet, chart, f"A{last + 2}:O{last + CHART_ROWS}")

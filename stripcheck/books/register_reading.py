@@ -29,7 +29,7 @@ from stripcheck.register.runway_ends import bearings, designator_degrees
 from stripcheck.register.runways import PERCENT_CELLS_BELOW
 from stripcheck.sheet import styles
 from stripcheck.sheet.cases import FIRST_ROW, HEADER_ROW
-from stripcheck.sheet.cell import Cell, as_cell, call, formula, reference, shown, where
+from stripcheck.sheet.cell import Cell, as_cell, formula, reference, shown, where
 from stripcheck.sheet.pages import Pages, write_header
 from stripcheck.sheet.stream import ROW, FormulaColumn, NumberColumn, Table
 from stripcheck.sheet.stream import Column as StreamColumn
@@ -78,7 +78,8 @@ class Reading:
         return f"{SHEET}!${self.letters[key]}{row}"
 
     def number(self, key: str) -> np.ndarray:
-        return np.asarray(self.values[key], dtype=float)
+        """A column's numbers, NaN where a cell has none."""
+        return _as_numbers(self.values[key])
 
 
 @dataclass(frozen=True)
@@ -106,7 +107,8 @@ def number_key(column: RegisterColumn) -> str:
     return f"{column.key}_{column.end}" if column.end else column.key
 
 
-def write_reading(pages: Pages, source: Source, rows: Sequence[Mapping[Key, Written]], profiles: Mapping[str, Profile]) -> Reading:
+def write_reading(pages: Pages, source: Source, rows: Sequence[Mapping[Key, Written]],
+                  profiles: Mapping[str, Profile]) -> Reading:  # fmt: skip
     """Write the sheet, and the table of profiles that it looks into; ``rows`` are those of the register, spare ones too."""
     _write_profiles(pages, profiles)
     made = _Maker(source, rows, profiles)
@@ -133,8 +135,9 @@ class _Maker:
             self._text(key)
         for column in self.numbers:
             self._number(column)
-        self._put("used", "In use", f'{"&".join(self.ref(key) for key in ("strip", "name", "runway", "length"))}<>""',
-                  [any(value != "" for value in texts) for texts in self._each("strip", "name", "runway", "length")], 8)  # fmt: skip
+        identity = ("strip", "name", "runway", "length")
+        used = [any(value != "" for value in told) for told in self._each(*identity)]
+        self._put("used", "In use", "&".join(map(self.ref, identity)) + '<>""', used, 8)
         self._names()
         self._headings()
         self._profile()
@@ -212,39 +215,45 @@ class _Maker:
             point = f"SUMPRODUCT(({name}={{{points}}})*{{{places}}})"
             text = f'IF(AND({ten}>0,{lettered}),{ten},IF({point}>0,({point}-1)*22.5,""))'
             values = [_degrees_of(name) for name in self.made[f"end_{end}"].values]
-            self._put(f"degrees_{end}", f"Its name says [°]", text, values, 9)
+            self._put(f"degrees_{end}", "Its name says [°]", text, values, 9)
 
     def _headings(self) -> None:
         """True headings [°] of both directions: given, else from the coordinates, else from the names of the ends."""
         corners = ("latitude_1", "longitude_1", "latitude_2", "longitude_2")
         cells = [reference(self.ref(name), "°") for name in corners] + [Cell(self.ref("length"))]
-        values = [to_si(_as_numbers(self.made[name].values), "°") for name in corners] + [_as_numbers(self.made["length"].values)]
+        values = [to_si(_as_numbers(self.made[name].values), "°") for name in corners]
+        values.append(_as_numbers(self.made["length"].values))
         there = Cell(f"COUNT({','.join(self.ref(name) for name in (*corners, 'length'))})=5")
         bearing = where(there, shown(as_cell(bearings(*cells)), "°"), np.nan)  # type: ignore[arg-type]
         self._put("bearing", "Bearing by coordinates [°]", formula(bearing), _blanks(np.degrees(bearings(*values))), 10, "0.##")
         degrees = [Cell(self.ref(f"degrees_{end}")) for end in (1, 2)]
         given = [Cell(self.ref("heading")), Cell(self.ref("heading_2")) if "heading_2" in self.made else as_cell(np.nan)]
-        found = [_as_numbers(self.made[key].values) if key in self.made else np.full(len(self.rows), np.nan)
-                 for key in ("heading", "heading_2", "bearing", "degrees_1", "degrees_2")]  # fmt: skip
-        text = formula(as_cell(first_heading(*given, Cell(self.ref("bearing")), *degrees)))
+        nothing = np.full(len(self.rows), np.nan)
+        heading, other, by_place, by_name, by_other = (
+            _as_numbers(self.made[key].values) if key in self.made else nothing
+            for key in ("heading", "heading_2", "bearing", "degrees_1", "degrees_2")
+        )
+        text = formula(as_cell(first_heading(given[0], given[1], Cell(self.ref("bearing")), degrees[0], degrees[1])))
         with np.errstate(invalid="ignore"):
-            self._put("heading_1_used", "Heading from end 1 [°]", text, _blanks(np.asarray(first_heading(*found))), 10, "0.##")
+            values_1 = _blanks(np.asarray(first_heading(heading, other, by_place, by_name, by_other)))
+            self._put("heading_1_used", "Heading from end 1 [°]", text, values_1, 10, "0.##")
             first = _as_numbers(self.made["heading_1_used"].values)
             text = formula(as_cell(second_heading(given[1], Cell(self.ref("heading_1_used")))))
-            values_2 = _blanks(np.asarray(second_heading(found[1], first)))
+            values_2 = _blanks(np.asarray(second_heading(other, first)))
             self._put("heading_2_used", "Heading from end 2 [°]", text, values_2, 10, "0.##")
 
     def _profile(self) -> None:
         """Which row of the table of profiles holds this text, and what it says there; 0: none."""
         known = list(self.profiles)
         count = max(len(known), 1)
-        cells = {key: f"{PROFILES}!${letter}${FIRST_ROW}:${letter}${FIRST_ROW + count - 1}" for key, letter in zip("ABCDE", "ABCDE")}
+        cells = {letter: f"{PROFILES}!${letter}${FIRST_ROW}:${letter}${FIRST_ROW + count - 1}" for letter in "ABCDE"}
         text = self.ref("profile")
         rank = f"ROW({cells['A']})-{FIRST_ROW - 1}"
         which = [known.index(value) + 1 if value in self.profiles else 0 for value in self.made["profile"].values]
-        self._put("profile_row", "Profile, row", f'IF({text}="",0,SUMPRODUCT(({cells["A"]}={text})*({rank})))', [float(n) for n in which])
+        found = f'IF({text}="",0,SUMPRODUCT(({cells["A"]}={text})*({rank})))'
+        self._put("profile_row", "Profile, row", found, [float(n) for n in which])
         row = self.ref("profile_row")
-        for letter, key, header, unit in PROFILE_COLUMNS:
+        for letter, key, header in PROFILE_COLUMNS:
             values = ["" if n == 0 else _of_profile(self.profiles[known[n - 1]])[key] for n in which]
             self._put(key, header, f'IF({row}>0,INDEX({cells[letter]},{row}),"")', values, 9, "0.####")
 
@@ -287,9 +296,9 @@ class _Maker:
             one, first, second = ref(key), ref("end_1"), ref("end_2")
             condition = f'AND({one}<>"",OR({first}={second},AND({one}<>{first},{one}<>{second})))'
             faults.append(_Fault(f'column "{header}": it is neither end of the runway', condition, _neither(key)))
-        both = f'OR({ref("land_towards")}="",{ref("take_off_towards")}="")'
-        faults.append(_Fault('one-way, but not which way: fill "Land on" and "Leave by"', f'AND({ref("one_way")}="yes",{both})',
-                             lambda row: row["one_way"].lower() == "yes" and "" in (row["land_towards"], row["take_off_towards"])))  # fmt: skip
+        either = f'OR({ref("land_towards")}="",{ref("take_off_towards")}="")'
+        which_way = 'one-way, but not which way: fill "Land on" and "Leave by"'
+        faults.append(_Fault(which_way, f'AND({ref("one_way")}="yes",{either})', _not_told_which_way))
         length = ref("length")
         for end in (1, 2):
             cell = ref(f"displaced_{end}")
@@ -301,10 +310,11 @@ class _Maker:
                              _too_steep))  # fmt: skip
         for end in (1, 2):
             height, distance = ref(f"obstacle_height_{end}"), ref(f"obstacle_distance_{end}")
-            faults.append(_Fault(f"the obstacle at end {end} needs a distance, too",
-                                 f'IF(ISNUMBER({height}),AND({height}>0,{distance}=""),FALSE)', _half_obstacle(end, "distance")))  # fmt: skip
-            faults.append(_Fault(f"the obstacle at end {end} needs a height, too",
-                                 f'AND({height}="",ISNUMBER({distance}))', _half_obstacle(end, "height")))  # fmt: skip
+            lone_height = f'IF(ISNUMBER({height}),AND({height}>0,{distance}=""),FALSE)'
+            lone_distance = f'AND({height}="",ISNUMBER({distance}))'
+            needs = f"the obstacle at end {end} needs a"
+            faults.append(_Fault(f"{needs} distance, too", lone_height, _half_obstacle(end, "distance")))
+            faults.append(_Fault(f"{needs} height, too", lone_distance, _half_obstacle(end, "height")))
         return [*faults, *self._profile_faults()]
 
     def _profile_faults(self) -> list[_Fault]:
@@ -344,9 +354,8 @@ class _Maker:
     def _fault(self) -> None:
         used, numbers, words = (self.ref(key) for key in ("used", "fault_of_numbers", "fault_of_words"))
         text = f'IF({used},IF($B$2<>"",$B$2,IF({numbers}<>"",{numbers},{words})),"")'
-        self._put("fault", "Fault: not assessed", text,
-                  [(one or other) if used else "" for used, one, other in self._each("used", "fault_of_numbers", "fault_of_words")],
-                  30)  # fmt: skip
+        found = self._each("used", "fault_of_numbers", "fault_of_words")
+        self._put("fault", "Fault: not assessed", text, [(one or other) if used else "" for used, one, other in found], 30)
 
 
 def first_heading(given: Number, other: Number, bearing: Number, degrees_1: Number, degrees_2: Number) -> Number:
@@ -368,10 +377,10 @@ def second_heading(given: Number, first: Number) -> Number:
 
 
 PROFILE_COLUMNS = (
-    ("B", "profile_end", "Profile, its end [m]", "m"),
-    ("C", "profile_rise", "Profile, its rise [m]", "m"),
-    ("D", "profile_up", "Profile, steepest up [%]", "%"),
-    ("E", "profile_down", "Profile, steepest down [%]", "%"),
+    ("B", "profile_end", "Profile, its end [m]"),
+    ("C", "profile_rise", "Profile, its rise [m]"),
+    ("D", "profile_up", "Profile, steepest up [%]"),
+    ("E", "profile_down", "Profile, steepest down [%]"),
 )
 
 
@@ -386,15 +395,15 @@ def _write_profiles(pages: Pages, profiles: Mapping[str, Profile]) -> None:
     sheet: Worksheet = pages.book.create_sheet(PROFILES)
     sheet["A1"], sheet["A1"].font = "Slope profiles, by their text", styles.HEADING
     sheet["A2"] = (
-        f"A profile counts by its steepest part up, and down, as if it went on so all along: never better than along the profile. "
-        f"One that is typed or changed in the register counts once you {AGAIN}."
+        "A profile counts by its steepest part up, and down, as if it went on so all along: never better than along the "
+        f"profile. One that is typed or changed in the register counts once you {AGAIN}."
     )
     sheet["A2"].font = styles.SMALL
-    write_header(sheet, HEADER_ROW, ("Profile", *(header for _, _, header, _ in PROFILE_COLUMNS)))
+    write_header(sheet, HEADER_ROW, ("Profile", *(header for _, _, header in PROFILE_COLUMNS)))
     sheet.row_dimensions[HEADER_ROW].height = 30
     for at, (text, profile) in enumerate(profiles.items(), FIRST_ROW):
         told = _of_profile(profile)
-        for letter, value in zip("ABCDE", (text, *(told[key] for _, key, _, _ in PROFILE_COLUMNS)), strict=True):
+        for letter, value in zip("ABCDE", (text, *(told[key] for _, key, _ in PROFILE_COLUMNS)), strict=True):
             cell = sheet[f"{letter}{at}"]
             cell.value, cell.font, cell.border = value, styles.BODY, styles.LINE
             cell.number_format = "@" if letter == "A" else "0.00"
@@ -420,9 +429,8 @@ def _write_skeleton(pages: Pages, source: Source, columns: Mapping[str, _Column]
         cell.font, cell.border, cell.alignment, cell.number_format = styles.BODY, styles.LINE, styles.MIDDLE, column.format
     sheet[f"A{FIRST_ROW}"].font = styles.SMALL
     wrong = ""
-    for column in source.columns:
-        known = f"TRIM({source.header(column.place)})=\"{column.header}\""
-        wrong += f'IF({known},"","{column.header}; ")&'
+    for one in source.columns:
+        wrong += f'IF(TRIM({source.header(one.place)})="{one.header}","","{one.header}; ")&'
     sheet["A2"], sheet["A2"].font = "Headers", styles.SMALL
     told = f'IF({wrong[:-1]}="","","the header of a column of the register was changed; type it as it was: "&{wrong[:-1]})'
     pages.formula(sheet, "B2", formula(Cell(told)), "")
@@ -442,8 +450,11 @@ def _write_skeleton(pages: Pages, source: Source, columns: Mapping[str, _Column]
 def _plain_text(key: str, cell: Written) -> str:
     if cell is None:
         return ""
-    text = " ".join(str(cell).split(" ")).strip() if isinstance(cell, str) else f"{cell:g}" if isinstance(cell, float) else str(cell)
-    text = re.sub(" +", " ", text)
+    cell = _shown_date(cell)
+    if isinstance(cell, float):
+        as_end = f"{'-' if cell < 0.0 else ''}{abs(cell):02.0f}"
+        cell = as_end if key in ("land_towards", "take_off_towards", "runway") else f"{cell:.10g}"
+    text = re.sub(" +", " ", str(cell)).strip(" ")
     return text.upper() if key in ("land_towards", "take_off_towards", "runway") else text
 
 
@@ -461,7 +472,7 @@ def _plain_number(key: str, cell: Written) -> Any:
             return float(cell[:-1])
         except ValueError:
             return "?"
-    return cell
+    return _shown_date(cell)
 
 
 def _may_be_percent(cells: Sequence[Written]) -> bool:
@@ -519,6 +530,10 @@ def _neither(key: str) -> Callable[[Mapping[str, Any]], bool]:
         return row[key] != "" and (ends[0] == ends[1] or row[key] not in ends)
 
     return holds
+
+
+def _not_told_which_way(row: Mapping[str, Any]) -> bool:
+    return row["one_way"].lower() == "yes" and "" in (row["land_towards"], row["take_off_towards"])
 
 
 def _known(row: Mapping[str, Any], *keys: str) -> list[float] | None:

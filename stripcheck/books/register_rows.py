@@ -21,7 +21,7 @@ from stripcheck.register.limits import within_limits
 from stripcheck.register.read_table import read_table
 from stripcheck.register.reader import Reading, read_runways
 from stripcheck.register.runways import PERCENT_CELLS_BELOW, Runways
-from stripcheck.register.values import as_written, is_blank, read_numbers
+from stripcheck.register.values import as_written, is_blank, read_numbers, read_yes
 from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import from_si
 
@@ -65,6 +65,7 @@ def rows_of(path: Path, airports: str | None = None, sheet: str | None = None) -
     columns = columns_for(("heading", 2) in runways.found)
     cells = _Cells(reading)
     places, months, closures = _carried_places(runways)
+    understood = {at for at in closures if all(_understood(table.cells[at][row]) for row in kept)}
     rows: list[dict[Key, Cell]] = []
     for at in kept:
         row = cells.row(at, columns)
@@ -72,7 +73,7 @@ def rows_of(path: Path, airports: str | None = None, sheet: str | None = None) -
         row |= _closed_months(at, table.cells, months, closures)
         rows.append(row)
     _write_small_slopes(rows)
-    taken = {*places.values(), *months.values()}
+    taken = {*places.values(), *months.values(), *understood}
     carried = [(table.headers[at], [table.cells[at][row] for row in kept]) for at in runways.carried if at not in taken]
     air = [(f"{CARRIED_AIR}: {item.header}", [table.cells[item.position][row] for row in kept])
            for (key, _), item in runways.found.items() if key in OWN_AIR]  # fmt: skip
@@ -88,6 +89,8 @@ def _told(reading: Reading, air: bool) -> list[str]:
         for at, reason in enumerate(reading.reasons)
         if reason is not None and reason[0] != "closed"
     ]
+    lines += [f"Row {runways.table.row_numbers[at]} has more cells than the header: a question mark stands in its column Runway"
+              for at in runways.table.too_wide]  # fmt: skip
     guessed = [item for item in runways.found.values() if item.column.key not in OWN_AIR]
     for item in guessed:
         if not item.unit and item.column.kind in ("length", "altitude", "slope"):
@@ -103,7 +106,7 @@ class _Cells:
 
     def __init__(self, reading: Reading) -> None:
         self.reading, self.runways = reading, reading.runways
-        self.numbers = {place: self._as_read(place) for place, item in self.runways.found.items() if place in self.runways.numbers}
+        self.numbers = {place: self._as_read(place) for place in self.runways.numbers}
         self.faulty = {(fault.row_index, fault.header) for fault in self.runways.faults}
 
     def _as_read(self, place: Key) -> np.ndarray:
@@ -119,6 +122,8 @@ class _Cells:
         row["strip", 0] = runways.texts("strip")[at] or None
         row["name", 0] = reading.texts["name"][0][at] or None
         row["runway", 0] = self._or_raw(at, "runway", reading.texts["runway"][0][at])
+        if at in runways.table.too_wide:  # its cells may be shifted: nothing is assessed until somebody has looked
+            row["runway", 0] = f"{row['runway', 0]} ?"
         surface = reading.surfaces[at]
         listed = runways.spellings("surface")[at] or None
         row["surface", 0] = surface.word if surface.word in SURFACES else listed
@@ -189,8 +194,6 @@ class _Cells:
         return made
 
     def _yes_or_no(self, at: int, key: str) -> Cell:
-        from stripcheck.register.values import read_yes
-
         raw = self._raw(at, key)
         try:
             said = read_yes(raw)
@@ -238,13 +241,16 @@ def _carried_places(runways: Runways) -> tuple[dict[str, int], dict[int, int], l
     return places, months, closures
 
 
+_MONTH_WORDS = {"": None, "no": None, "open": None, "x": CLOSED, "yes": CLOSED, "closed": CLOSED}
+
+
 def _closed_months(at: int, cells: list[list[object]], months: dict[int, int], closures: list[int]) -> dict[Key, Cell]:
     """The twelve cells of the months."""
     row: dict[Key, Cell] = {("month", number): None for number in range(1, 13)}
     for number, place in months.items():
         raw = cells[place][at]
         word = "" if is_blank(raw) and raw != UNSURE else as_written(raw).lower()
-        row["month", number] = {"": None, "no": None, "open": None, "x": CLOSED, "yes": CLOSED, "closed": CLOSED}.get(word, UNSURE)
+        row["month", number] = _MONTH_WORDS.get(word, UNSURE)
     for place in closures:
         try:
             closed = closed_months(as_written(cells[place][at]) if not is_blank(cells[place][at]) else "")
@@ -253,6 +259,14 @@ def _closed_months(at: int, cells: list[list[object]], months: dict[int, int], c
         else:
             row |= {("month", number): CLOSED for number in closed}
     return row
+
+
+def _understood(cell: object) -> bool:
+    try:
+        closed_months("" if is_blank(cell) else as_written(cell))
+    except InputError:
+        return False
+    return True
 
 
 def closed_months(text: str) -> set[int]:

@@ -15,12 +15,12 @@ from openpyxl.styles.numbers import NumberFormat
 from openpyxl.utils import get_column_letter
 from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.dimensions import ColumnDimension
+from openpyxl.worksheet.pagebreak import Break, ColBreak
 from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck.books import common
-from stripcheck.books.register_columns import (
-    BAND_ROW, CLOSED, FIRST_ROW, HEADER_ROW, LEAST_LAST, SHEET, UNSURE, RegisterColumn, spare_rows,
-)  # fmt: skip
+from stripcheck.books.register_columns import BAND_ROW, CLOSED, FIRST_ROW, HEADER_ROW, LEAST_LAST, SHEET, UNSURE, spare_rows
+from stripcheck.books.register_columns import RegisterColumn as Column
 from stripcheck.books.register_reading import Source
 from stripcheck.books.register_rows import Rows
 from stripcheck.caution import CAUTION
@@ -30,10 +30,12 @@ from stripcheck.sheet.pages import Pages, note
 from stripcheck.surface import CONDITIONS, SURFACES
 
 LIMIT, COUNTED_ON = "$C$3", "$C$4"  # age of a survey in months, and the day on which ages are counted
-SAID = ("E3", "E4")  # cells of sentences on the whole register
-SURVEY_AGE = 24  # months, where nobody says otherwise
+OLD = "OLD"
+SAID = ("$E$3", "$E$4")  # cells of sentences on the whole register
+SURVEY_AGE = 60  # months, where nobody says otherwise
 MOST_SURVEY_AGE = 600
 MOST_TEXT = 2000
+PRINT_SCALE = 64  # percent, at which the widest band fits on a page
 _EXCEL_COLUMNS = 16384
 
 _LOCKED = Protection(locked=True)
@@ -42,8 +44,8 @@ _DOUBT = PatternFill("solid", bgColor="F6D77A")
 _DARK = PatternFill("solid", bgColor="595959")
 _OLD = PatternFill("solid", bgColor="F2B38C")
 HOW = (
-    "One row for each runway. Type over anything; insert, delete and sort rows; add columns of your own anywhere (they are kept, "
-    "not reckoned with). Headers of the register stay as they are."
+    "One row for each runway. Type over anything; insert, delete and sort rows; add columns of your own anywhere (they are "
+    "kept, not reckoned with). Headers of the register stay as they are."
 )
 
 
@@ -70,16 +72,27 @@ def write_register(pages: Pages, rows: Rows, survey_age: float, counted_on: date
     sheet.sheet_view.showGridLines = False
     styles.set_print(sheet, f"{BAND_ROW}:{HEADER_ROW}", "A:C")
     sheet.print_area = f"A1:{get_column_letter(len(rows.columns) + len(rows.carried))}{FIRST_ROW + count - 1}"
-    sheet.page_setup.fitToWidth = 3
+    _break_pages(sheet, rows)
     common.protect(sheet, rows_and_columns=True)
     sheet.protection.insertHyperlinks = False  # False: allowed
     return source
 
 
+def _break_pages(sheet: Worksheet, rows: Rows) -> None:
+    """Pages of the print that hold whole bands of columns."""
+    sheet.sheet_properties.pageSetUpPr.fitToPage = False
+    sheet.page_setup.scale = PRINT_SCALE
+    sheet.col_breaks = ColBreak()
+    for band in ("How high and how steep", "Obstacles", "Survey and notes"):
+        first = next(number for number, column in enumerate(rows.columns) if column.band == band)
+        sheet.col_breaks.append(Break(id=first))
+
+
 def say(pages: Pages, sentences: Sequence[tuple[str, str]]) -> None:
     """Sentences on the whole register, as formulas with the text that they have now, at its top."""
     sheet = pages.book[SHEET]
-    for cell, (text, value) in zip(SAID, sentences, strict=True):
+    for place, (text, value) in zip(SAID, sentences, strict=True):
+        cell = place.replace("$", "")
         pages.formula(sheet, cell, text, value)
         sheet[cell].font, sheet[cell].protection = styles.BOLD, _LOCKED
 
@@ -102,7 +115,7 @@ def _write_head(sheet: Worksheet, width: int, survey_age: float, counted_on: dat
             sheet.cell(row, number).protection = _LOCKED
     sheet["A1"], sheet["A1"].font = "Strip register", styles.TITLE
     styles.write_caution(sheet, "E1", CAUTION)
-    sheet["A2"], sheet["A2"].font = HOW, styles.SMALL
+    sheet["E2"], sheet["E2"].font = HOW, styles.SMALL
     for row, label in ((3, "Surveys are old after"), (4, "Ages counted on")):
         sheet[f"A{row}"], sheet[f"A{row}"].font = label, styles.BODY
     common.input_cell(sheet, "C3", survey_age, '0" months"')
@@ -112,7 +125,7 @@ def _write_head(sheet: Worksheet, width: int, survey_age: float, counted_on: dat
     _date(sheet, "C4", "Day on which ages are counted")
 
 
-def _band_before(columns: Sequence[RegisterColumn], number: int) -> str:
+def _band_before(columns: Sequence[Column], number: int) -> str:
     return columns[number - 2].band if number > 1 else ""
 
 
@@ -131,7 +144,7 @@ def _write_header(sheet: Worksheet, number: int, header: str, help_text: str, ba
 _FORMATS = {"number": "#,##0.###", "date": "yyyy-mm-dd", "text": "@", "runway": "@", "end": "@", "profile": "@"}
 
 
-def _write_cells(sheet: Worksheet, number: int, column: RegisterColumn, cells: Sequence[object], count: int) -> None:
+def _write_cells(sheet: Worksheet, number: int, column: Column, cells: Sequence[object], count: int) -> None:
     shown = "#,##0.000000" if column.key in ("latitude", "longitude") else _FORMATS.get(column.kind, "General")
     middle = column.kind in ("runway", "end", "month", "yes or no", "choice", "date")
     for at in range(count):
@@ -153,24 +166,24 @@ def _write_carried(sheet: Worksheet, number: int, cells: Sequence[object], count
             if value:
                 cell.data_type, cell.quotePrefix = "s", value.startswith(("=", "+", "-", "@"))
         else:
-            cell.value = value  # type: ignore[assignment]
+            cell.value = value
         cell.font, cell.fill, cell.border, cell.protection = styles.BODY, _OWN, styles.LINE, styles.UNLOCKED
 
 
-def _validate(sheet: Worksheet, column: RegisterColumn, letters: dict[tuple[str, int], str], last: int) -> None:
+def _validate(sheet: Worksheet, column: Column, letters: dict[tuple[str, int], str], last: int) -> None:
     letter = letters[column.place]
     cells, first = f"{letter}{FIRST_ROW}:{letter}{last}", f"{letter}{FIRST_ROW}"
     if column.kind == "number" and column.key in ("slope", "local_slope"):
         low, high = column.limits
         small = 100.0 * PERCENT_CELLS_BELOW
         test = f"AND(ISNUMBER({first}),{first}>={low:g},{first}<={high:g},OR({first}=0,ABS({first})>={small:g}))"
-        _custom(sheet, cells, column.header, test, f"Type percent as a plain number: 2 for 2 %. From {low:g} to {high:g}, and less "
-                f"than {small:g} only if it is meant so.", "warning")  # fmt: skip
+        told = f"Type percent as a plain number: 2 for 2 %. From {low:g} to {high:g}; less than {small:g} only if meant so."
+        _custom(sheet, cells, column.header, test, told, "warning")
     elif column.kind == "number":
         low, high = column.limits
         common.expect_number(sheet, cells, column.header, low, high, column.unit)
     elif column.kind in ("choice", "yes or no", "month"):
-        words: Sequence[str] = {"surface": SURFACES, "condition": CONDITIONS, "month": (CLOSED, UNSURE)}.get(column.key, ("yes", "no"))
+        words = {"surface": SURFACES, "condition": CONDITIONS, "month": (CLOSED, UNSURE)}.get(column.key, ("yes", "no"))
         _list(sheet, cells, column.header, words)
     elif column.kind == "date":
         _date(sheet, cells, column.header)
@@ -225,7 +238,7 @@ def _colour(sheet: Worksheet, letters: dict[tuple[str, int], str], last: int) ->
     cells = f"{survey}{FIRST_ROW}:{survey}{last}"
     old = FormulaRule([f"IF(AND(ISNUMBER({cell}),ISNUMBER({LIMIT})),{cell}<EDATE({today},-{LIMIT}),FALSE)"],
                       font=Font(bold=True), fill=_OLD)  # fmt: skip
-    old.dxf.numFmt = NumberFormat(numFmtId=200, formatCode='"OLD "yyyy\\-mm\\-dd')
+    old.dxf.numFmt = NumberFormat(numFmtId=200, formatCode=f'"{OLD} "yyyy\\-mm\\-dd')
     sheet.conditional_formatting.add(cells, old)
     ahead = FormulaRule([f"IF(ISNUMBER({cell}),{cell}>{today},FALSE)"], fill=_DOUBT)
     sheet.conditional_formatting.add(cells, ahead)
@@ -234,11 +247,13 @@ def _colour(sheet: Worksheet, letters: dict[tuple[str, int], str], last: int) ->
         letter = letters[key, 0]
         one = f"${letter}{FIRST_ROW}"
         listed = ",".join(f'{one}<>"{word}"' for word in words)
-        sheet.conditional_formatting.add(f"{letter}{FIRST_ROW}:{letter}{last}", FormulaRule([f'AND({one}<>"",{listed})'], fill=_DOUBT))
+        strange = FormulaRule([f'AND({one}<>"",{listed})'], fill=_DOUBT)
+        sheet.conditional_formatting.add(f"{letter}{FIRST_ROW}:{letter}{last}", strange)
     for number in range(1, 13):
         letter = letters["month", number]
         one, column = f"${letter}{FIRST_ROW}", f"{letter}{FIRST_ROW}:{letter}{last}"
-        sheet.conditional_formatting.add(column, FormulaRule([f'{one}="{CLOSED}"'], font=Font(color="FFFFFF", bold=True), fill=_DARK))
+        shut = FormulaRule([f'{one}="{CLOSED}"'], font=Font(color="FFFFFF", bold=True), fill=_DARK)
+        sheet.conditional_formatting.add(column, shut)
         sheet.conditional_formatting.add(column, FormulaRule([f'AND({one}<>"",{one}<>"{CLOSED}")'], fill=_DOUBT))
     grey = FormulaRule([f'${closed}{FIRST_ROW}="yes"'], font=Font(color="808080", strike=True))
     sheet.conditional_formatting.add(f"A{FIRST_ROW}:C{last}", grey)

@@ -13,9 +13,7 @@ from typing import Any
 import numpy as np
 
 from stripcheck.books.whatif_inputs import Value
-from stripcheck.card import Card
 from stripcheck.chain import Chain, Input, evaluate
-from stripcheck.rules import Rules
 from stripcheck.sheet.cases import About, Cases, Given, no_inputs, scores, write_cases
 from stripcheck.sheet.pages import Pages
 from stripcheck.sheet.stream import ROW, FormulaColumn, TextColumn
@@ -100,7 +98,8 @@ def rows_of(kind: str, flaps: int) -> tuple[int, int]:
 
 
 def cases_of(side: str, masses: Sequence[tuple[str, Value]], temperatures: Sequence[tuple[str, Value]],
-             sweep: Sequence[tuple[str, Value]], flaps: Sequence[tuple[str, Value]], greatest: tuple[str, Value]) -> list[Case]:  # fmt: skip
+             sweep: Sequence[tuple[str, Value]], flaps: Sequence[tuple[str, Value]],
+             greatest: tuple[str, Value]) -> list[Case]:  # fmt: skip
     """All cases of a side, in the order of `rows_of`; each mass, temperature and flap as reference and value shown."""
     mass, flap = ("mass_landing", "landing_flap") if side == "landing" else ("mass_takeoff", "takeoff_flap")
     ways = [Case("Today, direction 1", 1), Case("Today, direction 2", 2)]
@@ -149,11 +148,10 @@ def _si(item: Input, shown: Sequence[Value]) -> np.ndarray:
     return codes(words, SURFACES) if item.key == "surface" else codes(words, CONDITIONS, blank=-1, strange=-2)
 
 
-def write_side(pages: Pages, side: str, card: Card, rules: Rules, source: Source, cases: Sequence[Case], title: str,
-               heading: str, values: Mapping[str, Any]) -> Cases:  # fmt: skip
+def write_side(pages: Pages, side: str, chain: Chain, source: Source, cases: Sequence[Case], title: str, heading: str,
+               values: Mapping[str, Any]) -> Cases:  # fmt: skip
     """The sheet of cases of a side. ``values``: inputs that are the same in all rows, SI."""
-    chain, everything = card.chain, {**card.values, **rules.values, **values}
-    best = better_way(side, chain, source, everything)
+    best = better_way(side, chain, source, values)
     ways = np.array([best if case.way == BEST else case.way for case in cases], dtype=float)
     way_formulas = [source.best if case.way == BEST else None for case in cases]
     about = {
@@ -170,7 +168,7 @@ def write_side(pages: Pages, side: str, card: Card, rules: Rules, source: Source
         number = inputs[key].kind == "number"
         given[key] = Given(np.array([np.nan if one == "" else one for one in shown], dtype=float) if number
                            else [str(one) for one in shown], usual if set(formulas) == {usual} else formulas)  # fmt: skip
-    return write_cases(pages, title, heading, chain, about, given, everything, WANTED[side])
+    return write_cases(pages, title, heading, chain, about, given, values, WANTED[side])
 
 
 def way_formula(cells: str, other: bool = False) -> str:

@@ -34,14 +34,14 @@ def write_charts(pages: Pages, page: Worksheet, sheet: Worksheet, tables: Worksh
     """All charts: the main one on the page, the others on the sheet Charts, with the tables that they draw."""
     sheet["A1"], sheet["A1"].font = f"What if? {layout.start.title}: charts", styles.TITLE
     styles.write_caution(sheet, "A2", CAUTION)
-    for letter, width in zip("ABCDEFGHIJKLM", (16, 26, 26, 11, 11, 11, 2, 16, 26, 26, 11, 11, 11), strict=True):
+    for letter, width in zip("ABCDEFGHIJKLM", (14, 22, 22, 10, 10, 10, 2, 14, 22, 22, 10, 10, 10), strict=True):
         sheet.column_dimensions[letter].width = width
     sheet.sheet_view.showGridLines = False
     charts.place(page, _ways(pages, tables, layout, cases), f"A31:E{LAST_ROW}")
     charts.place(sheet, _flaps(pages, tables, layout, cases["landing"], "landing"), "A4:C17")
     charts.place(sheet, _temperature(pages, tables, layout, cases), "D4:I17")
     charts.place(sheet, _flaps(pages, tables, layout, cases["takeoff"], "takeoff"), "J4:M17")
-    for side, cells in (("landing", "A18:F32"), ("takeoff", "H18:M32")):
+    for side, cells in (("landing", "A18:F31"), ("takeoff", "H18:M31")):
         charts.place(sheet, whatif_fall.write_fall(pages, sheet, tables, layout, cases[side], side), cells)
     last = whatif_fall.write_legend(sheet)
     for row in range(4, last + 1):
@@ -75,9 +75,9 @@ def _ways(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[str, Ca
         for letter, key in zip("FGH", (f"{side}_required", f"{side}_distance", AVAILABLE[side]), strict=True):
             write(pages, sheet, f"{letter}{row}", one.cell(key, way - 1), shown(one, key, way - 1), METRES)
     cells = {letter: _span(letter, WAYS_ROW, len(BOTH_SIDES)) for letter in "EFGH"}
-    rows = [Row("Required, factors included", cells["F"], NEEDED, labels=True),
-            Row("Distance without factors", cells["G"], PLAIN, labels=True),
-            Row("Available", cells["H"], THERE, labels=True)]  # fmt: skip
+    rows = [Row("Required, factors included", cells["F"], NEEDED, labels="outside"),
+            Row("Distance without factors", cells["G"], PLAIN, labels="outside"),
+            Row("Available", cells["H"], THERE, labels="outside")]  # fmt: skip
     return charts.bars(pages, "Length required and length available", cells["E"], rows, ("Direction and verdict", "Length [m]"))
 
 
@@ -96,12 +96,15 @@ def _flaps(pages: Pages, sheet: Worksheet, layout: Layout, cases: Cases, side: s
                                                               AVAILABLE[side])}  # fmt: skip
         for letter, (key, value) in zip("GHIJ", now.items(), strict=True):
             write(pages, sheet, f"{letter}{row}", cases.cell(key, start + i), value, "General" if letter == "I" else METRES)
+        sheet[f"I{row}"].alignment = styles.CENTRE
         write(pages, sheet, f"K{row}", f'E{row}&": "&I{row}', f"{name}: {now[f'{side}_verdict']}")
     styles.colour_verdicts(sheet, f"I{first}:I{first + len(settings) - 1}")
     cells = {letter: _span(letter, first, len(settings)) for letter in "GJK"}
-    return charts.bars(pages, f"{LABELS[side]} by flap setting", cells["K"],
-                       [Row("Required, factors included", cells["G"], NEEDED if side == "landing" else Look(RED), labels=True)],
-                       ("Flap setting and verdict", "Length [m]"), lines=[Row("Available", cells["J"], Look(BLACK, dash="dash"))])  # fmt: skip
+    look = NEEDED if side == "landing" else Look(RED)
+    rows = [Row("Required, factors included", cells["G"], look, labels="inside")]
+    lines = [Row("Available", cells["J"], Look(BLACK, dash="dash"))]
+    axis = ("Flap setting and verdict", "Length [m]")
+    return charts.bars(pages, f"{LABELS[side]} by flap setting", cells["K"], rows, axis, lines=lines)
 
 
 def write_settings(pages: Pages, sheet: Worksheet, layout: Layout) -> None:
@@ -114,7 +117,7 @@ def write_settings(pages: Pages, sheet: Worksheet, layout: Layout) -> None:
             label(sheet, f"E{row}", name)
             sheet[f"E{row}"].number_format, sheet[f"E{row}"].data_type = "@", "s"
             text = f'IFERROR(INDEX({degrees},MATCH(E{row}&"",flap_names,0)),"")'
-            write(pages, sheet, f"F{row}", text, layout.deflection(name), "0.##")
+            write(pages, sheet, f"F{row}", text, layout.deflection(name), "0.0")
 
 
 # --- over the temperature
@@ -131,10 +134,10 @@ def _temperature(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[
                                     "Take-off required [m]", "drawn at [°C]", "drawn [m]"), 5)  # fmt: skip
     temperatures = layout.temperatures(SWEEP)
     for i, (change, value) in enumerate(zip(SWEEP, temperatures, strict=True)):
-        write(pages, sheet, f"E{first + i}", f'IF(ISNUMBER({today}),{today}{change:+g},"")', value, "0.#")
+        write(pages, sheet, f"E{first + i}", f'IF(ISNUMBER({today}),{today}{change:+g},"")', value, "0.0")
     for side, (figure, across, up) in CURVE_LETTERS.items():
         start = rows_of("sweep", len(layout.flaps[side]))[0]
-        required = [_number(shown(cases[side], f"{side}_required", start + i)) for i in range(count)]
+        required = _required(layout, cases[side], side)
         at = _drawn(required)
         found = f"{figure}{first}:{figure}{last}"
         place = f"{count + 1}-SUMPRODUCT(MAX(ISNUMBER({found})*({count + 1}-(ROW({found})-{first - 1}))))"
@@ -144,9 +147,9 @@ def _temperature(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[
                   METRES)  # fmt: skip
             for letter, own in ((across, "E"), (up, figure)):
                 before = f"{letter}{row - 1}" if i else f"IF(COUNT({found})=0,0,INDEX({own}{first}:{own}{last},{place}))"
-                source = temperatures if own == "E" else required
-                now = 0.0 if at[i] is None else source[at[i]]
-                write(pages, sheet, f"{letter}{row}", f"IF(ISNUMBER({figure}{row}),{own}{row},{before})", now, "0.#")
+                place_now, source = at[i], temperatures if own == "E" else required
+                now = 0.0 if place_now is None else source[place_now]
+                write(pages, sheet, f"{letter}{row}", f"IF(ISNUMBER({figure}{row}),{own}{row},{before})", now, "0.0")
     _lines(pages, sheet, layout, cases, temperatures)
     ends = _span("E", last + 3, 2)
     rows = [
@@ -160,6 +163,12 @@ def _temperature(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[
                          ("Temperature [°C]", "Length [m]"))  # fmt: skip
 
 
+def _required(layout: Layout, cases: Cases, side: str) -> list[float | None]:
+    """What each temperature of the curve requires now."""
+    first, last = rows_of("sweep", len(layout.flaps[side]))
+    return [_number(shown(cases, f"{side}_required", row)) for row in range(first, last + 1)]
+
+
 def _drawn(required: Sequence[float | None]) -> list[int | None]:
     """Which figure each point is drawn at: its own, else the one before it, else the first there is."""
     known = [i for i, one in enumerate(required) if one is not None]
@@ -170,21 +179,21 @@ def _lines(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[str, C
     """Ends of the lines: what is available, and today's temperature."""
     first, count = layout.sweep_row, len(SWEEP)
     last, row = first + count - 1, first + count + 2
-    write_header(sheet, row - 1, ("Temperature [°C]", "Landing available [m]", "Take-off available [m]", "Today [°C]", "Line [m]"), 5)
+    titles = ("Temperature [°C]", "Landing available [m]", "Take-off available [m]", "Today [°C]", "Line [m]")
+    write_header(sheet, row - 1, titles, 5)
     numbers = [one for one in temperatures if isinstance(one, float)]
     now = layout.value("temperature")
-    drawn = [value for side in SIDES for value in [
-        *(_number(shown(cases[side], f"{side}_required", rows_of("sweep", len(layout.flaps[side]))[0] + i)) for i in range(count)),
-        _number(shown(cases[side], AVAILABLE[side], Layout.best(cases[side], side) - 1))] if value is not None]  # fmt: skip
+    available = {side: _number(shown(cases[side], AVAILABLE[side], Layout.best(cases[side], side) - 1)) for side in SIDES}
+    known = [*available.values(), *(one for side in SIDES for one in _required(layout, cases[side], side))]
+    drawn = [one for one in known if one is not None]
     for i, ending in enumerate(("MIN", "MAX")):
         at = row + i
-        write(pages, sheet, f"E{at}", f"{ending}(E{first}:E{last})", (min, max)[i](numbers, default=0.0), "0.#")
+        write(pages, sheet, f"E{at}", f"{ending}(E{first}:E{last})", (min, max)[i](numbers, default=0.0), "0.0")
         for side, letter in (("landing", "F"), ("takeoff", "G")):
             cells = cases[side].range(AVAILABLE[side], 0, 1)
             found = f"INDEX({cells},{TABLES}!${SIDE_LETTER[side]}${BEST_ROW})"
-            value = _number(shown(cases[side], AVAILABLE[side], Layout.best(cases[side], side) - 1))
-            write(pages, sheet, f"{letter}{at}", f"IF(ISNUMBER({found}),{found},0)", value or 0.0, METRES)
+            write(pages, sheet, f"{letter}{at}", f"IF(ISNUMBER({found}),{found},0)", available[side] or 0.0, METRES)
         today = layout.cell("temperature")
-        write(pages, sheet, f"H{at}", f"IF(ISNUMBER({today}),{today},0)", now if isinstance(now, float) else 0.0, "0.#")
+        write(pages, sheet, f"H{at}", f"IF(ISNUMBER({today}),{today},0)", now if isinstance(now, float) else 0.0, "0.0")
         greatest = f"MAX(F{first}:F{last},I{first}:I{last},F{row}:G{row})"
         write(pages, sheet, f"I{at}", greatest if i else "0", max(drawn, default=0.0) if i else 0.0, METRES)

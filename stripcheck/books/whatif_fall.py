@@ -20,24 +20,24 @@ from stripcheck.books.whatif_tables import LABELS, label, names, write
 from stripcheck.sheet import styles
 from stripcheck.sheet.cases import Cases
 from stripcheck.sheet.pages import Pages, write_header
+from stripcheck.verdict import NOT_ASSESSED
 
-NOT_ASSESSED = "not assessed"
 FIRST = 35  # row of the two tables of the sheet Charts
-LETTERS = {"landing": "ABDEF", "takeoff": "HIKLM"}  # step, meaning, word, change, so far
+LETTERS = {"landing": tuple("ABDEF"), "takeoff": tuple("HIKLM")}  # step, meaning, word, change, so far
 MEANINGS = {
-    "Book figure": "from the manual: greatest mass, sea level, 15 °C, level, paved, dry, calm",
+    "Book figure": "greatest mass, sea level, 15 °C, level, paved, dry, calm",
     "Mass": "today's mass instead of the greatest",
-    "Height": "today's elevation and QNH, at the standard temperature there",
+    "Height": "today's elevation and QNH, standard temperature there",
     "Heat": "today's temperature and humidity",
     "Slope": "today's slope, by physics",
     "Surface": "today's surface and condition, by physics",
     "Wind": "today's wind, as the rules count it",
-    "Rule set": "published corrections for slope and surface, where they ask for more",
+    "Rule set": "published corrections, where they ask for more",
     "Safety factor": "of the rules, on the whole distance",
 }
 STEPS = tuple(MEANINGS)
 TOTAL = "Required"
-TOTAL_MEANS = "the sum of the changes; at the right as the page What if has it"
+TOTAL_MEANS = "the sum; at the right as the page What if has it"
 LEGEND = (
     "One input after another becomes today's, in the better direction and with today's flap. A step that has no figure of its "
     "own is not assessed, and counts in the next that has one."
@@ -90,12 +90,13 @@ def _figures(layout: Layout, cases: Cases, side: str) -> tuple[list[str], list[f
     return cells, [float(value) if value != "" else None for value in values]
 
 
-def _write_step(pages: Pages, sheet: Worksheet, letters: str, k: int, step: str, cell: str, change: float | None,
+def _write_step(pages: Pages, sheet: Worksheet, letters: tuple[str, ...], k: int, step: str, cell: str, change: float | None,
                 far: float | None) -> None:  # fmt: skip
     row, (name, meaning, word, delta, so_far) = FIRST + k, letters
     label(sheet, f"{name}{row}", step)
     label(sheet, f"{meaning}{row}", MEANINGS[step])
     sheet[f"{meaning}{row}"].font = styles.SMALL
+    sheet[f"{chr(ord(meaning) + 1)}{row}"].border = styles.LINE
     above = f"{so_far}{row - 1}"
     known = f"AND(ISNUMBER({cell}),ISNUMBER({above}))" if k else f"ISNUMBER({cell})"
     added, kept = (f"{cell}-{above}", above) if k else (cell, f'"{NOT_ASSESSED}"')
@@ -114,7 +115,7 @@ def _told(value: float | None) -> float | str:
     return NOT_ASSESSED if value is None else value
 
 
-def _write_total(pages: Pages, sheet: Worksheet, letters: str, cell: str, figure: float | None,
+def _write_total(pages: Pages, sheet: Worksheet, letters: tuple[str, ...], cell: str, figure: float | None,
                  changes: Sequence[float | None]) -> None:  # fmt: skip
     """The sum of the changes, and beside it the distance required as the page has it."""
     row, (name, meaning, word, delta, so_far) = FIRST + len(STEPS), letters
@@ -153,15 +154,16 @@ def _chart(pages: Pages, sheet: Worksheet, tables: Worksheet, layout: Layout, si
         here, above = f"{sheet.title}!${so_far}${FIRST + k}", f"{sheet.title}!${so_far}${FIRST + k - 1}"
         known = f"ISNUMBER({at})"
         sign = "0" if end else "+0;-0;0"
-        text = f'IF({known}," "&TEXT(ROUND({at},0),"{sign}")&" m",": {NOT_ASSESSED}")'
-        told = f"{step} {_rounded(change, end)} m" if change is not None else f"{step}: {NOT_ASSESSED}"
+        text = f'IF({known}," "&TEXT(ROUND({at},0),"{sign}"),": {NOT_ASSESSED}")'
+        told = f"{step} {_rounded(change, end)}" if change is not None else f"{step}: {NOT_ASSESSED}"
         write(pages, tables, f"E{row}", f"{sheet.title}!${name}${FIRST + k}&{text}", told)
         low = 0.0 if end or change is None else min(far[k - 1] or 0.0, far[k] or 0.0)
-        write(pages, tables, f"F{row}", "0" if end else f"IF({known},MIN({above},{here}),0)", low, FAR)
-        write(pages, tables, f"G{row}", f"IF({known},{at},0)" if end else "0", (change or 0.0) if end else 0.0, FAR)
-        write(pages, tables, f"H{row}", "0" if end else f"IF({known},MAX({at},0),0)", 0.0 if end else max(change or 0.0, 0.0), FAR)
-        write(pages, tables, f"I{row}", "0" if end else f"IF({known},MAX(-{at},0),0)", 0.0 if end else max(-(change or 0.0), 0.0),
-              FAR)  # fmt: skip
+        now = change or 0.0
+        parts = {"F": (f"MIN({above},{here})", low), "G": (at, now), "H": (f"MAX({at},0)", max(now, 0.0)),
+                 "I": (f"MAX(-{at},0)", max(-now, 0.0))}  # fmt: skip
+        for letter, (text, value) in parts.items():
+            drawn = (letter == "G") == end
+            write(pages, tables, f"{letter}{row}", f"IF({known},{text},0)" if drawn else "0", value if drawn else 0.0, FAR)
     cells = {letter: f"{TABLES}!${letter}${first}:${letter}${first + len(STEPS)}" for letter in "EFGHI"}
     rows = [
         Row("Base", cells["F"], Look(pattern="none")),

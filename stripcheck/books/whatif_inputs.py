@@ -35,6 +35,8 @@ from stripcheck.units import from_si, read_quantity
 Value = float | str
 SIDES = ("landing", "takeoff")
 OVER = 1.5  # of the greatest mass, up to which a mass may be typed to see what the verdict says
+AS_GIVEN = ("tora", "lda", "heading", "obstacle_height", "obstacle_distance", "local_slope", "width")
+DIGITS = {"slope_given": 2, "local_slope": 2, "qnh": 2}  # after the point, of the first values; else 1
 USES = {"landing": "landing", "takeoff": "take-off"}
 YES_OR_NO = "yes,no"
 
@@ -66,12 +68,17 @@ class Entry:
         return ceil(low), floor(high)
 
     @property
+    def expected(self) -> str:
+        """What would be right."""
+        if self.kind == YES_OR_NO:
+            return "yes or no is expected"
+        low, high = self.shown_limits
+        return f"{low:,} to {high:,} {self.unit} is expected"
+
+    @property
     def complaint(self) -> str:
         """What is said about a value that can't be right."""
-        if self.kind == YES_OR_NO:
-            return f"{self.label}: yes or no is expected"
-        low, high = self.shown_limits
-        return f"{self.label}: {low:,} to {high:,} {self.unit} is expected".replace("  ", " ")
+        return f"{self.label}: {self.expected}"
 
 
 def _list(key: str) -> tuple[float, float]:
@@ -89,11 +96,11 @@ STRIP = (
     Entry("take_off_here", "Take-off allowed", "", "no: one-way strip", YES_OR_NO, both=True, here=("takeoff",)),
     Entry("land_here", "Landing allowed", "", "no: one-way strip", YES_OR_NO, both=True, here=("landing",)),
     Entry("heading", "Heading", "°", "true; needed in any wind", both=True, turned=True, limits=_list("heading")),
-    Entry("slope_given", "Slope", "%", "mean, uphill positive; the other way follows", both=True, turned=True,
+    Entry("slope_given", "Slope", "%", "mean, uphill positive", both=True, turned=True,
           limits=links.SLOPES),
     _ahead("obstacle_height", "Obstacle ahead, height", "ft", "above the far end; blank: none known", "obstacle_height"),
     _ahead("obstacle_distance", "Obstacle ahead, distance", "m", "beyond the far end", "obstacle_distance"),
-    Entry("local_slope", "Steepest part", "%", "where the rules limit it; blank: not looked at", limits=_list("local_slope")),
+    Entry("local_slope", "Steepest part", "%", "blank: not looked at", limits=_list("local_slope")),
     Entry("width", "Width", "m", "where the rules ask for one", limits=_list("width")),
     Entry("elevation_field", "Elevation", "ft", "highest point of the strip", limits=links.ELEVATIONS),
     Entry("surface", "Surface", "", "what the wheels roll on", ",".join(SURFACES)),
@@ -163,8 +170,8 @@ def from_list(path: Path, strip: str, runway: str | None, card: Card, day: Day, 
         asked = runway.strip().upper()
         found = [i for i in found if asked in (texts["runway"][i].upper(), *texts["direction"][i : i + 2])]
     if len(found) != 1:
-        names = ", ".join(texts["runway"][i] for i in found)
-        said = f"name one of its runways with --runway: {names}" if found else f"there is no runway {runway}"
+        runways = ", ".join(texts["runway"][i] for i in found)
+        said = f"name one of its runways with --runway: {runways}" if found else f"there is no runway {runway}"
         raise InputError(f"{path.name}: {strip}: {said}")
     at = found[0]
     fault = texts["fault"][at] or texts["fault"][at + 1]
@@ -191,7 +198,7 @@ def _start(title: str, names: tuple[str, str], given: Mapping[str, Any], card: C
         raise InputError("no temperature: add --temp or --isa-dev")
     masses = {key: _mass(loading.get(f"{side}_mass"), side, card) for side in SIDES for key in (f"mass_{side}",)}
     si: dict[str, Any] = {
-        **{key: given[key] for key in ("tora", "lda", "heading", "obstacle_height", "obstacle_distance", "local_slope", "width")},
+        **{key: given[key] for key in AS_GIVEN},
         "slope_given": found["slope"], "elevation_field": found["elevation"], "temperature": air, "qnh": found["qnh_used"],
         "wind_from": found["wind_from_used"], "wind_speed": found["wind_used"], "humidity": _humidity(given, air), **masses,
     }  # fmt: skip
@@ -204,7 +211,7 @@ def _start(title: str, names: tuple[str, str], given: Mapping[str, Any], card: C
         **{f"{side}_flap": (name, name) for side in SIDES for name in [_flap(loading.get(f"{side}_flap"), side, card)]},
     }
     units = {entry.key: entry.unit for entry in entries_of(card)}
-    numbers = {key: _numbers(value, units[key]) for key, value in si.items()}
+    numbers = {key: _numbers(value, units[key], DIGITS.get(key, 1)) for key, value in si.items()}
     values = {**words, **numbers}
     values["heading"] = _turned(values["heading"][0], lambda heading: (heading + 180.0) % 360.0)
     values["slope_given"] = _turned(values["slope_given"][0], lambda slope: 0.0 - slope)
@@ -216,7 +223,7 @@ def _start(title: str, names: tuple[str, str], given: Mapping[str, Any], card: C
 
 
 def _pair(column: Any) -> list[Any]:
-    return np.broadcast_to(column, 2).tolist()
+    return list(np.broadcast_to(column, 2).tolist())
 
 
 def _texts(words: Any) -> tuple[Value, Value]:
@@ -224,8 +231,9 @@ def _texts(words: Any) -> tuple[Value, Value]:
     return first, second
 
 
-def _numbers(column: Any, unit: str) -> tuple[Value, Value]:
-    shown = [round(float(from_si(value, unit)), 6) for value in _pair(column)]
+def _numbers(column: Any, unit: str, digits: int) -> tuple[Value, Value]:
+    """Rounded as they will be seen, so that the page counts with what it shows."""
+    shown = [round(float(from_si(value, unit)), digits) + 0.0 for value in _pair(column)]
     return _texts("" if isnan(value) else value for value in shown)
 
 

@@ -37,7 +37,8 @@ BEST_ROW = 41  # the better direction of each side, and below it its name
 FACT_ROW = 43
 FACTS = {
     "greatest": "Greatest mass [kg]", "empty": "Empty mass [kg]", "step": "Step of mass [kg]",
-    "held": "Today's mass, held at the greatest [kg]", "row": "Row of today's mass, from 0", "deflection": "Flap deflection [°]",
+    "held": "Today's mass, held at the greatest [kg]", "row": "Row of today's mass, from 0",
+    "deflection": "Flap deflection [°]",
 }  # fmt: skip
 SIDE_LETTER = {"landing": "B", "takeoff": "C"}
 

@@ -14,11 +14,11 @@ from stripcheck.books import common as book
 from stripcheck.books.whatif_cases import MASSES, WARMER, rows_of
 from stripcheck.books.whatif_inputs import SIDES, YES_OR_NO, Entry
 from stripcheck.books.whatif_layout import (
+    BEST_ROW,
     HEADER_ROWS,
     MASS_LETTER,
     MATRIX_LETTERS,
     MATRIX_ROW,
-    BEST_ROW,
     SIDE_LETTER,
     TABLES,
     WORDS,
@@ -30,9 +30,10 @@ from stripcheck.sheet import styles, summary
 from stripcheck.sheet.cases import Cases
 from stripcheck.sheet.cell import Cell, formula
 from stripcheck.sheet.pages import Pages, choice, write_header
+from stripcheck.verdict import NOT_ASSESSED
 
 LAST_ROW = 41
-ROW_HEIGHT = 17.0
+ROW_HEIGHT = 17.5
 RESULT_ROW = 6
 RESULTS = ("verdict", "reason", "", "", "margin", "required", "distance", "available", "headwind", "crosswind", "better")
 LABELS = {
@@ -40,14 +41,16 @@ LABELS = {
     "distance": "Distance without factors", "available": "Available", "headwind": "Headwind (-: tailwind)",
     "crosswind": "Crosswind", "better": "Better way today",
 }  # fmt: skip
+WAYS = {"landing": "Better way in", "takeoff": "Better way out"}
 SPEEDS = {
     "landing": (("Stall", "stall_landing"), ("Approach", "approach_eas"), ("Touchdown", "touchdown_eas")),
     "takeoff": (("Stall", "stall_takeoff"), ("Lift-off", "lift_off_eas"), ("At 50 ft", "screen_eas")),
 }
-COLUMNS = {("landing", 1): "HI", ("landing", 2): "JK", ("takeoff", 1): "LM", ("takeoff", 2): "NO"}
-WIDTHS = {"A": 24, "B": 10, "C": 10, "D": 6, "E": 37, "F": 2, "G": 23} | {letter: 10.0 for letter in "HIJKLMNO"}
+COLUMNS = {("landing", 1): ("H", "I"), ("landing", 2): ("J", "K"), ("takeoff", 1): ("L", "M"), ("takeoff", 2): ("N", "O")}
+WIDTHS = {"A": 21.0, "B": 9.0, "C": 9.0, "D": 5.0, "E": 31.0, "F": 2.0, "G": 22.0} | dict.fromkeys("HIJKLMNO", 9.3)
 TODAY_FILL = PatternFill("solid", fgColor="FFE08A", bgColor="FFE08A")
-SMALL_CENTRE = Font(name="Calibri", size=9)
+SMALL_FONT = Font(name="Calibri", size=9)
+HEADER_SMALL = Font(name="Calibri", size=9, color="FFFFFF")
 
 
 def shown(cases: Cases, key: str, row: int) -> Any:
@@ -74,7 +77,7 @@ def write_inputs(pages: Pages, sheet: Worksheet, layout: Layout) -> None:
     sheet["G1"], sheet["G1"].font = layout.card.name, styles.HEADING
     styles.write_caution(sheet, "A2", CAUTION)
     sheet["G3"], sheet["G3"].font = f"Rules: {layout.rules.title}", styles.SMALL
-    sheet["A3"] = "Change a yellow cell, and all sheets follow. The strip's own numbers stand in the yellow cells first."
+    sheet["A3"] = "Change a yellow cell, and everything follows, charts included. The rest is locked, without a password."
     sheet["A3"].font = styles.SMALL
     for letter, width in WIDTHS.items():
         sheet.column_dimensions[letter].width = width
@@ -94,7 +97,7 @@ def _input(pages: Pages, sheet: Worksheet, layout: Layout, entry: Entry) -> None
     row = layout.rows[entry.key]
     sheet[f"A{row}"], sheet[f"A{row}"].font, sheet[f"A{row}"].border = entry.label, styles.BODY, styles.LINE
     sheet[f"D{row}"], sheet[f"D{row}"].font, sheet[f"D{row}"].alignment = entry.unit, styles.SMALL, styles.INDENT
-    number_format = "@" if entry.kind in ("name", "flap") else "General" if entry.kind != "number" else "#,##0.##"
+    number_format = "@" if entry.kind in ("name", "flap") else "General"
     for way, letter in ((1, "B"), (2, "C")) if entry.both and not entry.turned else ((1, "B"),):
         value = layout.value(entry.key, way)
         book.input_cell(sheet, f"{letter}{row}", None if value == "" else value, number_format)
@@ -113,10 +116,11 @@ def _input(pages: Pages, sheet: Worksheet, layout: Layout, entry: Entry) -> None
         sheet.merge_cells(f"B{row}:C{row}")
     _expect(pages, sheet, cells, layout, entry)
     checks = [f"{TABLES}!{layout.check(entry, way)}" for way in ((1, 2) if entry.both and not entry.turned else (1,))]
-    said = f'"{entry.meaning}"'
-    for check in reversed(checks):
-        said = f'IF({check}<>"",{check},{said})'
-    pages.formula(sheet, f"E{row}", said, entry.meaning)
+    if entry.kind in ("number", YES_OR_NO):
+        said = f'IF({"&".join(checks)}<>"","{entry.expected}","{entry.meaning}")'
+        pages.formula(sheet, f"E{row}", said, entry.meaning)
+    else:
+        sheet[f"E{row}"] = entry.meaning
     sheet[f"E{row}"].font, sheet[f"E{row}"].alignment = styles.SMALL, styles.INDENT
     wrong = FormulaRule(formula=[f'ISNUMBER(SEARCH("is expected",$E{row}))'], font=Font(bold=True, color="B3440B"))
     sheet.conditional_formatting.add(f"A{row}:E{row}", wrong)
@@ -170,8 +174,10 @@ def _direction(pages: Pages, sheet: Worksheet, cases: Cases, side: str, way: int
         if name == "better":
             letter = SIDE_LETTER[side]
             best = f"{TABLES}!${letter}${BEST_ROW}"
-            now = Layout.best(cases, side) == way
-            pages.formula(sheet, cell, f'IF({best}={way},"better","")', "better" if now else "")
+            verdict = f"{left}{RESULT_ROW + 1}"
+            now = Layout.best(cases, side) == way and shown(cases, f"{side}_verdict", way - 1) != NOT_ASSESSED
+            text = f'IF(AND({best}={way},{verdict}<>"{NOT_ASSESSED}"),"better","")'
+            pages.formula(sheet, cell, text, "better" if now else "")
             sheet[cell].font, sheet[cell].alignment = styles.BOLD, styles.CENTRE
         else:
             link(pages, sheet, cell, cases, keys.get(name, f"{side}_{name}"), way - 1, formats.get(name, '#,##0" m"'))
@@ -205,9 +211,10 @@ def _both(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[str, Ca
     styles.colour_words(sheet, "G4:O4", styles.BOTH_COLOURS)
     best = {side: layout.best_name(side) for side in SIDES}
     called = {side: names(layout)[rows[side]] for side in SIDES}
-    said = f'"Better way in: "&{best["landing"]}&", "&{verdicts["landing"]}&". Better way out: "&{best["takeoff"]}&", "&{verdicts["takeoff"]}&"."'
-    told = f"Better way in: {called['landing']}, {now['landing']}. Better way out: {called['takeoff']}, {now['takeoff']}."
-    pages.formula(sheet, "G5", said, told)
+    parts = [f'"{words}: "&{best[side]}&", "&{verdicts[side]}' for side, words in WAYS.items()]
+    said = f'{parts[0]}&". "&{parts[1]}&"."'
+    now_said = [f"{words}: {called[side]}, {now[side]}." for side, words in WAYS.items()]
+    pages.formula(sheet, "G5", said, " ".join(now_said))
     sheet.merge_cells("G5:O5")
     sheet["G5"].font, sheet["G5"].alignment = styles.BOLD, styles.CENTRE
 
@@ -220,7 +227,7 @@ def _speeds(pages: Pages, sheet: Worksheet, cases: Mapping[str, Cases]) -> None:
     for side, first in (("landing", 8), ("takeoff", 12)):
         for i, (words, key) in enumerate(SPEEDS[side]):
             letter = get_column_letter(first + i)
-            sheet[f"{letter}{row}"] = words
+            sheet[f"{letter}{row}"], sheet[f"{letter}{row}"].font = words, HEADER_SMALL
             link(pages, sheet, f"{letter}{row + 1}", cases[side], key, 0, '0" kt"')
             sheet[f"{letter}{row + 1}"].border = styles.BOX
     sheet[f"G{row + 1}"], sheet[f"G{row + 1}"].font = "with today's masses and flaps", styles.BODY
@@ -244,7 +251,7 @@ def _matrix(pages: Pages, sheet: Worksheet, layout: Layout, cases: Cases, side: 
     today = layout.cell("temperature")
     for letter, change, value in zip(MATRIX_LETTERS, WARMER, layout.temperatures(), strict=True):
         pages.formula(sheet, f"{letter}{row}", f'IF(ISNUMBER({today}),{today}{change:+g},"")', value)
-        sheet[f"{letter}{row}"].number_format = '0.#" °C"' if isinstance(value, float) and value % 1 else '0" °C"'
+        sheet[f"{letter}{row}"].number_format = '0.0" °C"'
     facts = {key: layout.fact(key, side) for key in ("greatest", "empty", "step", "held", "row")}
     for i, mass in enumerate(layout.masses(side)):
         at = row + 1 + i
@@ -253,14 +260,14 @@ def _matrix(pages: Pages, sheet: Worksheet, layout: Layout, cases: Cases, side: 
             f'IF(ISNUMBER({facts["held"]}),IF({lighter}>={facts["empty"]},{lighter},""),"")')  # fmt: skip
         pages.formula(sheet, f"{MASS_LETTER}{at}", text, mass)
         cell = sheet[f"{MASS_LETTER}{at}"]
-        cell.font, cell.number_format, cell.alignment, cell.border = styles.BODY, '#,##0.#" kg"', styles.CENTRE, styles.BOX
+        cell.font, cell.number_format, cell.alignment, cell.border = styles.BODY, '#,##0" kg"', styles.CENTRE, styles.BOX
         for j, letter in enumerate(MATRIX_LETTERS):
             case = first + i * len(WARMER) + j
             verdict = f"{side}_verdict"
             now = shown(cases, verdict, case) if mass != "" else ""
             pages.formula(sheet, f"{letter}{at}", f'IF(${MASS_LETTER}{at}="","",{cases.cell(verdict, case)})', now)
             one = sheet[f"{letter}{at}"]
-            one.font, one.alignment, one.border = SMALL_CENTRE, styles.CENTRE, styles.BOX
+            one.font, one.alignment, one.border = SMALL_FONT, styles.CENTRE, styles.BOX
     cells = f"{MATRIX_LETTERS[0]}{row + 1}:{MATRIX_LETTERS[-1]}{row + MASSES}"
     styles.colour_verdicts(sheet, cells)
     marked = FormulaRule(formula=[f"${MASS_LETTER}{row + 1}=$B${layout.rows[f'mass_{side}']}"], fill=TODAY_FILL,
@@ -285,3 +292,14 @@ def finish(sheet: Worksheet) -> None:
     sheet.page_margins.top, sheet.page_margins.bottom, sheet.page_margins.footer = 0.3, 0.55, 0.3
     sheet.print_area = f"A1:O{LAST_ROW}"
     sheet.freeze_panes = "A4"
+
+
+def told(layout: Layout, cases: Mapping[str, Cases]) -> list[str]:
+    """The better way in and out now, a line each."""
+    lines = []
+    for side, words in (("landing", "Land on"), ("takeoff", "Take off on")):
+        row = Layout.best(cases[side], side) - 1
+        verdict, reason, margin = (shown(cases[side], f"{side}_{part}", row) for part in ("verdict", "reason", "margin"))
+        metres = f", margin {margin:,.0f} m" if margin != "" else ""
+        lines.append(f"{words} {names(layout)[row]}: {verdict}: {reason}{metres}")
+    return lines

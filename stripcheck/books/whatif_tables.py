@@ -33,10 +33,11 @@ def write_checks(pages: Pages, sheet: Worksheet, layout: Layout) -> None:
     sheet["A1"], sheet["A1"].font = "What the other sheets read: checks of the inputs, and what the charts draw", styles.TITLE
     styles.write_caution(sheet, "A2", CAUTION)
     sheet["A3"], sheet["A3"].font = "All of it follows from the page What if; there is nothing to type here.", styles.SMALL
-    for letter, width in zip("ABCDEFGHIJK", (38, 16, 16, 3, 30, 14, 14, 14, 14, 14, 26), strict=True):
+    for letter, width in zip("ABCDEFGHIJK", (38, 16, 16, 3, 30, 21, 22, 22, 22, 16, 26), strict=True):
         sheet.column_dimensions[letter].width = width
     sheet.sheet_view.showGridLines = False
     styles.set_print(sheet)
+    sheet.page_setup.fitToHeight = 1
     write_header(sheet, CHECK_ROW - 1, ("Input: what is wrong with it", "Direction 1", "Direction 2"))
     for row, entry in enumerate(layout.entries, CHECK_ROW):
         label(sheet, f"A{row}", entry.label)
@@ -96,6 +97,7 @@ def _write_names(pages: Pages, sheet: Worksheet, layout: Layout) -> None:
         tens = f'TEXT(MOD(INT({heading}/10+0.5)-1{turned},36)+1,"00")'
         text = f'IF({name}<>"",{name}&"",IF(ISNUMBER({heading}),{tens},"{"AB"[way - 1]}"))'
         write(pages, sheet, f"{letter}{NAME_ROW}", text, names(layout)[way - 1])
+        sheet[f"{letter}{NAME_ROW}"].alignment = styles.RIGHT
 
 
 def names(layout: Layout) -> tuple[str, str]:
@@ -121,16 +123,17 @@ def _write_facts(pages: Pages, sheet: Worksheet, layout: Layout) -> None:
         write(pages, sheet, greatest, f'IF(ISNUMBER({card}),{card},"")', layout.greatest(side), "#,##0")
         sheet[empty], sheet[empty].font, sheet[empty].border = layout.empty, styles.BODY, styles.LINE
         sheet[empty].number_format = "#,##0"
-        stepping = f"IF(ISNUMBER({greatest}),MAX({ROUND_TO:g},INT({greatest}*{MASS_SHARE}/{ROUND_TO:g}+0.5)*{ROUND_TO:g}),{ROUND_TO:g})"
+        rounded = f"INT({greatest}*{MASS_SHARE}/{ROUND_TO:g}+0.5)*{ROUND_TO:g}"
+        stepping = f"IF(ISNUMBER({greatest}),MAX({ROUND_TO:g},{rounded}),{ROUND_TO:g})"
         write(pages, sheet, step, stepping, layout.mass_step(side), "#,##0")
-        write(pages, sheet, held, f'IF(ISNUMBER({today}),MIN({today},{greatest}),"")', layout.mass_held(side), "#,##0.##")
+        write(pages, sheet, held, f'IF(ISNUMBER({today}),MIN({today},{greatest}),"")', layout.mass_held(side), "#,##0")
         above = f"INT(({greatest}-{held})/{step}-0.01)"  # whole steps between today's and the greatest
         row = f"IF(COUNT({held},{greatest})=2,IF({held}>={greatest},0,1+MIN(1,MAX(0,{above}))),0)"
         write(pages, sheet, cells["row"], row, float(layout.mass_row(side)), "0")
         flap = layout.cell(f"{side}_flap")
         first, last = layout.flap_row[side], layout.flap_row[side] + len(layout.flaps[side]) - 1
         found = f'IFERROR(INDEX(F{first}:F{last},MATCH({flap}&"",E{first}:E{last},0)),"")'
-        write(pages, sheet, cells["deflection"], found, layout.deflection(str(layout.value(f"{side}_flap"))), "0.##")
+        write(pages, sheet, cells["deflection"], found, layout.deflection(str(layout.value(f"{side}_flap"))), "0.0")
 
 
 def write_directions(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapping[str, Cases]) -> None:
@@ -143,3 +146,4 @@ def write_directions(pages: Pages, sheet: Worksheet, layout: Layout, cases: Mapp
         write(pages, sheet, f"{letter}{BEST_ROW}", f"MATCH(MAX({scores}),{scores},0)", float(best), "0")
         both = f"$B${NAME_ROW}:$C${NAME_ROW}"
         write(pages, sheet, f"{letter}{BEST_ROW + 1}", f"INDEX({both},{letter}{BEST_ROW})", names(layout)[best - 1])
+        sheet[f"{letter}{BEST_ROW + 1}"].alignment = styles.RIGHT

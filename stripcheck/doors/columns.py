@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -24,6 +25,7 @@ PARTS = ("verdict", "reason", "margin")
 # what a function does not know of a strip: where any of these is given, the assessment's values stay
 UNKNOWN = ("local_slope", "obstacle_height", "obstacle_distance", "approach_obstacle_height", "approach_obstacle_distance",
            "profile_takeoff_slope", "profile_landing_slope")  # fmt: skip
+KNOWN_BY = ("takeoff_known", "landing_known", "crosswind", "width_asked")
 
 
 @dataclass(frozen=True)
@@ -68,14 +70,19 @@ class DoorColumns:
 
 def known_rows(filling: Filling, side: str) -> list[bool]:
     """For which directions a function gives what the assessment gives, whatever mass and flap."""
-    given, values, n = filling.given, filling.values, filling.directions.n
+    values = {**filling.card.values, **filling.day.values, **filling.given, **filling.values}
+    return [bool(one) for one in known_among(values, side, filling.directions.n)]
+
+
+def known_among(values: Mapping[str, Any], side: str, size: int) -> np.ndarray:
+    """The same as an array, by the inputs and steps of an assessment; of the latter those of `KNOWN_BY` are needed."""
     free = {"takeoff": "take_off_here", "landing": "land_here"}[side]
-    known = np.broadcast_to(values[f"{side}_known"], n) & np.asarray(given[free]) & ~np.asarray(given["fault"])
+    known = np.broadcast_to(values[f"{side}_known"], size) & np.asarray(values[free]) & ~np.asarray(values["fault"])
     for key in UNKNOWN:
-        known = known & ~np.isfinite(given[key])
-    crosswind = np.broadcast_to(values["crosswind"], n) <= filling.card.values["crosswind_limit"]
-    known = known & crosswind & ~np.isfinite(np.broadcast_to(values["width_asked"], n))
-    return [bool(one) for one in known]
+        known = known & ~np.isfinite(values[key])
+    known = known & bool(np.isnan(values["humidity"]) & np.isnan(values["dew_point"]))
+    crosswind = np.broadcast_to(values["crosswind"], size) <= values["crosswind_limit"]
+    return np.asarray(known & crosswind & ~np.isfinite(np.broadcast_to(values["width_asked"], size)))
 
 
 def door_columns(kind: str, filling: Filling) -> DoorColumns:

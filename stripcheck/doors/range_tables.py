@@ -50,6 +50,11 @@ def table_values(rows: Rows, sides: Collection[str], settings: int) -> dict[str,
     return values
 
 
+def tables_of(rows: Rows, side: str) -> BookTables:
+    """The tables of a side, but that nothing but the range tells what stands for a hole. Raises InputError as `table_values`."""
+    return _Side(_cells(rows), side).tables()
+
+
 def _cells(rows: Rows) -> dict[str, list[Any]]:
     """The cells beside each label; those of rows with the same label one behind the other."""
     found: dict[str, list[Any]] = {}

@@ -19,10 +19,9 @@ class CsvLines:
 
     >>> lines = CsvLines(b'Strip,Length\\r\\n"XOTB",620', "utf-8-sig", ",")
     >>> lines.set(2, 0, "XOTC")
-    >>> lines.set(2, 1, "600, or so")
-    >>> lines.add_below(2, ["XNEW", "700"])
+    >>> lines.add_below(2, ["XNEW", "700, or so"])
     >>> lines.data()
-    b'Strip,Length\\r\\n"XOTC","600, or so"\\r\\nXNEW,700\\r\\n'
+    b'Strip,Length\\r\\n"XOTC",620\\r\\nXNEW,"700, or so"\\r\\n'
     """
 
     def __init__(self, data: bytes, encoding: str, delimiter: str) -> None:
@@ -85,13 +84,14 @@ def _records(text: str, delimiter: str) -> Iterator[str]:
 
 
 def _cut_end(row: str) -> tuple[str, str]:
-    body = row.rstrip("\r\n") if not row.endswith(("\r\n", "\n", "\r")) else row[: -2 if row.endswith("\r\n") else -1]
-    return body, row[len(body) :]
+    end = next((end for end in ("\r\n", "\n", "\r") if row.endswith(end)), "")
+    return row.removesuffix(end), end
 
 
 def _raw_cells(body: str, delimiter: str) -> list[str]:
     """The cells of a row as they are written, with their quotes."""
-    cells, start = [], 0
+    cells: list[str] = []
+    start = 0
     while True:
         at = start
         if body.startswith('"', start):

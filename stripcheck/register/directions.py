@@ -65,7 +65,8 @@ class Directions:
     not strips for aeroplanes, each once. ``doubts``: what is missing or worked out in the runways that are
     kept. ``source``: name of the file. ``rows_read``: runways in the list; always ``rows_read ==
     len(left_out) + n / 2``. ``profiles``: slope profile of each direction, from the end where it begins, None where the
-    list has none or none that can be used.
+    list has none or none that can be used. ``positions``: latitude and longitude [rad] of the end where each direction
+    begins, shape (n, 2), else of the airfield, NaN where neither is told.
     """
 
     n: int
@@ -77,6 +78,7 @@ class Directions:
     source: str
     rows_read: int
     profiles: list[Profile | None] = field(default_factory=list)
+    positions: NDArray[np.float64] = field(default_factory=lambda: np.empty((0, 2)))
 
 
 def unknown_surfaces(directions: Directions) -> list[tuple[str, int]]:

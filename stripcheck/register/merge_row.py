@@ -304,14 +304,14 @@ class Row:
             told = [[self._end(key, end) for key in keys] for end in (1, 2)]
         except _Unreadable:
             return  # told by what read the ends
-        for height, away in told:
-            if (height is None) != (away is None) and not (height is not None and height.si == 0.0):
-                self.bad.append("has half of an obstacle, which is not compared")
-                return
-        if len(self.lost) > before[0] or len(self.bad) > before[1]:
+        half = {end for end, (height, away) in enumerate(told, 1)
+                if (height is None) != (away is None) and not (height is not None and height.si == 0.0)}  # fmt: skip
+        self.bad += ["has half of an obstacle, which is not compared"] if half else []
+        if len(self.lost) > before[0] or len(self.bad) > before[1] + bool(half):
             return
         for end in (0, 1, 2):
-            yield [part for part in parts if part.at[1] == end]
+            if end not in half and not (end == 0 and half):
+                yield [part for part in parts if part.at[1] == end]
 
     # --- ways, ground, closed, profile
 
@@ -462,7 +462,7 @@ class Row:
                 return []
             parts.append(self._part(surface, text, False))
         if condition in self.one.found and worse_condition(cell, read_surface_pair(text)[1]) != wanted:
-            parts.append(self._part(condition, self.words.condition(wanted), False))
+            parts.append(self._part(condition, wanted, False))
         return parts
 
 

@@ -6,13 +6,12 @@ import datetime
 import math
 import re
 from collections import Counter
-from collections.abc import Callable
-from functools import cache, cached_property
+from functools import cached_property
 from typing import NamedTuple
 
 from stripcheck.register.reader import Reading
 from stripcheck.register.runways import Runways
-from stripcheck.register.surface_words import known_condition, read_surface
+from stripcheck.register.surface_words import read_surface
 from stripcheck.register.values import NO, YES, as_text, as_written, decimal_marks, harmless
 from stripcheck.surface import SURFACES
 from stripcheck.units import KINDS, PRESSURE_INHG, tidy, unit_scale
@@ -31,7 +30,7 @@ MOST_DECIMALS = 6
 SAME_COORDINATE = math.radians(1e-5)  # 1 m on the ground: coordinates serve to find a strip and its bearing
 LONGEST_TEXT = 32_767  # [characters] that a cell holds
 
-_WITH_UNIT = re.compile(r"[-+]?[\d.,' \u00a0]*\d[.,]?\s*(\D.*)", re.DOTALL)
+_WITH_UNIT = re.compile(r"[-+]?[\d.,' \u00a0]*\d[.,]?\s*([^\d\s.,].*)", re.DOTALL)
 _CONTROLS = re.compile("[\x00-\x08\x0b-\x1f\x7f\ud800-\udfff\ufffe\uffff]")
 
 
@@ -146,7 +145,6 @@ class OwnWords:
     def __init__(self, reading: Reading) -> None:
         self.runways, self.table = reading.runways, reading.runways.table
         self.is_text = bool(self.table.delimiter)
-        self._counted = cache(self._count)
 
     def number(self, at: Key, given: Quantity, index: int | None) -> Value:
         """A number for a cell: in the unit of the number that stands there, else of its column; a text where that is one."""
@@ -182,16 +180,13 @@ class OwnWords:
         return "." if any(isinstance(cell, str) and "," in cell for cell in cells) else ","
 
     def yes(self, at: Key, value: bool) -> str:
-        """The column's word for yes or no."""
-        return self._counted(at, _yes_or_none, value) or ("yes" if value else "no")
+        """The word that the column uses most for yes or no."""
+        words = YES if value else NO
+        counts = Counter(cell.strip() for cell in self.runways.cells(*at) or () if isinstance(cell, str))
+        return next((text for text, _ in counts.most_common() if text.lower() in words), "yes" if value else "no")
 
     def surface(self, word: str, given: str) -> str:
-        """The register's spelling of a surface without a condition; else the table's word where the register keeps to
-        those, else as given."""
-        at = ("surface", 0)
-        found = self._counted(at, read_surface_pair, (word, ""))
-        if found:
-            return found
+        """A surface without a condition: the table's word where the register keeps to those, else as given."""
         return word if self._keeps_to_words or read_surface_pair(given) != (word, "") else given
 
     @cached_property
@@ -199,24 +194,11 @@ class OwnWords:
         texts = {text.casefold() for text in self.runways.texts("surface") if text}
         return bool(texts) and texts <= set(SURFACES)
 
-    def condition(self, word: str) -> str:
-        """The register's spelling of a condition."""
-        return self._counted(("condition", 0), known_condition, word) or word
-
-    def _count(self, at: Key, meaning: Callable[[str], object], wanted: object) -> str:
-        """The spelling that a column uses most for a meaning, "" where it has none."""
-        counts = Counter(cell.strip() for cell in self.runways.cells(*at) or () if isinstance(cell, str) and as_text(cell))
-        return next((text for text, _ in counts.most_common() if meaning(text) == wanted), "")
-
     def date(self, at: Key, text: str) -> Value:
         """A date as a date where the column of a workbook holds dates, else as a text."""
         day = as_date(text)
         holds = any(isinstance(cell, datetime.date) for cell in self.runways.cells(*at) or ())
         return day if day is not None and holds else text
-
-
-def _yes_or_none(text: str) -> bool | None:
-    return True if text.lower() in YES else False if text.lower() in NO else None
 
 
 def read_surface_pair(text: str) -> tuple[str, str]:

@@ -10,8 +10,11 @@ from __future__ import annotations
 
 import codecs
 import csv
+import io
+import os
 import stat
 from collections.abc import Iterable, Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from itertools import islice
 from pathlib import Path
@@ -19,7 +22,16 @@ from typing import TextIO
 
 from stripcheck.errors import InputError
 from stripcheck.register.columns import known_headers
-from stripcheck.register.safe_limits import MAX_COLUMNS, MAX_LINE, MAX_LIST_COLUMNS, MAX_ROWS, check_area, damaged, protected
+from stripcheck.register.safe_limits import (
+    MAX_CELL_TEXT,
+    MAX_COLUMNS,
+    MAX_LINE,
+    MAX_LIST_COLUMNS,
+    MAX_ROWS,
+    check_area,
+    damaged,
+    protected,
+)
 from stripcheck.register.safe_read import check_text, check_workbook
 from stripcheck.register.values import as_written
 
@@ -210,24 +222,57 @@ def _read_workbook(path: Path, wanted: str | None) -> Table:
 
 def workbook_sheets(path: Path, wanted: str | None) -> Iterator[tuple[str, Sequence[Sequence[object]]]]:
     """Name and rows of the sheets of a workbook, or of the one wanted; InputError where it can't be read."""
-    check_workbook(path)
-    from python_calamine import CalamineError, CalamineWorkbook, PasswordError, SheetTypeEnum
+    cells_only = check_workbook(path)
+    from python_calamine import CalamineWorkbook, SheetTypeEnum
+
+    with _said_in_one_sentence(path.name):
+        book = CalamineWorkbook.from_object(path if cells_only is None else io.BytesIO(cells_only))
+    with book:
+        names = [sheet.name for sheet in book.sheets_metadata if sheet.typ == SheetTypeEnum.WorkSheet]
+        if wanted is not None and wanted not in names:
+            raise InputError(f'{path.name}: there is no sheet "{wanted}"; its sheets are {", ".join(names)}')
+        for name in [wanted] if wanted is not None else names:
+            with _said_in_one_sentence(path.name):
+                rows = book.get_sheet_by_name(name).to_python(skip_empty_area=False)
+            yield name, rows
+
+
+@contextmanager
+def _said_in_one_sentence(name: str) -> Iterator[None]:
+    """What goes wrong in the reader of workbooks becomes an InputError, also where it gives up with a note of its own."""
+    from python_calamine import CalamineError, PasswordError
 
     try:
-        with CalamineWorkbook.from_path(path) as book:
-            names = [sheet.name for sheet in book.sheets_metadata if sheet.typ == SheetTypeEnum.WorkSheet]
-            if wanted is not None and wanted not in names:
-                raise InputError(f'{path.name}: there is no sheet "{wanted}"; its sheets are {", ".join(names)}')
-            for name in [wanted] if wanted is not None else names:
-                yield name, book.get_sheet_by_name(name).to_python(skip_empty_area=False)
+        with _without_notes():
+            yield
     except PasswordError as error:
-        raise protected(path.name) from error
+        raise protected(name) from error
+    except OverflowError as error:
+        raise damaged(name, "a date or time is beyond all calendars") from error
     except (CalamineError, OSError, ValueError) as error:
-        raise InputError(f"{path.name}: the workbook can't be read ({error}); open it and save it again") from error
+        raise InputError(f"{name}: the workbook can't be read ({error}); open it and save it again") from error
     except BaseException as error:
-        if type(error).__name__ != "PanicException":  # how that reader ends when it meets what it did not expect
+        if type(error).__name__ != "PanicException":  # how the reader ends where it meets what it did not expect
             raise
-        raise damaged(path.name, "it can't be understood") from error
+        raise damaged(name, "it can't be understood") from error
+
+
+@contextmanager
+def _without_notes() -> Iterator[None]:
+    """Nothing that is not Python's reaches the error output meanwhile."""
+    try:
+        kept = os.dup(2)
+    except OSError:  # there is none, as in a program with windows only
+        yield
+        return
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    os.dup2(nowhere, 2)
+    os.close(nowhere)
+    try:
+        yield
+    finally:
+        os.dup2(kept, 2)
+        os.close(kept)
 
 
 def _no_header(where: str) -> str:
@@ -249,6 +294,8 @@ def _collect(rows: Iterable[Sequence[object]], source: str, sheet: str, delimite
         cells = [_lasting(cell, same) for cell in row]
         if _is_empty(cells):
             continue
+        if any(type(cell) is str and len(cell) > MAX_CELL_TEXT for cell in cells):
+            raise InputError(f"{where} row {number}: a cell holds more than {MAX_CELL_TEXT:,} characters; shorten it")
         if not _is_empty(cells[len(headers) :]):
             table.too_wide[len(table.row_numbers)] = len(cells)
         table.row_numbers.append(number)

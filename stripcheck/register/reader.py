@@ -103,6 +103,7 @@ def directions_of(reading: Reading, strict: bool = False) -> Directions:
         profiles=_interleave(
             runways.profiles, [profile and profile.reversed() for profile in runways.profiles], kept
         ),
+        positions=np.column_stack([_pair_up(*_places(reading, key), kept) for key in ("latitude", "longitude")]),
     )
 
 
@@ -122,6 +123,14 @@ def read_runways(table: Table, path: Path, airports: str | Path | None = None) -
     numbers, doubts = direction_numbers(runways, field)
     doubts += _doubts_about_texts(runways, surfaces)
     return Reading(runways, known, surfaces, reasons, texts, numbers, doubts, cell_faults)
+
+
+def _places(reading: Reading, key: str) -> Pair:
+    """Latitude or longitude [rad] of both ends of each runway, else of its airfield."""
+    of_field = np.array([getattr(airport, key) if airport else np.nan for airport in reading.known])
+    one, other = (np.where(np.isnan(of_end), of_field, of_end) for of_end in (reading.runways.number(key, 1),
+                                                                              reading.runways.number(key, 2)))  # fmt: skip
+    return one, other
 
 
 def _join_airports(runways: Runways, path: Path, airports: str | Path | None) -> list[Airport | None]:

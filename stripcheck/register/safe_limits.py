@@ -9,6 +9,7 @@ from __future__ import annotations
 from stripcheck.errors import InputError
 
 MAX_TEXT_FILE = 200_000_000  # [bytes] of a .csv: twenty times the airports file of the open data
+MAX_CELL_TEXT = 131_072  # [characters] of one cell of a list: a sheet's cell holds 32,767, to which the workbook cuts it
 MAX_LINE = 1_000_000  # [characters] of a row of a .csv: a sheet with texts in all its 16,384 columns
 MAX_BOOK_FILE = 1_000_000_000  # [bytes]
 MAX_XLS_FILE = 100_000_000  # [bytes]: such a sheet has 65,536 rows at most

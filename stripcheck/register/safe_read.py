@@ -31,26 +31,27 @@ def check_text(path: Path) -> None:
     _refuse_others(path, start)
 
 
-def check_workbook(path: Path) -> None:
+def check_workbook(path: Path) -> bytes | None:
     """Raise InputError unless a workbook is of the kind that its name says, whole, and within ``safe_limits``.
 
-    ``path``: a file that is there, .xlsx, .xlsm, .ods or .xls. A workbook of this program for 44,000 runways takes half a
-    minute, one for 1,000 less than a second.
+    ``path``: a file that is there, .xlsx, .xlsm, .ods or .xls. The result is None where a reader may be given the file
+    itself; of an .xls it is a file with nothing but the cells, which is to be read instead. A workbook of this program for
+    44,000 runways takes half a minute, one for 1,000 less than a second.
     """
     start = _start(path)
     if start.startswith(_OLE):
-        from stripcheck.register.safe_xls import check_compound
+        from stripcheck.register.safe_xls import clean_workbook
 
-        check_compound(path)
-    elif start.startswith(b"PK"):
+        return clean_workbook(path)
+    if start.startswith(b"PK"):
         from stripcheck.register.safe_package import check_package
 
         check_package(path)
-    else:
-        _refuse_others(path, start)
-        if b"\0" in start:
-            raise InputError(f"{path.name}: this is no workbook, or a damaged one; {SAVE_AS}")
-        raise InputError(f"{path.name}: this is a text and no workbook; name it .csv if it is a list")
+        return None
+    _refuse_others(path, start)
+    if b"\0" in start:
+        raise InputError(f"{path.name}: this is no workbook, or a damaged one; {SAVE_AS}")
+    raise InputError(f"{path.name}: this is a text and no workbook; name it .csv if it is a list")
 
 
 def _start(path: Path) -> bytes:

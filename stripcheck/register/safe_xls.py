@@ -1,8 +1,9 @@
-"""Whether a compound file is an old workbook (.xls) that can be read, is encrypted, or is something else.
+"""An old workbook (.xls) without anything but its cells, so that its reader meets nothing that could break it.
 
 The file system within the file is walked first: a chain of sectors that runs in a circle would keep a reader going until
-the memory is gone. Then the records of the workbook are walked, and the cells counted. Structure: Microsoft's open
-specifications [MS-CFB] and [MS-XLS], from memory.
+the memory is gone. Then the records of the workbook are walked, the cells counted, and every record that is neither a cell
+nor needed to understand one is blotted out: macros, names, links and the texts of formulas are never looked at. What is left
+stands in a new compound file. Structure: Microsoft's open specifications [MS-CFB] and [MS-XLS], from memory.
 """
 
 from __future__ import annotations
@@ -20,26 +21,25 @@ from stripcheck.register.safe_limits import MAX_PARTS, MAX_XLS_FILE, SAVE_AS, ch
 MAX_RECORDS = 20_000_000  # that are walked: more than a file of the greatest size has, unless its sheets overlap
 ROWS, COLUMNS = 65_536, 256  # of a sheet of this kind
 
-_END_OF_CHAIN, _NO_SECTOR = 0xFFFFFFFE, 0xFFFFFFFA  # sector numbers from the latter on mean something else
+_NO_SECTOR = 0xFFFFFFFA  # sector numbers from here on mean something else, such as the end of a chain
 _LONGEST = 65_535  # [characters] of a text
 _SMALL = 4096  # [bytes] below which a stream stands among the small ones
 _STREAM, _ROOT = 2, 5
+
 _BEGIN, _END, _SHEET, _PASSWORD, _CONTINUED = 0x809, 0x0A, 0x85, 0x2F, 0x3C
-_SHARED, _SHOWS_SHARED, _SEVERAL, _MERGED = 0xFC, 0xFD, 0xBD, 0xE5
-_SIZES = {0x200: "<IIHH", 0x00: "<HHHH"}  # first row, last row + 1, first column, last column + 1
-# one cell each, row and column first: formula, number, label, true or false, text of shared ones, and their older forms
-_CELLS = frozenset((0x06, 0x206, 0x406, 0x203, 0x27E, 0x204, 0xD6, 0x205, 0xFD, 0x02, 0x03, 0x04, 0x05, 0xBD))
+_SHARED, _SHOWS_SHARED, _SEVERAL, _FORMULAS = 0xFC, 0xFD, 0xBD, (0x06, 0x206, 0x406)
+_BLOTTED = 0xFFF  # a kind of record that no reader knows
+# kind of a record that is kept -> the least bytes that it must have. Cells: formula, number, label, true or false, shared
+# text, several numbers, and the text that a formula gives; then what tells of dates, character sets and sheets
+_CELLS = dict.fromkeys(_FORMULAS, 22) | {0x203: 14, 0x27E: 10, 0x204: 9, 0xD6: 9, 0x205: 8, _SHOWS_SHARED: 10, _SEVERAL: 12}
+_KEPT = _CELLS | {0x207: 3, _BEGIN: 4, _END: 0, _SHEET: 8, _SHARED: 8, 0x42: 2, 0x22: 2, 0x41E: 5, 0xE0: 4}
 
 
-class _Stream(NamedTuple):
-    name: str
-    kind: int
-    start: int
-    size: int
+def clean_workbook(path: Path) -> bytes:
+    """The cells of an .xls as a compound file that can be given to a reader.
 
-
-def check_compound(path: Path) -> None:
-    """Raise InputError unless a compound file is a whole .xls workbook within ``safe_limits``, and named so."""
+    Raises InputError unless it is a whole .xls workbook within ``safe_limits``, not encrypted, and named so.
+    """
     check_size(path.name, path.stat().st_size, MAX_XLS_FILE)
     file = _Compound(path.name, path.read_bytes())
     names = {stream.name: stream for stream in file.streams if stream.kind == _STREAM}
@@ -50,7 +50,14 @@ def check_compound(path: Path) -> None:
         raise InputError(f"{path.name}: this is a document of another program and no workbook; {SAVE_AS}")
     if path.suffix.lower() != ".xls":
         raise InputError(f"{path.name}: by its content this is a workbook of the kind .xls; name it {path.stem}.xls")
-    _Records(path.name, file.content(book)).check()
+    return _compound_file(book.name, _Records(path.name, file.content(book)).cleaned())
+
+
+class _Stream(NamedTuple):
+    name: str
+    kind: int
+    start: int
+    size: int
 
 
 # --- the file system within the file
@@ -148,102 +155,156 @@ class _Records:
     """The records of a workbook: its list of sheets and shared texts first, then the cells of each sheet."""
 
     def __init__(self, name: str, data: bytes) -> None:
-        self.name, self.data = name, data
+        self.name, self.data = name, bytearray(data)
         self.tally = Tally(name)
         self.walked = 0
         self.lengths = array("q")
 
-    def check(self) -> None:
-        """Raise InputError where it is encrypted, damaged, or larger than is read."""
-        sheets = []
-        shared: list[bytes] = []
-        last = 0
+    def cleaned(self) -> bytes:
+        """All of them, those that are not needed blotted out. Raises InputError for what is damaged or too large."""
+        sheets, shared = [], []
         for kind, content in self._walk(0):
-            if kind == _PASSWORD:
-                raise protected(self.name)
             if kind == _SHEET:
                 sheets.append(int.from_bytes(content[:4], "little"))
-            if kind == _SHARED or (kind == _CONTINUED and last == _SHARED):
+            elif kind in (_SHARED, _CONTINUED):
                 shared.append(content)
-            last = _SHARED if kind == _CONTINUED and last == _SHARED else kind
         if shared:
-            self.lengths = _text_lengths(shared)
+            self.lengths = _text_lengths(self.name, shared)
         if len(set(sheets)) < len(sheets):
             raise damaged(self.name, "two sheets are kept in the same place")
         for number, place in enumerate(sheets, 1):
             self._check_sheet(number, place)
+        return bytes(self.data)
 
     def _check_sheet(self, number: int, place: int) -> None:
+        if self.data[place : place + 2] != _BEGIN.to_bytes(2, "little"):
+            raise damaged(self.name, f"sheet {number} is not where it should be")
         most_rows = most_columns = cells = 0
         for kind, content in self._walk(place):
-            if kind in _SIZES and len(content) >= struct.calcsize(_SIZES[kind]):
-                _, rows, _, columns = struct.unpack_from(_SIZES[kind], content)
-                self._check_reach(number, rows, columns)
-            elif kind in _CELLS and len(content) >= 4:
-                row, column = struct.unpack_from("<HH", content)
-                if kind == _SEVERAL:
-                    column = max(column, int.from_bytes(content[-2:], "little"))
-                    cells += len(content) // 6
-                self._check_reach(number, row + 1, column + 1)
-                cells, most_rows, most_columns = cells + 1, max(most_rows, row + 1), max(most_columns, column + 1)
-                if kind == _SHOWS_SHARED and len(content) >= 10:
-                    at = int.from_bytes(content[6:10], "little")
-                    self.tally.add_text(self.lengths[at] if at < len(self.lengths) else _LONGEST)
-            elif kind == _MERGED and len(content) < 2 + 8 * int.from_bytes(content[:2], "little"):
-                raise damaged(self.name, f"the list of merged cells of sheet {number} breaks off")
+            if kind not in _CELLS:
+                continue
+            row, column = struct.unpack_from("<HH", content)
+            if kind == _SEVERAL:
+                last = int.from_bytes(content[-2:], "little")
+                if len(content) != 6 + 6 * (last - column + 1):
+                    raise damaged(self.name, f"row {row + 1} of sheet {number} breaks off")
+                cells, column = cells + last - column, last
+            if column >= COLUMNS:
+                raise damaged(self.name, f"sheet {number} has a cell beyond column IV")
+            cells, most_rows, most_columns = cells + 1, max(most_rows, row + 1), max(most_columns, column + 1)
+            if kind == _SHOWS_SHARED:
+                at = int.from_bytes(content[6:10], "little")
+                self.tally.add_text(self.lengths[at] if at < len(self.lengths) else _LONGEST)
         self.tally.add_area(f"number {number}", most_rows, most_columns, cells)
 
-    def _check_reach(self, number: int, rows: int, columns: int) -> None:
-        if rows > ROWS or columns > COLUMNS:
-            raise damaged(self.name, f"sheet {number} has cells beyond column IV or row {ROWS:,}")
-
     def _walk(self, at: int) -> Iterator[tuple[int, bytes]]:
-        """Kind and content of each record, to the end of what begins there, including what is within it."""
-        data, depth = self.data, 0
+        """Kind and content of each record that is kept, to the end of what begins there and all that is within it."""
+        data, depth, last = self.data, 0, 0
         while at + 4 <= len(data):
             kind, length = struct.unpack_from("<HH", data, at)
             self.walked += 1
             if self.walked > MAX_RECORDS:
                 raise InputError(f"{self.name}: the workbook has more than {MAX_RECORDS:,} records; {SAVE_AS}")
-            yield kind, data[at + 4 : at + 4 + length]
+            if kind == _PASSWORD:
+                raise protected(self.name)
+            if kind in _KEPT or (kind == _CONTINUED and last == _SHARED):
+                content = bytes(data[at + 4 : at + 4 + length])
+                if len(content) < max(length, _KEPT.get(kind, 0)):
+                    raise damaged(self.name, "a record breaks off")
+                if kind in _FORMULAS:
+                    data[at + 24 : at + 26] = bytes(2)  # the length of the formula's text: the value stands before it
+                yield kind, content
+                last = _SHARED if kind == _CONTINUED else kind
+                depth += (kind == _BEGIN) - (kind == _END)
+                if kind == _END and depth <= 0:
+                    return
+            else:
+                data[at : at + 2] = _BLOTTED.to_bytes(2, "little")
+                last = 0
             at += 4 + length
-            depth += (kind & 0xFF == _BEGIN & 0xFF and kind <= _BEGIN) - (kind == _END)
-            if depth <= 0 and kind == _END:
-                return
 
 
-def _text_lengths(records: list[bytes]) -> array[int]:
-    """Characters of each shared text. A text may go on in the next record, where a byte says how wide its characters are.
+def _compound_file(name: str, stream: bytes) -> bytes:
+    """A compound file with one stream, in sectors of 4,096 bytes: tables of chains, directory, small streams, the stream."""
+    size, end, free = 4096, 0xFFFFFFFE, 0xFFFFFFFF
+    count = max(-(-len(stream) // size), 1)
+    tables = 1
+    while tables * size // 4 < tables + 2 + count:
+        tables += 1
+    chains = [0xFFFFFFFD] * tables + [end, end] + [tables + 3 + at for at in range(count - 1)] + [end]
+    chains += [free] * (tables * size // 4 - len(chains))
+    header = bytes.fromhex("D0CF11E0A1B11AE1") + bytes(16) + struct.pack("<HHHHH", 0x3E, 4, 0xFFFE, 12, 6) + bytes(6)
+    header += struct.pack("<IIIIIIIII", 1, tables, tables, 0, _SMALL, end, 0, end, 0)
+    header += struct.pack("<109I", *range(tables), *[free] * (109 - tables))
+    directory = _directory_entry("Root Entry", _ROOT, 1, tables + 1, size)  # a reader wants small streams, if only blank ones
+    directory += _directory_entry(name, _STREAM, free, tables + 2, count * size)
+    blocks = (header, struct.pack(f"<{len(chains)}I", *chains), directory, b"", stream)
+    return b"".join(block.ljust(-(-max(len(block), 1) // size) * size, b"\0") for block in blocks)
 
-    What breaks off is as long as it says: the reader refuses it, or takes less.
+
+def _directory_entry(name: str, kind: int, child: int, start: int, size: int) -> bytes:
+    text = name.encode("utf-16-le") + b"\0\0"
+    links = struct.pack("<HBBIII", len(text), kind, 1, 0xFFFFFFFF, 0xFFFFFFFF, child)
+    return text.ljust(64, b"\0") + links + bytes(36) + struct.pack("<IQ", start, size)
+
+
+def _text_lengths(name: str, records: list[bytes]) -> array[int]:
+    """Characters of each shared text. Raises InputError where the texts break off.
+
+    A text may go on in the next record, where a byte says anew how wide its characters are; its head may not.
     """
     lengths = array("q")
-    record, at = 0, 8
-    while record < len(records):
-        content = records[record]
-        if at + 3 > len(content):
-            record, at = record + 1, at - len(content) if at > len(content) else 0
-            continue
-        count, flags = struct.unpack_from("<HB", content, at)
+    texts = _Texts(name, records)
+    total = int.from_bytes(records[0][4:8], "little")
+    while len(lengths) < total and not texts.at_end():
+        count, flags = struct.unpack("<HB", texts.whole(3))
+        runs = int.from_bytes(texts.whole(2), "little") if flags & 8 else 0
+        extra = int.from_bytes(texts.whole(4), "little") if flags & 4 else 0
+        texts.skip_characters(count, 2 if flags & 1 else 1)
+        texts.skip(4 * runs + extra)
         lengths.append(count)
-        at += 3
-        runs = extra = 0
-        if flags & 8:
-            runs = int.from_bytes(content[at : at + 2], "little")
-            at += 2
-        if flags & 4:
-            extra = int.from_bytes(content[at : at + 4], "little")
-            at += 4
-        width = 2 if flags & 1 else 1
-        while at + count * width > len(content) and record + 1 < len(records):
-            count -= max(len(content) - at, 0) // width
-            record, at = record + 1, 1
-            content = records[record]
-            width = 2 if content[:1] and content[0] & 1 else 1
-        at += count * width + 4 * runs + extra
-        while at > len(content) and record + 1 < len(records):
-            record, at = record + 1, at - len(content)
-            content = records[record]
-        if at > len(content):
-            break
     return lengths
+
+
+class _Texts:
+    """A place within the records of the shared texts."""
+
+    def __init__(self, name: str, records: list[bytes]) -> None:
+        self.name, self.records = name, records
+        self.record, self.at = 0, 8
+
+    def at_end(self) -> bool:
+        """Whether nothing is left; goes on to the next record where one is over."""
+        while self.at >= len(self.records[self.record]):
+            if self.record + 1 == len(self.records):
+                return True
+            self._next()
+        return False
+
+    def whole(self, count: int) -> bytes:
+        """So many bytes that stand together."""
+        found = self.records[self.record][self.at : self.at + count]
+        if len(found) < count:
+            raise damaged(self.name, "its texts break off")
+        self.at += count
+        return found
+
+    def skip_characters(self, count: int, width: int) -> None:
+        """Go past so many characters of so many bytes."""
+        while count * width > (here := len(self.records[self.record]) - self.at):
+            count -= here // width
+            self._next()
+            width = 2 if self.whole(1)[0] & 1 else 1
+        self.at += count * width
+
+    def skip(self, count: int) -> None:
+        """Go past so many bytes."""
+        while count > (here := len(self.records[self.record]) - self.at):
+            count -= here
+            self._next()
+        self.at += count
+
+    def _next(self) -> None:
+        if self.record + 1 == len(self.records):
+            raise damaged(self.name, "its texts break off")
+        self.record, self.at = self.record + 1, 0

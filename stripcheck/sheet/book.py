@@ -134,8 +134,8 @@ def write_workbook(filling: Filling, path: Path, full: bool, progress: Callable[
     columns = strips.layout(chain, directions, full, bool(filling.chances))
     letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
 
-    summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in _FACTS), "Rules"])
-    strips.write_skeleton(made, columns, directions.n, f"{filling.card.name}: every direction")
+    summary_sheet = summary.write_skeleton(made, count, [*(label for label, _ in FACTS), "Rules"])
+    strips.write_skeleton(made, columns, directions.n, f"{filling.card.name}{strips.TITLE}")
     aircraft = pages.write_aircraft(made, filling.card, filling.chosen, filling.flap_names, tables_follow=True)
     manual_tables.write_manual(made, filling.card, filling.values)
     pages.write_day(made, filling.day)
@@ -259,7 +259,7 @@ def _made_from(filling: Filling) -> list[tuple[str, str]]:
     ]
 
 
-_FACTS = (
+FACTS = (  # label above the summary, and key of the value, None for the aeroplane's name
     ("Aeroplane", None),
     ("Take-off mass", "mass_takeoff"),
     ("Landing mass", "mass_landing"),
@@ -277,7 +277,7 @@ def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
     column = summary.LETTERS["name"]
     values = {**filling.card.values, **filling.day.values, **filling.chosen}
     units = {item.key: item.unit for item in filling.chain.inputs}
-    for row, (_, key) in enumerate(_FACTS, 4):
+    for row, (_, key) in enumerate(FACTS, 4):
         cell = f"{column}{row}"
         if key is None:
             made.formula(sheet, cell, "Aircraft!A1", filling.card.name)
@@ -290,7 +290,7 @@ def _fill_facts(made: pages.Pages, sheet: Any, filling: Filling) -> None:
             made.formula(sheet, cell, text, tidy(from_si(values[key], units[key])) if known else "not given")
             sheet[cell].number_format = styles.number_format(units[key])
         sheet[cell].alignment = styles.LEFT
-    row = 4 + len(_FACTS)
+    row = 4 + len(FACTS)
     beside = f"{summary.LETTERS['runway']}{row - 1}"
     direction = values["wind_from"]
     known = np.isfinite(direction)

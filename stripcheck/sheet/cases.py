@@ -151,7 +151,7 @@ def write_cases(pages: Pages, name: str, heading: str, chain: Chain, about: Mapp
     steps = _kept(chain, {*given, *elsewhere.places}, wanted, placed)
     columns = leading + [replace(step_column(step, "Worked out"), hidden=False) for step in steps]
     letters = {column.key: get_column_letter(number) for number, column in enumerate(columns, 1)}
-    formulas = write_formulas(chain, _places(placed, given, inputs, letters, steps))
+    formulas = write_formulas(chain, _places(placed, given, inputs, letters, steps), [step.key for step in steps])
     made: list[AnyColumn] = [one.column for one in about.values()]
     made += [_given_column(inputs[key], one) for key, one in given.items()]
     made += [FormulaColumn(elsewhere.in_rows(formulas[step.key]), shown(step, found[step.key], faults)) for step in steps]
@@ -247,7 +247,8 @@ def _kept(chain: Chain, varying: Collection[str], wanted: Collection[str], place
     while True:
         kept = [step for step in steps if step.key not in lone]
         places = {**_blank_places(placed), **dict.fromkeys(varying, nowhere), **placed}
-        formulas = write_formulas(chain, {**places, **{step.key: nowhere for step in kept}})
+        keys = [step.key for step in kept]
+        formulas = write_formulas(chain, {**places, **dict.fromkeys(keys, nowhere)}, keys)
         long = [step for step in kept if len(formulas[step.key]) > LONG_FORMULA]
         parts = {key for step in long for key in step.inputs if key in lone}
         if not parts:

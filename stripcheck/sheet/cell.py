@@ -246,6 +246,7 @@ _UNARY: dict[Any, Callable[..., Cell]] = {
     np.negative: _negative,
     np.square: lambda cell: _binary(np.power, cell, as_cell(2.0)),
     np.cbrt: _cube_root,
+    np.floor: lambda cell: call("INT", cell),
     np.isfinite: _is_number,
     np.isnan: lambda cell: _not(_is_number(cell)),
     np.logical_not: _not,

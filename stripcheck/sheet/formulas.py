@@ -6,7 +6,7 @@ the steps that use it.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Mapping
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -39,8 +39,8 @@ class Place(NamedTuple):
 NOWHERE = Place("")  # of an input that is blank in every row
 
 
-def write_formulas(chain: Chain, places: Mapping[str, Place]) -> dict[str, str]:
-    """Formula text, without equals sign, of every step that has a place.
+def write_formulas(chain: Chain, places: Mapping[str, Place], keys: Collection[str] | None = None) -> dict[str, str]:
+    """Formula text, without equals sign, of every step that has a place, or of those with the ``keys``.
 
     ``places`` tells where each input of the chain stands and each step that is kept as a cell. A step without a place
     is written into those that use it. Besides, `GROUND_NAMES` and, for each step of words, its key and `WORDS`, give
@@ -48,7 +48,8 @@ def write_formulas(chain: Chain, places: Mapping[str, Place]) -> dict[str, str]:
     Raises KeyError for an input without a place and ValueError for a formula beyond a spreadsheet's limits.
     """
     writer = _Writer(chain, places)
-    return {step.key: writer.formula_of(step) for step in chain.steps if step.key in places}
+    wanted = places if keys is None else keys
+    return {step.key: writer.formula_of(step) for step in chain.steps if step.key in wanted}
 
 
 class _Writer:

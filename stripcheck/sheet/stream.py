@@ -142,7 +142,8 @@ def write_book(
     level : of deflate, 1 to 9
 
     The spreadsheet program is told to recalculate when it opens the book. Formulas in the skeleton itself
-    get the value that ``cached`` has for them. Raises InputError when there are more rows than a sheet holds or
+    get the value that ``cached`` has for them; what begins with "=" and has none there is a user's text, such as a header,
+    and stays text. Raises InputError when there are more rows than a sheet holds or
     the file can't be written,
     ValueError when the tables don't fit the skeleton or hold what a sheet can't keep.
     Method: SpreadsheetML as in the heading of this module.
@@ -166,6 +167,7 @@ def write_book(
             raise ValueError(f'the skeleton has no sheet "{name}"')
     cuts = [cut for name, table in tables.items() for cut in _check(name, table)]
     sheets = {name: _prepare(skeleton[name], table) for name, table in tables.items()}
+    _keep_text_as_text(skeleton, cached or {})
     skeleton.properties.creator = "stripcheck"
     skeleton.properties.lastModifiedBy = None
     skeleton.calculation.fullCalcOnLoad = True
@@ -195,6 +197,15 @@ def write_book(
         if any_newer:
             target.writestr("xl/metadata.xml", _METADATA)
     return cuts
+
+
+def _keep_text_as_text(skeleton: Workbook, cached: Mapping[str, Mapping[str, object]]) -> None:
+    for sheet in skeleton.worksheets:
+        ours = cached.get(sheet.title, {})
+        for row in sheet.iter_rows():
+            for cell in row:
+                if cell.data_type == "f" and cell.coordinate not in ours:
+                    cell.data_type, cell.quotePrefix = "s", True  # so that it stays one when it is edited
 
 
 _FORMULA_CELL = re.compile(r'<c r="([A-Z]+[0-9]+)"([^>]*)><f>(.*?)</f><v ?/?>(?:</v>)?</c>', re.DOTALL)
@@ -445,13 +456,13 @@ def _serial(value: datetime.date | datetime.time | datetime.timedelta) -> float 
 def _text_cells(texts: list[str], style: str) -> list[bytes]:
     empty = f"{style}/>".encode()
     full = f'{style} t="inlineStr"><is><t xml:space="preserve">'.encode()
-    return [full + text + b"</t></is></c>" if text else empty for text in _xml_texts(texts)]
+    return [full + text + b"</t></is></c>" if text else empty for text in xml_texts(texts)]
 
 
-def _xml_texts(texts: list[str]) -> list[bytes]:
+def xml_texts(texts: list[str]) -> list[bytes]:
     """Texts as XML carries them: cut to a cell's length, forbidden characters replaced, the rest escaped.
 
-    >>> _xml_texts(["A<B" + chr(7), "09/27"])[0].decode()
+    >>> xml_texts(["A<B" + chr(7), "09/27"])[0].decode()
     'A&lt;B\ufffd'
     """
     if max(map(len, texts), default=0) > MAX_TEXT // 2:
@@ -488,7 +499,7 @@ def _cached(values: np.ndarray | Sequence[object]) -> list[list[bytes]]:
         kinds = [b' t="str"' if number == b"nan" else b"" for number in numbers]
         return [kinds, [b"" if number == b"nan" else number for number in numbers]]
     if set(map(type, values)) == {str}:
-        return [[b' t="str"'] * len(values), _xml_texts(list(map(str, values)))]
+        return [[b' t="str"'] * len(values), xml_texts(list(map(str, values)))]
     cells = [_cached_value(value) for value in values]
     return [[kind for kind, _ in cells], [value for _, value in cells]]
 
@@ -500,7 +511,7 @@ def _cached_value(value: object) -> tuple[bytes, bytes]:
         return b' t="str"', b""
     if isinstance(value, int | float | np.integer | np.floating):
         return b"", repr(float(value)).encode()
-    return b' t="str"', _xml_texts([str(value)])[0]
+    return b' t="str"', xml_texts([str(value)])[0]
 
 
 # --- streaming

@@ -45,6 +45,7 @@ CHANCES = ("landing_chance", "takeoff_chance")
 NO_MARGIN = -9e9  # stands for "no margin" where the two are compared
 SAME_MARGIN = 0.5  # m
 MOVED_ON = "refresh"
+TITLE = ": every direction"  # above the table, after the aeroplane's name
 AS_FILLED = "As filled"  # the group of columns that tell what held when the workbook was filled
 ABOUT = (
     ("surface_given", "Surface in the list", 20, "Spelling in the list"),
@@ -285,7 +286,8 @@ def table_of(columns: list[Column], directions: Directions, given: Mapping[str, 
         elif column.key == "source_row":
             made.append(NumberColumn(directions.numbers["source_row"]))
         elif column.key in CHANCES:
-            made.append(FormulaColumn(_chance_formula(column.key, columns), 100.0 * values[column.key]))
+            letters = {one.key: get_column_letter(number) for number, one in enumerate(columns, 1)}
+            made.append(FormulaColumn(chance_formula(column.key, letters), 100.0 * values[column.key]))
         elif column.key.endswith(("_chance_filled", "_chance_margin")):
             made.append(NumberColumn(as_filled(column.key, values)))
         elif column.key == "key":
@@ -309,9 +311,9 @@ def shown(step: Step, values: Any, faults: Sequence[str]) -> Any:
     return values if step.truth else np.asarray(from_si(values.astype(float), step.unit))
 
 
-def _chance_formula(key: str, columns: list[Column]) -> str:
-    """The chance as long as the margin is the one that it was worked out for."""
-    places = {column.key: f"${get_column_letter(number)}{ROW}" for number, column in enumerate(columns, 1)}
+def chance_formula(key: str, letters: Mapping[str, str]) -> str:
+    """The chance as long as the margin is the one that it was worked out for; ``letters`` of the columns by key."""
+    places = {one: f"${letter}{ROW}" for one, letter in letters.items()}
     margin, filled, found = places[key.replace("chance", "margin")], places[f"{key}_margin"], places[f"{key}_filled"]
     same = f"ABS(IF(ISNUMBER({margin}),{margin},{NO_MARGIN:.0f})-{filled})<={SAME_MARGIN}"
     return f'IF({same},IF(ISNUMBER({found}),{found},""),"{MOVED_ON}")'
