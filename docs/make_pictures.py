@@ -19,7 +19,10 @@ PICTURES = Path(__file__).parent / "pictures"
 PAGES = {"Summary": "summary", "Strips": "strips", "Aircraft": "aircraft", "Manual": "manual", "Day": "day", "Rules": "rules",
          "Left out": "left-out", "Method": "method"}  # fmt: skip
 # the workbooks for people: the command that makes one, and the same for its pages
-BOOKS = {("whatif", "--demo"): {"What if": "what-if", "Charts": "what-if-charts"}}
+BOOKS = {
+    ("whatif", "--demo"): {"What if": "what-if", "Charts": "what-if-charts"},
+    ("register", "--demo"): {"Register": "operator-register", "Fleet": "operator-fleet", "Months": "operator-months"},
+}
 DPI = 110
 
 

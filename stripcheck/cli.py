@@ -1,4 +1,4 @@
-"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``audit``, ``merge``, ``demo``, ``list`` and ``door``.
+"""The command line: ``stripcheck fill``, ``strip``, ``card``, ``audit``, ``merge``, ``register``, ``whatif``, ``demo``...
 
 Exit codes: 0 done; 1 an unexpected failure; 2 bad input or bad options, said in one sentence, and nothing was written;
 130 interrupted. NumPy, openpyxl and pint are imported by the commands that need them, so that help shows at once.

@@ -64,7 +64,7 @@ def add_register(commands: Any) -> None:
                           help="aircraft cards, up to four: .toml files, or names of shipped ones")  # fmt: skip
     register.add_argument("--rules", help="rule set: a .toml file, or the name of a shipped one")
     register.add_argument("--climate", metavar="CLIMATE.csv",
-                          help="twelve months: Month, Temperature [°C], Ground, QNH [hPa], Elevation [ft] they hold at")  # fmt: skip
+                          help="twelve months: Month, Temperature [°C], Ground, QNH [hPa], Elevation [ft]")  # fmt: skip
     register.add_argument("--month-card", metavar="CARD", help="which of the cards goes through the year (usual: the first)")
     register.add_argument("--survey-age", type=float, metavar="MONTHS", help="age from which a survey is old (usual: 60)")
     register.add_argument("-o", "--output", required=True, metavar="OUT.xlsx", help="workbook to write")

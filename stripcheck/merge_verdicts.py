@@ -46,11 +46,12 @@ def compare_verdicts(merge: Merge, path: Path, card_name: str, rules_name: str, 
     variants: list[tuple[int | None, Sequence[Write]]] = [(change.row, change.writes) for change in alone]
     variants += [(row, [write for change in changes for write in change.writes]) for row, changes in groups.items()]
     directions = directions_of(read_runways(_with_rows(table, variants), path))
-    check_air(day, directions)
-    filling = fill(directions, card, day, rules, chosen, flaps, short=True)
     said: dict[int, tuple[str, ...]] = {left.row: (f"left out ({left.what})",) for left in directions.left_out}
-    for at, row in enumerate(directions.numbers["source_row"][::2].astype(int).tolist()):
-        said[row] = tuple(RANKS[int(filling.best[f"{side}_rank"][at]) - 1] for side, _, _ in SIDES)
+    if directions.n:
+        check_air(day, directions)
+        best = fill(directions, card, day, rules, chosen, flaps, short=True).best
+        for at, row in enumerate(directions.numbers["source_row"][::2].astype(int).tolist()):
+            said[row] = tuple(RANKS[int(best[f"{side}_rank"][at]) - 1] for side, _, _ in SIDES)
     before = {row: said[table.row_numbers[row]] for row in rows}
     after = [said[FAR_BELOW + number] for number in range(len(variants))]
     flips = {change.key: _flip(before[change.row] if change.row is not None else None, verdicts)

@@ -18,6 +18,7 @@ from stripcheck.errors import InputError, one_line
 from stripcheck.merge_verdicts import Verdicts, compare_verdicts
 from stripcheck.register.columns import Found
 from stripcheck.register.csv_lines import CsvLines
+from stripcheck.register.matching import BY_IDENTIFIER
 from stripcheck.register.merge import CHANGED, GONE, KINDS, NEW, Change, Merge, compare
 from stripcheck.register.merge_row import Write
 from stripcheck.register.read_table import DELIMITERS, TEXT_KINDS, check_file, find_encoding, read_table, text_rows
@@ -35,6 +36,7 @@ BOOK_KINDS = (".xlsx", ".xlsm")
 MOST_LINES = 40  # changes of one kind that the terminal shows: about a screen
 MOST_REMARKS = 12
 MOST_SHEETS = 6
+NO_FLIP = "no change"
 LONGEST_SHOWN = 160  # characters of a new runway that the terminal shows
 SAME = 1e-9  # relative: a number written and read back
 
@@ -220,7 +222,7 @@ def _lines_of(merge: Merge, change: Change, verdicts: Verdicts | None) -> Iterat
 
 
 def _how(change: Change) -> str:
-    return "" if change.how == "identifier" else f"  (matched by {change.how})"
+    return "" if change.how in ("", BY_IDENTIFIER) else f"  (matched by {change.how})"
 
 
 def _together(merge: Merge, verdicts: Verdicts | None) -> list[str]:
@@ -251,12 +253,12 @@ def _review(request: MergeRequest, merge: Merge, verdicts: Verdicts | None) -> l
     numbers = merge.register.runways.table.row_numbers
     lines = []
     for change in merge.changes:
-        flip = "" if verdicts is None else verdicts.flips.get(change.key, "") or "no change"
-        all_of_it = None if verdicts is None or change.row is None else verdicts.together.get(change.row)
-        if all_of_it is not None and all_of_it != flip:
-            flip += f"; with all changes of the runway: {all_of_it or 'no change'}"
+        flip = "" if verdicts is None else verdicts.flips.get(change.key, "") or NO_FLIP
+        all_of_it = flip if verdicts is None or change.row is None else verdicts.together.get(change.row, flip) or NO_FLIP
+        if all_of_it != flip:
+            flip += f"; with all changes of the runway: {all_of_it}"
         remark = f"can't be merged: {change.hindered}" if change.hindered else ""
-        how = f"matched by {change.how}" if _how(change) else ""
+        how = _how(change).strip(" ()")
         own = "the register has notes of its own" if change.by_hand else ""
         row = None if change.row is None else numbers[change.row]
         lines.append(Line(change.kind, change.strip, change.runway, row, change.column, change.old, change.new, flip,

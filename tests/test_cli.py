@@ -29,7 +29,7 @@ def fill(list_path, output, *more):
 def test_fill_writes_a_workbook_and_says_what_it_did(strips, tmp_path, capsys):
     assert fill(strips, tmp_path / "out.xlsx") == 0
     said = capsys.readouterr().out
-    assert "1 runways, 0 of 1 left out" in said
+    assert "1 runway, 0 of 1 left out" in said
     assert "Landing: 1 suitable, 0 marginal, 0 unsuitable, 0 not assessed" in said
     assert CAUTION in said
     sheets = openpyxl.load_workbook(tmp_path / "out.xlsx").sheetnames

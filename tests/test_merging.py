@@ -729,3 +729,18 @@ def test_texts_are_never_formulas(tmp_path: Path) -> None:
     assert all(cell.value.startswith("=IF(ISNUMBER(E") for cell in cells if cell.data_type == "f")
     xml = zipfile.ZipFile(register).read("xl/worksheets/sheet1.xml").decode()
     assert '<is><t xml:space="preserve">=HYPERLINK("x")</t></is>' in xml
+
+
+def test_the_page_in_the_docs(tmp_path: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch) -> None:
+    """What docs/register.md shows is what the command says and does."""
+    page = (Path(__file__).parents[1] / "docs" / "register.md").read_text(encoding="utf-8").split("\n## Merge")[1]
+    blocks = re.findall(r"```(?:csv|text)\n(.*?)```", page, re.DOTALL)
+    monkeypatch.chdir(tmp_path)
+    for name, text in zip(("strips.csv", "survey.csv"), blocks, strict=False):
+        Path(name).write_text(text, encoding="utf-8")
+    command = re.search(r"`stripcheck (merge strips.csv survey.csv .*?)` says", page)
+    assert command is not None and main(command[1].split()) == 0
+    assert capsys.readouterr().out == blocks[2]
+    accept = ["--accept", "changed", "--accept", "new", "--source", "Survey of May"]
+    assert main(["merge", "strips.csv", "survey.csv", *accept]) == 0
+    assert Path("strips.csv").read_text(encoding="utf-8") == blocks[3] and len(blocks) == 4

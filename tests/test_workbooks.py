@@ -9,7 +9,7 @@ from stripcheck.cli import main
 
 FOLDER = Path(__file__).parents[1] / "workbooks"
 # each with the command that makes it anew: stripcheck demo -o workbooks/lantern-range.xlsx --force
-COMMANDS = {"lantern-range.xlsx": ["demo"], "what-if.xlsx": ["whatif", "--demo"]}
+COMMANDS = {"lantern-range.xlsx": ["demo"], "what-if.xlsx": ["whatif", "--demo"], "register.xlsx": ["register", "--demo"]}
 
 
 @pytest.fixture(scope="module", params=COMMANDS)

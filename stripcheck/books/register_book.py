@@ -13,6 +13,7 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
+from openpyxl.worksheet.worksheet import Worksheet
 
 from stripcheck.books import common, register_climate, register_fleet, register_months, register_sheet
 from stripcheck.books.register_best import WORDS, Best
@@ -23,7 +24,7 @@ from stripcheck.books.register_reading import Reading, write_reading
 from stripcheck.books.register_rows import Rows, rows_of
 from stripcheck.card import Card, load_card
 from stripcheck.chain import evaluate
-from stripcheck.day import Day, read_day
+from stripcheck.day import LIMITS, Day, read_day
 from stripcheck.errors import InputError
 from stripcheck.inputs import DAY
 from stripcheck.rules import Rules, load_rules
@@ -31,9 +32,10 @@ from stripcheck.safe_file import refuse_if_open
 from stripcheck.sheet import manual_tables, method, pages
 from stripcheck.sheet.cases import Cases, no_inputs, write_once
 from stripcheck.sheet.stream import write_book
-from stripcheck.units import from_si
+from stripcheck.units import from_si, tidy
 
 MOST_CARDS = 4
+MOST_RUNWAYS = 1000  # that a workbook of live cases can hold and still be opened with patience
 FLAPS = ("takeoff_flap", "landing_flap")
 LOADING = ("mass_takeoff", "mass_landing", *FLAPS)
 DEMO_LIST, DEMO_CLIMATE = "lantern-register.csv", "lantern-climate.csv"
@@ -83,6 +85,11 @@ def make_register(request: Request) -> list[str]:
         raise InputError("no temperature of the standard day: add --temp or --isa-dev")
     climate = register_climate.UNKNOWN if request.climate is None else read_climate(request.climate)
     rows = rows_of(request.list, request.airports, request.sheet)
+    if len(rows.rows) > MOST_RUNWAYS:
+        raise InputError(
+            f"{request.list}: {len(rows.rows):,} runways are more than the {MOST_RUNWAYS:,} of a register workbook; divide the "
+            "list, or use stripcheck fill"
+        )
     of_year = _month_card(request, cards)
     book = RegisterBook(rows, cards, rules, day, climate, of_year, request.survey_age, request.counted_on)
     cuts = book.write(request.output)
@@ -116,7 +123,7 @@ class RegisterBook:
         """Write the workbook whole or not at all; returns what had to be cut."""
         book = self.pages.book
         source = register_sheet.write_register(self.pages, self.rows, self.survey_age, self.counted_on)
-        pages.write_day(self.pages, self.day)
+        self._limit_day(pages.write_day(self.pages, self.day))
         days = register_climate.write_climate(self.pages, self.climate, self.day)
         pages.write_rules(self.pages, self.rules)
         chains = [register_chain(card.chain) for card in self.cards]
@@ -135,6 +142,17 @@ class RegisterBook:
         book.active = 0
         tables = {one.sheet: one.table for one in (*ends, *self.tables)} | {"Reading": reading.table}
         return write_book(book, tables, path, cached=self.pages.cached, level=common.SMALLEST)
+
+    def _limit_day(self, sheet: Worksheet) -> None:
+        """The limits of the day's values, instead of a check for any number."""
+        sheet.data_validations.dataValidation = [
+            check for check in sheet.data_validations.dataValidation if check.type != "decimal"
+        ]
+        for item in DAY:
+            if item.kind == "number":
+                low, high = (tidy(from_si(limit, item.unit)) for limit in LIMITS[item.key])
+                cell = self.pages.value_cells[item.key].split("!")[1].replace("$", "")
+                common.expect_number(sheet, cell, item.label, low, high, item.unit)
 
     def _aeroplane(self, number: int, card: Card, chain: Any, reading: Reading, ends: Ends, days: Days) -> None:
         """The pages of one aeroplane, and its cases."""

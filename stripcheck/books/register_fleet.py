@@ -32,9 +32,11 @@ FACTS_ROW, PLANE_ROW, COUNT_ROW, RULES_ROW = 5, 5, 9, 16
 HEADER_ROW, FIRST_ROW = 18, 19
 LEADING = (("Strip", 10.0), ("Name", 20.0), ("Runway", 9.0), ("Survey", 20.0))
 MATRIX_WIDTH = 27.0
+HALF_PAGE = 54.0  # width that the matrix has at the least, for what stands above it
 PARTS = (
-    ("in", "Land", 12.0), ("on", "on", 7.0), ("in_margin", "Margin [m]", 9.5), ("out", "Take off", 12.0), ("by", "by", 7.0),
-    ("out_margin", "Margin [m]", 9.5), ("why", "What limits it", 48.0),
+    ("strip", "Strip", 10.0), ("runway", "Runway", 9.0), ("in", "Land", 12.0), ("on", "on", 7.0),
+    ("in_margin", "Margin [m]", 9.5), ("out", "Take off", 12.0), ("by", "by", 7.0), ("out_margin", "Margin [m]", 9.5),
+    ("why", "What limits it", 48.0),
 )  # fmt: skip
 SIDES = (("in", "on", "landing"), ("out", "by", "takeoff"))
 MONTH_DAYS = 30.4375
@@ -65,8 +67,10 @@ def write_fleet(pages: Pages, reading: Reading, planes: Sequence[Plane], facts: 
     for runway in range(reading.rows):
         _write_leading(pages, sheet, reading, runway, surveys[runway])
     first = len(LEADING) + 1
+    width = max(MATRIX_WIDTH, HALF_PAGE / len(planes))
     for number, plane in enumerate(planes):
         _write_words(pages, sheet, plane, first + number, last)
+        sheet.column_dimensions[get_column_letter(first + number)].width = width
         _write_details(pages, sheet, plane, first + len(planes) + number * len(PARTS), last)
     _colour_surveys(sheet, f"D{FIRST_ROW}:D{last}")
     _set_up(sheet, len(planes), last)
@@ -75,17 +79,14 @@ def write_fleet(pages: Pages, reading: Reading, planes: Sequence[Plane], facts: 
 
 def _write_head(pages: Pages, sheet: Worksheet, facts: Sequence[tuple[str, str, Any]]) -> None:
     sheet["A1"], sheet["A1"].font = "The fleet on the standard day", styles.TITLE
-    styles.write_caution(sheet, "D2", CAUTION)
+    styles.write_caution(sheet, "A2", CAUTION)
     too_many = f"{REGISTER}!{SAID[1]}"
-    pages.formula(sheet, "D3", f'IF(LEFT({too_many},3)="THE",{too_many},"")', "")
-    sheet["D3"].font = styles.CAUTION_FONT
+    pages.formula(sheet, "A3", f'IF(LEFT({too_many},3)="THE",{too_many},"")', "")
+    sheet["A3"].font = styles.CAUTION_FONT
     for row, (label, text, value) in zip((*range(FACTS_ROW, FACTS_ROW + len(facts) - 1), RULES_ROW), facts, strict=True):
         sheet[f"A{row}"], sheet[f"A{row}"].font = label, styles.SMALL
         pages.formula(sheet, f"B{row}", text, value)
         sheet[f"B{row}"].font, sheet[f"B{row}"].alignment = styles.BODY, styles.LEFT
-    sheet.merge_cells(f"B{RULES_ROW}:C{RULES_ROW}")  # the columns that each page of the print repeats
-    sheet[f"B{RULES_ROW}"].alignment = sheet[f"A{RULES_ROW}"].alignment = styles.WRAP
-    sheet.row_dimensions[RULES_ROW].height = 40
     for row, word in enumerate(WORDS, COUNT_ROW):
         sheet[f"D{row}"], sheet[f"D{row}"].font, sheet[f"D{row}"].alignment = word, styles.BODY, styles.CENTRE
     styles.colour_words(sheet, f"D{COUNT_ROW}:D{COUNT_ROW + len(WORDS) - 1}", COLOURS)
@@ -101,7 +102,7 @@ def _set_up(sheet: Worksheet, planes: int, last: int) -> None:
     sheet.freeze_panes = sheet.cell(FIRST_ROW, len(LEADING))
     sheet.sheet_view.showGridLines = False
     first = len(LEADING) + planes
-    styles.set_print(sheet, f"{HEADER_ROW - 1}:{HEADER_ROW}", "A:C")
+    styles.set_print(sheet, f"{HEADER_ROW - 1}:{HEADER_ROW}")
     sheet.sheet_properties.pageSetUpPr.fitToPage = False
     sheet.page_setup.scale = PRINT_SCALE
     sheet.col_breaks = ColBreak()
@@ -164,7 +165,6 @@ def _colour_surveys(sheet: Worksheet, cells: str) -> None:
 def _write_words(pages: Pages, sheet: Worksheet, plane: Plane, column: int, last: int) -> None:
     """One aeroplane's column of the matrix, with its loading and the counts above."""
     letter = get_column_letter(column)
-    sheet.column_dimensions[letter].width = MATRIX_WIDTH
     sheet.cell(HEADER_ROW - 1, column).fill = styles.BAND_FILL
     for row, (text, value) in zip((PLANE_ROW, PLANE_ROW + 1, PLANE_ROW + 2, HEADER_ROW),
                                   (plane.heading, *plane.loading, plane.heading), strict=True):  # fmt: skip
@@ -193,10 +193,13 @@ def _write_details(pages: Pages, sheet: Worksheet, plane: Plane, first: int, las
         sheet.column_dimensions[letter].width = width
         sheet[f"{letter}{HEADER_ROW - 1}"].fill = styles.BAND_FILL
     write_header(sheet, HEADER_ROW, tuple(title for _, title, _ in PARTS), first)
-    name = f"{letters['in']}{HEADER_ROW - 1}"
-    pages.formula(sheet, name, *plane.heading)
-    sheet[name].font = styles.BOLD
-    styles.write_caution(sheet, f"{letters['in']}2", CAUTION)  # each aeroplane has a page of its own
+    edge = letters["strip"]  # each aeroplane has a page of its own
+    styles.write_caution(sheet, f"{edge}2", CAUTION)
+    lines = [(1, plane.heading, styles.TITLE), (HEADER_ROW - 1, plane.heading, styles.BOLD)]
+    lines += [(row, line, styles.BODY) for row, line in enumerate(plane.loading, PLANE_ROW)]
+    for row, (text, value), font in lines:
+        pages.formula(sheet, f"{edge}{row}", text, value)
+        sheet[f"{edge}{row}"].font = font
     for runway in range(plane.best.reading.rows):
         _write_detail(pages, sheet, plane.best, runway, letters)
     for key in ("in", "out"):
@@ -211,13 +214,19 @@ def _write_detail(pages: Pages, sheet: Worksheet, best: Best, runway: int, lette
         cells[f"{key}_margin"] = best.picked(side, "margin", runway)
         text, value = best.direction(side, runway)
         cells[on] = f'IF({letters[key]}{row}="{NOT_ASSESSED}","",{text})', "" if cells[key][1] == NOT_ASSESSED else value
+    of_reading = best.reading
     for key, letter in letters.items():
-        text, value = best.unless_closed(runway, *cells[key], "")
+        if key in cells:
+            text, value = best.unless_closed(runway, *cells[key], "")
+        else:
+            text, value = of_reading.at(key, READING_ROW + runway), of_reading.values[key][runway]
         pages.formula(sheet, f"{letter}{row}", text, value)
         cell = sheet[f"{letter}{row}"]
         cell.font, cell.border, cell.alignment = styles.BODY, styles.LINE, styles.CENTRE
         if key.endswith("_margin"):
             cell.number_format = "#,##0"
+        elif key == "strip":
+            cell.alignment = styles.MIDDLE
         elif key == "why":
             cell.font, cell.alignment = styles.SMALL, Alignment(wrap_text=True, vertical="center", indent=1)
 

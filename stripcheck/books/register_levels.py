@@ -8,7 +8,7 @@ and the last level reads both. The days are the standard day and, for one aeropl
 
 from __future__ import annotations
 
-from collections.abc import Collection, Mapping, Sequence
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -165,7 +165,7 @@ def write_ends(pages: Pages, reading: Reading, chain: Chain, day_values: Mapping
 def _given(reading: Reading, end: int) -> dict[str, Given]:
     other = 3 - end
     read: dict[str, tuple[Any, tuple[str, ...]]] = {
-        "length": (plain, ("length",)),
+        "length": (above_zero, ("length",)),  # a length of 0, which is a fault, must not divide
         "tora": (take_off_length, (f"tora_{end}", "length")),
         "lda": (landing_length, (f"lda_{end}", "length", f"displaced_{end}")),
         "width": (above_zero, ("width",)),

@@ -37,6 +37,7 @@ from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import from_si, to_si
 
 SHEET, PROFILES = "Reading", "Profiles"
+PRINT_SCALE = 60  # percent
 TEXTS = ("strip", "name", "runway", "surface", "condition", "land_towards", "take_off_towards", "one_way", "closed", "profile",
          "survey_date")  # fmt: skip
 AGAIN = "make the workbook anew with stripcheck register"
@@ -286,8 +287,9 @@ class _Maker:
             for end in (1, 2)
         ]
         faults = [
-            _Fault('column "Runway": both ends are expected, such as 09/27', f"NOT(AND({good[0]},{good[1]}))",
-                   lambda row: not (_good_end(row, 1) and _good_end(row, 2))),
+            _Fault('column "Runway": both ends are expected, such as 09/27',
+                   f'OR({ref("runway")}="N/A",NOT(AND({good[0]},{good[1]})))',
+                   lambda row: row["runway"] == "N/A" or not (_good_end(row, 1) and _good_end(row, 2))),
             *(_one_of(self, key, header, words) for key, header, words in (
                 ("surface", "Surface", SURFACES), ("condition", "Condition", CONDITIONS), ("one_way", "One-way", ("yes", "no")),
                 ("closed", "Closed", ("yes", "no")))),
@@ -441,7 +443,9 @@ def _write_skeleton(pages: Pages, source: Source, columns: Mapping[str, _Column]
         pages.formula(sheet, f"{letters[key]}1", text, "percent cells?" if found else "")
         sheet[f"{letters[key]}1"].font = styles.SMALL
     sheet.freeze_panes = sheet.cell(FIRST_ROW, 4)
-    styles.set_print(sheet, f"{HEADER_ROW}:{HEADER_ROW}")
+    styles.set_print(sheet, f"{HEADER_ROW}:{HEADER_ROW}", "A:C")
+    sheet.sheet_properties.pageSetUpPr.fitToPage = False
+    sheet.page_setup.scale = PRINT_SCALE
 
 
 # --- what the formulas give, for the cells as they are written

@@ -43,10 +43,7 @@ _OWN = PatternFill("solid", fgColor="FFFFFF")
 _DOUBT = PatternFill("solid", bgColor="F6D77A")
 _DARK = PatternFill("solid", bgColor="595959")
 _OLD = PatternFill("solid", bgColor="F2B38C")
-HOW = (
-    "One row for each runway. Type over anything; insert, delete and sort rows; add columns of your own anywhere (they are "
-    "kept, not reckoned with). Headers of the register stay as they are."
-)
+HOW = "A row for each runway. Type over anything; insert, delete and sort rows; add columns of your own; keep these headers."
 
 
 def write_register(pages: Pages, rows: Rows, survey_age: float, counted_on: datetime.date | None) -> Source:
@@ -99,7 +96,8 @@ def say(pages: Pages, sentences: Sequence[tuple[str, str]]) -> None:
 
 def _unlock_all(sheet: Worksheet, rows: Rows) -> None:
     """Columns free to type in all the way down, so that rows and columns can be deleted and typed in anywhere."""
-    widths = [column.width for column in rows.columns] + [14.0] * len(rows.carried)
+    longest = [max(len(str(cell)) for cell in (header, *cells)) for header, cells in rows.carried]
+    widths = [column.width for column in rows.columns] + [min(max(14.0, 1.15 * length), 40.0) for length in longest]
     for number, width in enumerate(widths, 1):
         dimension = sheet.column_dimensions[get_column_letter(number)]
         dimension.width, dimension.protection, dimension.font = width, styles.UNLOCKED, styles.BODY

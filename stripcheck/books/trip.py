@@ -50,7 +50,7 @@ DEMO_CARD, DEMO_RULES = "ridge-runner", "uk-leaflet"
 MAIN_TAB, WORKING_TAB = "2F4254", "BFBFBF"
 WORKING_SHEETS = (READING, PLACES, FLAPS, WORKING, BEST, *TRIALS.values(), SEARCH, ABORT)
 NOTES = (
-    "Told is the best of its two directions and of the flap settings that the card allows for it.",
+    "Each landing and take-off is the best of both directions and of the flap settings that the card allows for it.",
     "Greatest suitable mass: in that direction and with that flap, found by trying whole kilograms, the verdict deciding each "
     "time (sheet Greatest mass): the heaviest tried that suits. A kilogram more does not, unless that sheet shows a wider gap.",
     "Fuel of a leg: cruise flow for its time, and taxi and circuit. All of it counts as aboard at take-off, so that masses err "

@@ -24,6 +24,7 @@ from stripcheck.sheet.stream import FormulaColumn
 
 ABORT = "Abort"
 ROUNDS = 8  # of false position: random strips and cards came within 2e-13 of the bisection
+ROUNDING = 1e-12  # below this a slack says no more which side of the abort point a speed lies on
 SOURCE = "Ground runs of the chain, false position"
 _BRAKED = ("density", "wing_area", "mass_takeoff", "rolling_drag", "ground_lift", "braking", "braking_quality")
 WANTED = ("abort_known", "abort_stops", "abort_open", "abort_distance", "abort_eas", "seventy_at", "seventy_by_half",
@@ -60,7 +61,9 @@ def _open(start: Number, square: Number, wind: Number, lift_off: Number, needed:
 
 
 def _slack(needed: Number, usable: Number) -> Number:
-    return 1.0 - np.sqrt(needed / usable)
+    """What is left of the strip, as a root, since lengths go with the square of speed; none where it is but rounding."""
+    left = 1.0 - np.sqrt(needed / usable)
+    return np.where(np.absolute(left) < ROUNDING, 0.0, left)
 
 
 def _between(known: Number, stops: Number, is_open: Number) -> Number:

@@ -21,7 +21,7 @@ from stripcheck.verdict import SUITABLE
 FIRST_ROW, ROWS_OF_STOP = 8, 4
 HEADER_ROW = 7
 COLUMNS = (  # header, width, line of the Trip sheet without its side, number format
-    ("", 10, "", ""),
+    ("", 9.5, "", ""),
     ("Verdict", 12.5, "verdict", "General"),
     ("On", 6, "direction", "@"),
     ("Flap", 6, "flap", "@"),
@@ -29,7 +29,7 @@ COLUMNS = (  # header, width, line of the Trip sheet without its side, number fo
     ("Fly kt", 6.5, "speed", "0"),
     ("Needs m", 7.5, "required", "#,##0"),
     ("Has m", 7.5, "available", "#,##0"),
-    ("Margin m", 7.5, "margin", "#,##0;-#,##0;0"),
+    ("Margin m", 8.5, "margin", "#,##0;-#,##0;0"),
     ("Mass kg", 7.5, "", "#,##0"),
     ("Up to kg", 7.5, "greatest", "#,##0"),
     ("Cross kt", 6.5, "crosswind", "0"),
@@ -78,8 +78,10 @@ def _write_stop(pages: Pages, sheet: Worksheet, page: Page, stop: int) -> None:
     top = FIRST_ROW + ROWS_OF_STOP * (stop - 1)
     writer = _Texts(pages, sheet, page, stop)
     used = f'{fixed(cell("runway", stop), TRIP)}<>""'
-    writer.put(f"A{top}", f'IF({used},"{stop}  "&{fixed(cell("runway", stop), TRIP)},"")',
-               f"{stop}  {page.typed.get(f'runway_{stop}')}" if writer.used else "")
+    name = fixed(cell("name", stop), TRIP)
+    title = f"{stop}  {page.typed.get(f'runway_{stop}')}  {pages.cached[TRIP][cell('name', stop)]}"
+    writer.put(f"A{top}", f'IF({used},"{stop}  "&{fixed(cell("runway", stop), TRIP)}&"  "&{name},"")',
+               title if writer.used else "")
     writer.put(f"E{top}", *writer.weather(used))
     writer.put(f"I{top}", *writer.leg(used))
     for row, side, word in ((top + 1, "landing", "Land"), (top + 2, "takeoff", "Take off")):
@@ -138,12 +140,17 @@ class _Texts:
 
     def weather(self, used: str) -> tuple[str, str]:
         """The forecast in a line."""
-        parts = {key: self._number(key) for key in ("temperature", "qnh", "wind_from", "wind_speed")}
+        parts = {key: self._number(key) for key in ("temperature", "qnh", "wind_speed")}
         ground, said = self.at("ground"), self.page.typed.get(f"ground_{self.stop}", "")
-        text = (f'{parts["temperature"][0]}&" °C, "&{parts["qnh"][0]}&" hPa, "&{parts["wind_from"][0]}&"°/"&'
-                f'{parts["wind_speed"][0]}&" kt, "&{ground}')  # fmt: skip
-        line = (f"{parts['temperature'][1]} °C, {parts['qnh'][1]} hPa, {parts['wind_from'][1]}°/{parts['wind_speed'][1]} kt, "
-                f"{said}")  # fmt: skip
+        origin, speed = self.at("wind_from"), self.at("wind_speed")
+        blown = f'IF(ISNUMBER({origin}),TEXT({origin},"000"),"-")&"°/"&{parts["wind_speed"][0]}&" kt"'
+        wind = f'IF(ISNUMBER({speed}),IF({speed}=0,"calm",{blown}),"wind -")'
+        from_now, speed_now = (self.page.typed.get(f"{key}_{self.stop}", "") for key in ("wind_from", "wind_speed"))
+        told = f"{_rounded(from_now):03.0f}" if isinstance(from_now, float | int) else "-"
+        now = f"{told}°/{parts['wind_speed'][1]} kt"
+        now = "wind -" if speed_now == "" else "calm" if speed_now == 0.0 else now
+        text = f'{parts["temperature"][0]}&" °C, "&{parts["qnh"][0]}&" hPa, "&{wind}&", "&{ground}'
+        line = f"{parts['temperature'][1]} °C, {parts['qnh'][1]} hPa, {now}, {said}"
         return f'IF({used},{text},"")', line if self.used else ""
 
     def leg(self, used: str) -> tuple[str, str]:
@@ -164,10 +171,10 @@ class _Texts:
         fuel, payload = self.at("fuel_out"), self.at("payload")
         aboard = [self.page.number(key, self.stop) for key in ("fuel_out", "payload")]
         leaves = f'AND({self.at("takeoff_verdict")}<>"",ISNUMBER({fuel}),ISNUMBER({payload}))'
-        texts = [f'IF({leaves},"Leaves with "&ROUND({fuel},0)&" l and "&ROUND({payload},0)&" kg of payload. ","")']
+        texts = [f'IF({leaves},"Leaves with "&ROUND({fuel},0)&" l, "&ROUND({payload},0)&" kg of payload. ","")']
         line = ""
         if self.page.shown.get(("takeoff_verdict", self.stop), "") and all(value == value for value in aboard):
-            line = f"Leaves with {_rounded(aboard[0]):g} l and {_rounded(aboard[1]):g} kg of payload. "
+            line = f"Leaves with {_rounded(aboard[0]):g} l, {_rounded(aboard[1]):g} kg of payload. "
         for side, word in (("landing", "In"), ("takeoff", "Out")):
             verdict, reason = self.at(f"{side}_verdict"), self.at(f"{side}_reason")
             texts.append(f'IF(OR({verdict}="",{verdict}="{SUITABLE}"),"","{word}: "&{reason}&". ")')

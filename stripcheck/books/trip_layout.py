@@ -14,7 +14,7 @@ from stripcheck.books.trip_plan import FIRST_HAS_NOT, GENERAL, LEG, LOADS, STOPS
 
 TRIP, READING, KNEEBOARD = "Trip", "Reading", "Kneeboard"
 LABEL, UNIT, VALUE = "A", "B", "C"  # columns of the lines that belong to the whole trip; stop 1 is in VALUE too
-HEADER_ROW, RUNWAY_ROW = 3, 4
+HEADER_ROW, RUNWAY_ROW, NAME_ROW = 3, 4, 5
 
 
 @dataclass(frozen=True)
@@ -69,7 +69,7 @@ SECTIONS: tuple[tuple[str, str, tuple[Line, ...]], ...] = (
                              Line("abort", "Abort point", "", small=True),
                              Line("abort_place", "Abort by: along the strip", "m", "#,##0"),
                              Line("abort_speed", "Abort by: speed", "kt", "0"),
-                             Line("seventy", "70 % of lift-off speed by half way", "", small=True))),
+                             Line("seventy", "70 % of lift-off speed", "", small=True))),
     ("checks", "Checks", (Line("fuel_check", "Fuel", small=True), Line("mass_check", "Zero-fuel mass", small=True),
                           Line("entry_check", "What is typed", small=True))),
 )  # fmt: skip
@@ -77,7 +77,7 @@ SECTIONS: tuple[tuple[str, str, tuple[Line, ...]], ...] = (
 
 def _rows() -> tuple[dict[str, int], dict[str, int]]:
     """Row of each line by key, and of each section's heading."""
-    rows, headings, row = {"runway": RUNWAY_ROW}, {}, RUNWAY_ROW + 1
+    rows, headings, row = {"runway": RUNWAY_ROW, "name": NAME_ROW}, {}, NAME_ROW + 1
     for name, _, lines in SECTIONS:
         headings[name] = row
         row += 1
@@ -101,7 +101,7 @@ def cell(key: str, stop: int = 1) -> str:
     """Address of a line's cell for a stop, or of a value of the whole trip.
 
     >>> cell("runway", 2), cell("operating_mass")
-    ('D4', 'C6')
+    ('D4', 'C7')
     """
     letter: str = VALUE if key in GENERAL_KEYS else column(stop)
     return f"{letter}{ROWS[key]}"

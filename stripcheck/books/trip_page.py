@@ -46,10 +46,11 @@ from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE, UNSUITABLE
 Value = float | str
 GENERAL_COLUMN = 1  # the stop in whose column the values of the whole trip stand
 FURTHER = ("latitude", "longitude", "by_position", "fuel_in", "kept", "stays")  # rows of Reading after those of the page
-SUMMARY = {"verdicts": 6, "limit": 7, "none": 9, "fuel": 10, "mass": 11, "entries": 12}  # rows of the box beside the aeroplane
+SUMMARY = {"verdicts": 7, "limit": 8, "none": 10, "fuel": 11, "mass": 12, "entries": 13}  # rows of the box beside the aeroplane
 SIDE_WORD = {"landing": "landing at", "takeoff": "take-off from"}
 BAD = "FBE3D6"
-HEIGHTS = {"reason": 38, "check": 26, "speeds_are": 13}  # points, by the line's key without its side
+HEIGHTS = {"landing_reason": 38, "takeoff_reason": 38, "fuel_check": 38, "entry_check": 62,
+           "landing_speeds_are": 13, "takeoff_speeds_are": 13}  # fmt: skip
 
 
 @dataclass
@@ -120,6 +121,7 @@ def write_inputs(pages: Pages, page: Page, strips: Strips) -> Worksheet:
         reading[f"{column(stop)}{HEADER_ROW}"] = f"Stop {stop}"
         reading.column_dimensions[column(stop)].width = 11
     reading.column_dimensions["A"].width = 34
+    styles.set_print(reading, f"{HEADER_ROW}:{HEADER_ROW}", portrait=True)
     for key, row in ROWS.items():
         if any(key == item.key for item, _ in typed_cells()) or key == "runway":
             reading[f"A{row}"] = sheet[f"A{row}"].value if key != "runway" else "Place in the list of runways"
@@ -142,6 +144,8 @@ def _write_labels(sheet: Worksheet) -> None:
         sheet.column_dimensions[column(stop)].width = 13.5
     sheet[f"A{ROWS['runway']}"], sheet[f"A{ROWS['runway']}"].font = "Strip and runway", styles.BOLD
     sheet.row_dimensions[ROWS["runway"]].height = 27
+    sheet.row_dimensions[ROWS["name"]].height = 26
+    sheet[f"A{ROWS['runway']}"].alignment = styles.MIDDLE
     for name, title, lines in SECTIONS:
         row = HEADINGS[name]
         sheet[f"A{row}"] = title
@@ -166,7 +170,7 @@ def _write_line(sheet: Worksheet, line: Line) -> None:
         one.font, one.border, one.alignment = (styles.SMALL if line.small else styles.BODY), styles.LINE, styles.CENTRE
         one.number_format = line.shown
     if line.small:
-        sheet.row_dimensions[row].height = HEIGHTS.get(line.key.partition("_")[2], 26)
+        sheet.row_dimensions[row].height = HEIGHTS.get(line.key, 26)
     if line.key.endswith("_verdict"):
         cells = f"{column(1)}{row}:{column(STOPS)}{row}"
         styles.colour_verdicts(sheet, cells)
@@ -205,6 +209,10 @@ def _write_stop(pages: Pages, sheet: Worksheet, reading: Worksheet, stop: int, p
     same = f"({listed}={there})"
     found = f'IF({there}="","",IF(SUMPRODUCT(--{same})=1,SUMPRODUCT({same}*(ROW({listed})-{int(first) - 1})),""))'
     pages.formula(reading, address, found, _or_blank(page.read[f"runway_{stop}"]))
+    named = f'INDEX({strips.range("name")},2*{fixed(address, READING)}-1)'
+    pages.formula(sheet, cell("name", stop), f'IF(ISNUMBER({fixed(address, READING)}),IF({named}="","",{named}),"")',
+                  strips.shown["name"][2 * int(page.read[f"runway_{stop}"]) - 2] if page.read[f"runway_{stop}"] > 0 else "")
+    sheet[cell("name", stop)].font, sheet[cell("name", stop)].alignment = styles.SMALL, styles.CENTRE
     for key in ("latitude", "longitude"):
         one = f"INDEX({strips.range(key)},2*{fixed(address)}-1)"
         text = f'IF(ISNUMBER({fixed(address)}),IF(ISNUMBER({one}),{one},""),"")'
@@ -270,9 +278,13 @@ class _Writer:
         """Whether a row of Best is in the trip: the test, and what it is now."""
         return f'{self.best.address("active", row)}="yes"', self.best.values["active"][row] == "yes"
 
-    def show(self, key: str, stop: int, row: int, source: str) -> None:
-        """A value of Best, where the row is in the trip."""
+    def show(self, key: str, stop: int, row: int, source: str, assessed: bool = False) -> None:
+        """A value of Best, where the row is in the trip; ``assessed``: and where its verdict is one."""
         test, active = self.on(row)
+        if assessed:
+            side = self.best.ops[row][0]
+            test = f'AND({test},{self.best.address(f"{side}_verdict", row)}<>"{NOT_ASSESSED}")'
+            active = active and self.best.values[f"{side}_verdict"][row] != NOT_ASSESSED
         self.put(key, stop, f'IF({test},{self.best.address(source, row)},"")', self.best.values[source][row] if active else "")
 
     def write_side(self, row: int, side: str, stop: int) -> None:
@@ -281,7 +293,7 @@ class _Writer:
                    "required": f"{side}_required", "available": "landing_available" if side == "landing" else "tora",
                    "margin": f"{side}_margin", "headwind": "headwind", "crosswind": "crosswind"}  # fmt: skip
         for line, source in sources.items():
-            self.show(f"{side}_{line}", stop, row, source)
+            self.show(f"{side}_{line}", stop, row, source, assessed=line not in ("verdict", "reason"))
         self._greatest(row, side, stop)
         self._speeds(row, side, stop)
         if side == "takeoff":
@@ -355,13 +367,13 @@ class _Writer:
 
     def _seventy(self, stop: int, at: int, test: str, active: bool, known: bool, is_known: str) -> None:
         place, half, by_half = (self.abort.cell(key, at) for key in ("seventy_at", "abort_usable", "seventy_by_half"))
-        text = (f'IF({test},IF({is_known},IF({by_half},"go","stop")&": at "&ROUNDUP({place},0)&" m, half is "&'
-                f'ROUNDDOWN({half}/2,0)&" m",""),"")')  # fmt: skip
+        text = (f'IF({test},IF({is_known},IF({by_half},"go","stop")&", at "&ROUNDUP({place},0)&" m (half: "&'
+                f'ROUNDDOWN({half}/2,0)&" m)",""),"")')  # fmt: skip
         values = {key: self.abort.values[key][at] for key in ("seventy_at", "abort_usable", "seventy_by_half")}
         said = ""
         if active and known:
             go = "go" if bool(values["seventy_by_half"]) else "stop"
-            said = f"{go}: at {ceil(float(values['seventy_at']))} m, half is {floor(float(values['abort_usable']) / 2)} m"
+            said = f"{go}, at {ceil(float(values['seventy_at']))} m (half: {floor(float(values['abort_usable']) / 2)} m)"
         self.put("seventy", stop, text, said)
 
     def write_checks(self, stop: int) -> None:
@@ -439,8 +451,8 @@ def _write_where(book: Book, page: Page, best: Best, row: int, side: str, stop: 
     """On the sheet Best: each landing and take-off in words, what it has to spare, and whether no mass suits."""
     runway = fixed(cell("runway", stop), TRIP)
     leg = best.address("leg", row)
-    best.further(row, "where", "Where", f'"Leg "&{leg}&", {SIDE_WORD[side]} "&{runway}',
-                 f"Leg {best.values['leg'][row]:g}, {SIDE_WORD[side]} {page.typed.get(f'runway_{stop}', '')}")
+    best.further(row, "where", "Where", f'"leg "&{leg}&", {SIDE_WORD[side]} "&{runway}',
+                 f"leg {best.values['leg'][row]:g}, {SIDE_WORD[side]} {page.typed.get(f'runway_{stop}', '')}")
     best.further(row, "spare", "To spare [kg]", fixed(cell(f"{side}_spare", stop), TRIP), page.shown[f"{side}_spare", stop])
     greatest = fixed(cell(f"{side}_greatest", stop), TRIP)
     none = page.shown[f"{side}_greatest", stop] == "none"
@@ -451,7 +463,7 @@ def _write_where(book: Book, page: Page, best: Best, row: int, side: str, stop: 
 
 def _write_summary(pages: Pages, sheet: Worksheet, page: Page, best: Best) -> None:
     """The box beside the aeroplane's values: the trip in a few lines."""
-    sheet["E5"] = "This trip"
+    sheet[f"E{HEADINGS['general']}"] = "This trip"
     for key, row in SUMMARY.items():
         text, value = {"verdicts": _verdicts, "limit": _limit, "none": _none, "fuel": _fuel_line, "mass": _mass_line,
                        "entries": _entry_line}[key](page, best)  # fmt: skip
@@ -482,30 +494,34 @@ def _verdicts(page: Page, best: Best) -> tuple[str, str]:
 
 
 def _limit(page: Page, best: Best) -> tuple[str, str]:
-    spare, where = best.range("spare"), best.range("where")
+    """Where the least mass is to spare; of the others, where somewhere no mass suits."""
+    spare, where, none = (best.range(key) for key in ("spare", "where", "none"))
     least = f"MIN({spare})"
     kilograms = f'IF({least}<0,ROUNDUP(-{least},0)&" kg too heavy",ROUNDDOWN({least},0)&" kg to spare")'
-    text = f'IF(COUNT({spare})=0,"What limits: not known",INDEX({where},MATCH({least},{spare},0))&" limits: "&{kilograms})'
+    found = f'INDEX({where},MATCH({least},{spare},0))&", "&{kilograms}'
+    others = f'IF(COUNT({none})>0,", of the others","")'
+    text = f'"What limits"&{others}&": "&IF(COUNT({spare})=0,"not known",{found})'
     known = [(float(value), name) for value, name in zip(best.values["spare"], best.values["where"], strict=True)
              if isinstance(value, float)]  # fmt: skip
+    first = f"What limits{', of the others' if 1.0 in best.values['none'] else ''}: "
     if not known:
-        return text, "What limits: not known"
+        return text, f"{first}not known"
     value, name = min(known, key=lambda one: one[0])
-    said = f"{ceil(-value)} kg too heavy" if value < 0.0 else f"{floor(value)} kg to spare"
-    return text, f"{name} limits: {said}"
+    return text, f"{first}{name}, {f'{ceil(-value)} kg too heavy' if value < 0.0 else f'{floor(value)} kg to spare'}"
 
 
 def _none(page: Page, best: Best) -> tuple[str, str]:
+    """Where no mass suits."""
     none, where, reason = (best.range(key) for key in ("none", "where", "reason"))
     at = f"MATCH(1,{none},0)"
     more = f'IF(COUNT({none})>1," (and "&(COUNT({none})-1)&" more)","")'
     fine = "At every stop there is a mass that suits"
-    text = f'IF(COUNT({none})=0,"{fine}",INDEX({where},{at})&" suits at no mass: "&INDEX({reason},{at})&{more})'
+    text = f'IF(COUNT({none})=0,"{fine}","At no mass: "&INDEX({where},{at})&": "&INDEX({reason},{at})&{more})'
     rows = [row for row, value in enumerate(best.values["none"]) if value == 1.0]
     if not rows:
         return text, fine
     further = f" (and {len(rows) - 1} more)" if len(rows) > 1 else ""
-    return text, f"{best.values['where'][rows[0]]} suits at no mass: {best.values['reason'][rows[0]]}{further}"
+    return text, f"At no mass: {best.values['where'][rows[0]]}: {best.values['reason'][rows[0]]}{further}"
 
 
 def _checked(key: str, name: str, page: Page, good: Sequence[str], fine: str) -> tuple[str, str]:
@@ -563,9 +579,9 @@ def finish(sheet: Worksheet, title: str, card_name: str, notes: Sequence[str]) -
     for text in notes:
         sheet[f"A{row}"], sheet[f"A{row}"].font, sheet[f"A{row}"].alignment = text, styles.SMALL, styles.WRAP
         sheet.merge_cells(f"A{row}:{column(STOPS)}{row}")
-        sheet.row_dimensions[row].height = 13.0 * ceil(len(text) / 165)
+        sheet.row_dimensions[row].height = 13.0 * ceil(len(text) / 185)
         row += 1
-    sheet.freeze_panes = f"{column(1)}{ROWS['runway'] + 1}"
+    sheet.freeze_panes = f"{column(1)}{ROWS['name'] + 1}"
     styles.set_print(sheet, f"{HEADER_ROW}:{ROWS['runway']}", portrait=True)
     sheet.print_area = f"A1:{column(STOPS)}{row}"
     book_cells.protect(sheet)

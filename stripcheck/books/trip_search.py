@@ -27,7 +27,7 @@ from stripcheck.verdict import NOT_ASSESSED, SUITABLE
 
 SEARCH = "Greatest mass"
 TRIALS = {"landing": "Trials in", "takeoff": "Trials out"}
-ROUNDS = 10  # cases for each landing and take-off: the card's greatest mass first
+ROUNDS = 12  # cases for each landing and take-off: the card's greatest mass first
 CLOSED = 1.0 + 1e-9  # kg between a mass that suits and one that does not: no nearer on whole kilograms
 SOURCE = "Search"
 
@@ -212,7 +212,7 @@ def write_search(book: Book, best: Best, least: float) -> Search:
         "most": np.array([float(book.values[f"max_{side}_mass"]) for side, _ in best.ops]),
         "least": np.full(len(best.ops), least),
     }
-    tried, fits, slack = _run(book, chain, best, start)
+    tried, fits, slack = run(book, chain, best, start)
     letters = _letters(chain)
     trials = tuple(_write_trials(book, best, side, tried, letters) for side in ("landing", "takeoff"))
     cases = _write_rounds(book, chain, best, start, fits, slack, {"landing": trials[0], "takeoff": trials[1]})
@@ -225,7 +225,7 @@ def _number(value: Any) -> float:
     return float(value) if isinstance(value, int | float) else float("nan")
 
 
-def _run(book: Book, chain: Chain, best: Best, start: Mapping[str, np.ndarray]) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def run(book: Book, chain: Chain, best: Best, start: Mapping[str, np.ndarray]) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Masses tried, whether they suit, and their slacks: each with a row for each of Best's and a column for each round."""
     count = len(best.ops)
     tried, slack = np.full((count, ROUNDS), np.nan), np.full((count, ROUNDS), np.nan)
@@ -235,7 +235,7 @@ def _run(book: Book, chain: Chain, best: Best, start: Mapping[str, np.ndarray]) 
         given = {**start, **so_far}
         tried[:, n] = evaluate(chain, given, [f"try_{n}"])[f"try_{n}"]
         for side in ("landing", "takeoff"):
-            rows = np.array(best.rows(side))
+            rows = np.array(best.rows(side), dtype=np.intp)
             found = evaluate(book.chain, _inputs(book, best, side, rows, tried[rows, n]), [f"{side}_slack", f"{side}_verdict"])
             words = np.array(book.chain.by_key[f"{side}_verdict"].words)  # type: ignore[union-attr]
             fits[rows, n] = words[found[f"{side}_verdict"] - 1] == SUITABLE

@@ -51,7 +51,7 @@ def table_values(rows: Rows, sides: Collection[str], settings: int) -> dict[str,
 
 
 def tables_of(rows: Rows, side: str) -> BookTables:
-    """The tables of a side, but that nothing but the range tells what stands for a hole. Raises InputError as `table_values`."""
+    """The tables of one side, but that nothing tells what would stand for a figure. Raises InputError."""
     return _Side(_cells(rows), side).tables()
 
 

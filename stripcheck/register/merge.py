@@ -16,12 +16,11 @@ from stripcheck.register.matching import Match, match_lists
 from stripcheck.register.merge_row import COLUMN_NAMES, Row, Told, Write, yes_or_no
 from stripcheck.register.own_words import OwnWords, clean
 from stripcheck.register.reader import Reading
-from stripcheck.register.values import as_written, is_blank
+from stripcheck.register.values import Fault, as_written, is_blank
 
 NEW, CHANGED, GONE = "new", "changed", "gone"
 KINDS = (NEW, CHANGED, GONE)
 CAN_WAIT = frozenset(("strip", "name", "notes", "survey_date", "latitude", "longitude"))  # without these no verdict is better
-LIKELY_PERCENT = 0.3  # a number below this in a cell of percent: what `Runways` refuses a column for
 PERCENTS = "the register's slopes may be formatted as percent; put them right first"
 
 Fixed = Collection[tuple[int, int]]
@@ -77,7 +76,9 @@ def compare(register: Reading, other: Reading, fixed: Fixed = ()) -> Merge:
     ``fixed``: cells of the register that must not be written, as index of the runway and position of the column (both 0 =
     first), such as those with a formula.
     """
-    words, told = OwnWords(register), Told()
+    words = OwnWords(register)
+    told = Told({at: frozenset(indexes) for at, indexes in other.runways.unreadable.items()})
+    faults = {fault.row_index: fault for fault in reversed(other.runways.faults)}  # the first of each row
     known, others = (_identified(reading) for reading in (register, other))
     found = match_lists(register, other, known, others)
     unnamed = ((register, known, "register"), (other, others, "new list"))
@@ -92,7 +93,7 @@ def compare(register: Reading, other: Reading, fixed: Fixed = ()) -> Merge:
     gone, closed = _gone(register, words, found.gone, fixed)
     changes = sorted([*changes, *gone], key=lambda change: change.row or 0)
     for index in found.added:
-        changes.append(_as_new(Row(register, other, words, told, None, index)))
+        changes.append(_as_new(Row(register, other, words, told, None, index), faults.get(index)))
     matched = Counter(match.how for match in found.matches)
     marks = [fingerprint(reading) for reading in (register, other)]
     return Merge(register, other, _with_keys(changes), found.unclear, told.remarks, told.kept, told.lost, matched, closed,
@@ -170,7 +171,7 @@ def _changes(row: Row, match: Match, fixed: Fixed) -> list[Change]:
         if not live:
             continue
         hindered = _formula(match.old, writes, fixed)
-        if not hindered and "slope" in (part.at[0] for part in live) and _percents(row):
+        if not hindered and "slope" in (part.at[0] for part in live) and row.words.percent_slopes:
             hindered = PERCENTS
         made.append(Change(
             CHANGED, match.old, match.new, *called(row.register, match.old),
@@ -185,13 +186,12 @@ def _changes(row: Row, match: Match, fixed: Fixed) -> list[Change]:
     return made
 
 
-def _as_new(row: Row) -> Change:
+def _as_new(row: Row, fault: Fault | None) -> Change:
     """The whole row as one that the register does not have."""
     parts = [part for group in row.groups() for part in group if part.write is not None]
     writes = tuple(part.write for part in parts if part.write is not None)
     shown = "; ".join(f"{row.one.found[part.at].header}: {part.new}" for part in parts)
     lost = dict.fromkeys(COLUMN_NAMES.get(key, key) for key, _ in row.lost if key not in CAN_WAIT)
-    fault = next((fault for fault in row.two.faults if fault.row_index == row.new), None)
     hindered = ""
     if fault is not None:
         column = f'column "{fault.header}": ' if fault.header else ""
@@ -202,7 +202,7 @@ def _as_new(row: Row) -> Change:
         hindered = f"the register has no column for: {', '.join(lost)}; add it, so that nothing is lost"
     elif not {"strip", "name"} & {part.at[0] for part in parts}:
         hindered = "the register has no column for its name"
-    elif "slope" in (part.at[0] for part in parts) and _percents(row):
+    elif "slope" in (part.at[0] for part in parts) and row.words.percent_slopes:
         hindered = PERCENTS
     return Change(NEW, None, row.new, *called(row.other, row.new), "", "", shown, writes, hindered=hindered)
 
@@ -210,15 +210,6 @@ def _as_new(row: Row) -> Change:
 def _formula(index: int, writes: Iterable[Write], fixed: Fixed) -> str:
     hindered = any((index, write.position) in fixed for write in writes)
     return "the register's cell holds a formula, which is kept" if hindered else ""
-
-
-def _percents(row: Row) -> bool:
-    """Whether slopes of a workbook were refused because their cells may be formatted as percent."""
-    cells = row.one.cells("slope")
-    if cells is None or row.words.is_text:
-        return False
-    numbers = (cells[index] for index in row.one.unreadable["slope", 0])
-    return any(isinstance(number, float | int) and abs(number) < LIKELY_PERCENT for number in numbers)
 
 
 def _list(texts: Sequence[str]) -> str:

@@ -7,7 +7,7 @@ nothing; what can't be read, or has no column in the register, is told and not w
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
@@ -66,8 +66,10 @@ class Part(NamedTuple):
 
 @dataclass
 class Told:
-    """What is gathered while rows are compared: ``kept`` and ``lost`` count by header."""
+    """What is gathered while rows are compared: ``kept`` and ``lost`` count by header. ``unreadable``: the new list's cells
+    that can't be used, by column."""
 
+    unreadable: Mapping[Key, frozenset[int]]
     remarks: list[str] = field(default_factory=list)
     kept: Counter[str] = field(default_factory=Counter)
     lost: Counter[str] = field(default_factory=Counter)
@@ -116,17 +118,21 @@ class Row:
             yield self._profile()
             yield self._heading()
             for end in (1, 2):
-                yield self._both(("elevation", end), self._end("elevation", end))
+                yield self._elevation(end)
                 yield self._place(end)
             for key in ("tora", "lda", "displaced"):
                 yield from ([part] for part in self._ends(key))
             yield from self._obstacles()
         yield self._date()
-        yield self._plain("notes", clean(self.two.spellings("notes")[self.new]))
+        yield self._plain("notes", clean(as_written(self._theirs("notes"))))
 
     def _cell(self, at: Key) -> object:
         cells = self.one.cells(*at)
         return "" if self.old is None or cells is None else cells[self.old]
+
+    def _theirs(self, key: str, end: int = 0) -> object:
+        cells = self.two.cells(key, end)
+        return "" if cells is None else cells[self.new]
 
     def _part(self, at: Key, value: Value, same: bool) -> Part:
         """A cell whose value is known; ``same``: it stands there already."""
@@ -140,7 +146,7 @@ class Row:
         return []
 
     def _identifier(self) -> list[Part]:
-        given = clean_text(self.two.texts("strip")[self.new])
+        given = clean_text(self._theirs("strip"))
         if self.match is not None and self.match.how in (BY_IDENTIFIER, BY_STRIP):
             return []
         if self.old is None and ("name", 0) not in self.one.found:
@@ -154,14 +160,14 @@ class Row:
         """A text that is compared as a text."""
         at = (key, 0)
         if not given or at not in self.one.found:
-            if given:
+            if given and not is_blank(self._theirs(key)):  # a name may be from the airports file
                 self.lost.append(at)
             return self._keep(at)
         return [self._part(at, given, same_text(given, clean(as_written(self._cell(at)))))]
 
     def _date(self) -> list[Part]:
         at = ("survey_date", 0)
-        given = clean_text(self.two.texts("survey_date")[self.new])
+        given = clean_text(self._theirs("survey_date"))
         parts = self._plain("survey_date", given)
         if not parts:
             return parts
@@ -172,10 +178,18 @@ class Row:
 
     def _given(self, at: Key) -> Quantity | None:
         """A number of the new list. Raises _Unreadable where its cell can't be used."""
-        if self.new in self.two.unreadable.get(at, ()):
-            item = self.two.found[at]
-            raise _Unreadable(f'"{as_text(self.two.table.cells[item.position][self.new])}" in "{item.header}" can\'t be used')
+        if self.new in self.told.unreadable.get(at, ()):
+            there = at if at in self.two.found else (at[0], 0)  # an end may be found wanting by the column for both
+            item, cell = self.two.found[there], as_text(self._theirs(*there))
+            own = self.one.found.get(at)
+            known = own is not None and own.unit == item.unit and same_text(as_text(self._cell(at)), cell)
+            raise _Unreadable("" if known else f'"{cell}" in "{item.header}" can\'t be used')
         return quantity(self.two, at, self.new)
+
+    def _unreadable(self, error: _Unreadable) -> list[Part]:
+        """Tell of a cell that can't be used, unless the same stands in the register."""
+        self.bad += [str(error)] if str(error) else []
+        return []
 
     def _end(self, key: str, end: int) -> Quantity | None:
         """A number of the new list about an end of the register's runway."""
@@ -188,8 +202,7 @@ class Row:
         try:
             given = self._given((key, 0))
         except _Unreadable as error:
-            self.bad.append(str(error))
-            return []
+            return self._unreadable(error)
         return self._both((key, 0), None if key == "width" and given is not None and given.si == 0.0 else given)
 
     def _both(self, at: Key, given: Quantity | None) -> list[Part]:
@@ -208,26 +221,31 @@ class Row:
 
     def _says_nothing(self, key: str, given: Quantity) -> bool:
         """Whether a number says no more than a blank."""
-        whole = self.two.number("length")[self.new]
-        return bool(key in _NOTHING and given.si == 0.0) or bool(key in _USABLE and given.si >= whole)
+        whole = quantity(self.two, ("length", 0), self.new)
+        return (key in _NOTHING and given.si == 0.0) or (key in _USABLE and whole is not None and given.si >= whole.si)
 
     def _field_elevation(self) -> Quantity | None:
         try:
             given = self._given(("elevation", 0))
         except _Unreadable as error:
-            self.bad.append(str(error))
+            self._unreadable(error)
             return None
         airport = self.other.known[self.new]
-        if given is None and airport is not None and not np.isnan(airport.elevation):
+        if given is None and airport is not None and ("elevation", 0) in self.one.found and not np.isnan(airport.elevation):
             return Quantity(airport.elevation, unit_scale("ft", "altitude"), "altitude")
         return given
+
+    def _elevation(self, end: int) -> list[Part]:
+        try:
+            return self._both(("elevation", end), self._end("elevation", end))
+        except _Unreadable as error:
+            return self._unreadable(error)
 
     def _slope(self) -> list[Part]:
         try:
             given = self._given(("slope", 0))
         except _Unreadable as error:
-            self.bad.append(str(error))
-            return []
+            return self._unreadable(error)
         if given is not None and self.turned:
             given = given._replace(si=0.0 - given.si)
         return self._both(("slope", 0), given)
@@ -239,8 +257,7 @@ class Row:
         try:
             theirs = self._given(("heading", 1)) or self._given(("heading", 0)), self._given(second)
         except _Unreadable as error:
-            self.bad.append(str(error))
-            return []
+            return self._unreadable(error)
         own, opposite = theirs[::-1] if self.turned else theirs
         if own is None and opposite is None:
             return self._keep(first) + self._keep(second)
@@ -265,8 +282,7 @@ class Row:
         try:
             told = [self._end(key, end) for end in (1, 2)]
         except _Unreadable as error:
-            self.bad.append(str(error))
-            return []
+            return self._unreadable(error)
         told = [None if given is not None and key in _NOTHING and given.si == 0.0 and not self._has(key, end) else given
                 for end, given in enumerate(told, 1)]  # fmt: skip
         if not any((key, end) in self.one.found for end in (1, 2)) and (key, 0) in self.one.found:
@@ -288,8 +304,7 @@ class Row:
         try:
             latitude, longitude = (self._end(key, end) for key in ("latitude", "longitude"))
         except _Unreadable as error:
-            self.bad.append(str(error))
-            return []
+            return self._unreadable(error)
         if (latitude is None) != (longitude is None):
             self.bad.append("has half of a place, which is not compared")
             return []
@@ -343,19 +358,22 @@ class Row:
 
     def _runway(self, names: tuple[str, str]) -> list[Part]:
         given = self._given_names()
-        text = "/".join(name for name in names if name in given)
+        ends = [("designator", end) for end in (1, 2) if ("designator", end) in self.one.found]
+        parts = []
         if ("runway", 0) in self.one.found:
-            return [self._part(("runway", 0), text, False)]
-        parts = [self._part(("designator", end), name, False)
-                 for end, name in enumerate(names, 1) if ("designator", end) in self.one.found and name in given]  # fmt: skip
+            text = "/".join(name for name in names if name in given)
+            parts.append(self._part(("runway", 0), text, same_text(text, as_text(self._cell(("runway", 0))))))
+        if not parts or any(not is_blank(self._cell(at)) for at in ends):  # columns of the ends go before that of both
+            parts += [self._part(at, names[at[1] - 1], same_text(names[at[1] - 1], as_text(self._cell(at))))
+                      for at in ends if names[at[1] - 1] in given]  # fmt: skip
         if not parts:
             self.lost.append(("runway", 0))
         return parts
 
     def _given_names(self) -> tuple[str, ...]:
         """Names of the new list's ends without one that was made up for an end that has none, such as the other end of H1."""
-        own = tuple(tidy_designator(self.two.texts("designator", end)[self.new]) for end in (1, 2))
-        names = own if any(own) else split_runway(self.two.texts("runway")[self.new])
+        own = tuple(tidy_designator(as_text(self._theirs("designator", end))) for end in (1, 2))
+        names = own if any(own) else split_runway(self._theirs("runway"))
         both = self.two.first[self.new], self.two.second[self.new]
         return tuple(name for name in both if name in names or name not in ("A", "B"))
 
@@ -395,8 +413,7 @@ class Row:
     def _flag(self, key: str) -> list[Part]:
         """A yes or no; a blank of the register counts as no."""
         at = (key, 0)
-        cells = self.two.cells(key)
-        cell = "" if cells is None else cells[self.new]
+        cell = self._theirs(key)
         given = yes_or_no(cell)
         if given is None:
             if not is_blank(cell):
@@ -411,7 +428,7 @@ class Row:
 
     def _profile(self) -> list[Part]:
         at = ("profile", 0)
-        cell = clean_text(self.two.texts("profile")[self.new])
+        cell = clean_text(self._theirs("profile"))
         theirs = self.two.profiles[self.new]
         if not cell:
             return self._keep(at)
@@ -427,10 +444,10 @@ class Row:
 
     def _ground(self) -> list[Part]:
         """Surface and condition; a surface may tell the condition too ("wet grass")."""
-        spelt = clean_text(self.two.texts("surface")[self.new])
+        spelt = clean_text(self._theirs("surface"))
         word, _ = read_surface_pair(spelt)
         condition = clean(self.other.texts["condition"][0][self.new])
-        own_text = "" if self.old is None else clean_text(self.one.texts("surface")[self.old])
+        own_text = clean_text(self._cell(("surface", 0)))
         own_word, _ = read_surface_pair(own_text)
         own_condition = "" if self.old is None else self.register.texts["condition"][0][self.old]
         same_word = not spelt or (word == own_word if word else not own_word and same_text(spelt, own_text))

@@ -6,7 +6,7 @@ import datetime
 import math
 import re
 from collections import Counter
-from functools import cached_property
+from functools import cache, cached_property
 from typing import NamedTuple
 
 from stripcheck.register.reader import Reading
@@ -26,6 +26,7 @@ MOST_ROUNDING = {
     "length": 0.5, "altitude": 0.5, "speed": 0.5 * 1852.0 / 3600.0, "temperature": 0.5, "pressure": 50.0, "slope": 0.0005,
     "angle": math.radians(0.5),
 }  # fmt: skip
+LIKELY_PERCENT = 0.3  # a number below this in a cell of percent: what ``Runways`` refuses a column for
 MOST_DECIMALS = 6
 SAME_COORDINATE = math.radians(1e-5)  # 1 m on the ground: coordinates serve to find a strip and its bearing
 LONGEST_TEXT = 32_767  # [characters] that a cell holds
@@ -94,8 +95,7 @@ def in_unit(given: Quantity, unit: tuple[float, float]) -> float:
 
 def quantity(runways: Runways, at: Key, index: int) -> Quantity | None:
     """The number in a cell with the unit in which it stands there; None where it is blank or can't be used."""
-    si = float(runways.number(*at)[index])
-    if at not in runways.found or math.isnan(si):
+    if at not in runways.numbers or math.isnan(si := float(runways.numbers[at][index])):
         return None
     item = runways.found[at]
     kind = item.column.kind
@@ -145,6 +145,7 @@ class OwnWords:
     def __init__(self, reading: Reading) -> None:
         self.runways, self.table = reading.runways, reading.runways.table
         self.is_text = bool(self.table.delimiter)
+        self._mark, self.yes, self._holds_dates = cache(self._find_mark), cache(self._find_yes), cache(self._find_dates)
 
     def number(self, at: Key, given: Quantity, index: int | None) -> Value:
         """A number for a cell: in the unit of the number that stands there, else of its column; a text where that is one."""
@@ -167,7 +168,7 @@ class OwnWords:
     def _written(self, at: Key, number: float) -> str:
         return f"{number:.12g}".replace(".", self._mark(at) if self.is_text else ".")
 
-    def _mark(self, at: Key) -> str:
+    def _find_mark(self, at: Key) -> str:
         """The decimal mark of a column; only files with ";" between cells may have another one than the point."""
         if self.table.delimiter != ";":
             return "."
@@ -179,7 +180,7 @@ class OwnWords:
             return "," if any(isinstance(cell, str) and "," in cell for cell in cells) else "."
         return "." if any(isinstance(cell, str) and "," in cell for cell in cells) else ","
 
-    def yes(self, at: Key, value: bool) -> str:
+    def _find_yes(self, at: Key, value: bool) -> str:
         """The word that the column uses most for yes or no."""
         words = YES if value else NO
         counts = Counter(cell.strip() for cell in self.runways.cells(*at) or () if isinstance(cell, str))
@@ -197,8 +198,19 @@ class OwnWords:
     def date(self, at: Key, text: str) -> Value:
         """A date as a date where the column of a workbook holds dates, else as a text."""
         day = as_date(text)
-        holds = any(isinstance(cell, datetime.date) for cell in self.runways.cells(*at) or ())
-        return day if day is not None and holds else text
+        return day if day is not None and self._holds_dates(at) else text
+
+    def _find_dates(self, at: Key) -> bool:
+        return any(isinstance(cell, datetime.date) for cell in self.runways.cells(*at) or ())
+
+    @cached_property
+    def percent_slopes(self) -> bool:
+        """Whether slopes of a workbook were refused because their cells may be formatted as percent."""
+        cells = self.runways.cells("slope")
+        if cells is None or self.is_text:
+            return False
+        numbers = (cells[index] for index in self.runways.unreadable["slope", 0])
+        return any(isinstance(number, float | int) and abs(number) < LIKELY_PERCENT for number in numbers)
 
 
 def read_surface_pair(text: str) -> tuple[str, str]:

@@ -180,17 +180,19 @@ def find_delimiter(path: Path, encoding: str) -> str:
 
     Raises InputError when the start of the file can't be read with any of them.
     """
-    scores = {}
-    failure: InputError | None = None
+    scores: dict[str, tuple[int, int]] = {}
+    failures: dict[str, InputError] = {}
     for delimiter in DELIMITERS:
         try:
             rows = list(islice(text_rows(path, encoding, delimiter), HEADER_WITHIN))
         except InputError as error:
-            failure = error
+            failures[delimiter] = error
             continue
         scores[delimiter] = max(((known_headers(row), len(row)) for row in rows), default=(0, 0))
-    if not scores and failure:
-        raise failure
+    if failures and max(scores.values(), default=(0, 0))[0] < 2:  # what is wrong is said for the likeliest of them
+        with path.open(encoding=encoding, errors="replace") as stream:
+            start = stream.read(4096)
+        raise failures[max(failures, key=start.count)]
     return max(scores, key=lambda delimiter: scores[delimiter])
 
 

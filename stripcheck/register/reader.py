@@ -22,7 +22,7 @@ from typing import TypeVar
 import numpy as np
 from numpy.typing import NDArray
 
-from stripcheck.errors import InputError
+from stripcheck.errors import InputError, one_line
 from stripcheck.register.airports import Airport, read_airports
 from stripcheck.register.checks import allowed_directions, check_all, check_one_way
 from stripcheck.register.columns import near_misses
@@ -242,7 +242,7 @@ def _fault_texts(runways: Runways, kept: NDArray[np.intp], strict: bool) -> list
     for fault in runways.faults:
         if not texts[fault.row_index]:
             column = f'column "{fault.header}": ' if fault.header else ""
-            texts[fault.row_index] = column + fault.message
+            texts[fault.row_index] = one_line(column + fault.message)
     for index in kept if strict else []:
         if texts[index]:
             raise InputError(f"{runways.table.where} row {runways.table.row_numbers[index]}, {texts[index]}")

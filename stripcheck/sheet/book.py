@@ -28,6 +28,8 @@ from stripcheck.sheet.stream import Column as AnyColumn
 from stripcheck.sheet.stream import FormulaColumn, NumberColumn, Table, TextColumn, write_book
 from stripcheck.units import from_si, tidy
 
+ASSUMED_SLOPE = "Slope of "  # how the sentence on it begins
+SAME_TEMPERATURE = "The day's temperature stands for every strip that has none of its own, whatever its elevation"
 SHORT_ABOVE = 2000  # directions above which a list is long, and gets the short detail unless told otherwise
 
 
@@ -201,15 +203,23 @@ def _as_values(column: AnyColumn) -> AnyColumn:
 
 def taken_for_granted(filling: Filling) -> list[str]:
     """Every default and assumed value that stands in this filling, in words."""
-    lines = [*filling.day.defaults, *filling.card.assumed, *filling.card.fit.remarks]
     kinds = Counter(item.what for item in filling.directions.doubts)
-    lines += [f"{what}: {_runways(number)}, listed on the sheet Left out" for what, number in kinds.most_common()]
-    lines += _book_reach(filling.card)
-    slope = filling.day.values["assumed_slope"]
+    doubts = [f"{what}: {_runways(number)}, listed on the sheet Left out" for what, number in kinds.most_common()]
+    return [*filling.day.defaults, *granted_by_card(filling.card), *doubts, *granted_by_day(filling.day.values)]
+
+
+def granted_by_card(card: Card) -> list[str]:
+    """What a card takes for granted, and how far its figures reach."""
+    return [*card.assumed, *card.fit.remarks, *_book_reach(card)]
+
+
+def granted_by_day(values: Mapping[str, Any]) -> list[str]:
+    """What the values of a day [SI] take for granted, but its defaults."""
+    slope, lines = values["assumed_slope"], []
     if np.isfinite(slope):
-        lines.append(f"Slope of {slope:.1%} against you, both ways, where none is known")
-    if np.isnan(filling.day.values["temperature_elevation"]) and np.isfinite(filling.day.values["temperature"]):
-        lines.append("The day's temperature stands for every strip that has none of its own, whatever its elevation")
+        lines.append(f"{ASSUMED_SLOPE}{slope:.1%} against you, both ways, where none is known")
+    if np.isnan(values["temperature_elevation"]) and np.isfinite(values["temperature"]):
+        lines.append(SAME_TEMPERATURE)
     return lines
 
 
@@ -254,9 +264,19 @@ def _extent(card: Card, tables: BookTables) -> str:
 def _made_from(filling: Filling) -> list[tuple[str, str]]:
     return [
         ("Runway list", f"{filling.directions.source}, {_runways(filling.directions.rows_read)}"),
-        ("Aircraft card", f"{filling.card.file}: {filling.card.name}"),
-        ("Rule set", f"{filling.rules.name}: {filling.rules.title}"),
+        from_card(filling.card),
+        from_rules(filling.rules),
     ]
+
+
+def from_card(card: Card) -> tuple[str, str]:
+    """Which card a workbook was made from: label and text."""
+    return "Aircraft card", f"{card.file}: {card.name}"
+
+
+def from_rules(rules: Rules) -> tuple[str, str]:
+    """Which rule set a workbook was made from: label and text."""
+    return "Rule set", f"{rules.name}: {rules.title}"
 
 
 FACTS = (  # label above the summary, and key of the value, None for the aeroplane's name

@@ -264,11 +264,16 @@ class Edits:
                 moved = Translator(f"={text}", _name(at, first)).translate_formula(_name(number, cell))[1:]
                 p = self.sheet.prefix
                 plain = f"<{p}f>{escape(moved)}</{p}f>".encode()
-                self.cells.setdefault(number, {})[cell.column] = FORMULA.sub(lambda _, plain=plain: plain, own, count=1)
+                self.cells.setdefault(number, {})[cell.column] = _with_formula(own, plain)
 
     def _is_replaced(self, row: int, cell: RawCell) -> bool:
         edit = self.cells.get(row, {}).get(cell.column)
         return edit is not None and not isinstance(edit, Result)
+
+
+def _with_formula(cell: bytes, formula: bytes) -> bytes:
+    found = FORMULA.search(cell)
+    return cell if found is None else cell[: found.start()] + formula + cell[found.end() :]
 
 
 def _name(row: int, cell: RawCell) -> str:

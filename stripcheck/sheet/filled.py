@@ -18,13 +18,13 @@ from stripcheck.errors import InputError
 from stripcheck.inputs import STRIP
 from stripcheck.profile import Profile, local_slopes
 from stripcheck.profile_run import profile_slopes
-from stripcheck.sheet import strips, summary
+from stripcheck.sheet import method, strips, summary
 from stripcheck.sheet.filled_pages import TITLES, ValuePages
 from stripcheck.sheet.filled_strips import Sheet, StripSheet, with_headers
 from stripcheck.sheet.package import Package
 from stripcheck.units import from_si, to_si
 
-SHEETS = (*TITLES.values(), strips.SHEET, summary.SHEET, "Method")
+SHEETS = (*TITLES.values(), strips.SHEET, summary.SHEET, method.SHEET)
 
 
 @dataclass(frozen=True)
@@ -59,15 +59,13 @@ def check_filled(package: Package) -> None:
         raise InputError(f"{package.path}: this is no workbook that stripcheck filled; a refresh needs one")
     if missing:
         names = " and ".join(f'"{title}"' for title in missing)
-        raise InputError(f"{package.path}: the workbook has no sheet {names}, by which it is read; give it back, under that name")
+        raise InputError(f"{package.path}: the workbook has no sheet {names}, by which it is read; put it back")
 
 
-def read_filled(package: Package, pages: ValuePages, loaded: tuple[Aeroplane, Mapping[str, Any]] | None = None) -> Filled:
-    """Read a workbook's inputs. ``loaded``: an aeroplane, with its mass and flap by chain key, that goes before the one on the
-    sheet Aircraft. Raises InputError for what can't be read."""
-    aeroplane = pages.aeroplane() if loaded is None else loaded[0]
-    values = {**aeroplane.values, **pages.rules(), **pages.day()}
-    values |= pages.loading(aeroplane) if loaded is None else loaded[1]
+def read_filled(package: Package, pages: ValuePages) -> Filled:
+    """Read a workbook's inputs. Raises InputError for what can't be read."""
+    aeroplane = pages.aeroplane()
+    values = {**aeroplane.values, **pages.rules(), **pages.day(), **pages.loading(aeroplane)}
     sheet = StripSheet(with_headers(package, strips.SHEET, "Direction"), aeroplane.chain)
     given, faults = sheet.given()
     profiles = sheet.profiles(given)

@@ -8,24 +8,25 @@ from __future__ import annotations
 
 import math
 import re
-from collections.abc import Iterator, Mapping
+from collections.abc import Mapping, Sequence
 from functools import cached_property
 from typing import Any
 
-import numpy as np
 from openpyxl.utils import column_index_from_string
 
 from stripcheck.chain import Input
-from stripcheck.day import KINDS_SHOWN, LIMITS
 from stripcheck.day import KINDS as DAY_KINDS
+from stripcheck.day import KINDS_SHOWN, LIMITS
 from stripcheck.doors.aircraft import CLIMB_SPEED, Aeroplane, aeroplane_of, rules_of
 from stripcheck.doors.range_tables import is_number, sides_told
 from stripcheck.errors import InputError
 from stripcheck.inputs import CARD, CONSTANT_SPEED, DAY, FIXED_PITCH, POWER_LIMIT, REACH, RULES, manual_inputs
+from stripcheck.sheet import method
 from stripcheck.sheet.labels import FLAP_HEADER, TABLES
+from stripcheck.sheet.manual_again import figures_repeated, write_again
 from stripcheck.sheet.package import Package, cell_of
 from stripcheck.sheet.pages import GROUND_COLUMNS
-from stripcheck.sheet.raw_sheet import RawCell, RawSheet, Value
+from stripcheck.sheet.raw_sheet import RawCell, Value
 from stripcheck.speeds import greatest_lift_coefficient
 from stripcheck.surface import CONDITIONS
 from stripcheck.units import from_si, tidy, to_si
@@ -39,7 +40,8 @@ MASSES = ("mass_takeoff", "mass_landing")
 NO_RESULT = "is a formula without a result; open the workbook in a spreadsheet program, save it there, and refresh it again"
 _CARD = (*CARD, *FIXED_PITCH, *CONSTANT_SPEED, POWER_LIMIT, *REACH.values(), *manual_inputs("takeoff"),
          *manual_inputs("landing"), CLIMB_SPEED)  # fmt: skip
-_ON_PAGE = {title: [item for item in items if item.kind != "range" and not item.key.startswith("reference_")]
+_OF_TABLES = ("flap_least", "flap_most", "reference_rolling", "reference_braking")  # follow from tables, under other labels
+_ON_PAGE = {title: [item for item in items if item.kind != "range" and item.key not in _OF_TABLES]
             for title, items in (("Aircraft", _CARD), ("Day", DAY), ("Rules", RULES))}  # fmt: skip
 _RANGES = {"flap_deflections": ("Aircraft", 4), "flap_drags": ("Aircraft", 8), "flap_lifts": ("Aircraft", 9),
            **{key: ("Rules", column_index_from_string(letter)) for key, letter in GROUND_COLUMNS.items()}}  # fmt: skip
@@ -49,14 +51,20 @@ _FROM_MANUAL = re.compile(r"IF\(ISNUMBER\(\$?Manual[!.]\$?([A-Z]+)\$?(\d+)\),[^,
 class ValuePages:
     """The pages as they stand, with what a command gives in place of what is typed there.
 
+    Once `aeroplane` was asked for, ``aircraft`` has the rows of that sheet as they count, and ``figures`` what its cells that
+    repeat the sheet Manual show now, by row and column.
     Raises InputError for a page that can't be read any more.
     """
 
     def __init__(self, package: Package) -> None:
         self.package = package
-        self.raw = {title: package.sheet(title) for title in (*TITLES.values(), MANUAL) if title in package.sheets}
+        titles = (*TITLES.values(), MANUAL, method.SHEET)
+        self.raw = {title: package.sheet(title) for title in titles if title in package.sheets}
         self.given: dict[str, dict[tuple[int, int], Value]] = {title: {} for title in self.raw}
+        self.told: set[str] = set()  # inputs that were given, though they may be the same
         self.doubts: list[str] = []
+        self.aircraft: list[list[Any]] = []
+        self.figures: dict[tuple[int, int], Value] = {}
         for name, (title, column) in _RANGES.items():
             place = cell_of(package.names.get(name, "").split(":")[0])
             if place is not None and (place[0], place[2]) != (title, column):
@@ -103,8 +111,8 @@ class ValuePages:
         return place[1]
 
     def _moved(self, title: str) -> InputError:
-        return InputError(f'{self.package.path}: columns of the sheet "{title}" were moved; move them back, and keep own ones to '
-                          "the right of them")  # fmt: skip
+        return InputError(f'{self.package.path}: columns of the sheet "{title}" were moved; move them back, and keep '
+                          "your own to the right of them")  # fmt: skip
 
     def rows(self, title: str) -> list[list[Any]]:
         """The cells A to I of a page, row by row from row 1, with the labels that belong there.
@@ -116,31 +124,34 @@ class ValuePages:
         for row in raw.rows:
             for column, cell in row.cells.items():
                 if column <= WIDE:
-                    rows[row.number - 1][column - 1] = self._read(cell)
+                    rows[row.number - 1][column - 1] = self._read(row.number, cell)
         for (number, column), value in self.given[title].items():
-            rows[number - 1][column - 1] = value
+            if column <= WIDE:
+                rows[number - 1][column - 1] = value
+                self.figures |= {(number, column): value} if title == "Aircraft" and (number, column) in self.figures else {}
         self._put_labels(title, rows)
         return rows
 
-    def _read(self, cell: RawCell) -> Value:
+    def _read(self, row: int, cell: RawCell) -> Value:
         """A cell; what it reads from the sheet Manual is read from there anew."""
         match = _FROM_MANUAL.fullmatch(cell.formula or "") if cell.live else None
         if match is None or MANUAL not in self.raw:
             return cell.value
         figure = self.value(MANUAL, int(match[2]), column_index_from_string(match[1]))
-        return figure if is_number(figure) else match[3]
+        self.figures[row, cell.column] = figure if is_number(figure) else match[3]
+        return self.figures[row, cell.column]
 
     def _put_labels(self, title: str, rows: list[list[Any]]) -> None:
         named = {row: item for item in _ON_PAGE[title] if (row := self._named_row(title, item)) is not None}
         labels = {item.label for item in named.values()}
-        for number, row in enumerate(rows, 1):
+        for number, cells in enumerate(rows, 1):
             item = named.get(number)
             if item is None:
-                row[0] = None if row[0] in labels else row[0]  # a user's own, of the same words
+                cells[0] = None if cells[0] in labels else cells[0]  # a user's own, of the same words
                 continue
-            row[0] = item.label
+            cells[0] = item.label
             if item.kind == "number" and self._follows(title, number):
-                row[SI - 1] = None
+                cells[SI - 1] = None
 
     def _follows(self, title: str, row: int, column: int = SI) -> bool:
         """Whether a number in SI follows from the typed one; one that was typed over its formula counts itself."""
@@ -154,10 +165,34 @@ class ValuePages:
         rows = self.rows("Aircraft")
         self._check_results("Aircraft", rows)
         self._work_out_flaps(rows)
-        told = next((row[1] for row in rows if row[0] == TABLES), None)
-        if told is not None and sides_told(told) and MANUAL not in self.raw:
-            raise InputError(f'{self.package.path}: the sheet "{MANUAL}" is gone, which this aeroplane needs; put it back')
+        if self.sides(rows):
+            self._take_figures(rows)
+        self.aircraft = rows
         return aeroplane_of(rows)
+
+    def sides(self, rows: Sequence[Sequence[Any]]) -> list[str]:
+        """The sides that have tables of the manual, by the rows of the sheet Aircraft."""
+        told = next((row[1] for row in rows if row[0] == TABLES), None)
+        return sides_told(told) if told is not None else []
+
+    def _take_figures(self, rows: list[list[Any]]) -> None:
+        """In a workbook of values, figures typed on the sheet Manual go into the rows that repeat them."""
+        if MANUAL not in self.raw:
+            raise InputError(f'{self.package.path}: the sheet "{MANUAL}" is gone, which this aeroplane needs; put it back')
+        if self.is_live("Aircraft"):
+            return
+        again = write_again(rows, self.sides(rows), len(aeroplane_of(rows).flaps))
+        if any(self.package.names.get(name) != text for name, text in again.names.items()):
+            raise InputError(f'{self.package.path}: rows or columns of the sheet "{MANUAL}" were moved; move them back')
+        for number, column, figure in figures_repeated(again, self.raw[MANUAL], rows):
+            before = rows[number - 1][column - 1]
+            if is_number(figure):
+                rows[number - 1][column - 1] = self.figures[number, column] = figure
+            elif is_number(before):
+                raise InputError(
+                    f'{self.package.path}: a figure on the sheet "{MANUAL}" is gone, {rows[number - 1][0]}, and in a workbook '
+                    "of values nothing can stand for it; put it back, or fill a new one"
+                )
 
     def _work_out_flaps(self, rows: list[list[Any]]) -> None:
         area = next((row[1] for row in rows if row[0] == "Wing area"), None)
@@ -239,11 +274,3 @@ class ValuePages:
             if not text.startswith(("IF(ISNUMBER(D", "IF(D")) and not _FROM_MANUAL.fullmatch(text):
                 label = self.value(title, row, LABEL)
                 raise InputError(f"{self.package.path}: sheet {title}, row {row}, {label}: {NO_RESULT}")
-
-    def figure_cells(self) -> Iterator[tuple[int, int, Value]]:
-        """Row and column of each cell of the sheet Aircraft that repeats the sheet Manual, and what it shows now."""
-        for row in self.raw["Aircraft"].rows:
-            for column, cell in row.cells.items():
-                if cell.live and _FROM_MANUAL.fullmatch(cell.formula or ""):
-                    yield row.number, column, self._read(cell)
-

@@ -171,12 +171,12 @@ class StripSheet:
     def _check_formulas(self, full: bool) -> None:
         """Raise InputError where the formulas read a column that is gone, or whose header is another."""
         if not full and any("#REF!" in text for text in self._formulas.values()):
-            raise InputError(f'{self.path}: the sheet "{self.sheet.title}" has lost a column that its formulas read; put it back')
+            raise InputError(f'{self.path}: the sheet "{self.sheet.title}" has lost a column that formulas read; put it back')
         known = {*self.steps.values(), *self.inputs.values()}
         for column in sorted(self._read_columns - known):
             header = _text(self.raw.value(self.sheet.header_row, column))
             raise InputError(
-                f'{self.path}: the formulas of the sheet "{self.sheet.title}" read the column {get_column_letter(column)}, whose '
+                f'{self.path}: formulas of the sheet "{self.sheet.title}" read the column {get_column_letter(column)}, whose '
                 f'header "{header}" is not known; give it back the header that it had'
             )
 
@@ -193,7 +193,7 @@ class StripSheet:
         if len(typed) + bool(self.text(row, "direction")) >= 2:
             return True
         if any(self.text(row, key) for key in ("strip", "direction")):
-            self.doubts.append(f"sheet {self.sheet.title}, row {row}: taken for a row of your own, since it has no values of a strip")
+            self.doubts.append(f"sheet {self.sheet.title}, row {row}: taken for one of your own, since no strip is typed there")
         return False
 
     def _is_typed(self, row: int, column: int | None) -> bool:

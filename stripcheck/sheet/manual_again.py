@@ -18,7 +18,7 @@ from stripcheck.card import Card
 from stripcheck.doors.range_tables import tables_of
 from stripcheck.sheet import manual_tables, pages
 from stripcheck.sheet.labels import REST, TABLES
-from stripcheck.sheet.raw_sheet import RawCell, RawSheet
+from stripcheck.sheet.raw_sheet import RawCell, RawSheet, Value
 
 _FIGURE = re.compile(r"=IF\(ISNUMBER\(Manual!([A-Z]+)(\d+)\),")
 
@@ -39,18 +39,26 @@ class ManualAgain:
             return dict(self.values)
         cells = [((row.number, column), cell) for row in raw.rows for column, cell in sorted(row.cells.items()) if cell.live]
         ours = sorted(self.formulas)
-        if len(cells) != len(ours) or not all(_alike(self.formulas[at], cell) for at, (_, cell) in zip(ours, cells, strict=True)):
+        if len(cells) != len(ours):
+            return None
+        if not all(_alike(self.formulas[at], cell) for at, (_, cell) in zip(ours, cells, strict=True)):
             return None
         return {there: self.values[at] for at, (there, _) in zip(ours, cells, strict=True)}
 
 
-def write_again(rows: Sequence[Sequence[Any]], sides: Sequence[str], flaps: Sequence[Any],
+def write_again(rows: Sequence[Sequence[Any]], sides: Sequence[str], settings: int,
                 values: Mapping[str, Any] | None = None) -> ManualAgain:  # fmt: skip
-    """The sheet for the figures in the rows of a sheet Aircraft. ``values``: mass and flap of the tables by chain key, SI;
-    without them those of the first page count."""
+    """The sheet for the figures in the rows of a sheet Aircraft that has so many flap settings.
+
+    ``values``: mass and flap of the tables by chain key, SI; without them those of the first page count. Names of settings
+    don't matter here, only where things stand and what they come to.
+    """
     tables = {side: tables_of(rows, side) for side in sides}
     tables = {side: replace(one, spare=one.filled, lift_offs=()) for side, one in tables.items()}
     first = {f"{side}_book_{key}": one.pages[0][at] for side, one in tables.items() for at, key in enumerate(("flap", "mass"))}
+    with_pages = sorted({flap for one in tables.values() for flap, _ in one.pages})
+    deflections = [*with_pages, *[with_pages[-1]] * settings][:settings]
+    flaps = [SimpleNamespace(name=str(at), deflection=flap) for at, flap in enumerate(deflections)]
     card = cast(Card, SimpleNamespace(name="", tables=tables, flaps=flaps))
     made = pages.Pages(Workbook())
     aircraft = made.book.create_sheet("Aircraft")
@@ -60,7 +68,7 @@ def write_again(rows: Sequence[Sequence[Any]], sides: Sequence[str], flaps: Sequ
     assert manual is not None  # there are tables
     live = [cell for row in manual.iter_rows() for cell in row if cell.data_type == "f"]
     cached = made.cached[manual.title]
-    repeated = [(str(row[0].value), [cell.value for cell in row[1:]]) for row in aircraft.iter_rows(min_row=2)
+    repeated = [(str(row[0].value).split(REST)[0], [cell.value for cell in row[1:]]) for row in aircraft.iter_rows(min_row=2)
                 if REST in str(row[0].value)]  # fmt: skip
     return ManualAgain(
         {(cell.row, cell.column): str(cell.value)[1:] for cell in live},
@@ -70,18 +78,16 @@ def write_again(rows: Sequence[Sequence[Any]], sides: Sequence[str], flaps: Sequ
     )  # fmt: skip
 
 
-def figures_repeated(again: ManualAgain, manual: RawSheet, rows: Sequence[Sequence[Any]]) -> Iterator[tuple[int, int, float]]:
-    """Place (from 1) and figure of each cell of the sheet Aircraft, by its rows, that repeats a number of the sheet Manual."""
+def figures_repeated(again: ManualAgain, manual: RawSheet, rows: Sequence[Sequence[Any]]) -> Iterator[tuple[int, int, Value]]:
+    """Of each cell of the sheet Aircraft, by its rows, that repeats the sheet Manual: place from 1, and what stands there."""
     remaining = list(again.repeated)
     for number, row in enumerate(rows, 1):
-        at = next((i for i, (label, _) in enumerate(remaining) if label == row[0]), None)
-        if at is None:
-            continue
-        for column, cell in enumerate(remaining.pop(at)[1], 2):
+        at = next((i for i, (label, _) in enumerate(remaining) if label == str(row[0]).split(REST)[0]), None)
+        cells = remaining.pop(at)[1] if at is not None else ()
+        for column, cell in enumerate(cells, 2):
             match = _FIGURE.match(cell) if isinstance(cell, str) else None
-            figure = manual.value(int(match[2]), column_index_from_string(match[1])) if match else None
-            if isinstance(figure, float) and not isinstance(figure, bool):
-                yield number, column, figure
+            if match is not None:
+                yield number, column, manual.value(int(match[2]), column_index_from_string(match[1]))
 
 
 def _alike(formula: str, cell: RawCell) -> bool:

@@ -12,10 +12,10 @@ from __future__ import annotations
 import datetime
 import posixpath
 import re
+from bisect import bisect_left, bisect_right
 from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
 from contextlib import suppress
 from functools import cached_property
-from itertools import islice
 from typing import BinaryIO
 from xml.sax.saxutils import escape, quoteattr
 
@@ -59,11 +59,12 @@ class RegisterBook:
         self.edits = {self.title: Edits(self.raw)}
         self.places, self.rows = table.places, table.row_numbers
         self.understood = {self.places[item.position] for item in register.runways.found.values()}
+        self._dated: dict[int, list[int]] = {}  # rows that show a date, by column
         self.added: dict[str, bytes] = {}
         self.parts: dict[str, bytes] = {}
         self.stale: dict[str, int] = {}  # formulas whose results were taken away, by sheet
 
-    @property
+    @cached_property
     def fixed(self) -> set[tuple[int, int]]:
         """Cells with a formula, as index of the runway and position of the column."""
         return {
@@ -140,14 +141,17 @@ class RegisterBook:
 
     def _upwards(self, row: int) -> Iterator[int]:
         yield row
-        yield from islice((number for number in reversed(self.rows) if number < row), NEAR)
+        yield from reversed(self.rows[: bisect_left(self.rows, row)][-NEAR:])
 
     def _date_style(self, row: int, column: int) -> str:
         """The style of the nearest cell above, or else below, in which the column shows a date."""
-        cells = self.register.runways.table.cells[self.places.index(column)]
-        dated = [number for number, cell in zip(self.rows, cells, strict=True) if isinstance(cell, datetime.date)]
-        nearest = sorted(dated, key=lambda number: (number > row, abs(number - row)))
-        cell = self.raw.cell(nearest[0], column) if nearest else None
+        if column not in self._dated:
+            cells = self.register.runways.table.cells[self.places.index(column)]
+            dated = [number for number, cell in zip(self.rows, cells, strict=True) if isinstance(cell, datetime.date)]
+            self._dated[column] = dated
+        rows = self._dated[column]
+        nearest = rows[max(bisect_right(rows, row) - 1, 0)] if rows else 0
+        cell = self.raw.cell(nearest, column)
         return cell.style if cell else ""
 
     @property

@@ -16,6 +16,8 @@ from stripcheck.sheet.pages import Pages, words_places, write_header, write_head
 
 SHEET = "Method"
 TABLE_ROW = 6
+GRANTED, METHODS = "Taken for granted", "Method"  # headings
+NOTHING_GRANTED = "Nothing: every value was given."
 LINE = 125  # characters that fit on a line of the page
 
 METHOD = (
@@ -64,8 +66,8 @@ def write_method(pages: Pages, chain: Chain, taken: list[str], made_from: list[t
     row = 4
     for heading, lines in (
         ("Made from", facts),
-        ("Taken for granted", taken or ["Nothing: every value was given."]),
-        ("Method", METHOD),
+        (GRANTED, taken or [NOTHING_GRANTED]),
+        (METHODS, METHOD),
         ("Sources", SOURCES),
     ):
         write_heading(sheet, row, heading)

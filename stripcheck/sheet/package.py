@@ -175,21 +175,6 @@ class Package:
         return found
 
 
-def worked_out_on_load(workbook: bytes) -> bytes:
-    """The workbook's own part with the order to work all formulas out when it is opened.
-
-    A program that keeps no settings of calculation works all out in any case; then it stays as it is.
-    """
-    tag = _CALCULATION.search(workbook)
-    told = _ON_LOAD.search(tag[0]) if tag else None
-    if tag is None or (told is not None and told[1] in (b"1", b"true")):
-        return workbook
-    plain = _ON_LOAD.sub(b"", tag[0])
-    end = -2 if plain.endswith(b"/>") else -1
-    fresh = plain[:end].rstrip() + b' fullCalcOnLoad="1"' + plain[end:]
-    return workbook[: tag.start()] + fresh + workbook[tag.end() :]
-
-
 def _usual(name: str) -> str:
     address, _, local = name[1:].partition("}") if name.startswith("{") else ("", "", name)
     return f"{{{_STRICT[address]}}}{local}" if address in _STRICT else name

@@ -35,6 +35,7 @@ from stripcheck.units import UNITS, from_si, tidy
 
 UNKNOWN_GROUND = "not known"
 NO_FIGURE = "none"
+STATUS = "Status of the figures: "
 FEW_FIGURES = 16  # of the manual's, up to which each has a row of its own
 GROUND_COLUMNS = {"ground_rolling": "B", "ground_braking": "C", "ground_takeoff_factor": "D", "ground_landing_factor": "F"}
 LABEL, VALUE, UNIT, SI, NOTE = "A", "B", "C", "D", "E"
@@ -362,7 +363,7 @@ def write_rules(pages: Pages, rules: Rules) -> Worksheet:
 def rule_facts(rules: Rules) -> tuple[str, ...]:
     """What stands above the rules: issue, citation, status of the figures, note."""
     told = {"read": "taken from the text", "memory": "from memory: compare with the text", "own": "the user's own"}
-    return (rules.issue, rules.citation, f"Status of the figures: {told[rules.status]}.", " ".join(rules.note.split()))
+    return (rules.issue, rules.citation, f"{STATUS}{told[rules.status]}.", " ".join(rules.note.split()))
 
 
 def _ground_table(pages: Pages, sheet: Worksheet, row: int, rules: Rules) -> None:

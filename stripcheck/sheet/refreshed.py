@@ -22,7 +22,7 @@ from stripcheck.sheet.edits import Edits, Fresh
 from stripcheck.sheet.filled import Filled
 from stripcheck.sheet.filled_pages import ValuePages
 from stripcheck.sheet.filled_strips import DOOR
-from stripcheck.sheet.formulas import GROUND_NAMES, RUN_TABLE, WORDS, Place, write_formulas
+from stripcheck.sheet.formulas import GROUND_NAMES, NOWHERE, RUN_TABLE, WORDS, Place, write_formulas
 from stripcheck.sheet.package import Package
 from stripcheck.sheet.raw_sheet import Value
 from stripcheck.units import from_si
@@ -59,12 +59,12 @@ class BookEdits:
         return "#REF!" not in self.package.names.get(name, "#REF!")
 
     def page_places(self, chain: Chain) -> dict[str, Place]:
-        """Where the chain's inputs of the pages, and the tables that formulas look up, stand: under their names."""
+        """Where the chain's inputs of the pages, and the tables that formulas look up, stand: under their names. Those of
+        the strips stand nowhere."""
         places = {name: Place(name) for name in (*(step.key + WORDS for step in chain.steps if step.words), GROUND_NAMES)}
         for item in chain.inputs:
-            if item.where != "strip":
-                name = next((name for name in (item.key, f"{item.key}s") if self.named(name)), item.key)
-                places[item.key] = Place(name)
+            name = next((name for name in (item.key, f"{item.key}s") if self.named(name)), item.key)
+            places[item.key] = Place(name) if item.where != "strip" else NOWHERE
         return places
 
     def formulas(self, chain: Chain, places: Mapping[str, Place], keys: Collection[str]) -> dict[str, str]:

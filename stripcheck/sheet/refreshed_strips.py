@@ -18,7 +18,7 @@ from stripcheck.profile_run import KEYS as PROFILE
 from stripcheck.sheet import strips
 from stripcheck.sheet.edits import Edits, Growth
 from stripcheck.sheet.filled_strips import DOOR, NATIVE, is_of_door
-from stripcheck.sheet.formulas import NOWHERE, Place
+from stripcheck.sheet.formulas import Place
 from stripcheck.sheet.raw_sheet import RawCell, Value
 from stripcheck.sheet.refreshed import BookEdits, Computed, plain
 from stripcheck.sheet.stream import ROW
@@ -29,7 +29,8 @@ SIDES = {"landing": "landing", "takeoff": "take-off"}
 
 
 class StripEdits:
-    """The edits to the sheet Strips, and what they tell: ``keys`` of the directions, ``replaced`` values typed over formulas."""
+    """The edits to the sheet Strips, and what they tell: ``keys`` of the directions, ``replaced`` cells where a formula
+    was typed over."""
 
     def __init__(self, work: BookEdits, computed: Computed) -> None:
         self.work, self.computed, self.book = work, computed, computed.book
@@ -74,9 +75,9 @@ class StripEdits:
         places = self.work.page_places(chain)
         places |= {step.key: Place(step.key) for step in chain.steps if self.work.named(step.key)}
         for item in STRIP:
-            column = self.sheet.inputs.get(item.key)
-            unit = item.unit if item.kind == "number" else ""
-            places[item.key] = Place(f"${get_column_letter(column)}{ROW}", unit) if column else NOWHERE
+            if item.key in self.sheet.inputs:
+                unit = item.unit if item.kind == "number" else ""
+                places[item.key] = Place(f"${get_column_letter(self.sheet.inputs[item.key])}{ROW}", unit)
         for key, column in self.sheet.steps.items():
             places[key] = Place(f"${get_column_letter(column)}{ROW}", self._unit(key))
         return self.work.formulas(chain, places, self.sheet.steps)
@@ -182,9 +183,10 @@ class StripEdits:
         """Each verdict that is another than the one that stood there, in words."""
         told = []
         for side, word in SIDES.items():
-            before, after = self.sheet.computed(f"{side}_verdict"), self.computed.shown(f"{side}_verdict")
-            told += [f"{self._named(at)}, {word}: {one} -> {other}" for at, (one, other) in enumerate(zip(before, after, strict=True))
-                     if one in VERDICTS and one != other]  # fmt: skip
+            key = f"{side}_verdict"
+            both = zip(self.sheet.computed(key), self.computed.shown(key), strict=True)
+            told += [f"{self._named(at)}, {word}: {before} -> {after}" for at, (before, after) in enumerate(both)
+                     if before in VERDICTS and before != after]  # fmt: skip
         return told
 
     def unknown_before(self) -> int:

@@ -171,7 +171,7 @@ class SummaryEdits:
 
     def _write_facts(self) -> None:
         """What the verdicts stand on, which repeats cells of the pages."""
-        labels = {label: key for label, key in (*FACTS, ("Rules", "rules"))}
+        labels: dict[str, str | None] = dict((*FACTS, ("Rules", "rules")))
         for row in self.raw.rows:
             if row.number >= self.sheet.header_row:
                 return
@@ -197,7 +197,7 @@ class SummaryEdits:
 
     def _write_fact(self, row: int, key: str | None) -> None:
         """The same in a workbook of values."""
-        pages, items = self.work.pages, self.book.chain.by_key
+        pages = self.work.pages
         if key is None or key == "rules":
             self.edits.set(row, self.columns["name"], pages.title("Aircraft" if key is None else "Rules"))
             return

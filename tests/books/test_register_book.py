@@ -143,15 +143,20 @@ def _compared(open_book: Open, state: State, path: Path) -> tuple[int, int, list
     faults = [line[0] or "" for line in open_book.book.values("Reading", f"{letter}4:{letter}{3 + SIZE}")]
     refused = [at for at, row in enumerate(rows) if row < SIZE and faults[row] and not directions.texts["fault"][2 * at]]
     count = 0
-    found = [f"row {row}: a fault of the list is none to the formulas" for at, row in enumerate(rows)
-             if row < SIZE and directions.texts["fault"][2 * at] and not faults[row]]  # fmt: skip
+    found = [
+        f"row {row}: a fault of the list is none to the formulas"
+        for at, row in enumerate(rows)
+        if row < SIZE and directions.texts["fault"][2 * at] and not faults[row]
+    ]
     for number in range(len(state.cards)):
         results = _results(state, number, directions)
         lines = _fleet_lines(open_book.book, number, len(state.cards))
         for at, row in enumerate(rows):
             if row >= SIZE or directions.texts["fault"][2 * at] or at in refused:
                 continue
-            for got, expected, scale in zip(lines[row], results[at], (1.0, 1.0, 1.0, MARGIN, 1.0, 1.0, MARGIN, 1.0), strict=True):
+            for got, expected, scale in zip(
+                lines[row], results[at], (1.0, 1.0, 1.0, MARGIN, 1.0, 1.0, MARGIN, 1.0), strict=True
+            ):
                 count += 1
                 if not same(got, expected, scale):
                     found.append(f"plane {number} row {row}: {got!r}, not {expected!r} ({directions.texts['pair'][2 * at]})")
@@ -181,7 +186,7 @@ def _fleet_lines(book: Book, number: int, planes: int) -> list[list[Any]]:
     first, last = register_fleet.FIRST_ROW, register_fleet.FIRST_ROW + SIZE - 1
     word = get_column_letter(5 + number)
     start = 5 + planes + number * len(register_fleet.PARTS)
-    detail = f"{get_column_letter(start)}{first}:{get_column_letter(start + len(register_fleet.PARTS) - 1)}{last}"
+    detail = f"{get_column_letter(start + 2)}{first}:{get_column_letter(start + len(register_fleet.PARTS) - 1)}{last}"
     words, details = book.values("Fleet", f"{word}{first}:{word}{last}"), book.values("Fleet", detail)
     return [[*one, *rest] for one, rest in zip(words, details, strict=True)]
 
@@ -199,15 +204,21 @@ def _results(state: State, number: int, directions: Directions, **over: Any) -> 
         for key, side in (("in", "landing"), ("out", "takeoff")):
             row = int(best[key][at])
             verdict, margin = result[f"{side}_verdict"][row], float(result.si(f"{side}_margin")[row])
-            line += [verdict, "" if verdict == "not assessed" else directions.texts["direction"][row],
-                     "" if np.isnan(margin) else margin]  # fmt: skip
+            line += [
+                verdict,
+                "" if verdict == "not assessed" else directions.texts["direction"][row],
+                "" if np.isnan(margin) else margin,
+            ]
         results.append((*line, _why(result, int(best["in"][at]), int(best["out"][at]))))
     return results
 
 
 def _why(result: Result, row_in: int, row_out: int) -> str:
-    told = [(word, result[f"{side}_reason"][row]) for word, side, row in (("In", "landing", row_in), ("Out", "takeoff", row_out))
-            if result[f"{side}_verdict"][row] != "suitable"]  # fmt: skip
+    told = [
+        (word, result[f"{side}_reason"][row])
+        for word, side, row in (("In", "landing", row_in), ("Out", "takeoff", row_out))
+        if result[f"{side}_verdict"][row] != "suitable"
+    ]
     if len(told) == 2 and told[0][1] == told[1][1]:
         return str(told[0][1])
     whole = "; ".join(f"{word}: {reason}" for word, reason in told)
@@ -227,9 +238,13 @@ def _months_compared(open_book: Open, state: State) -> tuple[int, list[str]]:
         climate = state.climate
         ground = CONDITIONS.index(climate.grounds[month]) if climate.grounds[month] else -2
         over = {
-            "temperature": climate.temperatures[month], "temperature_elevation": climate.taken_at, "isa_deviation": np.nan,
-            "dew_point": np.nan, "qnh": climate.pressures[month], "day_condition": np.where((surface == 0) & (ground == 2), 1, ground),
-        }  # fmt: skip
+            "temperature": climate.temperatures[month],
+            "temperature_elevation": climate.taken_at,
+            "isa_deviation": np.nan,
+            "dew_point": np.nan,
+            "qnh": climate.pressures[month],
+            "day_condition": np.where((surface == 0) & (ground == 2), 1, ground),
+        }
         words = _results(state, 0, directions, **over)
         for at, row in enumerate((directions.numbers["source_row"][::2] - FIRST_ROW).astype(int)):
             mark = marks[row][month]
@@ -247,20 +262,53 @@ def _months_compared(open_book: Open, state: State) -> tuple[int, list[str]]:
 
 def _new_strip(open_book: Open, state: State) -> None:
     row = FIRST_ROW + 12
-    open_book.fill(row, Strip="XNEW", Name="New Bench", Runway="08/26", Length=655, Width=18, Elevation_end_1=2950,
-                   Elevation_end_2=2990, Surface="gravel", Obstacle_height_end_2=40, Obstacle_distance_end_2=300)  # fmt: skip
+    open_book.fill(
+        row,
+        Strip="XNEW",
+        Name="New Bench",
+        Runway="08/26",
+        Length=655,
+        Width=18,
+        Elevation_end_1=2950,
+        Elevation_end_2=2990,
+        Surface="gravel",
+        Obstacle_height_end_2=40,
+        Obstacle_distance_end_2=300,
+    )
 
 
 def _rows_inserted(open_book: Open, state: State) -> None:
     open_book.book.insert_rows("Register", FIRST_ROW + 2, 2)
-    open_book.fill(FIRST_ROW + 3, Strip="XIN", Name="Put Between", Runway="17/35", Length=900, Width=20, Elevation=3100, Slope=-1.2,
-                   Surface="grass", Condition="wet", Land_on="17", Leave_by="35")  # fmt: skip
+    open_book.fill(
+        FIRST_ROW + 3,
+        Strip="XIN",
+        Name="Put Between",
+        Runway="17/35",
+        Length=900,
+        Width=20,
+        Elevation=3100,
+        Slope=-1.2,
+        Surface="grass",
+        Condition="wet",
+        Land_on="17",
+        Leave_by="35",
+    )
 
 
 def _row_before_the_first(open_book: Open, state: State) -> None:
     open_book.book.insert_rows("Register", FIRST_ROW, 1)
-    open_book.fill(FIRST_ROW, Strip="XTOP", Name="On Top", Runway="02/20", Heading=30, Length=810, Elevation=900, Slope=0.5, Width=25,
-                   Surface="dirt")  # fmt: skip
+    open_book.fill(
+        FIRST_ROW,
+        Strip="XTOP",
+        Name="On Top",
+        Runway="02/20",
+        Heading=30,
+        Length=810,
+        Elevation=900,
+        Slope=0.5,
+        Width=25,
+        Surface="dirt",
+    )
 
 
 def _sorted(open_book: Open, state: State) -> None:
@@ -272,7 +320,9 @@ def _columns_inserted(open_book: Open, state: State) -> None:
     for before, header in ((4, "Chief"), (20, "Fee")):
         open_book.book.insert_columns("Register", before)
         letter = get_column_letter(before)
-        open_book.book.set("Register", {f"{letter}{HEADER_ROW}": header, f"{letter}{FIRST_ROW + 1}": 12.5, f"{letter}{FIRST_ROW + 2}": "yes"})
+        open_book.book.set(
+            "Register", {f"{letter}{HEADER_ROW}": header, f"{letter}{FIRST_ROW + 1}": 12.5, f"{letter}{FIRST_ROW + 2}": "yes"}
+        )
 
 
 def _day(open_book: Open, state: State, label: str, key: str, value: Any) -> None:
@@ -335,13 +385,16 @@ EDITS: dict[str, Callable[[Open, State], None]] = {
     "one-way, not which way": _typed("XTNM", One__way="yes"),
     "an obstacle without distance": _typed("XLRB", Obstacle_height_end_1=120),
     "ends too far apart in height": _typed("XKDF", Elevation_end_1=2000, Elevation_end_2=6000),
-    "a profile typed by hand": _refusing("XKDF", Elevation_end_1=None, Elevation_end_2=None, Slope=1,
-                                         Slope_profile="0:0, 700:7, 1400:14"),
+    "a profile typed by hand": _refusing(
+        "XKDF", Elevation_end_1=None, Elevation_end_2=None, Slope=1, Slope_profile="0:0, 700:7, 1400:14"
+    ),
     "no profile": _mended("XKDF", Slope_profile=None),
     "a displaced threshold": _typed("XLRB", Obstacle_height_end_1=None, Displaced_threshold_end_1=150),
     "a hot day": lambda open_book, state: _day(open_book, state, "Temperature", "temperature", 36),
-    "wind": lambda open_book, state: (_day(open_book, state, "Wind from", "wind_from", 200),
-                                      _day(open_book, state, "Wind", "wind_speed", 12))[0],
+    "wind": lambda open_book, state: (
+        _day(open_book, state, "Wind from", "wind_from", 200),
+        _day(open_book, state, "Wind", "wind_speed", 12),
+    )[0],
     "lighter": _mass,
     "another flap": _flap,
     "another factor": _factor,
@@ -352,7 +405,7 @@ EDITS: dict[str, Callable[[Open, State], None]] = {
     "sorted by name": _sorted,
     "a row deleted": lambda open_book, state: open_book.book.delete_rows("Register", open_book.row("XSPT")),
     "closed": _typed("XSPH", Closed="yes"),
-}  # fmt: skip
+}
 
 
 SAVED = ("a hot day", "sorted by name", "closed")  # after these the whole workbook is saved, and the list read from it
@@ -393,7 +446,10 @@ def test_months_follow_as_the_arrays_do(opened: Open, state: State) -> None:
 
 
 def test_the_counts_below_the_months_add_up(opened: Open) -> None:
-    in_use = sum(line[0] not in ("", None) for line in opened.book.values("Months", f"A{register_months.FIRST_ROW}:A{register_months.FIRST_ROW + SIZE - 1}"))
+    in_use = sum(
+        line[0] not in ("", None)
+        for line in opened.book.values("Months", f"A{register_months.FIRST_ROW}:A{register_months.FIRST_ROW + SIZE - 1}")
+    )
     first = register_months.FIRST_ROW + SIZE + 2
     counts = np.array(opened.book.values("Months", f"D{first}:O{first + len(register_months.COUNTED) - 1}"), dtype=float)
     assert counts.sum(axis=0).tolist() == [in_use] * 12
@@ -422,12 +478,30 @@ def test_surveys_are_flagged_in_words(opened: Open) -> None:
 def test_a_changed_header_stops_everything_and_says_which(opened: Open) -> None:
     letter = opened.letter("Length [m]")
     opened.book.set("Register", {f"{letter}{HEADER_ROW}": "Length [ft]"})
-    words = {line[0] for line in opened.book.values("Fleet", f"E{register_fleet.FIRST_ROW}:E{register_fleet.FIRST_ROW + SIZE - 1}")}
+    words = {
+        line[0] for line in opened.book.values("Fleet", f"E{register_fleet.FIRST_ROW}:E{register_fleet.FIRST_ROW + SIZE - 1}")
+    }
     assert words <= {"not assessed", "", "closed"}
     assert "Length [m]" in str(_fleet_lines(opened.book, 0, 2)[0][7])
     opened.book.set("Register", {f"{letter}{HEADER_ROW}": "Length [m]"})
-    words = {line[0] for line in opened.book.values("Fleet", f"E{register_fleet.FIRST_ROW}:E{register_fleet.FIRST_ROW + SIZE - 1}")}
+    words = {
+        line[0] for line in opened.book.values("Fleet", f"E{register_fleet.FIRST_ROW}:E{register_fleet.FIRST_ROW + SIZE - 1}")
+    }
     assert "IN BUT NOT OUT" in words
+
+
+@pytest.mark.parametrize(
+    ("label", "value"), [("QNH", None), ("QNH", 29.92), ("Temperature", None), ("Temperature", 75), ("QNH", "high")]
+)
+def test_a_day_without_a_credible_value_assesses_nothing(opened: Open, label: str, value: Any) -> None:
+    cell = f"B{_label_row(opened.book, 'Day', label)}"
+    before = opened.book.value("Day", cell)
+    opened.book.set("Day", {cell: value})
+    lines = _fleet_lines(opened.book, 0, 2)
+    opened.book.set("Day", {cell: before})
+    assert {line[0] for line in lines} <= {"not assessed", "", "closed"}
+    assert not [number for line in lines for number in line if isinstance(number, float)]
+    assert any("not known or not credible" in str(line[7]) for line in lines)
 
 
 def test_more_rows_than_are_worked_out_are_told_of(opened: Open) -> None:
@@ -436,7 +510,7 @@ def test_more_rows_than_are_worked_out_are_told_of(opened: Open) -> None:
         opened.fill(FIRST_ROW + SIZE + at, Strip=f"XTOO{at}", Runway="09/27", Length=700)
     told = f"THE LAST 2 ROWS ARE NOT WORKED OUT: there is room for {SIZE}. Make the workbook anew with stripcheck register."
     assert opened.book.value("Register", "F4") == told
-    assert opened.book.value("Fleet", "D3") == told
+    assert opened.book.value("Fleet", "A3") == told
 
 
 def test_no_cell_shows_an_error_after_all_edits(opened: Open) -> None:
@@ -474,10 +548,13 @@ def fleet_of_four(tmp_path_factory: pytest.TempPathFactory) -> Path:
         "Strip,Runway,Length [m],Elevation end 1 [ft],Elevation end 2 [ft],Surface,Heading [° true],Obstacle height end 2 [ft],"
         "Obstacle distance end 2 [m]\nA,09/27,700,2000,2020,turf,88,50,400\nB,18/36,1100,4200,4300,gravel,190,,\nC,,600,,,,,,\n"
     )
-    request = register_book.Request(strips, folder / "four.xlsx", ("ridge-runner",), "uk-leaflet", {"temperature": 25, "wind_speed": 6,
-                                    "wind_from": 120})  # fmt: skip
+    request = register_book.Request(
+        strips, folder / "four.xlsx", ("ridge-runner",), "uk-leaflet", {"temperature": 25, "wind_speed": 6, "wind_from": 120}
+    )
     rows, cards = rows_of(strips), [trial_heron(), load_card("high-mule"), everything(), everything(fixed=False)]
-    book = register_book.RegisterBook(rows, cards, load_rules("uk-leaflet"), read_day(request.day), register_climate.UNKNOWN, 1, 60, None)
+    book = register_book.RegisterBook(
+        rows, cards, load_rules("uk-leaflet"), read_day(request.day), register_climate.UNKNOWN, 1, 60, None
+    )
     book.write(request.output)
     return request.output
 
@@ -513,11 +590,20 @@ def test_every_column_of_the_register_is_checked(demo: Path) -> None:
     checks = sheet.data_validations.dataValidation
     for column in COLUMNS:
         letter = next(cell.column_letter for cell in sheet[HEADER_ROW] if cell.value == column.header)
-        own = [check for check in checks for area in check.sqref.ranges if area.coord.startswith(f"{letter}{FIRST_ROW}:{letter}")]
+        own = [
+            check for check in checks for area in check.sqref.ranges if area.coord.startswith(f"{letter}{FIRST_ROW}:{letter}")
+        ]
         assert len(own) == 1, column.header
         assert own[0].showErrorMessage and own[0].error and len(own[0].error) < 226 and len(own[0].errorTitle) < 33
         assert len(own[0].formula1) < 256
         assert max(area.max_row for area in own[0].sqref.ranges) >= 2000
+
+
+def test_the_day_s_values_have_limits(demo: Path) -> None:
+    sheet = openpyxl.load_workbook(demo)["Day"]
+    row = next(cell.row for cell in sheet["A"] if cell.value == "QNH")
+    own = [check for check in sheet.data_validations.dataValidation if f"B{row}" in check.sqref]
+    assert [(check.formula1, check.formula2) for check in own] == [("850", "1085")]
 
 
 def test_the_chart_is_sound(demo: Path) -> None:
@@ -526,7 +612,9 @@ def test_the_chart_is_sound(demo: Path) -> None:
         assert len(charts) == 1
         root = ElementTree.fromstring(package.read(charts[0]))
     space = "{http://schemas.openxmlformats.org/drawingml/2006/chart}"
-    titles = ["".join(text.text or "" for text in title.iter() if text.tag.endswith("}t")) for title in root.iter(f"{space}title")]
+    titles = [
+        "".join(text.text or "" for text in title.iter() if text.tag.endswith("}t")) for title in root.iter(f"{space}title")
+    ]
     assert titles == ["Runways in and out, month by month", "Month", "Runways"]
     assert len(list(root.iter(f"{space}ser"))) == len(register_months.COUNTED)
     assert {delete.get("val") for delete in root.iter(f"{space}delete")} == {"0"}
@@ -548,8 +636,24 @@ def test_the_register_is_a_list_like_any_other(demo: Path, tmp_path: Path) -> No
     for key in set(theirs.numbers) - {"source_row"}:
         assert np.allclose(ours.numbers[key], theirs.numbers[key], rtol=0, atol=1e-7, equal_nan=True), key
     assert [str(profile) for profile in ours.profiles] == [str(profile) for profile in theirs.profiles]
-    assert main(["fill", str(demo), "--card", "ridge-runner", "--rules", "part-cat-b", "--temp", "20", "-o", str(tmp_path / "filled.xlsx"),
-                 "--quiet"]) == 0  # fmt: skip
+    assert (
+        main(
+            [
+                "fill",
+                str(demo),
+                "--card",
+                "ridge-runner",
+                "--rules",
+                "part-cat-b",
+                "--temp",
+                "20",
+                "-o",
+                str(tmp_path / "filled.xlsx"),
+                "--quiet",
+            ]
+        )
+        == 0
+    )
 
 
 def test_a_register_made_from_a_register_is_the_same(demo: Path, tmp_path: Path) -> None:
@@ -579,8 +683,10 @@ def _register(*options: str, list_of: Path = SCENARIO / DEMO_LIST) -> list[str]:
         (_register("--temp", "20", "--climate", "{folder}/none.csv", "-o", "{out}"), "there is no such file"),
         (_register("--temp", "20", "--card", *["ridge-runner"] * 4, "-o", "{out}"), "1 to 4 aircraft cards"),
     ],
-)  # fmt: skip
-def test_bad_options_are_said_in_a_sentence(options: list[str], said: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+)
+def test_bad_options_are_said_in_a_sentence(
+    options: list[str], said: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
     out = tmp_path / "out.xlsx"
     assert main([text.format(out=out, folder=tmp_path) for text in options]) == 2
     told = capsys.readouterr().err

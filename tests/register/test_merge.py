@@ -194,6 +194,12 @@ def test_what_cant_be_read_is_told_and_not_merged(merge: Compare) -> None:
     assert len(found.remarks) == 4 and all("row 2 of the new list, XOTB 09/27" in text for text in found.remarks)
 
 
+def test_what_is_as_unreadable_in_both_is_not_told(merge: Compare) -> None:
+    head = "Strip,Runway,Length\n"
+    found = merge(head + "XPAD,H1,24\nXOTB,09/27,far\n", head + "XPAD,H1,24\nXOTB,09/27,26\n")
+    assert not found.changes and found.remarks == ['row 3 of the new list, XOTB 09/27: "26" in "Length" can\'t be used']
+
+
 def test_a_new_runway(merge: Compare) -> None:
     found = merge(HEAD + OTTER, HEAD + OTTER + "XNEW,New Hollow,9,2000 ft,450 m,460 m,,GVL\n")
     change = only(found)

@@ -10,7 +10,7 @@ from openpyxl.utils import range_boundaries
 
 # relative to the number, or to 1 in the unit shown where it is smaller: the sine of 180 degrees is not 0 in floating point
 TOLERANCE = 1e-9
-HEADER_ROWS = {"Strips": 3, "Summary": 14}
+HEADER_ROWS = {"Strips": 3, "Summary": 14, **dict.fromkeys(("Working", "Best", "Trials in", "Trials out"), 3)}
 # a margin, and a height over an obstacle, is what is left of two lengths of up to some thousand metres, so that its own
 # size says nothing
 MARGIN_SCALE = 1000.0

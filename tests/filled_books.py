@@ -1,0 +1,275 @@
+"""Filled workbooks for the tests of a refresh: kinds of them, edits as a user makes them, and what they must come to."""
+
+from __future__ import annotations
+
+import math
+import random
+from dataclasses import dataclass, field
+from functools import cache
+from importlib.resources import files
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from typing import Any
+
+import openpyxl
+
+from stripcheck import assess
+from stripcheck.cli import main
+from stripcheck.inputs import STRIP
+from stripcheck.profile_run import KEYS as PROFILE
+from stripcheck.sheet.strips import PROFILE_TEXT, input_column
+from tests.aircraft import FOLDER, HERON
+from tests.book_parts import Parts, SheetText, hide, reorder, shift
+from tests.user_content import MINE
+
+LIST = str(files("stripcheck") / "scenario" / "lantern-range.csv")
+CHOSEN = (1, 2, 4, 6, 8, 10, 17, 20, 28, 33)  # rows of that list: obstacles, one-way, own weather, a fault, left out
+PROFILES = {"XKDF": '"0:0, 700:4, 1400:12"', "XGLN": '"0:0, 300:2, 930:21"'}
+DAY: dict[str, Any] = {"isa_deviation": 15, "qnh": 1015, "wind_from": 310, "wind_speed": 8}
+KINDS = {
+    "full": (), "short": ("--detail", "short"), "chance": ("--chance",), "profile": (),
+    "none": ("--formulas", "none"), "excel": ("--formulas", "excel"), "calc": ("--formulas", "calc"),
+    "lambda": ("--formulas", "lambda"), "plain": (), "many tables": (), "many tables none": ("--formulas", "none"),
+}  # fmt: skip
+_CARDS = {"lambda": "heron", "plain": "heron", "many tables": "high-mule", "many tables none": "high-mule"}
+HEADERS = {item.key: input_column(item).header for item in STRIP}
+_FOLDER = TemporaryDirectory()
+
+
+def card_of(kind: str) -> str:
+    """Name or path of the card that a kind is filled for."""
+    name = _CARDS.get(kind, "ridge-runner")
+    if name != "heron":
+        return name
+    path = Path(_FOLDER.name) / "heron.toml"
+    path.write_text(HERON, encoding="utf-8")
+    return str(path)
+
+
+def sister_of(kind: str, folder: Path) -> str:
+    """A card of the same make as that of a kind, with other figures."""
+    text = HERON if _CARDS.get(kind) == "heron" else (FOLDER / f"{card_of(kind)}.toml").read_text(encoding="utf-8")
+    changed = {"heron": ('area = "16.3 m²"', 'area = "16.9 m²"')}.get(_CARDS.get(kind, ""), ("", ""))
+    path = folder / "sister.toml"
+    if not changed[0]:
+        line = next(line for line in text.splitlines() if line.startswith("area"))
+        changed = (line, f'area = "{float(line.split(chr(34))[1].split()[0]) * 1.03:.2f} m²"')
+        for table in FOLDER.glob(f"{card_of(kind)}*.csv"):
+            (folder / table.name).write_bytes(table.read_bytes())
+    path.write_text(text.replace(*changed).replace('name = "', 'name = "Sister of ', 1), encoding="utf-8")
+    return str(path)
+
+
+@cache
+def filled(kind: str) -> Path:
+    """A workbook of a kind, not to be written to."""
+    lines = Path(LIST).read_text(encoding="utf-8").splitlines()
+    kept = [lines[at] for at in (0, *CHOSEN)]
+    if kind == "profile":
+        kept = [f"{line},{PROFILES.get(line.split(',')[0], '') if at else 'Slope profile'}" for at, line in enumerate(kept)]
+    stem = kind.replace(" ", "-")
+    listed, path = Path(_FOLDER.name) / f"{stem}.csv", Path(_FOLDER.name) / f"{stem}.xlsx"
+    listed.write_text("\n".join(kept), encoding="utf-8")
+    day = ("--isa-dev", "15", "--qnh", "1015", "--wind", "310/8")
+    arguments = ["fill", str(listed), "--card", card_of(kind), "--rules", "part-cat-b", *day, "--quiet", *KINDS[kind]]
+    assert main([*arguments, "-o", str(path)]) == 0
+    return path
+
+
+# --- edits as a user makes them
+
+
+@dataclass
+class State:
+    """What a workbook stands for, as far as the edits told."""
+
+    card: str
+    day: dict[str, Any] = field(default_factory=lambda: dict(DAY))
+    rules: str = "part-cat-b"
+    loading: dict[str, Any] = field(default_factory=dict)
+
+
+def type_on_page(parts: Parts, title: str, label: str, value: float | str | None) -> None:
+    """Type a value beside a label of a page; what follows from it keeps the result that it had."""
+    part = parts.sheet(title)
+    sheet = SheetText.of(parts.text(part))
+    row = next(row for row in sorted(sheet.rows) if sheet.shown(row, 1) == label)
+    sheet.type(row, 2, value)
+    parts.put(part, str(sheet))
+
+
+def type_on_strips(parts: Parts, row: int, key: str, value: float | str | None) -> None:
+    """Type an input of a direction, where the workbook has its column."""
+    part = parts.sheet("Strips")
+    sheet = SheetText.of(parts.text(part))
+    column = sheet.headers(3).get(HEADERS.get(key, key))
+    if column:
+        sheet.type(row, column, value)
+        parts.put(part, str(sheet))
+
+
+def rows_of(parts: Parts, title: str, header: int) -> list[int]:
+    return [row for row in sorted(SheetText.of(parts.text(parts.sheet(title))).rows) if row > header]
+
+
+def move_rows(parts: Parts, chance: random.Random) -> None:
+    """Sort, hide, insert, delete and append rows of the sheets Strips and Summary."""
+    for title, header in (("Strips", 3), ("Summary", 14)):
+        rows = rows_of(parts, title, header)
+        if chance.random() < 0.5:
+            reorder(parts, title, rows, chance.sample(rows, len(rows)))
+        if chance.random() < 0.4:
+            hide(parts, title, chance.sample(rows, 3))
+    if chance.random() < 0.4:
+        shift(parts, "Strips", chance.choice(rows_of(parts, "Strips", 3)), -chance.randint(1, 2))
+    if chance.random() < 0.3:
+        shift(parts, "Summary", chance.choice(rows_of(parts, "Summary", 14)[:-1]), -1)
+    if chance.random() < 0.4:
+        rows = rows_of(parts, "Strips", 3)
+        place = chance.choice(rows[1:])
+        shift(parts, "Strips", place, 1)
+        copy_direction(parts, rows_of(parts, "Strips", 3)[0], place, "XNEW", chance)
+    if chance.random() < 0.4:
+        last = rows_of(parts, "Strips", 3)[-1]
+        for row, way in ((last + 1, "17"), (last + 2, "35")):
+            copy_direction(parts, last - 1, row, "XADD", chance, way)
+
+
+def copy_direction(parts: Parts, source: int, row: int, strip: str, chance: random.Random, way: str = "05") -> None:
+    """Type a direction into a row, with the values of another but a length of its own; no key, and nothing of ours."""
+    part = parts.sheet("Strips")
+    sheet = SheetText.of(parts.text(part))
+    columns = sheet.headers(3)
+    for key, header in HEADERS.items():
+        if header in columns and key not in PROFILE and key not in ("fault", "local_slope"):
+            sheet.put(row, columns[header], *_copied(sheet.rows[source].get(columns[header], "")))
+    for key in ("tora", "lda", "length"):
+        sheet.type(row, columns[HEADERS[key]], float(chance.randint(350, 1500)))
+    for header, text in (("Strip", strip), ("Name", strip.title()), ("Direction", way)):
+        sheet.type(row, columns[header], text)
+    parts.put(part, str(sheet))
+
+
+def _copied(cell: str) -> tuple[str, str]:
+    kind = cell.split(">")[0].rpartition(' t="')[2].rstrip('"/') if ' t="' in cell.split(">")[0] else ""
+    inside = cell[cell.index(">") + 1 : cell.rindex("</c>")] if "</c>" in cell else ""
+    return inside, kind
+
+
+def type_at_random(parts: Parts, state: State, chance: random.Random) -> None:
+    """Type over inputs of strips, of the day and of the loading."""
+    for row in rows_of(parts, "Strips", 3):
+        if chance.random() < 0.3:
+            key, value = chance.choice((
+                ("tora", float(chance.randint(250, 1600))), ("lda", float(chance.randint(250, 1600))), ("surface", "gravel"),
+                ("surface", "moss"), ("condition", "wet"), ("slope_given", chance.randint(-60, 60) / 10.0), ("tora", None),
+                ("elevation_field", float(chance.randint(0, 9000))), ("obstacle_height", 60.0), ("own_qnh", 1003.0),
+                ("take_off_here", "no"), ("fault", "length: paced, not measured"), ("own_temperature", 31.0),
+            ))  # fmt: skip
+            type_on_strips(parts, row, key, value)
+    for label, key, value in (("QNH", "qnh", float(chance.randint(990, 1030))), ("Wind", "wind_speed", float(chance.randint(0, 14))),
+                              ("Ground condition", "day_condition", chance.choice(("dry", "wet", "soft"))),
+                              ("Slope assumed", "assumed_slope", 2.5)):  # fmt: skip
+        if chance.random() < 0.3:
+            type_on_page(parts, "Day", label, value)
+            state.day[key] = value
+    if chance.random() < 0.3:
+        state.loading["takeoff_mass"] = chance.choice((880.0, 930.0, 1000.0)) * (1.0 if state.card != "high-mule" else 2.6)
+        type_on_page(parts, "Aircraft", "Take-off mass", state.loading["takeoff_mass"])
+
+
+def options_at_random(kind: str, state: State, chance: random.Random, folder: Path) -> list[str]:
+    """Options of a refresh; the state follows."""
+    options: list[str] = []
+    if chance.random() < 0.3:
+        state.card, state.loading = sister_of(kind, folder), {}
+        options += ["--card", state.card]
+    if chance.random() < 0.3:
+        state.rules = chance.choice(("us-private", "uk-leaflet", "us-135"))
+        options += ["--rules", state.rules]
+    if chance.random() < 0.3:
+        state.day.pop("isa_deviation", None)
+        state.day["temperature"] = chance.randint(0, 38)
+        options += ["--temp", str(state.day["temperature"])]
+    if chance.random() < 0.2:
+        state.day["humidity"] = 70
+        options += ["--humidity", "70"]
+    if chance.random() < 0.3:
+        state.loading["landing_flap"] = "20" if kind not in ("lambda", "plain") or chance.random() < 0.5 else "10"
+        state.loading = {key: value for key, value in state.loading.items() if value in flaps_of(state.card) or "mass" in key}
+        options += ["--landing-flap", state.loading["landing_flap"]] if "landing_flap" in state.loading else []
+    if chance.random() < 0.3:
+        state.loading["landing_mass"] = 900.0 * (1.0 if "mule" not in kind and "many" not in kind else 2.6)
+        options += ["--landing-mass", f"{state.loading['landing_mass']} kg"]
+    return options
+
+
+@cache
+def flaps_of(card: str) -> tuple[str, ...]:
+    from stripcheck.card import load_card
+
+    return tuple(flap.name for flap in load_card(card).flaps if "landing" in flap.uses)
+
+
+# --- what a workbook must come to
+
+
+def rows_shown(path: Path) -> list[dict[str, Any]]:
+    """The directions of the sheet Strips as a reader without formulas sees them, by header; the first column of each counts."""
+    sheet = openpyxl.load_workbook(path, data_only=True)["Strips"]
+    headers = [cell.value for cell in sheet[3]]
+    rows = []
+    for row in sheet.iter_rows(min_row=4):
+        shown = {header: cell.value for header, cell in reversed(list(zip(headers, row, strict=True)))}
+        if shown["Key"]:
+            rows.append(shown)
+    return rows
+
+
+def verdicts_must_be(path: Path, state: State) -> list[str]:
+    """A sentence for each verdict, reason and margin of a workbook that is not what `assess` gives for its inputs."""
+    rows = rows_shown(path)
+    columns: dict[str, Any] = {}
+    for key, header in HEADERS.items():
+        if header in rows[0] and key not in PROFILE:
+            columns[key] = [math.nan if row[header] is None and _is_number(key) else row[header] or "" for row in rows]
+    if PROFILE_TEXT[1] in rows[0]:
+        columns["profile"] = [row[PROFILE_TEXT[1]] or "" for row in rows]
+    result = assess(columns, state.card, state.day, state.rules, **state.loading)
+    wrong = []
+    for side, word in (("takeoff", "Take-off"), ("landing", "Landing")):
+        parts = ("verdict", f"{word} verdict"), ("reason", f"{word}: limiting reason"), ("margin", f"{word} margin [m]")
+        for key, header in parts:
+            for row, expected in zip(rows, result[f"{side}_{key}"], strict=True):
+                if not _same(row[header], expected):
+                    wrong.append(f"{row['Key']}, {header}: {row[header]!r}, not {expected!r}")
+    return wrong
+
+
+def _is_number(key: str) -> bool:
+    return next(item for item in STRIP if item.key == key).kind == "number"
+
+
+def _same(shown: Any, expected: Any) -> bool:
+    """Equal texts; numbers equal to a nanometre of a kilometre, where a door's sentence stands for no number."""
+    if isinstance(expected, str):
+        return bool(shown == expected)
+    if math.isnan(expected):
+        return shown in (None, "") or isinstance(shown, str)
+    return isinstance(shown, float | int) and abs(shown - expected) <= 1e-9 * max(abs(expected), 1000.0)
+
+
+def is_own(path: Path) -> Any:
+    """Tells whether a cell of our sheets is a user's, in a workbook as it is before a refresh."""
+    book = openpyxl.load_workbook(path)
+    mine = {title: {cell.column for cell in book[title][row] if str(cell.value).startswith(MINE)}
+            for title, row in (("Strips", 3), ("Summary", 14))}  # fmt: skip
+    columns = {cell.value: cell.column for cell in reversed(book["Strips"][3])}
+    total = next((row[0].row for row in book["Strips"].iter_rows(min_row=4) if row[columns["Strip"] - 1].value == "Mean"), 10**7)
+
+    def own(title: str, row: int, column: int) -> bool:
+        if title in mine:
+            return column in mine[title] or (title == "Strips" and row >= total)
+        return column >= 15 and title != "Manual" and title != "Left out"
+
+    return own

@@ -1,0 +1,60 @@
+"""A refresh: what is a user's stays to the byte, what is ours is right, and nothing stops it half way."""
+
+from __future__ import annotations
+
+import random
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from stripcheck.cli import main
+from tests.book_parts import Parts, SheetText
+from tests.filled_books import (
+    KINDS,
+    State,
+    card_of,
+    filled,
+    is_own,
+    move_rows,
+    options_at_random,
+    type_at_random,
+    verdicts_must_be,
+)
+from tests.sheet.package_check import package_faults
+from tests.sheet.recalculated import differences
+from tests.user_content import MINE, OURS, add_everything, foreign_parts, own_cells
+
+ROUNDS = 100
+
+
+def edited(number: int, folder: Path) -> tuple[Path, State, list[str]]:
+    """A workbook with everything of a user's, edited at random; what it stands for, and options of a refresh."""
+    chance = random.Random(number)
+    kind = list(KINDS)[number % len(KINDS)]
+    macros = number % 5 == 0
+    state = State(card_of(kind))
+    parts = Parts.read(filled(kind))
+    move_rows(parts, chance)
+    add_everything(parts, macros)
+    type_at_random(parts, state, chance)
+    path = folder / f"round {number} {kind}.{'xlsm' if macros else 'xlsx'}"
+    parts.write(path)
+    return path, state, options_at_random(kind, state, chance, folder)
+
+
+@pytest.mark.parametrize("number", range(ROUNDS))
+def test_all_that_is_a_users_stays_and_all_that_is_ours_is_right(tmp_path: Path, number: int) -> None:
+    path, state, options = edited(number, tmp_path)
+    own = is_own(path)
+    foreign, cells = foreign_parts(path), own_cells(path, own)
+    assert len(foreign) > 30 and len(cells) > 80
+    assert main(["refresh", str(path), *options]) == 0
+    assert foreign_parts(path) == foreign
+    assert own_cells(path, own) == cells
+    assert verdicts_must_be(path, state) == []
+    assert package_faults(path) == []
+    once = Parts.read(path)
+    assert main(["refresh", str(path)]) == 0
+    again = Parts.read(path)
+    assert [name for name in once if again[name] != once[name] and name != once.sheet("Method")] == []
