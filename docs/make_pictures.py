@@ -20,6 +20,7 @@ PAGES = {"Summary": "summary", "Strips": "strips", "Aircraft": "aircraft", "Manu
          "Left out": "left-out", "Method": "method"}  # fmt: skip
 # the workbooks for people: the command that makes one, and the same for its pages
 BOOKS = {
+    ("trip", "--demo"): {"Trip": "trip", "Kneeboard": "kneeboard"},
     ("whatif", "--demo"): {"What if": "what-if", "Charts": "what-if-charts"},
     ("register", "--demo"): {"Register": "operator-register", "Fleet": "operator-fleet", "Months": "operator-months"},
 }

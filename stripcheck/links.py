@@ -26,6 +26,7 @@ BARELY = 0.2
 # rows of the ground table
 GRASS_DRY, GRASS_WET, GRASS_SOFT = (GROUND_NAMES.index(f"grass, {condition}") + 1 for condition in CONDITIONS)
 SAME_ROLL = 0.01  # of a roll, by which it may differ from the one that a profile's slope was worked out for
+SAME_USABLE = 0.5  # m, of a usable length that counts as unchanged
 LEAST_MANUAL_SHARE = 0.5  # of a distance that a manual's headwind correction may leave, however strong the wind
 
 
@@ -71,10 +72,12 @@ def first_of(of_profile: Number, otherwise: Number) -> Number:
     return np.where(np.isfinite(of_profile), of_profile, otherwise)
 
 
-def profile_moved(of_profile: Number, roll: Number) -> Number:
-    """Whether a roll is no longer the one for which the slope that stands for the profile was worked out."""
-    there = np.isfinite(of_profile) & np.isfinite(roll)
-    return np.where(there, np.abs(roll - of_profile) > SAME_ROLL * of_profile, False)
+def profile_moved(of_profile: Number, roll: Number, of_usable: Number, usable: Number) -> Number:
+    """Whether a roll, or the usable length, is no longer the one for which the slope that stands for the profile was worked
+    out [m all]; what is usable tells where along the profile a run may begin."""
+    there, known = np.isfinite(of_profile) & np.isfinite(roll), np.isfinite(of_usable) & np.isfinite(usable)
+    rolls_on = np.where(there, np.abs(roll - of_profile) > SAME_ROLL * of_profile, False)
+    return rolls_on | np.where(known, np.abs(usable - of_usable) > SAME_USABLE, False)
 
 
 def air_temperature(own: Number, day: Number, day_elevation: Number, deviation: Number, elevation: Number,

@@ -26,7 +26,7 @@ from stripcheck.thrust import disk_root
 Array = NDArray[np.float64]
 
 KEYS = ("profile_takeoff_slope", "profile_takeoff_roll", "profile_landing_slope", "profile_landing_roll",
-        "profile_climb_slope", "profile_approach_slope")  # fmt: skip
+        "profile_takeoff_usable", "profile_landing_usable", "profile_climb_slope", "profile_approach_slope")  # fmt: skip
 SAME_LENGTH = 1e-9  # of a part's length, or metres: what the speed at its end may be off by
 SAME_ROLL = 1e-10  # of a roll: what the roll on the equivalent slope may be off by
 NEWTON_STEPS = 20  # for the speed at the end of a part; 12 were enough in 60,000 random runs
@@ -281,7 +281,8 @@ def profile_slopes(chain: Chain, values: Mapping[str, Number], profiles: Sequenc
     begins. The results, SI:
 
     - ``profile_takeoff_slope``, ``profile_landing_slope``: the constant slopes with which the chain's ``takeoff_roll`` and
-      ``braked_roll`` are as long as along the profile; ``profile_takeoff_roll``, ``profile_landing_roll``: those rolls.
+      ``braked_roll`` are as long as along the profile; ``profile_takeoff_roll``, ``profile_landing_roll``: those rolls;
+      ``profile_takeoff_usable``, ``profile_landing_usable``: the usable lengths for which they hold.
       Where there is no such slope (something is not known; the aeroplane does not accelerate, or slow down, all along)
       the slope is the one of the profile's parts that is most against the run, and the roll is 0. On that constant slope
       the aeroplane does not accelerate all along either; and if conditions change, the run on it is the longer one.
@@ -342,6 +343,7 @@ def _takeoff(given: _Given, tracks: Tracks) -> dict[str, Array]:
     return {
         "profile_takeoff_slope": np.where(known, slope, hardest),
         "profile_takeoff_roll": np.where(known, roll, 0.0),
+        "profile_takeoff_usable": given.values["tora"],
         "profile_climb_slope": np.where(known, np.max(climbs, axis=0), hardest),
     }
 
@@ -372,6 +374,7 @@ def _landing(given: _Given, tracks: Tracks) -> dict[str, Array]:
     return {
         "profile_landing_slope": np.where(known, slope, hardest),
         "profile_landing_roll": np.where(known, roll, 0.0),
+        "profile_landing_usable": given.values["lda"],
         "profile_approach_slope": np.where(known, np.min(falls, axis=0), hardest),
     }
 

@@ -13,6 +13,7 @@ from hashlib import sha256
 from pathlib import Path
 from xml.sax.saxutils import escape, unescape
 
+from openpyxl.formula.translate import Translator
 from openpyxl.utils import column_index_from_string, get_column_letter
 
 OFFICE = "http://schemas.openxmlformats.org/officeDocument/2006/relationships"
@@ -276,11 +277,28 @@ def reorder(parts: Parts, title: str, rows: Sequence[int], order: Sequence[int])
 def _in_row(cell: str, source: int, row: int, column: int) -> str:
     def moved(found: re.Match[str]) -> str:
         quoted = re.split(r'("[^"]*")', unescape(found[2]))
-        text = "".join(text if text.startswith('"') else re.sub(rf"(?<![\w.!:])(\$?[A-Z]{{1,3}}){source}(?![\w(.:])", rf"\g<1>{row}", text)
-                       for text in quoted)  # fmt: skip
+        own = re.compile(rf"(?<![\w.!:])(\$?[A-Z]{{1,3}}){source}(?![\w(.:])")
+        text = "".join(text if text.startswith('"') else own.sub(rf"\g<1>{row}", text) for text in quoted)
         return found[1] + escape(text) + found[3]
 
     return renamed(re.sub(r"(<f(?: [^>]*)?>)([^<]*)(<)", moved, cell), row, column)
+
+
+def unshare(parts: Parts, title: str) -> None:
+    """Give each cell that shares a formula its own, as a program does that sorts them."""
+    part = parts.sheet(title)
+    sheet, first = SheetText.of(parts.text(part)), {}
+    for row, cells in sorted(sheet.rows.items()):
+        for column, cell in sorted(cells.items()):
+            shared = re.search(r'<f t="shared"[^>]*?si="(\d+)"(?:/>|>([^<]*)</f>)', cell)
+            if shared:
+                name = f"{get_column_letter(column)}{row}"
+                if shared[2]:
+                    first[shared[1]] = (name, unescape(shared[2]))
+                origin, text = first[shared[1]]
+                own = Translator(f"={text}", origin).translate_formula(name)[1:]
+                cells[column] = cell.replace(shared[0], f"<f>{escape(own)}</f>")
+    parts.put(part, str(sheet))
 
 
 def hide(parts: Parts, title: str, rows: Sequence[int]) -> None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import random
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from functools import cache
 from importlib.resources import files
@@ -19,11 +20,11 @@ from stripcheck.inputs import STRIP
 from stripcheck.profile_run import KEYS as PROFILE
 from stripcheck.sheet.strips import PROFILE_TEXT, input_column
 from tests.aircraft import FOLDER, HERON
-from tests.book_parts import Parts, SheetText, hide, reorder, shift
-from tests.user_content import MINE
+from tests.book_parts import Parts, SheetText, hide, reorder, shift, unshare
+from tests.user_content import HEADER_ROWS, MINE, add_everything
 
 LIST = str(files("stripcheck") / "scenario" / "lantern-range.csv")
-CHOSEN = (1, 2, 4, 6, 8, 10, 17, 20, 28, 33)  # rows of that list: obstacles, one-way, own weather, a fault, left out
+CHOSEN = (1, 4, 6, 8, 10, 17, 28)  # rows of that list: obstacles, one-way, own weather, a fault
 PROFILES = {"XKDF": '"0:0, 700:4, 1400:12"', "XGLN": '"0:0, 300:2, 930:21"'}
 DAY: dict[str, Any] = {"isa_deviation": 15, "qnh": 1015, "wind_from": 310, "wind_speed": 8}
 KINDS = {
@@ -76,6 +77,18 @@ def filled(kind: str) -> Path:
     return path
 
 
+@cache
+def _with_everything(kind: str, macros: bool) -> Parts:
+    parts = Parts.read(filled(kind))
+    add_everything(parts, macros)
+    return parts
+
+
+def with_everything(kind: str, macros: bool = False) -> Parts:
+    """The parts of a workbook of a kind with everything of a user's in it."""
+    return Parts(_with_everything(kind, macros))
+
+
 # --- edits as a user makes them
 
 
@@ -108,31 +121,38 @@ def type_on_strips(parts: Parts, row: int, key: str, value: float | str | None) 
         parts.put(part, str(sheet))
 
 
-def rows_of(parts: Parts, title: str, header: int) -> list[int]:
-    return [row for row in sorted(SheetText.of(parts.text(parts.sheet(title))).rows) if row > header]
+def rows_of(parts: Parts, title: str) -> list[int]:
+    """The rows with a key, which are those that were filled."""
+    sheet = SheetText.of(parts.text(parts.sheet(title)))
+    header = HEADER_ROWS[title]
+    key = sheet.headers(header)["Key" if title == "Strips" else "Key 1"]
+    return [row for row in sorted(sheet.rows) if row > header and sheet.shown(row, key)]
 
 
 def move_rows(parts: Parts, chance: random.Random) -> None:
     """Sort, hide, insert, delete and append rows of the sheets Strips and Summary."""
-    for title, header in (("Strips", 3), ("Summary", 14)):
-        rows = rows_of(parts, title, header)
+    unshare(parts, "Strips")
+    unshare(parts, "Summary")
+    for title in ("Strips", "Summary"):
+        rows = rows_of(parts, title)
         if chance.random() < 0.5:
             reorder(parts, title, rows, chance.sample(rows, len(rows)))
         if chance.random() < 0.4:
             hide(parts, title, chance.sample(rows, 3))
     if chance.random() < 0.4:
-        shift(parts, "Strips", chance.choice(rows_of(parts, "Strips", 3)), -chance.randint(1, 2))
+        shift(parts, "Strips", chance.choice(rows_of(parts, "Strips")[:-1]), -chance.randint(1, 2))
     if chance.random() < 0.3:
-        shift(parts, "Summary", chance.choice(rows_of(parts, "Summary", 14)[:-1]), -1)
+        shift(parts, "Summary", chance.choice(rows_of(parts, "Summary")[:-1]), -1)
     if chance.random() < 0.4:
-        rows = rows_of(parts, "Strips", 3)
-        place = chance.choice(rows[1:])
+        first, *others = rows_of(parts, "Strips")
+        place = chance.choice(others)
         shift(parts, "Strips", place, 1)
-        copy_direction(parts, rows_of(parts, "Strips", 3)[0], place, "XNEW", chance)
+        copy_direction(parts, first, place, "XNEW", chance)
     if chance.random() < 0.4:
-        last = rows_of(parts, "Strips", 3)[-1]
+        last = rows_of(parts, "Strips")[-1]
+        shift(parts, "Strips", last + 1, 2)
         for row, way in ((last + 1, "17"), (last + 2, "35")):
-            copy_direction(parts, last - 1, row, "XADD", chance, way)
+            copy_direction(parts, last, row, "XADD", chance, way)
 
 
 def copy_direction(parts: Parts, source: int, row: int, strip: str, chance: random.Random, way: str = "05") -> None:
@@ -158,7 +178,7 @@ def _copied(cell: str) -> tuple[str, str]:
 
 def type_at_random(parts: Parts, state: State, chance: random.Random) -> None:
     """Type over inputs of strips, of the day and of the loading."""
-    for row in rows_of(parts, "Strips", 3):
+    for row in rows_of(parts, "Strips"):
         if chance.random() < 0.3:
             key, value = chance.choice((
                 ("tora", float(chance.randint(250, 1600))), ("lda", float(chance.randint(250, 1600))), ("surface", "gravel"),
@@ -167,9 +187,10 @@ def type_at_random(parts: Parts, state: State, chance: random.Random) -> None:
                 ("take_off_here", "no"), ("fault", "length: paced, not measured"), ("own_temperature", 31.0),
             ))  # fmt: skip
             type_on_strips(parts, row, key, value)
-    for label, key, value in (("QNH", "qnh", float(chance.randint(990, 1030))), ("Wind", "wind_speed", float(chance.randint(0, 14))),
-                              ("Ground condition", "day_condition", chance.choice(("dry", "wet", "soft"))),
-                              ("Slope assumed", "assumed_slope", 2.5)):  # fmt: skip
+    day = (("QNH", "qnh", float(chance.randint(990, 1030))), ("Wind", "wind_speed", float(chance.randint(0, 14))),
+           ("Ground condition", "day_condition", chance.choice(("dry", "wet", "soft"))),
+           ("Slope assumed", "assumed_slope", 2.5))  # fmt: skip
+    for label, key, value in day:
         if chance.random() < 0.3:
             type_on_page(parts, "Day", label, value)
             state.day[key] = value
@@ -259,17 +280,18 @@ def _same(shown: Any, expected: Any) -> bool:
     return isinstance(shown, float | int) and abs(shown - expected) <= 1e-9 * max(abs(expected), 1000.0)
 
 
-def is_own(path: Path) -> Any:
+def is_own(parts: Parts) -> Callable[[str, int, int], bool]:
     """Tells whether a cell of our sheets is a user's, in a workbook as it is before a refresh."""
-    book = openpyxl.load_workbook(path)
-    mine = {title: {cell.column for cell in book[title][row] if str(cell.value).startswith(MINE)}
-            for title, row in (("Strips", 3), ("Summary", 14))}  # fmt: skip
-    columns = {cell.value: cell.column for cell in reversed(book["Strips"][3])}
-    total = next((row[0].row for row in book["Strips"].iter_rows(min_row=4) if row[columns["Strip"] - 1].value == "Mean"), 10**7)
+    sheets = {title: SheetText.of(parts.text(parts.sheet(title))) for title in HEADER_ROWS}
+    mine = {title: {column for header, column in sheet.headers(HEADER_ROWS[title]).items() if header.startswith(MINE)}
+            for title, sheet in sheets.items()}  # fmt: skip
+    strips = sheets["Strips"]
+    strip = strips.headers(3)["Strip"]
+    total = next((row for row in sorted(strips.rows) if strips.shown(row, strip) == "Mean"), 10**7)
 
     def own(title: str, row: int, column: int) -> bool:
         if title in mine:
             return column in mine[title] or (title == "Strips" and row >= total)
-        return column >= 15 and title != "Manual" and title != "Left out"
+        return column >= 15 and title not in ("Manual", "Left out")
 
     return own

@@ -9,7 +9,10 @@ from stripcheck.cli import main
 
 FOLDER = Path(__file__).parents[1] / "workbooks"
 # each with the command that makes it anew: stripcheck demo -o workbooks/lantern-range.xlsx --force
-COMMANDS = {"lantern-range.xlsx": ["demo"], "what-if.xlsx": ["whatif", "--demo"], "register.xlsx": ["register", "--demo"]}
+COMMANDS = {
+    "lantern-range.xlsx": ["demo"], "trip.xlsx": ["trip", "--demo"], "what-if.xlsx": ["whatif", "--demo"],
+    "register.xlsx": ["register", "--demo"],
+}  # fmt: skip
 
 
 @pytest.fixture(scope="module", params=COMMANDS)

@@ -44,7 +44,7 @@ def add_everything(parts: Parts, macros: bool = False) -> None:
         add(parts)
     if macros:
         _add_macros(parts)
-    _add_calc_chain(parts)
+    set_calc_chain(parts)
 
 
 # --- styles and texts
@@ -355,7 +355,7 @@ def _add_macros(parts: Parts) -> None:
     parts.change("[Content_Types].xml", f"{_SPREADSHEET}.sheet.main+xml", "application/vnd.ms-excel.sheet.macroEnabled.main+xml")
 
 
-def _add_calc_chain(parts: Parts) -> None:
+def set_calc_chain(parts: Parts) -> None:
     """The order of calculation, as Excel keeps it: every cell with a formula; the sheet's number where it changes."""
     entries = []
     book = parts.text("xl/workbook.xml")
@@ -364,7 +364,10 @@ def _add_calc_chain(parts: Parts) -> None:
         assert number is not None
         cells = re.findall(r'<c r="([A-Z]+\d+)"[^>]*><f', parts.text(parts.sheet(title)))
         entries += [f'<c r="{cell}"' + (f' i="{number[1]}"/>' if not at else "/>") for at, cell in enumerate(cells)]
+    fresh = "xl/calcChain.xml" not in parts
     parts.put("xl/calcChain.xml", f'{_XML}<calcChain xmlns="{_MAIN}">{"".join(entries)}</calcChain>')
+    if not fresh:
+        return
     parts.declare("xl/calcChain.xml", f"{_SPREADSHEET}.calcChain+xml")
     parts.relate("xl/workbook.xml", "calcChain", "calcChain.xml")
 

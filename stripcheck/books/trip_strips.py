@@ -35,9 +35,10 @@ NAMES = "runway_names"
 IDENTITY = (("strip", "Strip", 11), ("name", "Name", 22), ("runway", "Runway", 9), ("direction", "Direction", 9))
 POSITION = (("latitude", "Latitude [°]"), ("longitude", "Longitude [°]"))
 ABOUT = (("survey_date", "Survey date", 12), ("notes", "Notes", 36))
-# the strip's inputs that the trip has on its own page, or can't work with
-_NOT_HERE = ("own_temperature", "own_qnh", "own_wind_from", "own_wind_speed", "profile_takeoff_roll", "profile_landing_roll")
-INPUTS = tuple(item for item in STRIP if item.key not in _NOT_HERE)
+PROFILE_PARTS = {"takeoff": max, "climb": max, "landing": min, "approach": min}  # which part of a profile is against you
+_PROFILE = tuple(f"profile_{part}_slope" for part in PROFILE_PARTS)
+# the strip's inputs but its weather, which the trip has on its own page, and what held where a profile was worked out
+INPUTS = tuple(item for item in STRIP if not item.key.startswith(("own_", "profile_")) or item.key in _PROFILE)
 _LIMITS = {"elevation_start": "elevation", "elevation_end": "elevation", "elevation_field": "elevation", "slope_given": "slope",
            "approach_obstacle_height": "obstacle_height", "approach_obstacle_distance": "obstacle_distance"}  # fmt: skip
 
@@ -83,13 +84,11 @@ def steepest(directions: Directions) -> dict[str, np.ndarray]:
 
     What slope is as good as a profile hangs on mass and air, which differ from stop to stop and are typed over.
     """
-    found = {f"profile_{part}_slope": np.full(directions.n, np.nan) for part in ("takeoff", "climb", "landing", "approach")}
+    found = {key: np.full(directions.n, np.nan) for key in _PROFILE}
     for row, profile in enumerate(directions.profiles):
         if profile is not None:
-            for part in ("takeoff", "climb"):
-                found[f"profile_{part}_slope"][row] = max(profile.slopes)
-            for part in ("landing", "approach"):
-                found[f"profile_{part}_slope"][row] = min(profile.slopes)
+            for key, most in zip(_PROFILE, PROFILE_PARTS.values(), strict=True):
+                found[key][row] = most(profile.slopes)
     return found
 
 

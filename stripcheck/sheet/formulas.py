@@ -123,7 +123,10 @@ def _row_in_table(surface: Cell, condition: Cell, day_condition: Cell, names: Ce
     """Row [1, 2, ...] of "surface, condition" among the names, or the row after the last."""
     own = condition.text != BLANK
     used = f'IF({condition.raw}="",{day_condition.raw},{condition.raw})' if own else day_condition.raw
-    return Cell(f'IFERROR(MATCH({surface.raw}&", "&{used},{names.text},0),{GROUND_UNKNOWN})', ATOM, 3)
+    # not MATCH, which takes an asterisk or a question mark in the cell for any text
+    place = f"ROW({names.text})-MIN(ROW({names.text}))-{GROUND_UNKNOWN - 1}"
+    found = f'{GROUND_UNKNOWN}+SUMPRODUCT(({names.text}={surface.raw}&", "&{used})*({place}))'
+    return Cell(f"IFERROR({found},{GROUND_UNKNOWN})", ATOM, 4)
 
 
 def _looked_up(column: Cell, row: Cell) -> Cell:

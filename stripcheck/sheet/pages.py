@@ -243,7 +243,8 @@ def _flap_choice(pages: Pages, sheet: Worksheet, row: int, item: Input, name: st
     cell.alignment = styles.CENTRE
     choice(sheet, f"{VALUE}{row}", f"{pages.prefix}flap_names", "Choose a setting of the flap table below.")
     names, deflections = f"{pages.prefix}flap_names", f"{pages.prefix}flap_deflections"
-    text = f'IFERROR(INDEX({deflections},MATCH({VALUE}{row}&"",{names},0)),"")'
+    same = f'({names}={VALUE}{row}&"")'  # not MATCH, which takes an asterisk in the cell for any name
+    text = f'IFERROR(SUMPRODUCT({same}*{deflections})/SUMPRODUCT({same}*1),"")'
     pages.formula(sheet, f"{SI}{row}", text, value)
     _style_si(sheet, row)
     pages.places[item.key] = Place(pages.name(item.key, sheet, f"{SI}{row}"))

@@ -5,7 +5,9 @@ from __future__ import annotations
 from pathlib import Path
 
 import numpy as np
+import openpyxl
 import pytest
+from openpyxl.utils import get_column_letter
 
 from stripcheck import assess
 from stripcheck.cli import main
@@ -63,3 +65,28 @@ def test_a_workbook_whose_mass_is_changed_says_that_its_profiles_no_longer_hold(
     assert verdicts[2:4] == strips_of(book_path, before, "Take-off verdict")[2:4] == ["suitable", "suitable"]
     for header in ("Take-off verdict", "Take-off: limiting reason"):
         assert strips_of(book_path, again, header) == strips_of(book_path, before, header)
+
+
+def test_a_shorter_usable_length_moves_where_a_run_begins_so_that_its_profile_no_longer_holds(office, book_path) -> None:
+    headers = [cell.value for cell in openpyxl.load_workbook(book_path)["Strips"][3]]
+    tora = get_column_letter(headers.index("Usable for take-off [m]") + 1)
+    with office.open(book_path) as book:
+        book.set("Strips", {f"{tora}4": 700.0, f"{tora}6": 850.0})
+        book.recalculate()
+        after = book.values("Strips", "A1:HZ9")
+    assert strips_of(book_path, after, "Take-off: limiting reason")[0] == MOVED
+    landings = strips_of(book_path, after, "Landing: limiting reason")
+    assert MOVED not in landings and MOVED not in strips_of(book_path, after, "Take-off: limiting reason")[1:]
+
+
+def test_an_asterisk_is_no_surface_condition_or_flap(office, book_path) -> None:
+    headers = [cell.value for cell in openpyxl.load_workbook(book_path)["Strips"][3]]
+    surface, condition = (get_column_letter(headers.index(title) + 1) for title in ("Surface", "Condition"))
+    flap = cells_of(book_path, "Aircraft", "A")["Landing flap"].replace("A", "B")
+    with office.open(book_path) as book:
+        book.set("Strips", {f"{surface}6": "*", f"{condition}7": "*"})
+        book.set("Aircraft", {flap: "*"})
+        book.recalculate()
+        after = book.values("Strips", "A1:HZ9")
+    assert strips_of(book_path, after, "Take-off verdict")[2:4] == [NOT_ASSESSED] * 2
+    assert strips_of(book_path, after, "Landing verdict") == [NOT_ASSESSED] * 6
