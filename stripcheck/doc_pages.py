@@ -47,7 +47,7 @@ from stripcheck.inputs import (
     manual_inputs,
     table_inputs,
 )
-from stripcheck.register import surface_words
+from stripcheck.register import safe_limits, surface_words
 from stripcheck.register.columns import COLUMNS, Column
 from stripcheck.register.limits import LIMITS
 from stripcheck.rules import Rules, load_rules, shipped_rules
@@ -70,6 +70,7 @@ from stripcheck.steps import (
     build_chain,
 )
 from stripcheck.surface import CONDITIONS, GROUNDS, SURFACES
+from stripcheck.toml_fields import MAX_FILE
 from stripcheck.units import KINDS, from_si, tidy
 
 MADE = "*This page is made by `python -m stripcheck.doc_pages docs`; change the program, not the page.*"
@@ -535,6 +536,20 @@ def _per_cent(share: float) -> str:
     return f"{round(100.0 * share, 1) + 0.0:+.1f} %"  # + 0.0 takes the sign from a zero, which rounding alone decides
 
 
+def _refused() -> list[str]:
+    megabytes = {
+        "book": safe_limits.MAX_BOOK_FILE, "inflated": safe_limits.MAX_INFLATED, "part": safe_limits.MAX_PART,
+        "shared": safe_limits.MAX_SHARED_TEXT, "xls": safe_limits.MAX_XLS_FILE, "text": safe_limits.MAX_TEXT_FILE,
+        "toml": MAX_FILE,
+    }  # fmt: skip
+    counts = {
+        "cells": safe_limits.MAX_CELLS, "parts": safe_limits.MAX_PARTS, "ratio": safe_limits.MAX_RATIO,
+        "line": safe_limits.MAX_LINE, "list_columns": safe_limits.MAX_LIST_COLUMNS, "cell": safe_limits.MAX_CELL_TEXT,
+    }  # fmt: skip
+    told = counts | {key: size / 1e6 for key, size in megabytes.items()}
+    return [line.format(**told) for line in prose.REFUSED]
+
+
 def lists_page() -> str:
     """docs/lists.md: columns, surface words, what is left out, faults and doubts."""
     return _joined(
@@ -561,6 +576,12 @@ def lists_page() -> str:
         "\n".join(f"- {limits.sentence}" for limits in LIMITS.values()),
         "## Doubts",
         prose.DOUBTS,
+        "## Files",
+        prose.FILES,
+        "## Hostile files",
+        prose.HOSTILE_FILES,
+        "\n".join(f"- {line}" for line in _refused()),
+        prose.LARGEST,
     )
 
 

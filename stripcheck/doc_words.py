@@ -606,6 +606,39 @@ runway's name, headings or names of the two ends that are not opposite, a headin
 the runway's name, a usable length greater than the runway's, a surface, length, elevation or heading that
 is not known, a unit that was taken for granted, and a header that is nearly one that is understood. A doubt
 by itself does not change a verdict; what is missing does."""
+
+FILES = """
+Whatever writes a file writes it beside the old one, brings it to the disk and only then puts it in its place.
+A full disk, a folder without the right to write, a process that is killed or a power cut leave the old file
+whole; a hidden `.stripcheck-...tmp` that was left behind is cleared away a day later. A link stays a link. A file
+that Excel or LibreOffice has open, which their lock files `~$name` and `.~lock.name#` tell, is never replaced.
+
+What changes a workbook or list of yours keeps the version before as `strips 2026-12-01 142305.xlsx` in the same
+folder, the date and time at which it was replaced. None is written over, and of each file the ten newest stay."""
+
+HOSTILE_FILES = """
+A list may come from anywhere. Before a workbook is read it is gone through once, in little memory; macros are
+never run, links, addresses and other files never followed, and a text that begins with `=` stays a text, in the
+workbook and in a .csv. What can't be trusted is refused with one sentence:"""
+
+REFUSED = (
+    "a file that is something else by its content, such as an .xls that is a web page, a .csv that is a workbook, a picture; "
+    "also a binary workbook (.xlsb)",
+    "a workbook with a password, and one that is damaged, breaks off, or says what is not true of its parts",
+    "a document type or entities in any part, parts whose names lead elsewhere or come twice, text that is not UTF-8",
+    "cells that reach over more than {cells:,} places, counted from A1 and over all sheets; formats of blank cells don't count",
+    "a workbook of more than {book:,.0f} MB, of {inflated:,.0f} MB unpacked, or of {parts:,} parts; a part other than a sheet "
+    "of more than {part:,.0f} MB; a large part that unpacks to more than {ratio} times its size; texts that come again and "
+    "again and make {shared:,.0f} MB",
+    "an .xls of more than {xls:,.0f} MB; a text list of more than {text:,.0f} MB, with a row of more than {line:,} "
+    "characters, more than {list_columns:,} columns with something in them, or zero bytes",
+    "a cell of more than {cell:,} characters",
+    "a card or rule set of more than {toml:.0f} MB, or with parts that nest without end",
+)
+
+LARGEST = """
+The largest workbook that this program writes is within these limits: 44,000 runways in full detail, 370 MB, 3,000 MB
+unpacked. Going through that one takes half a minute; a list of 1,000 runways takes less than a second."""
 FUNCTIONS_INTRO = """
 The same functions work in Excel on Windows through Python ([excel.md](excel.md)) and in the other programs
 that have a door of stripcheck. Names and arguments are the same everywhere. LAMBDA names, which need no

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import random
+import re
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from functools import cache
@@ -15,6 +16,7 @@ from typing import Any
 import openpyxl
 
 from stripcheck import assess
+from stripcheck.card import load_card
 from stripcheck.cli import main
 from stripcheck.inputs import STRIP
 from stripcheck.profile_run import KEYS as PROFILE
@@ -48,16 +50,17 @@ def card_of(kind: str) -> str:
 
 
 def sister_of(kind: str, folder: Path) -> str:
-    """A card of the same make as that of a kind, with other figures."""
-    text = HERON if _CARDS.get(kind) == "heron" else (FOLDER / f"{card_of(kind)}.toml").read_text(encoding="utf-8")
-    changed = {"heron": ('area = "16.3 m²"', 'area = "16.9 m²"')}.get(_CARDS.get(kind, ""), ("", ""))
-    path = folder / "sister.toml"
-    if not changed[0]:
-        line = next(line for line in text.splitlines() if line.startswith("area"))
-        changed = (line, f'area = "{float(line.split(chr(34))[1].split()[0]) * 1.03:.2f} m²"')
+    """A card of the same make as that of a kind, with another wing and, where they stand on the card, other figures."""
+    if _CARDS.get(kind) == "heron":
+        text = HERON
+    else:
+        text = (FOLDER / f"{card_of(kind)}.toml").read_text(encoding="utf-8")
         for table in FOLDER.glob(f"{card_of(kind)}*.csv"):
             (folder / table.name).write_bytes(table.read_bytes())
-    path.write_text(text.replace(*changed).replace('name = "', 'name = "Sister of ', 1), encoding="utf-8")
+    text = re.sub(r'(?m)^area = "([\d.]+)', lambda found: f'area = "{float(found[1]) * 1.03:.2f}', text)
+    text = re.sub(r"(?m)^    \[.*$", lambda row: re.sub(r"\d+", lambda figure: str(round(int(figure[0]) * 1.03)), row[0]), text)
+    path = folder / "sister.toml"
+    path.write_text(text.replace('name = "', 'name = "Sister of ', 1), encoding="utf-8")
     return str(path)
 
 
@@ -195,13 +198,15 @@ def type_at_random(parts: Parts, state: State, chance: random.Random) -> None:
             type_on_page(parts, "Day", label, value)
             state.day[key] = value
     if chance.random() < 0.3:
-        state.loading["takeoff_mass"] = chance.choice((880.0, 930.0, 1000.0)) * (1.0 if state.card != "high-mule" else 2.6)
+        heavy = 2.6 if state.card == "high-mule" else 1.0
+        state.loading["takeoff_mass"] = chance.choice((880.0, 930.0, 1000.0)) * heavy
         type_on_page(parts, "Aircraft", "Take-off mass", state.loading["takeoff_mass"])
 
 
 def options_at_random(kind: str, state: State, chance: random.Random, folder: Path) -> list[str]:
     """Options of a refresh; the state follows."""
     options: list[str] = []
+    heavy = 2.6 if "many" in kind else 1.0
     if chance.random() < 0.3:
         state.card, state.loading = sister_of(kind, folder), {}
         options += ["--card", state.card]
@@ -216,19 +221,17 @@ def options_at_random(kind: str, state: State, chance: random.Random, folder: Pa
         state.day["humidity"] = 70
         options += ["--humidity", "70"]
     if chance.random() < 0.3:
-        state.loading["landing_flap"] = "20" if kind not in ("lambda", "plain") or chance.random() < 0.5 else "10"
-        state.loading = {key: value for key, value in state.loading.items() if value in flaps_of(state.card) or "mass" in key}
-        options += ["--landing-flap", state.loading["landing_flap"]] if "landing_flap" in state.loading else []
+        state.loading["landing_flap"] = chance.choice(flaps_of(state.card))
+        options += ["--landing-flap", state.loading["landing_flap"]]
     if chance.random() < 0.3:
-        state.loading["landing_mass"] = 900.0 * (1.0 if "mule" not in kind and "many" not in kind else 2.6)
+        state.loading["landing_mass"] = 900.0 * heavy
         options += ["--landing-mass", f"{state.loading['landing_mass']} kg"]
     return options
 
 
 @cache
 def flaps_of(card: str) -> tuple[str, ...]:
-    from stripcheck.card import load_card
-
+    """Names of the settings that a card has for landing."""
     return tuple(flap.name for flap in load_card(card).flaps if "landing" in flap.uses)
 
 

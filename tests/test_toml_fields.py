@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 from contextlib import AbstractContextManager
 from pathlib import Path
@@ -134,6 +135,37 @@ def test_files(tmp_path: Path) -> None:
         read_toml(tmp_path / "none.toml")
     with pytest.raises(InputError, match=r"can't be read \(IsADirectoryError\); a TOML text file is expected"):
         read_toml(tmp_path)
+
+
+@pytest.mark.parametrize(
+    ("text", "says"),
+    [
+        ("a = " + "[" * 900_000, "lists or parts nest too deep"),
+        ("a = " + "[" * 400_000 + "]" * 400_000, "lists or parts nest too deep"),
+        ("a = " + "{a=" * 200_000, "lists or parts nest too deep"),
+        ("a" + ".a" * 400_000 + " = 1", "a key has twenty parts or more"),  # the memory for it grew by the square
+        ("[a" + ". a" * 300_000 + "]", "a key has twenty parts or more"),
+        ('b = {"a"' + ".'a'" * 200_000 + " = 1}", "a key has twenty parts or more"),
+        ("a = " + "9" * 900_000, "is not a TOML file that can be read"),
+        ("# " + "x" * 1_000_000, "a TOML text file of at most 1 MB is expected"),
+        ('a = "' + "x" * 900_000, "is not a TOML file that can be read"),
+        ("a = 1\0", "is not a TOML file that can be read"),
+    ],
+)
+def test_files_without_measure(tmp_path: Path, text: str, says: str) -> None:
+    (tmp_path / "card.toml").write_text(text, encoding="utf-8")
+    with pytest.raises(InputError, match=rf"card\.toml: {says}"):
+        read_toml(tmp_path / "card.toml")
+
+
+def test_long_texts_and_many_figures_are_no_harm(tmp_path: Path) -> None:
+    path = tmp_path / "card.toml"
+    prose = "No. 1. See p. 4, e.g. " * 10_000
+    path.write_text(f'note = "{prose}"\nvalues = [{"1.5, " * 10_000}]\n# {"." * 10_000}\na.b.c = 1\n')
+    assert len(read_toml(path).entries["values"]) == 10_000
+    os.mkfifo(tmp_path / "pipe.toml")
+    with pytest.raises(InputError, match=r"pipe\.toml: a TOML text file of at most 1 MB is expected"):
+        read_toml(tmp_path / "pipe.toml")
 
 
 def test_shipped_files_by_name_and_own_ones_by_path(tmp_path: Path) -> None:

@@ -23,8 +23,8 @@ HEADER_ROW = 7
 COLUMNS = (  # header, width, line of the Trip sheet without its side, number format
     ("", 9.5, "", ""),
     ("Verdict", 12.5, "verdict", "General"),
-    ("On", 6, "direction", "@"),
-    ("Flap", 6, "flap", "@"),
+    ("On", 6, "direction", "General"),
+    ("Flap", 6, "flap", "General"),
     ("Stall kt", 6.5, "stall", "0"),
     ("Fly kt", 6.5, "speed", "0"),
     ("Needs m", 7.5, "required", "#,##0"),

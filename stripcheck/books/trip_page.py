@@ -579,7 +579,7 @@ def finish(sheet: Worksheet, title: str, card_name: str, notes: Sequence[str]) -
     for text in notes:
         sheet[f"A{row}"], sheet[f"A{row}"].font, sheet[f"A{row}"].alignment = text, styles.SMALL, styles.WRAP
         sheet.merge_cells(f"A{row}:{column(STOPS)}{row}")
-        sheet.row_dimensions[row].height = 13.0 * ceil(len(text) / 185)
+        sheet.row_dimensions[row].height = 13.0 * ceil(len(text) / 230)
         row += 1
     sheet.freeze_panes = f"{column(1)}{ROWS['name'] + 1}"
     styles.set_print(sheet, f"{HEADER_ROW}:{ROWS['runway']}", portrait=True)

@@ -136,8 +136,9 @@ def write_strips(pages: Pages, strips: Strips) -> Cases:
     for key, letter in strips.letters.items():
         sheet.column_dimensions[letter].width = widths.get(key, 10)
         cell = sheet[f"{letter}{FIRST_ROW}"]
-        cell.font, cell.border, cell.number_format = styles.BODY, styles.LINE, "@"
+        cell.font, cell.border = styles.BODY, styles.LINE
         if key not in ("base", "listed"):
+            cell.number_format = "@"
             cell.fill, cell.border, cell.protection = styles.INPUT_FILL, styles.BOX, styles.UNLOCKED
     for key, _ in POSITION:
         sheet[f"{strips.letters[key]}{FIRST_ROW}"].number_format = "0.0000"

@@ -189,7 +189,7 @@ def find_delimiter(path: Path, encoding: str) -> str:
             failures[delimiter] = error
             continue
         scores[delimiter] = max(((known_headers(row), len(row)) for row in rows), default=(0, 0))
-    if failures and max(scores.values(), default=(0, 0))[0] < 2:  # what is wrong is said for the likeliest of them
+    if not scores:  # what is wrong is said for the likeliest of them
         with path.open(encoding=encoding, errors="replace") as stream:
             start = stream.read(4096)
         raise failures[max(failures, key=start.count)]

@@ -23,7 +23,7 @@ from stripcheck.errors import InputError
 from stripcheck.inputs import CARD, CONSTANT_SPEED, DAY, FIXED_PITCH, POWER_LIMIT, REACH, RULES, manual_inputs
 from stripcheck.sheet import method
 from stripcheck.sheet.labels import FLAP_HEADER, TABLES
-from stripcheck.sheet.manual_again import figures_repeated, write_again
+from stripcheck.sheet.manual_again import repeated_cells, write_again
 from stripcheck.sheet.package import Package, cell_of
 from stripcheck.sheet.pages import GROUND_COLUMNS
 from stripcheck.sheet.raw_sheet import RawCell, Value
@@ -184,8 +184,8 @@ class ValuePages:
         again = write_again(rows, self.sides(rows), len(aeroplane_of(rows).flaps))
         if any(self.package.names.get(name) != text for name, text in again.names.items()):
             raise InputError(f'{self.package.path}: rows or columns of the sheet "{MANUAL}" were moved; move them back')
-        for number, column, figure in figures_repeated(again, self.raw[MANUAL], rows):
-            before = rows[number - 1][column - 1]
+        for (number, column), there in repeated_cells(again, rows):
+            before, figure = rows[number - 1][column - 1], self.value(MANUAL, *there)
             if is_number(figure):
                 rows[number - 1][column - 1] = self.figures[number, column] = figure
             elif is_number(before):

@@ -18,7 +18,7 @@ from stripcheck.card import Card
 from stripcheck.doors.range_tables import tables_of
 from stripcheck.sheet import manual_tables, pages
 from stripcheck.sheet.labels import REST, TABLES
-from stripcheck.sheet.raw_sheet import RawCell, RawSheet, Value
+from stripcheck.sheet.raw_sheet import RawCell, RawSheet
 
 _FIGURE = re.compile(r"=IF\(ISNUMBER\(Manual!([A-Z]+)(\d+)\),")
 
@@ -78,8 +78,8 @@ def write_again(rows: Sequence[Sequence[Any]], sides: Sequence[str], settings: i
     )  # fmt: skip
 
 
-def figures_repeated(again: ManualAgain, manual: RawSheet, rows: Sequence[Sequence[Any]]) -> Iterator[tuple[int, int, Value]]:
-    """Of each cell of the sheet Aircraft, by its rows, that repeats the sheet Manual: place from 1, and what stands there."""
+def repeated_cells(again: ManualAgain, rows: Sequence[Sequence[Any]]) -> Iterator[tuple[tuple[int, int], tuple[int, int]]]:
+    """Of each cell of the sheet Aircraft, by its rows, that repeats the sheet Manual: row and column on both, from 1."""
     remaining = list(again.repeated)
     for number, row in enumerate(rows, 1):
         at = next((i for i, (label, _) in enumerate(remaining) if label == str(row[0]).split(REST)[0]), None)
@@ -87,7 +87,7 @@ def figures_repeated(again: ManualAgain, manual: RawSheet, rows: Sequence[Sequen
         for column, cell in enumerate(cells, 2):
             match = _FIGURE.match(cell) if isinstance(cell, str) else None
             if match is not None:
-                yield number, column, manual.value(int(match[2]), column_index_from_string(match[1]))
+                yield (number, column), (int(match[2]), column_index_from_string(match[1]))
 
 
 def _alike(formula: str, cell: RawCell) -> bool:

@@ -211,16 +211,19 @@ class SummaryEdits:
         return value if isinstance(value, float) or (value and key.endswith("_flap")) else otherwise
 
     def _write_counts(self) -> None:
-        """How many strips have each verdict; the places are found by the words."""
+        """How many strips have each verdict; the places are found by the words, below the header of their table."""
+        table: dict[int, str] = {}  # header of the table, by column
         for row in self.raw.rows:
             if row.number >= self.sheet.header_row:
                 return
             for column, cell in sorted(row.cells.items()):
-                if cell.value in VERDICTS and not cell.live:
+                if cell.value in summary.COUNTED:
+                    table[column] = str(cell.value)
+                elif table.get(column) == summary.COUNTED[0] and cell.value in VERDICTS:
+                    number = summary.RANKS.index(str(cell.value)) + 1
                     for beside, side in enumerate(_PARTS, 1):
-                        number = summary.RANKS.index(str(cell.value)) + 1
                         self._count(row.cells.get(column + beside), row.number, side, number, str(cell.value))
-                elif cell.value in summary.BOTH and not cell.live:
+                elif table.get(column) == summary.COUNTED[1] and cell.value in summary.BOTH:
                     number = summary.BOTH.index(str(cell.value)) + 1
                     self._count(row.cells.get(column + 1), row.number, "both", number, str(cell.value))
 

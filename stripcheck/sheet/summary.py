@@ -26,6 +26,7 @@ HEADER_ROW, FIRST_ROW = 14, 15
 RANKS = (UNSUITABLE, NOT_ASSESSED, MARGINAL, SUITABLE)
 FORBIDDEN = 1  # number of the finding of a one-way strip's wrong direction, which ranks below all verdicts
 BOTH = ("in and out", "in and out, marginal", "IN BUT NOT OUT", "out but not in", "neither in nor out", "not assessed")
+COUNTED = ("Verdict", "In and out")  # headers of the tables of counts, above the rows
 SIDES = (("in", "landing", "Land"), ("out", "takeoff", "Take off"))
 
 
@@ -149,7 +150,7 @@ def write_skeleton(pages: Pages, strips: int, facts: list[str]) -> Worksheet:
 def write_counts(pages: Pages, sheet: Worksheet, strips: int, counts: Mapping[str, Mapping[str, int]]) -> None:
     """Live counts of each verdict and of each pair of verdicts, beside the facts."""
     last = FIRST_ROW + max(strips, 1) - 1
-    write_header(sheet, 4, ("Verdict", "Land", "Take off"), 16)
+    write_header(sheet, 4, (COUNTED[0], "Land", "Take off"), 16)
     for row, verdict in enumerate(VERDICTS, 5):
         sheet.cell(row, 16, verdict).font = styles.BODY
         for number, (side, _, _) in enumerate(SIDES, 17):
@@ -159,7 +160,7 @@ def write_counts(pages: Pages, sheet: Worksheet, strips: int, counts: Mapping[st
             pages.formula(sheet, cell, text, counts[side].get(verdict, 0))
             sheet[cell].font = styles.BODY
     styles.colour_verdicts(sheet, "P5:P8")
-    write_header(sheet, 4, ("In and out", "Strips"), 10)
+    write_header(sheet, 4, (COUNTED[1], "Strips"), 10)
     for row, words in enumerate(BOTH, 5):
         sheet.cell(row, 10, words).font = styles.BODY
         column = LETTERS["both"]

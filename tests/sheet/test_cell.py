@@ -26,6 +26,7 @@ A, B, C = Cell("A1"), Cell("B1"), Cell("C1")
         (A + (-2.0), "A1+(-2)"),
         (2.0 - A, "2-A1"),
         (np.cbrt(A), "A1^(1/3)"),
+        (np.floor(A), "INT(A1)"),
         (np.arctan2(A, B), "ATAN2(B1,A1)"),
         ((A + B) % 360.0, "MOD(A1+B1,360)"),
         (np.sqrt(A + 1.0), "SQRT(A1+1)"),
