@@ -131,7 +131,7 @@ def _take_ground_table(work: BookEdits, rules: Rules) -> None:
     for key, letter in pages.GROUND_COLUMNS.items():
         place = cell_of(work.package.names.get(key, "").split(":")[0])
         if place is None:
-            raise InputError(f'{work.package.path}: the name "{key}" of the ground table is gone; put it back')
+            raise work.pages.without_name(key)
         for at, value in enumerate(np.asarray(rules.values[key], dtype=float).tolist()):
             shown = pages.NO_FIGURE if np.isnan(value) else value
             work.put("Rules", place[1] + at, column_index_from_string(letter), shown)
@@ -163,9 +163,6 @@ def _take_card(work: BookEdits, card: Card, chosen: Mapping[str, float], flap_na
     manual_tables.write_manual(made, card, values)
     row = pages.write_book_points(aircraft, aircraft.max_row + 3, card)
     pages.write_steps(made, aircraft, row, once)
-    formulas = work.formulas(card.chain, work.page_places(card.chain) | made.places, [step.key for step in once])
-    pages.fill_steps(made, aircraft, row, once, formulas, values)
-    manual_tables.write_as_rows(made, aircraft, card, values)
     names = {name: defined.attr_text for name, defined in made.book.defined_names.items()}
     differing = next((name for name, text in names.items() if work.package.names.get(name, "").replace("'", "")
                       != text.replace("'", "")), None)  # fmt: skip
@@ -175,6 +172,9 @@ def _take_card(work: BookEdits, card: Card, chosen: Mapping[str, float], flap_na
             f"figures of the manual), or rows were moved on its pages, so that {card.name} does not fit the cell "
             f'"{differing}"; fill a new one'
         )
+    formulas = work.formulas(card.chain, work.page_places(card.chain) | made.places, [step.key for step in once])
+    pages.fill_steps(made, aircraft, row, once, formulas, values)
+    manual_tables.write_as_rows(made, aircraft, card, values)
     for title in ("Aircraft", "Manual"):
         if title in made.book.sheetnames:
             _copy(work, made.book[title], made.cached.get(title, {}))

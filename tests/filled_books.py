@@ -27,7 +27,7 @@ from tests.user_content import HEADER_ROWS, MINE, add_everything
 
 LIST = str(files("stripcheck") / "scenario" / "lantern-range.csv")
 CHOSEN = (1, 4, 6, 8, 10, 17, 28)  # rows of that list: obstacles, one-way, own weather, a fault
-PROFILES = {"XKDF": '"0:0, 700:4, 1400:12"', "XGLN": '"0:0, 300:2, 930:21"'}
+PROFILES = {"XTPF": '"0:0, 490:1, 980:3.7"', "XFLC": '"0:0, 300:-8, 820:-18.3"'}
 DAY: dict[str, Any] = {"isa_deviation": 15, "qnh": 1015, "wind_from": 310, "wind_speed": 8}
 KINDS = {
     "full": (), "short": ("--detail", "short"), "chance": ("--chance",), "profile": (),
@@ -70,7 +70,7 @@ def filled(kind: str) -> Path:
     lines = Path(LIST).read_text(encoding="utf-8").splitlines()
     kept = [lines[at] for at in (0, *CHOSEN)]
     if kind == "profile":
-        kept = [f"{line},{PROFILES.get(line.split(',')[0], '') if at else 'Slope profile'}" for at, line in enumerate(kept)]
+        kept = [f"{line},{PROFILES.get(line.split(',')[0], '') if at else 'Profile'}" for at, line in enumerate(kept)]
     stem = kind.replace(" ", "-")
     listed, path = Path(_FOLDER.name) / f"{stem}.csv", Path(_FOLDER.name) / f"{stem}.xlsx"
     listed.write_text("\n".join(kept), encoding="utf-8")

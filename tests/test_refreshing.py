@@ -2,28 +2,43 @@
 
 from __future__ import annotations
 
+import multiprocessing
+import os
 import random
+import resource
+import subprocess
+import sys
+import textwrap
+import time
 from collections.abc import Sequence
 from pathlib import Path
 
+import openpyxl
 import pytest
 from openpyxl.utils.cell import coordinate_to_tuple
 
 from stripcheck.cli import main
-from tests.book_parts import Parts
+from stripcheck.refreshing import Request, refresh_book
+from tests.book_parts import Parts, SheetText
 from tests.filled_books import (
     KINDS,
     State,
     card_of,
+    copy_direction,
+    filled,
     is_own,
     move_rows,
     options_at_random,
+    rows_of,
+    sister_of,
     type_at_random,
+    type_on_page,
+    type_on_strips,
     verdicts_must_be,
     with_everything,
 )
 from tests.sheet.package_check import package_faults
-from tests.sheet.recalculated import differences
+from tests.sheet.recalculated import differences, same
 from tests.user_content import foreign_parts, own_cells, set_calc_chain
 
 ROUNDS = 50  # of two refreshes each
@@ -87,3 +102,340 @@ def test_an_office_recalculates_what_stands_beside_the_formulas(office, tmp_path
 def _is_own(own: object, difference: str) -> bool:
     title, _, cell = difference.split(":")[0].partition("!")
     return title == "My notes" or own(title, *coordinate_to_tuple(cell))  # type: ignore[operator]
+
+
+# --- what other programs saved
+
+
+def shown(path: Path) -> dict[tuple[str, str], object]:
+    """Every cell as a reader without formulas sees it; blank ones left out."""
+    book = openpyxl.load_workbook(path, data_only=True)
+    return {(sheet.title, cell.coordinate): cell.value for sheet in book.worksheets for row in sheet.iter_rows() for cell in row
+            if cell.value not in (None, "")}  # fmt: skip
+
+
+def not_the_same(path: Path, other: Path) -> list[str]:
+    """Where two workbooks show something else, but for the line that tells when they were filled."""
+    one, two = shown(path), shown(other)
+    return [f"{place}: {one.get(place)!r}, not {two.get(place)!r}" for place in sorted(one.keys() | two.keys())
+            if not same(one.get(place), two.get(place), 1000.0) and "first filled" not in str(one.get(place))]  # fmt: skip
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_a_refresh_of_what_was_just_filled_changes_no_value(tmp_path: Path, kind: str) -> None:
+    path = tmp_path / "book.xlsx"
+    Parts.read(filled(kind)).write(path)
+    lines = refresh_book(Request(path))
+    assert "Changed: 0 verdicts" in lines
+    assert not_the_same(path, filled(kind)) == []
+
+
+@pytest.mark.parametrize("kind", ["full", "short", "profile", "none"])
+def test_a_workbook_that_an_office_saved_is_refreshed_too(office, tmp_path: Path, kind: str) -> None:
+    saved, expected = tmp_path / "saved.xlsx", tmp_path / "expected.xlsx"
+    with office.open(filled(kind)) as book:
+        book.recalculate()
+        book.save_as(saved)
+    Parts.read(filled(kind)).write(expected)
+    options = ["--takeoff-mass", "960", "--qnh", "1003"]
+    before = foreign_parts(saved)
+    assert main(["refresh", str(saved), *options]) == 0 and main(["refresh", str(expected), *options]) == 0
+    assert not_the_same(saved, expected) == []
+    changed = {name for name, digest in foreign_parts(saved).items() if before[name] != digest}
+    assert changed == {"xl/workbook.xml"}  # which tells now to work all out when it is opened
+    with office.open(saved) as book:
+        book.recalculate()
+        assert differences(book, saved)[1] == []
+
+
+@pytest.mark.parametrize("kind", ["full", "many tables", "excel"])
+def test_a_workbook_without_results_gets_them(tmp_path: Path, kind: str) -> None:
+    saved, expected = tmp_path / "saved.xlsx", tmp_path / "expected.xlsx"
+    openpyxl.load_workbook(filled(kind)).save(saved)
+    Parts.read(filled(kind)).write(expected)
+    said = refresh_book(Request(saved, day={"qnh": "1003"}))
+    assert "14 directions had no verdict before" in said and not any("Changed" in line for line in said)
+    refresh_book(Request(expected, day={"qnh": "1003"}))
+    assert not_the_same(saved, expected) == []
+
+
+def test_shared_formulas_in_columns_of_ours_are_taken_over(tmp_path: Path) -> None:
+    parts = Parts.read(filled("full"))
+    sheet = SheetText.of(parts.text(parts.sheet("Strips")))
+    column, rows = sheet.headers(3)["Take-off margin [m]"], rows_of(parts, "Strips")
+    letter = openpyxl.utils.get_column_letter(column)
+    text = sheet.rows[rows[0]][column].partition("<f>")[2].partition("</f>")[0]
+    for row in (*rows, rows[-1] + 2):  # the last one is below the table, in a row of a user's
+        first = f'<f t="shared" ref="{letter}{rows[0]}:{letter}{rows[-1] + 2}" si="3">{text}</f>'
+        sheet.put(row, column, f'{first if row == rows[0] else chr(60) + "f t=" + chr(34) + "shared" + chr(34) + " si=" + chr(34) + "3" + chr(34) + "/>"}<v>1</v>')
+    parts.put(parts.sheet("Strips"), str(sheet))
+    path = tmp_path / "book.xlsx"
+    parts.write(path)
+    assert main(["refresh", str(path)]) == 0
+    after = openpyxl.load_workbook(path)["Strips"]
+    expected = openpyxl.load_workbook(filled("full"))["Strips"]
+    assert [after.cell(row, column).value for row in rows] == [expected.cell(row, column).value for row in rows]
+    below, last = after.cell(rows[-1] + 2, column), expected.cell(rows[-1], column)
+    assert below.value == str(last.value).replace(str(rows[-1]), str(rows[-1] + 2))
+    assert "shared" not in Parts.read(path).text(parts.sheet("Strips"))
+
+
+# --- rows that were added
+
+
+def test_ranges_and_formulas_reach_over_rows_that_were_added(office, tmp_path: Path) -> None:
+    parts, path = Parts.read(filled("full")), tmp_path / "book.xlsx"
+    last, chance = rows_of(parts, "Strips")[-1], random.Random(1)
+    for row, way in ((last + 1, "17"), (last + 2, "35"), (last + 3, "09")):
+        copy_direction(parts, 4, row, "XADD", chance, way)
+    parts.write(path)
+    assert main(["refresh", str(path)]) == 0
+    book = openpyxl.load_workbook(path)
+    strips, summary = book["Strips"], book["Summary"]
+    assert [strips.cell(row, 1).value for row in range(last + 1, last + 4)] == ["row 1 1", "row 1 2", "row 2 1"]
+    assert [summary.cell(row, 9).value for row in (22, 23)] == ["17/35", "09"]
+    for sheet, end in ((strips, last + 3), (summary, 23)):
+        ranges = [str(cells.sqref) for cells in sheet.conditional_formatting] + [str(cells.sqref) for cells in sheet.data_validations.dataValidation]
+        table = [cells for cells in ranges if not cells.startswith(("J5", "P5"))]
+        assert len(table) > 2 and all(cells.endswith(str(end)) for cells in (*table, sheet.auto_filter.ref, sheet.dimensions))
+        for column in range(1, 21):
+            assert sheet.cell(end, column).style_id == sheet.cell(end - 3, column).style_id or sheet.cell(end, column).value is None
+    assert summary["P6"].value is not None and '$23,"' in summary["Q6"].value
+    with office.open(path) as opened:
+        opened.recalculate()
+        assert differences(opened, path)[1] == []
+
+
+# --- what is told, and what is refused
+
+
+def test_what_changed_is_told(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    parts, path = Parts.read(filled("full")), tmp_path / "book.xlsx"
+    type_on_strips(parts, 4, "tora", 300.0)
+    type_on_strips(parts, 6, "take_off_here", "no")
+    sheet = SheetText.of(parts.text(parts.sheet("Strips")))
+    sheet.type(9, sheet.headers(3)["Take-off margin [m]"], 999.0)
+    parts.put(parts.sheet("Strips"), str(sheet))
+    parts.write(path)
+    capsys.readouterr()
+    assert main(["refresh", str(path), "--temp", "20"]) == 0
+    lines = capsys.readouterr().out.splitlines()
+    assert lines[0] == f"{path}: 14 directions refreshed"
+    assert lines[1] == "Typed over formulas, and formulas again: L9"
+    assert lines[2].startswith("Changed: ") and "  XLRB 14, take-off: suitable -> unsuitable" in lines
+    assert lines[-1].startswith("Planning aid only.")
+    copy = next(line for line in lines if line.startswith("The version before: ")).removeprefix("The version before: ")
+    assert (tmp_path / copy).read_bytes() != path.read_bytes() and not_the_same(tmp_path / copy, path) != []
+
+
+def test_lines_of_the_method_tell_what_holds_now(tmp_path: Path) -> None:
+    def told(path: Path) -> list[str]:
+        return [str(row[0].value) for row in openpyxl.load_workbook(path)["Method"].iter_rows(max_row=30) if row[0].value]
+
+    path = tmp_path / "book.xlsx"
+    parts = Parts.read(filled("plain"))
+    parts.write(path)
+    default = "Ground condition: dry used, none was given"
+    heat = "The day's temperature stands for every strip that has none of its own, whatever its elevation"
+    slope = "Slope of 3.0% against you, both ways, where none is known"
+    assert default in told(path) and heat not in told(path) and slope not in told(path)
+    sister = sister_of("plain", tmp_path)
+    options = ["--card", sister, "--rules", "us-private", "--temp", "20", "--ground", "wet", "--assume-slope", "3"]
+    assert main(["refresh", str(path), *options]) == 0
+    lines = told(path)
+    assert default not in lines and heat in lines and slope in lines
+    assert "Aircraft card: sister.toml: Sister of Trial Heron" in lines
+    assert any(line.startswith("Rule set: us-private: ") for line in lines) and any(line.startswith("Refreshed: ") for line in lines)
+    book = openpyxl.load_workbook(path, data_only=True)
+    assert book["Strips"]["B1"].value == "Sister of Trial Heron: every direction"
+    assert book["Summary"]["H4"].value == book["Aircraft"]["A1"].value == "Sister of Trial Heron"
+    assert book["Summary"]["H13"].value == book["Rules"]["A1"].value != openpyxl.load_workbook(filled("plain"))["Rules"]["A1"].value
+
+
+@pytest.mark.parametrize(("options", "says"), [
+    (["--card", "high-mule"], "filled for an aeroplane of another make"),
+    (["--card", "nowhere.toml"], "nowhere.toml"),
+    (["--rules", "none-such"], "none-such"),
+    (["--takeoff-mass", "9000"], "take-off mass of 9000: the workbook allows up to 1,110 kg"),
+    (["--takeoff-flap", "90"], "--takeoff-flap"),
+    (["--qnh", "600"], "not credible"),
+    (["--temp", "20", "--isa-dev", "10"], "either a temperature or an ISA deviation"),
+    (["-o", "other.csv"], "must end in .xlsx, as that of the workbook does"),
+    (["-o", "nowhere/other.xlsx"], "the folder does not exist"),
+])  # fmt: skip
+def test_what_does_not_fit_is_refused_and_nothing_is_written(tmp_path: Path, capsys: pytest.CaptureFixture[str], options: list[str],
+                                                             says: str) -> None:  # fmt: skip
+    path = tmp_path / "book.xlsx"
+    Parts.read(filled("full")).write(path)
+    before = path.read_bytes()
+    options = [str(tmp_path / option) if option.startswith(("other", "nowhere/")) else option for option in options]
+    assert main(["refresh", str(path), *options]) == 2
+    assert says in capsys.readouterr().err
+    assert path.read_bytes() == before and list(tmp_path.iterdir()) == [path]
+
+
+def test_another_file_is_written_where_one_is_named(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path, other = tmp_path / "book.xlsx", tmp_path / "other.xlsx"
+    Parts.read(filled("full")).write(path)
+    before = path.read_bytes()
+    arguments = ["refresh", str(path), "-o", str(other), "--qnh", "1001"]
+    assert main(arguments) == 0
+    assert path.read_bytes() == before and sorted(tmp_path.iterdir()) == [path, other]
+    assert main(arguments) == 2 and "this file exists" in capsys.readouterr().err
+    assert main([*arguments, "--force"]) == 0 and sorted(tmp_path.iterdir()) == [path, other]
+    assert main(["refresh", str(path), "-o", str(path), "--force"]) == 0 and len(list(tmp_path.iterdir())) == 3
+
+
+def test_a_workbook_that_is_open_or_of_another_kind_is_left_alone(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path, lock = tmp_path / "book.xlsx", tmp_path / ".~lock.book.xlsx#"
+    Parts.read(filled("full")).write(path)
+    lock.touch()
+    assert main(["refresh", str(path)]) == 2 and "is open in a spreadsheet program" in capsys.readouterr().err
+    lock.unlink()
+    for name, says in (("nowhere.xlsx", "there is no such file"), ("book.ods", ".xlsx or .xlsm"), ("list.csv", ".xlsx or .xlsm")):
+        assert main(["refresh", str(tmp_path / name)]) == 2 and says in capsys.readouterr().err
+    openpyxl.Workbook().save(path)
+    assert main(["refresh", str(path)]) == 2 and "no workbook that stripcheck filled" in capsys.readouterr().err
+
+
+def test_a_workbook_that_is_saved_meanwhile_is_left_as_it_was_saved(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    from stripcheck.sheet.package import Package
+
+    path = tmp_path / "book.xlsx"
+    Parts.read(filled("full")).write(path)
+    save = Package.save
+
+    def saved_meanwhile(self: Package, *arguments: object) -> None:
+        save(self, *arguments)  # type: ignore[arg-type]
+        path.write_bytes(path.read_bytes() + b"more")
+
+    monkeypatch.setattr(Package, "save", saved_meanwhile)
+    assert main(["refresh", str(path)]) == 2
+    assert path.read_bytes().endswith(b"more") and list(tmp_path.iterdir()) == [path]
+
+
+# --- whatever stops it
+
+
+KILLS, PARALLEL = 200, 4
+
+
+def refresh_quietly(path: str, qnh: str) -> None:
+    sys.stdout = open(os.devnull, "w")  # noqa: SIM115
+    refresh_book(Request(Path(path), day={"qnh": qnh}))
+
+
+def whole(path: Path, states: Sequence[Parts]) -> bool:
+    """Whether a workbook is, but for the time of its refresh, one of those that it may be."""
+    parts = Parts.read(path)
+    method = parts.sheet("Method")
+    return any(all(parts.get(name) == data for name, data in state.items() if name != method) for state in states)
+
+
+def test_a_refresh_killed_at_any_moment_leaves_a_whole_workbook(tmp_path: Path) -> None:
+    # processes are forked from one that has all loaded, so that the kills hit the work itself
+    processes = multiprocessing.get_context("forkserver")
+    processes.set_forkserver_preload(["stripcheck.refreshing", "tests.test_refreshing"])
+    chance, states = random.Random(6), []
+    folders = [tmp_path / str(number) for number in range(PARALLEL)]
+    for folder in folders:
+        folder.mkdir()
+        with_everything("short").write(folder / "book.xlsx")
+    begin = time.monotonic()
+    for qnh in ("1001", "1009"):
+        process = processes.Process(target=refresh_quietly, args=(str(folders[0] / "book.xlsx"), qnh))
+        process.start()
+        process.join()
+        assert process.exitcode == 0
+        states.append(Parts.read(folders[0] / "book.xlsx"))
+    duration = (time.monotonic() - begin) / 2.0 * PARALLEL / min(PARALLEL, os.cpu_count() or 1)
+    states.append(with_everything("short"))
+    killed = 0
+    for number in range(KILLS // PARALLEL):
+        running = [processes.Process(target=refresh_quietly, args=(str(folder / "book.xlsx"), ("1001", "1009")[number % 2]))
+                   for folder in folders]  # fmt: skip
+        for process in running:
+            process.start()
+        moments = sorted((chance.uniform(0.0, duration), process) for process in running)
+        start = time.monotonic()
+        for moment, process in sorted(moments, key=lambda one: one[0]):
+            time.sleep(max(0.0, start + moment - time.monotonic()))
+            process.kill()
+            process.join()
+            killed += process.exitcode != 0
+        assert all(whole(folder / "book.xlsx", states) for folder in folders)
+    assert killed > KILLS // 2
+    for folder in folders:
+        names = [path.name for path in folder.iterdir()]
+        spare = [name for name in names if name.startswith(".stripcheck-")]
+        assert all(name == "book.xlsx" or name.startswith("book 20") or name in spare for name in names)
+        old = time.time() - 2 * 86_400
+        for name in spare:
+            os.utime(folder / name, (old, old))
+        refresh_book(Request(folder / "book.xlsx"))  # which takes away what was left behind
+        assert not [path for path in folder.iterdir() if path.name.startswith(".stripcheck-")]
+
+
+def test_a_full_disk_leaves_the_workbook_as_it_was(tmp_path: Path) -> None:
+    path = tmp_path / "book.xlsx"
+    with_everything("full").write(path)
+    before, size = path.read_bytes(), path.stat().st_size
+    code = textwrap.dedent("""
+        import resource, signal, sys
+        from stripcheck.cli import main
+        signal.signal(signal.SIGXFSZ, signal.SIG_IGN)
+        resource.setrlimit(resource.RLIMIT_FSIZE, (int(sys.argv[2]), resource.RLIM_INFINITY))
+        sys.exit(main(["refresh", sys.argv[1], "--qnh", "1001"]))
+    """)
+    for limit in (0, 1000, size // 2, size * 9 // 10):
+        run = subprocess.run([sys.executable, "-c", code, str(path), str(limit)], capture_output=True, text=True)
+        assert (run.returncode, run.stdout) == (2, "")
+        assert run.stderr.startswith(f"stripcheck: {path}: can't be written (File too large); ") and run.stderr.count("\n") == 1
+        assert path.read_bytes() == before and list(tmp_path.iterdir()) == [path]
+
+
+def test_a_full_file_system_leaves_the_workbook_as_it_was(tmp_path: Path) -> None:
+    if os.geteuid() != 0 or not sys.platform.startswith("linux"):
+        pytest.skip("only root may mount a small file system; RLIMIT_FSIZE stands for it above")
+    parts = with_everything("full")
+    parts.write(tmp_path / "book.xlsx")
+    size = (tmp_path / "book.xlsx").stat().st_size
+    disk = tmp_path / "disk"
+    disk.mkdir()
+    mounted = subprocess.run(["mount", "-t", "tmpfs", "-o", f"size={size + size // 2}", "tmpfs", str(disk)], capture_output=True)
+    if mounted.returncode:
+        pytest.skip("this system lets nobody mount a file system; RLIMIT_FSIZE stands for it above")
+    try:
+        path = disk / "book.xlsx"
+        parts.write(path)
+        before = path.read_bytes()
+        run = subprocess.run([sys.executable, "-m", "stripcheck", "refresh", str(path)], capture_output=True, text=True)
+        assert run.returncode == 2 and "No space left on device" in run.stderr and run.stderr.count("\n") == 1
+        assert path.read_bytes() == before and list(disk.iterdir()) == [path]
+    finally:
+        subprocess.run(["umount", str(disk)], check=True)
+
+
+def test_a_folder_that_can_not_be_written_is_told(tmp_path: Path, capsys: pytest.CaptureFixture[str],
+                                                  monkeypatch: pytest.MonkeyPatch) -> None:  # fmt: skip
+    path = tmp_path / "book.xlsx"
+    Parts.read(filled("full")).write(path)
+    real = os.open
+
+    def refused(name: object, *arguments: object, **more: object) -> object:
+        if ".stripcheck-" in str(name):
+            raise PermissionError(13, "Permission denied")
+        return real(name, *arguments, **more)  # type: ignore[arg-type]
+
+    monkeypatch.setattr("builtins.open", _refusing(open))
+    assert main(["refresh", str(path)]) == 2
+    assert "can't be written (Permission denied)" in capsys.readouterr().err and list(tmp_path.iterdir()) == [path]
+
+
+def _refusing(real):  # type: ignore[no-untyped-def]
+    def refused(name, *arguments, **more):  # type: ignore[no-untyped-def]
+        if ".stripcheck-" in str(name):
+            raise PermissionError(13, "Permission denied")
+        return real(name, *arguments, **more)
+
+    return refused

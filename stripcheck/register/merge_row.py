@@ -14,7 +14,7 @@ from typing import NamedTuple
 import numpy as np
 
 from stripcheck.errors import InputError
-from stripcheck.profile import Profile
+from stripcheck.profile import Profile, read_profile
 from stripcheck.register.columns import COLUMNS
 from stripcheck.register.matching import BY_IDENTIFIER, BY_STRIP, Match
 from stripcheck.register.own_words import (
@@ -349,6 +349,8 @@ class Row:
         """Names that the register's runway would get, in its order of the ends; None where they stay."""
         if not self.two.named[self.new] or self.turned is None:
             return None
+        if self.turned and len(self._given_names()) < 2:  # one name alone is that of end 1
+            return None
         theirs = self.two.first[self.new], self.two.second[self.new]
         theirs = theirs[::-1] if self.turned else theirs
         if self.old is None:
@@ -438,7 +440,7 @@ class Row:
         if at not in self.one.found:
             self.lost.append(at)
             return []
-        own = None if self.old is None else self.one.profiles[self.old]
+        own = _profile_in(as_text(self._cell(at)))
         wanted = theirs.reversed() if self.turned else theirs
         return [self._part(at, str(wanted) if self.turned else cell, own is not None and _same_profile(own, wanted))]
 
@@ -481,6 +483,14 @@ class Row:
         if condition in self.one.found and worse_condition(cell, read_surface_pair(text)[1]) != wanted:
             parts.append(self._part(condition, wanted, False))
         return parts
+
+
+def _profile_in(text: str) -> Profile | None:
+    """The profile that a cell tells, whether it fits the strip or not."""
+    try:
+        return read_profile(text) if text else None
+    except InputError:
+        return None
 
 
 def _turned(heading: Quantity) -> Quantity:

@@ -245,7 +245,7 @@ class Edits:
         if tag is None:
             return whole
         kind, text = _as_text(value)
-        head = _TYPE.sub(b"", tag[0][:-1]) + _typed(kind) + b">"
+        head = _TYPE.sub(b"", tag[0][:-1]) + (b"" if value is None else _typed(kind)) + b">"
         body, closing = _RESULT.sub(b"", whole[tag.end() :]).rsplit(b"</", 1)
         p = self.sheet.prefix.encode()
         shown = b"" if value is None else b"<%bv>%b</%bv>" % (p, text, p)

@@ -73,7 +73,7 @@ def read_filled(package: Package, pages: ValuePages) -> Filled:
     if any(profile is not None for profile in profiles):
         values["local_slope"] = local_slopes(values["local_slope"], profiles)
         values |= _rounded(profile_slopes(aeroplane.chain, values, profiles))
-    doubts = [*pages.doubts, *sheet.doubts]
+    doubts = list(dict.fromkeys((*pages.doubts, *sheet.doubts)))
     return Filled(pages, sheet, with_headers(package, summary.SHEET, "In and out"), aeroplane, values, faults, profiles, doubts)
 
 

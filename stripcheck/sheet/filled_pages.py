@@ -1,7 +1,7 @@
 """The pages Aircraft, Day, Rules and Manual of a filled workbook, read as they stand now.
 
-A value is found by the name of its cell, wherever a user's own rows have moved it, and by its label where the name is lost.
-Columns stay where they are: where one was inserted, or a row is gone, a page is refused.
+A value is found by the name of its cell, wherever a user's own rows have moved it, and whatever its label says. Columns stay
+where they are: where one was inserted, or a row or a name is gone, a page is refused.
 """
 
 from __future__ import annotations
@@ -67,7 +67,9 @@ class ValuePages:
         self.figures: dict[tuple[int, int], Value] = {}
         for name, (title, column) in _RANGES.items():
             place = cell_of(package.names.get(name, "").split(":")[0])
-            if place is not None and (place[0], place[2]) != (title, column):
+            if place is None:
+                raise self.without_name(name)
+            if (place[0], place[2]) != (title, column):
                 raise self._moved(title)
 
     def put(self, title: str, row: int, column: int, value: Value) -> None:
@@ -96,11 +98,11 @@ class ValuePages:
         """The row of an input on its page. Raises InputError where it is gone."""
         title = TITLES[item.where]
         row = self._named_row(title, item)
-        if row is None:
-            row = next((row.number for row in self.raw[title].rows if self.value(title, row.number, LABEL) == item.label), None)
-        if row is None:
-            raise InputError(f'{self.package.path}: the sheet "{title}" has lost its row "{item.label}"; put it back')
-        return row
+        if row is not None:
+            return row
+        if any(self.value(title, row.number, LABEL) == item.label for row in self.raw[title].rows):
+            raise self.without_name(item.key)
+        raise InputError(f'{self.package.path}: the sheet "{title}" has lost its row "{item.label}"; put it back')
 
     def _named_row(self, title: str, item: Input) -> int | None:
         place = cell_of(self.package.names.get(item.key, ""))
@@ -109,6 +111,9 @@ class ValuePages:
         if place[2] != (SI if item.kind == "number" else VALUE):
             raise self._moved(title)
         return place[1]
+
+    def without_name(self, name: str) -> InputError:
+        return InputError(f'{self.package.path}: the name "{name}", which the formulas read, is gone; put it back')
 
     def _moved(self, title: str) -> InputError:
         return InputError(f'{self.package.path}: columns of the sheet "{title}" were moved; move them back, and keep '
@@ -162,6 +167,9 @@ class ValuePages:
 
     def aeroplane(self) -> Aeroplane:
         """The aeroplane of the sheet Aircraft."""
+        for item in CARD:
+            if item in _ON_PAGE["Aircraft"]:
+                self.row_of(item)
         rows = self.rows("Aircraft")
         self._check_results("Aircraft", rows)
         self._work_out_flaps(rows)

@@ -83,7 +83,8 @@ class StripSheet:
         self.steps = {step.key: column for step in chain.steps if step.key in varying
                       and (column := self._column(strips.step_column(step, "").header)) is not None}  # fmt: skip
         self.inputs = {key: column for key, header in _HEADERS.items() if (column := self._column(header)) is not None}
-        self.identity = {key: column for key, header in _IDENTITY.items() if (column := self._column(header)) is not None}
+        self.identity = {key: column for key, header in _IDENTITY.items()
+                         if (column := self._column(header, first=key in ("strip", "name"))) is not None}  # fmt: skip
         self.kind = self._kind()
         self._check_columns()
         self.rows = [number for number in self._below() if self._is_direction(number)]
@@ -131,14 +132,14 @@ class StripSheet:
         texts = (text for column, text in self._formulas.items() if column in ours)
         return {column_index_from_string(letters) for text in texts for letters in mark.findall(_without_texts(text))}
 
-    def _column(self, header: str) -> int | None:
-        """The column of a header of ours; of several the one that the formulas read or stand in."""
+    def _column(self, header: str, first: bool = False) -> int | None:
+        """The column of a header of ours; of several the one that the formulas read or stand in, or the ``first``."""
         candidates = self.sheet.found.get(header, ())
-        if len(candidates) < 2:
+        if first or len(candidates) < 2:
             return next(iter(candidates), None)
         read = [column for column in candidates if column in self._read_columns]
         live = [column for column in candidates if column in self._formulas]
-        chosen = read or live or list(candidates[:1])
+        chosen = read or live or list(candidates)
         if len(chosen) > 1:
             letters = " and ".join(get_column_letter(column) for column in chosen)
             raise InputError(f'{self.path}: the sheet "{self.sheet.title}" has the header "{header}" in the columns {letters}; '

@@ -58,11 +58,10 @@ class Package:
             check_workbook(path)
             self.zip = zipfile.ZipFile(path)
             self.workbook = self._workbook_part()
-            root = self._root(self.workbook)
+            root, targets = self._root(self.workbook), self._targets(self.workbook)
         except (OSError, zipfile.BadZipFile, KeyError, ElementTree.ParseError) as error:
             why = f" ({error.strerror})" if isinstance(error, OSError) and error.strerror else ""
             raise InputError(f"{path}: this is no workbook that can be read{why}; an .xlsx file is expected") from error
-        targets = self._targets(self.workbook)
         sheets = root.find(f"{{{MAIN}}}sheets")
         listed = list(sheets) if sheets is not None else []
         self.sheets = {sheet.get("name", ""): targets.get(sheet.get(f"{{{RELATION}}}id", ""), "") for sheet in listed}
@@ -212,8 +211,8 @@ def worked_out_on_load(book: bytes) -> bytes:
     if told is not None and told[1] in (b"1", b"true"):
         return book
     plain = _ON_LOAD.sub(b"", tag[0])
-    end = -2 if plain.endswith(b"/>") else -1
-    return book[: tag.start()] + plain[:end].rstrip() + b' fullCalcOnLoad="1"' + plain[end:] + book[tag.end() :]
+    end = len(plain.removesuffix(b">").removesuffix(b"/").rstrip())
+    return book[: tag.start()] + plain[:end] + b' fullCalcOnLoad="1"' + plain[end:] + book[tag.end() :]
 
 
 def cell_of(reference: str) -> tuple[str, int, int] | None:

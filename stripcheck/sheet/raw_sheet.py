@@ -193,6 +193,8 @@ class _Reader:
             opened = self._tag_end(self.cell.start)
             self.cell.end = opened if self._closed(opened) else self._tag_end(at)
             self.cell.value = _value(self.kind, "".join(self.text), self.texts)
+            if self.kind == "b" and self.cell.formula in ("TRUE()", "FALSE()"):  # LibreOffice keeps a typed truth so
+                self.cell.live = False
             self.row.cells[self.cell.column] = self.cell
             self.cell = None
         elif local == "row" and self.row is not None:

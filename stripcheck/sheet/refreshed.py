@@ -78,7 +78,7 @@ class BookEdits:
         ours = {place.reference for key, place in places.items() if "$" not in place.reference} | set(RUN_TABLE)
         gone = next((name for name in sorted(ours & words) if not self.named(name)), None)
         if gone:
-            raise InputError(f'{self.package.path}: the name "{gone}", which the formulas read, is gone; put it back')
+            raise self.pages.without_name(gone)
         return made
 
 

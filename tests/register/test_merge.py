@@ -194,6 +194,18 @@ def test_what_cant_be_read_is_told_and_not_merged(merge: Compare) -> None:
     assert len(found.remarks) == 4 and all("row 2 of the new list, XOTB 09/27" in text for text in found.remarks)
 
 
+def test_an_end_that_cant_be_told_from_the_column_for_both(merge: Compare) -> None:
+    head = "Strip,Runway,Length,Displaced threshold,Elevation end 1\n"
+    found = merge(head + "XOTB,09/27,700,60,100\n", head + "XOTB,09/27,700,800,far\n")  # beyond the other end
+    assert not found.changes and len(found.remarks) == 2
+
+
+def test_a_profile_that_fits_neither_list_is_no_change(merge: Compare) -> None:
+    head = "Strip,Runway,Length,Slope profile\n"
+    row = 'XOTB,09/27,{},"0:0, 300:3, 620:5"\n'
+    assert [change.column for change in merge(head + row.format(900), head + row.format(620)).changes] == ["Length"]
+
+
 def test_what_is_as_unreadable_in_both_is_not_told(merge: Compare) -> None:
     head = "Strip,Runway,Length\n"
     found = merge(head + "XPAD,H1,24\nXOTB,09/27,far\n", head + "XPAD,H1,24\nXOTB,09/27,26\n")
@@ -252,6 +264,18 @@ def test_a_runway_named_anew(merge: Compare) -> None:
     change = only(found)
     assert (change.column, change.new) == ("Runway, Land on, Leave by", "10/28, 10, 28")
     assert found.matched == {"strip": 1}
+
+
+def test_columns_of_the_ends_go_before_that_of_the_runway(merge: Compare) -> None:
+    head = "Strip,Runway,le_ident,he_ident,Length\n"
+    change = only(merge(head + "XOTB,10/28,09,27,700\n", "Strip,Runway,Length\nXOTB,10/28,700\n"))
+    assert (change.column, change.new) == ("le_ident, he_ident", "10, 28")
+
+
+def test_a_single_name_is_not_written_for_the_other_end(merge: Compare) -> None:
+    head = "Strip,Runway,Heading,Length\n"
+    change = only(merge(head + "XOTB,,10,700\n", head + "XOTB,X,192,700\n"))
+    assert (change.column, change.new) == ("Heading", "12")
 
 
 def test_another_runway_of_the_strip_is_new(merge: Compare) -> None:
