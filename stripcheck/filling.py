@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import io
 import sys
+from collections import Counter
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -72,6 +73,7 @@ def fill_list(request: Request) -> list[str]:
     chosen, flap_names = loading(card, request)
     day = read_day(request.day)
     directions = read_list(request.list, airports=request.airports, sheet=request.sheet, strict=request.strict)
+    _check_any(directions)
     check_air(day, directions)
     is_table = request.output.suffix == ".csv"
     full = request.detail == "full" or (request.detail is None and directions.n <= SHORT_ABOVE)
@@ -136,6 +138,14 @@ def _check_output(request: Request) -> None:
     refuse_if_open(request.output)  # now, and not after a long list was worked out
     if not request.output.resolve().parent.is_dir():
         raise InputError(f"{request.output}: the folder does not exist")
+
+
+def _check_any(directions: Directions) -> None:
+    """A list of which nothing is left makes no workbook."""
+    if directions.n == 0:
+        kinds = Counter(item.what for item in directions.left_out).most_common()
+        told = ", ".join(f"{number} {what}" for what, number in kinds) or "it has no rows"
+        raise InputError(f"{directions.source}: none of its runways can be assessed ({told}); open strips are expected")
 
 
 def check_air(day: Day, directions: Directions) -> None:

@@ -164,8 +164,7 @@ def _take_card(work: BookEdits, card: Card, chosen: Mapping[str, float], flap_na
     row = pages.write_book_points(aircraft, aircraft.max_row + 3, card)
     pages.write_steps(made, aircraft, row, once)
     names = {name: defined.attr_text for name, defined in made.book.defined_names.items()}
-    differing = next((name for name, text in names.items() if work.package.names.get(name, "").replace("'", "")
-                      != text.replace("'", "")), None)  # fmt: skip
+    differing = next((name for name, cells in names.items() if not work.package.is_named(name, cells)), None)
     if differing:
         raise InputError(
             f"{work.package.path}: this workbook was filled for an aeroplane of another make (propeller, engine, flaps, "

@@ -16,6 +16,7 @@ RANGES = {
     "own_temperature": (250.0, 340.0, 0.6), "own_qnh": (84000.0, 109000.0, 0.8), "own_wind_from": (0.0, 6.2832, 0.5),
     "own_wind_speed": (0.0, 20.0, 0.5), "profile_takeoff_slope": (-0.1, 0.1, 0.9), "profile_takeoff_roll": (100.0, 900.0, 0.5),
     "profile_landing_slope": (-0.1, 0.1, 0.9), "profile_landing_roll": (100.0, 500.0, 0.5),
+    "profile_takeoff_usable": (0.0, 1600.0, 0.97), "profile_landing_usable": (0.0, 1600.0, 0.97),
     "profile_climb_slope": (-0.1, 0.1, 0.9), "profile_approach_slope": (-0.1, 0.1, 0.9),
 }  # fmt: skip
 

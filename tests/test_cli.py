@@ -283,3 +283,14 @@ def test_card_refuses_what_it_can_not_read_or_draw(tmp_path, capsys):
     assert capsys.readouterr().err.startswith('stripcheck: "nowhere" is neither a file nor one of the shipped cards')
     assert main(["card", "high-mule", "--picture", str(tmp_path / "mule.gif")]) == 2
     assert "must end in .png or .svg" in capsys.readouterr().err
+
+
+def test_a_list_of_which_nothing_is_left_is_told(tmp_path, capsys):
+    listed = tmp_path / "pads.csv"
+    text = "Strip,Runway,Length [m],Elevation [ft],Surface,Closed\nXAAA,09/27,900,2300,grass,yes\n"
+    listed.write_text(text, encoding="utf-8")
+    for name in ("out.xlsx", "out.csv"):
+        assert main(["fill", str(listed), "--card", "ridge-runner", "--rules", "manual-only", "--temp", "20", "-o",
+                     str(tmp_path / name)]) == 2  # fmt: skip
+        assert "pads.csv: none of its runways can be assessed (1 closed)" in capsys.readouterr().err
+        assert not (tmp_path / name).exists()

@@ -190,7 +190,7 @@ class ValuePages:
         if self.is_live("Aircraft"):
             return
         again = write_again(rows, self.sides(rows), len(aeroplane_of(rows).flaps))
-        if any(self.package.names.get(name) != text for name, text in again.names.items()):
+        if any(not self.package.is_named(name, cells) for name, cells in again.names.items()):
             raise InputError(f'{self.package.path}: rows or columns of the sheet "{MANUAL}" were moved; move them back')
         for (number, column), there in repeated_cells(again, rows):
             before, figure = rows[number - 1][column - 1], self.value(MANUAL, *there)

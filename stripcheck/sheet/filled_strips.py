@@ -28,7 +28,7 @@ from stripcheck.surface import CONDITIONS, SURFACES
 from stripcheck.units import to_si
 
 NATIVE, DOOR, VALUES = "native", "door", "values"
-OF_DOORS = "STRIP"  # what the functions of the other doors begin with
+OF_DOORS = re.compile(r"\bSTRIP[._]\w+\(", re.IGNORECASE)  # a function of another door
 HEADER_WITHIN = 40  # rows in which a sheet's header is looked for
 FIRST_FEW = 50  # rows that tell how a sheet was filled
 PARTS = ("verdict", "reason", "margin", "finding")
@@ -272,7 +272,7 @@ class StripSheet:
 
 def is_of_door(cell: RawCell) -> bool:
     """Whether a cell holds a formula of another door."""
-    return OF_DOORS in (cell.formula or "")
+    return OF_DOORS.search(cell.formula or "") is not None
 
 
 def _without_texts(formula: str) -> str:

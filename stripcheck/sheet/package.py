@@ -99,6 +99,10 @@ class Package:
         part = next((part for part in self._targets(self.workbook).values() if part.endswith("sharedStrings.xml")), "")
         return [_plain_text(item) for item in self._root(part)] if part in self.zip.namelist() else []
 
+    def is_named(self, name: str, cells: str) -> bool:
+        """Whether a name stands for these cells; some programs put quotes round every sheet's title, others where they must."""
+        return self.names.get(name, "").replace("'", "") == cells.replace("'", "")
+
     def save(self, changed: Mapping[str, Iterable[bytes]], file: BinaryIO, added: Mapping[str, bytes] | None = None) -> None:
         """Write the package anew: the parts of ``changed`` from pieces of bytes, every other part as it is, those of ``added``
         last."""

@@ -88,9 +88,9 @@ def given_columns(directions: Directions) -> dict[str, Any]:
             values = directions.numbers[REGISTER_KEYS.get(item.key, item.key)]
             columns[item.key] = to_si(np.round(from_si(values, item.unit), 6), item.unit)
     texts = directions.texts
-    columns["fault"] = np.array([bool(text) for text in texts["fault"]])
-    columns["land_here"] = np.array([text != "no" for text in texts["land_here"]])
-    columns["take_off_here"] = np.array([text != "no" for text in texts["take_off_here"]])
+    columns["fault"] = np.array([bool(text) for text in texts["fault"]], dtype=bool)
+    columns["land_here"] = np.array([text != "no" for text in texts["land_here"]], dtype=bool)
+    columns["take_off_here"] = np.array([text != "no" for text in texts["take_off_here"]], dtype=bool)
     columns["surface"] = codes(texts["surface"], SURFACES)
     columns["condition"] = codes(texts["condition"], CONDITIONS, blank=-1, strange=-2)
     return columns
