@@ -111,16 +111,16 @@ def _refresh(package: Package, request: Request) -> tuple[BookEdits, list[str]]:
     pages.write()
     return work, [
         f"{_many(computed.size, 'direction')} refreshed",
-        *_some([*book.doubts, *pages.doubts], MOST_DOUBTS),
-        *_told_of(directions, summary),
+        *_some([*book.doubts, *pages.doubts, *summary.misnamed()], MOST_DOUBTS),
+        *_told_of(directions, summary, pages),
         *summary.counts(),
     ]
 
 
-def _told_of(directions: StripEdits, summary: SummaryEdits) -> list[str]:
+def _told_of(directions: StripEdits, summary: SummaryEdits, pages: PageEdits) -> list[str]:
     lines = []
-    if directions.replaced:
-        cells = ", ".join(_some(directions.replaced, 5))
+    if directions.replaced or pages.replaced:
+        cells = ", ".join(_some([*directions.replaced, *pages.replaced], 5))
         lines.append(f"Typed over formulas, and formulas again: {cells}")
     if summary.gone:
         lines.append(f"{_many(summary.gone, 'strip')} of the Summary not on the sheet Strips any more: delete the rows there")

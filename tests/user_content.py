@@ -1,3 +1,4 @@
+# ruff: noqa: E501  (pieces of XML stand as the programs write them)
 """Puts into a filled workbook everything that a user may add to one, as the usual programs write it, part by part.
 
 The forms are those of ECMA-376 and of the published extensions to it ([MS-XLSX], [MS-OI29500]), from memory. What is put in
@@ -196,7 +197,7 @@ def _into_tail(parts: Parts, title: str, element: str, before: tuple[str, ...]) 
     """Put an element into a sheet's part, before the first of some others that it has."""
     part = parts.sheet(title)
     head, _, tail = parts.text(part).partition("</sheetData>")
-    place = min((at for name in (*before, "/worksheet") if (at := tail.find(f"<{name}")) >= 0))
+    place = min(at for name in (*before, "/worksheet") if (at := tail.find(f"<{name}")) >= 0)
     parts.put(part, f"{head}</sheetData>{tail[:place]}{element}{tail[place:]}")
 
 

@@ -56,10 +56,10 @@ def check_filled(package: Package) -> None:
     """Raise InputError for a workbook that stripcheck did not fill, or that has lost sheets."""
     missing = [title for title in SHEETS if title not in package.sheets]
     if len(missing) > 2:
-        raise InputError(f"{package.path}: this is no workbook that stripcheck filled; a refresh needs one")
+        raise InputError(f"{package.path}: this is no workbook that `stripcheck fill` made, as a refresh needs one")
     if missing:
         names = " and ".join(f'"{title}"' for title in missing)
-        raise InputError(f"{package.path}: the workbook has no sheet {names}, by which it is read; put it back")
+        raise InputError(f"{package.path}: the workbook has no sheet {names}, as each that `stripcheck fill` made; put it back")
 
 
 def read_filled(package: Package, pages: ValuePages) -> Filled:

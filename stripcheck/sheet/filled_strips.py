@@ -56,7 +56,8 @@ class Sheet:
         return {header: columns[0] for header, columns in self.found.items()}
 
     def lost(self, header: str) -> InputError:
-        return InputError(f'{self.path}: the sheet "{self.title}" has lost its column "{header}"; put it back, with its header')
+        return InputError(f'{self.path}: the sheet "{self.title}" has lost its column "{header}"; put it back under its '
+                          "header, or fill a new workbook")  # fmt: skip
 
 
 def with_headers(package: Package, title: str, mark: str) -> Sheet:
@@ -161,8 +162,7 @@ class StripSheet:
         for key in NEEDED:
             if key not in self.steps:
                 raise self.sheet.lost(self._step_header(key))
-        short = {step.key for step in self.chain.steps if step.short}
-        full = self.kind != NATIVE or any(key not in short for key in self.steps)
+        full = self.kind != NATIVE or len(self.steps) > 0.5 * len(self.chain.depends_on_strip())
         lost = [header for key, header in _HEADERS.items() if key not in self.inputs and (full or key in LENGTHS)]
         if lost:
             raise self.sheet.lost(lost[0])

@@ -7,6 +7,7 @@ from datetime import datetime
 from typing import Any
 
 import numpy as np
+from openpyxl.utils import get_column_letter
 
 from stripcheck.card import Card
 from stripcheck.chain import Input
@@ -16,6 +17,7 @@ from stripcheck.rules import Rules
 from stripcheck.sheet import method
 from stripcheck.sheet.book import ASSUMED_SLOPE, SAME_TEMPERATURE, from_card, from_rules, granted_by_card, granted_by_day
 from stripcheck.sheet.filled_pages import MANUAL, SI, VALUE
+from stripcheck.sheet.formulas import Place
 from stripcheck.sheet.manual_again import write_again
 from stripcheck.sheet.package import cell_of
 from stripcheck.sheet.refreshed import BookEdits, Computed, plain_value
@@ -24,12 +26,14 @@ FLAP_COLUMNS = {"flap_deflection": "flap_deflections", "flap_lift": "flap_lifts"
 
 
 class PageEdits:
-    """The edits to the pages. ``doubts``: what can't be shown, in a sentence each."""
+    """The edits to the pages. ``doubts``: what can't be shown, in a sentence each; ``replaced``: cells of steps where a formula
+    was typed over."""
 
     def __init__(self, work: BookEdits, computed: Computed, card: Card | None, rules: Rules | None) -> None:
         self.work, self.computed, self.book = work, computed, computed.book
         self.card, self.rules = card, rules
         self.doubts: list[str] = []
+        self.replaced: list[str] = []
 
     def write(self) -> None:
         """All edits."""
@@ -47,10 +51,24 @@ class PageEdits:
             title, row, column = place
             if not isinstance(item, Input):
                 value, shown = self.computed.once(key)
+                if self._is_typed_over(title, row, column):
+                    self.work.by_title[title].set(row, column, value, self._formula(key))
+                    self.replaced.append(f"{title}!{get_column_letter(column)}{row}")
                 self.work.show(title, row, column, value)
                 self.work.show(title, row, VALUE, shown)
             elif item.kind == "number" and column == SI:
                 self.work.show(title, row, column, plain_value(np.ravel(self.book.inputs[key])[0]))
+
+    def _is_typed_over(self, title: str, row: int, column: int) -> bool:
+        cell = self.work.pages.raw[title].cell(row, column)
+        fresh = column in self.work.by_title[title].cells.get(row, {})
+        return self.work.pages.is_live(title) and not fresh and (cell is None or not cell.live)
+
+    def _formula(self, key: str) -> str:
+        chain = self.book.chain
+        places = self.work.page_places(chain)
+        places |= {step.key: Place(step.key) for step in chain.steps if self.work.named(step.key)}
+        return self.work.formulas(chain, places, [key])[key]
 
     def _write_flaps(self) -> None:
         for key, name in FLAP_COLUMNS.items():

@@ -94,7 +94,7 @@ class StripEdits:
                 self.edits.result(row, column, of_door[at])
                 continue
             if self._is_typed_over(cell, formula):
-                self.replaced.append(f"{get_column_letter(column)}{row}")
+                self.replaced.append(f"{strips.SHEET}!{get_column_letter(column)}{row}")
             self._set(row, column, shown[at], formula)
 
     def _is_typed_over(self, cell: RawCell | None, formula: str | None) -> bool:

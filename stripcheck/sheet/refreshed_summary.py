@@ -71,6 +71,19 @@ class SummaryEdits:
         """How many strips of the summary have no direction on the sheet Strips any more."""
         return sum(all(key not in self.place for key in pair) for pair in self.pairs.values())
 
+    def misnamed(self) -> list[str]:
+        """A sentence for each strip that has another identifier here than its directions, renamed or sorted without keys."""
+        told, strips = [], self.book.strips
+        for row in self.listed:
+            own = str(self.raw.value(row, self.columns["strip"]) or "")
+            for key in self.pairs[row]:
+                there = strips.rows[self.place[key]] if key in self.place else 0
+                name = strips.text(there, "strip") if there else ""
+                if own and name and own != name:
+                    told.append(f"sheet Summary, row {row}: {own} has the key of row {there} on the sheet Strips, {name}")
+                    break
+        return told
+
     @cached_property
     def _was_listed(self) -> set[int]:
         return set(self.listed)
