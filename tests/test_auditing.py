@@ -170,7 +170,7 @@ def test_an_old_file_is_replaced_when_forced(strips: Path, tmp_path: Path) -> No
 
 def test_the_page_in_the_docs(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
     """What docs/register.md shows is what the command says, and the kinds that it lists are all there are."""
-    page = (Path(__file__).parents[1] / "docs" / "register.md").read_text(encoding="utf-8").split("\n## Merge")[0]
+    page = (Path(__file__).parents[1] / "docs" / "register.md").read_text(encoding="utf-8").split("\n## Refresh")[0]
     blocks = dict(re.findall(r"^```(csv|text)\n(.*?)^```$", page, re.DOTALL | re.MULTILINE))
     (tmp_path / "ugly.csv").write_text(blocks["csv"], encoding="utf-8")
     monkeypatch.chdir(tmp_path)

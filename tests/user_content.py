@@ -21,6 +21,7 @@ HEADER_ROWS = {"Strips": 3, "Summary": 14}
 OURS = ("Summary", "Strips", "Aircraft", "Manual", "Day", "Rules", "Left out", "Method")
 MINE = "My "  # what the headers of the user's columns begin with
 NOTES = "My notes"
+CHAIN = "xl/calcChain.xml"
 _SPREADSHEET = "application/vnd.openxmlformats-officedocument.spreadsheetml"
 _DRAWING = "application/vnd.openxmlformats-officedocument.drawing+xml"
 _A = "http://schemas.openxmlformats.org/drawingml/2006/main"
@@ -55,7 +56,8 @@ def _add_styles(parts: Parts) -> dict[str, str]:
     """Formats of a user's: a bold red number on pink, and a date; numbers of the styles by name."""
     part = "xl/styles.xml"
     font = _append(parts, part, "fonts", '<font><b/><sz val="11"/><color rgb="FFC00000"/><name val="Georgia"/></font>')
-    fill = _append(parts, part, "fills", '<fill><patternFill patternType="solid"><fgColor rgb="FFFFC7CE"/></patternFill></fill>')
+    pattern = '<patternFill patternType="solid"><fgColor rgb="FFFFC7CE"/></patternFill>'
+    fill = _append(parts, part, "fills", f"<fill>{pattern}</fill>")
     plain = f'<xf numFmtId="2" fontId="{font}" fillId="{fill}" borderId="0" xfId="0" applyFont="1" applyFill="1"/>'
     date = f'<xf numFmtId="14" fontId="{font}" fillId="0" borderId="0" xfId="0" applyNumberFormat="1"/>'
     return {"pink": _append(parts, part, "cellXfs", plain), "date": _append(parts, part, "cellXfs", date)}
@@ -76,7 +78,8 @@ def _add_shared_texts(parts: Parts) -> None:
     part = "xl/sharedStrings.xml"
     assert part not in parts
     texts = (
-        "<si><r><t>Ask </t></r><r><rPr><b/><color rgb=\"FFFF0000\"/></rPr><t xml:space=\"preserve\"> Ada </t></r><r><t>first</t></r></si>",
+        '<si><r><t xml:space="preserve">Ask </t></r><r><rPr><b/><color rgb="FFFF0000"/></rPr><t xml:space="preserve"> Ada </t></r>'
+        "<r><t>first</t></r></si>",
         '<si><t>海</t><rPh sb="0" eb="1"><t>うみ</t></rPh><phoneticPr fontId="0"/></si>',
         '<si><t xml:space="preserve">  two spaces &amp; a line_x000D_\n</t></si>',
     )  # fmt: skip
@@ -106,9 +109,10 @@ def _add_columns(parts: Parts, title: str, styles: dict[str, str]) -> None:
         price, remark, enough, letters, visited = columns
         sheet.type(row, price, 12.5 * at, styles["pink"])
         sheet.put(row, remark, f"<v>{at % 3}</v>", "s")
-        sheet.put(row, enough, f'<f>IF(ISNUMBER({watched}{row}),IF({watched}{row}&gt;100,"long","short"),"?")</f><v>?</v>', "str")
-        shared = f'<f t="shared" ref="{_cells(letters, rows)}" si="7">LEN({names}{row})</f>' if not at else '<f t="shared" si="7"/>'
-        sheet.put(row, letters, f"{shared}<v>{at}</v>", style=styles["pink"])
+        formula = f'IF(ISNUMBER({watched}{row}),IF({watched}{row}&gt;100,"long","short"),"?")'
+        sheet.put(row, enough, f"<f>{formula}</f><v>?</v>", "str")
+        first = f'<f t="shared" ref="{_cells(letters, rows)}" si="7">LEN({names}{row})</f>'
+        sheet.put(row, letters, ('<f t="shared" si="7"/>' if at else first) + f"<v>{at}</v>", style=styles["pink"])
         sheet.put(row, visited, f"<v>{45_000 + at}</v>", style=styles["date"])
     parts.put(parts.sheet(title), str(sheet))
 
@@ -365,15 +369,25 @@ def set_calc_chain(parts: Parts) -> None:
         assert number is not None
         cells = re.findall(r'<c r="([A-Z]+\d+)"[^>]*><f', parts.text(parts.sheet(title)))
         entries += [f'<c r="{cell}"' + (f' i="{number[1]}"/>' if not at else "/>") for at, cell in enumerate(cells)]
-    fresh = "xl/calcChain.xml" not in parts
-    parts.put("xl/calcChain.xml", f'{_XML}<calcChain xmlns="{_MAIN}">{"".join(entries)}</calcChain>')
+    fresh = CHAIN not in parts
+    parts.put(CHAIN, f'{_XML}<calcChain xmlns="{_MAIN}">{"".join(entries)}</calcChain>')
     if not fresh:
         return
-    parts.declare("xl/calcChain.xml", f"{_SPREADSHEET}.calcChain+xml")
+    parts.declare(CHAIN, f"{_SPREADSHEET}.calcChain+xml")
     parts.relate("xl/workbook.xml", "calcChain", "calcChain.xml")
 
 
 # --- looking at it
+
+
+def chain_cells(parts: Parts) -> list[tuple[str, str]]:
+    """Number of the sheet and name of each cell in the order of calculation."""
+    sheet, found = "", []
+    for entry in re.findall(r"<c [^>]*>", parts.text(CHAIN)):
+        told = dict(re.findall(r'(\w+)="([^"]*)"', entry))
+        sheet = told.get("i", sheet)
+        found.append((sheet, told["r"]))
+    return found
 
 
 def foreign_parts(path: Path) -> dict[str, str]:

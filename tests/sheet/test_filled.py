@@ -210,7 +210,7 @@ def test_rows_that_were_sorted_without_their_keys_are_told(refresh) -> None:
     reorder(parts, "Strips", rows, [*rows[2:], *rows[:2]])
     edit(parts, "Strips", lambda sheet: [sheet.rows[row].update({1: keys[row]}) for row in rows])
     said = refresh(parts, state=State(card_of("full")))
-    assert "sheet Summary, row 15: XLRB has the key of row 4 on the sheet Strips, XTPF" in said
+    assert "sheet Summary, row 15: XLRB has the key of row 4 on the sheet Strips, XTLF" in said
     assert said.count("has the key of row") == 6
 
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import hashlib
-import re
 import zipfile
 from pathlib import Path
 
@@ -16,7 +15,7 @@ from stripcheck.sheet.package import Package, cell_of, worked_out_on_load
 from tests.book_parts import Parts
 from tests.filled_books import filled, with_everything
 from tests.sheet.package_check import package_faults
-from tests.user_content import set_calc_chain
+from tests.user_content import chain_cells, set_calc_chain
 
 
 def written(package: Package, edits: dict[str, Edits], path: Path) -> Parts:
@@ -96,16 +95,8 @@ def test_a_changed_workbook_that_was_not_told_so_is_told(book: Path, tmp_path: P
 
 
 def test_a_cell_without_its_formula_leaves_the_order_of_calculation(book: Path, tmp_path: Path) -> None:
-    def chain(parts: Parts) -> list[tuple[str, str]]:
-        sheet, found = "", []
-        for entry in re.findall(r"<c [^>]*>", parts.text("xl/calcChain.xml")):
-            told = dict(re.findall(r'(\w+)="([^"]*)"', entry))
-            sheet = told.get("i", sheet)
-            found.append((sheet, told["r"]))
-        return found
-
     before = Parts.read(book)
-    set_calc_chain(before)
+    set_calc_chain_cells(before)
     with Package(book) as package:
         edits = {title: Edits(package.sheet(title)) for title in ("Summary", "Day")}
         first = {title: next((row.number, cell.column) for row in one.sheet.rows for cell in row.cells.values() if cell.live)
@@ -113,9 +104,9 @@ def test_a_cell_without_its_formula_leaves_the_order_of_calculation(book: Path, 
         for title, (row, column) in first.items():
             edits[title].set(row, column, 1.0)
         after = written(package, edits, tmp_path / "after.xlsx")
-    gone = set(chain(before)) - set(chain(after))
+    gone = set(chain_cells(before)) - set(chain_cells(after))
     assert len(gone) == 2 and {sheet for sheet, _ in gone} == {"1", "5"}
-    assert [entry for entry in chain(before) if entry not in gone] == chain(after)
+    assert [entry for entry in chain_cells(before) if entry not in gone] == chain_cells(after)
 
 
 # --- other programs' files
