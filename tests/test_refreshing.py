@@ -64,6 +64,11 @@ def edited(kind: str, chance: random.Random, folder: Path, macros: bool = False)
     return path, state
 
 
+def strips_part(path: Path) -> str:
+    parts = Parts.read(path)
+    return parts.text(parts.sheet("Strips"))
+
+
 def formula_cells(parts: Parts) -> list[tuple[str, str]]:
     """The same of each cell with a formula."""
     again = Parts(parts)
@@ -73,7 +78,7 @@ def formula_cells(parts: Parts) -> list[tuple[str, str]]:
 
 def refresh_and_look(path: Path, state: State, options: Sequence[str]) -> None:
     """Refresh a workbook; all that is a user's must be as it was, and all that is ours as `assess` has it."""
-    own = is_own(Parts.read(path))
+    own, native = is_own(Parts.read(path)), "INDEX(takeoff_verdict_words" in strips_part(path)
     foreign, cells, chain = foreign_parts(path), own_cells(path, own), chain_cells(Parts.read(path))
     assert len(foreign) > 30 and len(cells) > 80
     assert main(["refresh", str(path), *options]) == 0
@@ -85,6 +90,7 @@ def refresh_and_look(path: Path, state: State, options: Sequence[str]) -> None:
         cells = set(formula_cells(parts))
         assert chain_cells(parts) == [cell for cell in chain if cell in cells] != chain
     assert own_cells(path, own) == cells
+    assert ("INDEX(takeoff_verdict_words" in strips_part(path)) == native
     assert verdicts_must_be(path, state) == []
     assert package_faults(path) == []
 

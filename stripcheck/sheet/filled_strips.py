@@ -148,12 +148,13 @@ class StripSheet:
         return chosen[0]
 
     def _kind(self) -> str:
-        """Whether the computed columns are native formulas, those of another door, or values."""
-        kinds = set()
-        for number in list(self._below())[:FIRST_FEW]:
-            cells = (self.raw.cell(number, column) for column in self.steps.values())
-            kinds |= {is_of_door(cell) for cell in cells if cell is not None and cell.live}
-        return VALUES if not kinds else NATIVE if False in kinds else DOOR
+        """Whether the computed columns are native formulas, those of another door, or values; a user may have typed others."""
+        keyed = [number for number in self._below() if self.text(number, "key")][:FIRST_FEW]
+        cells = [self.raw.cell(number, column) for number in keyed for column in self.steps.values()]
+        live = [cell for cell in cells if cell is not None and cell.live]
+        if any(map(is_of_door, live)):
+            return DOOR
+        return NATIVE if 2 * len(live) > len(cells) else VALUES
 
     def _check_columns(self) -> None:
         for key in ("key", "direction"):

@@ -96,7 +96,7 @@ def test_a_changed_workbook_that_was_not_told_so_is_told(book: Path, tmp_path: P
 
 def test_a_cell_without_its_formula_leaves_the_order_of_calculation(book: Path, tmp_path: Path) -> None:
     before = Parts.read(book)
-    set_calc_chain_cells(before)
+    set_calc_chain(before)
     with Package(book) as package:
         edits = {title: Edits(package.sheet(title)) for title in ("Summary", "Day")}
         first = {title: next((row.number, cell.column) for row in one.sheet.rows for cell in row.cells.values() if cell.live)
