@@ -181,12 +181,11 @@ def _take_card(work: BookEdits, card: Card, chosen: Mapping[str, float], flap_na
 
 def _copy(work: BookEdits, sheet: Worksheet, cached: Mapping[str, Any]) -> None:
     """The contents of a page as filled anew, into the cells where they stand; the formats stay."""
-    live = work.pages.is_live(sheet.title)
     for cell in (cell for row in sheet.iter_rows() for cell in row if cell.value is not None or cell.has_style):
         is_formula = cell.data_type == "f" and cell.coordinate in cached
         value = cached[cell.coordinate] if is_formula else cell.value
         if value is not None or work.pages.raw[sheet.title].value(cell.row, cell.column) is not None:
             plain = None if value is None else plain_value(value)
-            formula = str(cell.value)[1:] if is_formula and live else None
+            formula = str(cell.value)[1:] if is_formula and work.pages.live else None
             work.pages.put(sheet.title, cell.row, cell.column, plain)
             work.by_title[sheet.title].set(cell.row, cell.column, plain, formula)

@@ -87,8 +87,8 @@ def refresh_and_look(path: Path, state: State, options: Sequence[str]) -> None:
     assert len(after) == len(foreign) and changed in ([], [CHAIN])
     if changed:  # cells that have no formula any more must not stand in the order of calculation
         parts = Parts.read(path)
-        cells = set(formula_cells(parts))
-        assert chain_cells(parts) == [cell for cell in chain if cell in cells] != chain
+        live = set(formula_cells(parts))
+        assert chain_cells(parts) == [cell for cell in chain if cell in live] != chain
     assert own_cells(path, own) == cells
     assert ("INDEX(takeoff_verdict_words" in strips_part(path)) == native
     assert verdicts_must_be(path, state) == []

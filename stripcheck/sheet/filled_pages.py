@@ -85,14 +85,12 @@ class ValuePages:
         values = (self.value(title, row.number, LABEL) for row in self.raw[title].rows)
         return next((value for value in values if isinstance(value, str) and value), "")
 
-    def is_live(self, title: str) -> bool:
-        """Whether a page has formulas; one that was filled with values has none."""
-        return self._live[title]
-
     @cached_property
-    def _live(self) -> Mapping[str, bool]:
-        aircraft = any(row.cells[SI].live for row in self.raw["Aircraft"].rows if SI in row.cells)
-        return {title: raw.live if title == MANUAL else aircraft for title, raw in self.raw.items()}
+    def live(self) -> bool:
+        """Whether the pages have formulas; a workbook that was filled with values has none, but those of a user's."""
+        rows = [row for item in _ON_PAGE["Day"] if item.kind == "number" and (row := self._named_row("Day", item)) is not None]
+        cells = [self.raw["Day"].cell(row, SI) for row in rows]
+        return 2 * sum(cell is not None and cell.live for cell in cells) > len(cells)
 
     def row_of(self, item: Input) -> int:
         """The row of an input on its page. Raises InputError where it is gone."""
@@ -161,7 +159,7 @@ class ValuePages:
     def _follows(self, title: str, row: int, column: int = SI) -> bool:
         """Whether a number in SI follows from the typed one; one that was typed over its formula counts itself."""
         cell = self.raw[title].cell(row, column)
-        return not self.is_live(title) or (cell is not None and cell.live)
+        return not self.live or (cell is not None and cell.live)
 
     # --- what the pages tell
 
@@ -187,7 +185,7 @@ class ValuePages:
         """In a workbook of values, figures typed on the sheet Manual go into the rows that repeat them."""
         if MANUAL not in self.raw:
             raise InputError(f'{self.package.path}: the sheet "{MANUAL}" is gone, which this aeroplane needs; put it back')
-        if self.is_live("Aircraft"):
+        if self.live:
             return
         again = write_again(rows, self.sides(rows), len(aeroplane_of(rows).flaps))
         if any(not self.package.is_named(name, cells) for name, cells in again.names.items()):

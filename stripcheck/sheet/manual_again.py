@@ -57,7 +57,7 @@ def write_again(rows: Sequence[Sequence[Any]], sides: Sequence[str], settings: i
     tables = {side: replace(one, spare=one.filled, lift_offs=()) for side, one in tables.items()}
     first = {f"{side}_book_{key}": one.pages[0][at] for side, one in tables.items() for at, key in enumerate(("flap", "mass"))}
     with_pages = sorted({flap for one in tables.values() for flap, _ in one.pages})
-    deflections = [*with_pages, *[with_pages[-1]] * settings][:settings]
+    deflections = [*with_pages, *[with_pages[-1]] * (settings - len(with_pages))]
     flaps = [SimpleNamespace(name=str(at), deflection=flap) for at, flap in enumerate(deflections)]
     card = cast(Card, SimpleNamespace(name="", tables=tables, flaps=flaps))
     made = pages.Pages(Workbook())

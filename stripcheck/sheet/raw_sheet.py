@@ -90,11 +90,6 @@ class RawSheet:
         """The rows by their numbers."""
         return {row.number: row for row in self.rows}
 
-    @property
-    def live(self) -> bool:
-        """Whether any cell has a formula."""
-        return any(cell.live for row in self.rows for cell in row.cells.values())
-
 
 def read_sheet(data: mmap.mmap | bytes, texts: Sequence[str]) -> RawSheet:
     """Read a worksheet part; ``texts`` are the workbook's shared texts. Raises ValueError, IndexError or ExpatError for one

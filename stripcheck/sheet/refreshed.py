@@ -51,7 +51,7 @@ class BookEdits:
             edits.set(row, column, value, fresh.formula, fresh.style)
         elif cell is not None and cell.live:
             edits.result(row, column, value)
-        elif not self.pages.is_live(title):
+        elif not self.pages.live:
             edits.set(row, column, value)
 
     def named(self, name: str) -> bool:

@@ -62,7 +62,7 @@ class PageEdits:
     def _is_typed_over(self, title: str, row: int, column: int) -> bool:
         cell = self.work.pages.raw[title].cell(row, column)
         fresh = column in self.work.by_title[title].cells.get(row, {})
-        return self.work.pages.is_live(title) and not fresh and (cell is None or not cell.live)
+        return self.work.pages.live and not fresh and (cell is None or not cell.live)
 
     def _formula(self, key: str) -> str:
         chain = self.book.chain
@@ -100,7 +100,7 @@ class PageEdits:
         if not all(np.isfinite(self.computed.found[key]).all() for key in keys):
             return None
         again = write_again(rows, sides, len(self.book.aeroplane.flaps), self.computed.found)
-        return again.on(self.work.pages.raw[MANUAL], self.work.pages.is_live(MANUAL))
+        return again.on(self.work.pages.raw[MANUAL], self.work.pages.live)
 
 
 class Notes:

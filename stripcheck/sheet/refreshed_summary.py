@@ -55,11 +55,10 @@ class SummaryEdits:
         if self.grown:
             self.edits.grow(Growth(self.listed[0], self.listed[-1], max(self.pairs), self.columns.values()))
 
-    @cached_property
+    @property
     def live(self) -> bool:
-        """Whether the sheet was filled with formulas."""
-        cells = (self.raw.cell(row, self.columns["both"]) for row in self.listed)
-        return any(cell is not None and cell.live for cell in cells)
+        """Whether the sheet was filled with formulas, as the pages are."""
+        return self.work.pages.live
 
     @property
     def grown(self) -> bool:

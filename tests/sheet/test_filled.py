@@ -353,3 +353,29 @@ def test_a_figure_that_was_cleared_in_a_workbook_of_values_is_refused(refresh) -
     sheet.type(page + 2, 3, None)
     parts.put(parts.sheet("Manual"), str(sheet))
     assert 'a figure on the sheet "Manual" is gone' in refresh(parts, code=2)
+
+
+@pytest.mark.parametrize("kind", ["none", "many tables none"])
+def test_formulas_of_a_users_do_not_make_a_workbook_of_values_one_of_formulas(refresh, tmp_path: Path, kind: str) -> None:
+    parts = book(kind)
+    for title in ("Aircraft", "Day", "Rules", "Manual", "Summary", "Strips"):
+        edit(parts, title, lambda sheet: [sheet.put(max(sheet.rows) + 2, at, "<f>1+1</f><v>2</v>") for at in (2, 4, 11)])
+    column, row = column_of(parts, "Landing margin [m]"), rows_of(parts, "Strips")[1]
+    edit(parts, "Strips", lambda sheet: sheet.put(row, column, "<f>100+1</f><v>101</v>"))
+    state = State(card_of(kind), day={"isa_deviation": 15, "qnh": 1001, "wind_from": 310, "wind_speed": 8})
+    refresh(parts, "--qnh", "1001", state=state)
+    after = Parts.read(tmp_path / "book.xlsx")
+    texts = [after.text(after.sheet(title)) for title in SHEETS]
+    assert {formula for text in texts for formula in re.findall("<f>.*?</f>", text)} == {"<f>1+1</f>"}
+    assert rows_shown(tmp_path / "book.xlsx")[0]["QNH used, QNH [hPa]"] == 1001.0
+
+
+def test_cells_that_were_merged_over_the_table_do_no_harm(refresh) -> None:
+    parts = book()
+    name, margin = (column_of(parts, header) for header in ("Name", "Take-off margin [m]"))
+    edit(parts, "Strips", lambda sheet: [sheet.rows[5].pop(column) for column in (name, margin)])
+    letters = [openpyxl.utils.get_column_letter(column) for column in (name, margin)]
+    areas = "".join(f'<mergeCell ref="{letter}4:{letter}5"/>' for letter in letters)
+    part = parts.sheet("Strips")
+    parts.change(part, "<conditionalFormatting", f'<mergeCells count="2">{areas}</mergeCells><conditionalFormatting')
+    refresh(parts, state=State(card_of("full")))
