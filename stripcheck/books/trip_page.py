@@ -44,7 +44,6 @@ from stripcheck.units import to_si
 from stripcheck.verdict import MARGINAL, NOT_ASSESSED, SUITABLE, UNSUITABLE
 
 Value = float | str
-GENERAL_COLUMN = 1  # the stop in whose column the values of the whole trip stand
 FURTHER = ("latitude", "longitude", "by_position", "fuel_in", "kept", "stays")  # rows of Reading after those of the page
 SUMMARY = {"verdicts": 7, "limit": 8, "none": 10, "fuel": 11, "mass": 12, "entries": 13}  # rows of the box beside the aeroplane
 SIDE_WORD = {"landing": "landing at", "takeoff": "take-off from"}
